@@ -1,0 +1,306 @@
+"""The shape of a book file, validated whole before anything is stored.
+
+Every part carries a `key`, unique among its kind; parts name each other by key. Loading a book twice
+changes nothing; loading a changed book changes what differs and leaves the rest.
+Depths are mm, areas ha, heights and root depths m, water contents m3 of water per m3 of soil, fractions 0-1.
+"""
+
+import json
+from datetime import date
+from pathlib import Path
+from typing import Annotated, Any, Literal, Self
+
+from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
+
+Key = Annotated[str, Field(pattern=r"^[a-z0-9]+(-[a-z0-9]+)*$", max_length=60)]
+Name = Annotated[str, Field(min_length=1, max_length=80)]
+Fraction = Annotated[float, Field(ge=0, le=1)]
+Share = Annotated[float, Field(gt=0, le=1)]
+Depth = Annotated[float, Field(ge=0, le=2000)]
+Purpose = Literal[
+    "crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"
+]
+Variable = Literal["energy", "temperature", "wind", "rain"]
+SaidToBeDone = Literal["advised", "presumed", "reported", "metered", "measured"]
+
+
+class Part(BaseModel):
+    """A part of the book: unknown names are refused, numbers must be finite."""
+
+    model_config = ConfigDict(extra="forbid", allow_inf_nan=False, str_strip_whitespace=True)
+
+
+class StationPart(Part):
+    """A weather station: where it stands and what lies under its radiometers."""
+
+    key: Key
+    name: Name
+    latitude_deg: Annotated[float, Field(ge=-90, le=90)]
+    longitude_deg: Annotated[float, Field(ge=-180, le=180)]
+    elevation_m: Annotated[float, Field(ge=-430, le=6000)]
+    utc_offset_h: Annotated[float, Field(ge=-12, le=14, description="fixed standard offset")]
+    time_zone: str | None = Field(None, description="IANA zone of a logger on civil time")
+    wind_height_m: Annotated[float, Field(gt=0.2, le=100)] = 2.0
+    reference_surface: bool = Field(False, description="clipped, watered grass under the sensors")
+    arid: bool = False
+    coastal: bool = False
+
+
+class LayerPart(Part):
+    """A soil layer, from the one above down to `bottom_m`: lab values, else of its texture class."""
+
+    bottom_m: Annotated[float, Field(gt=0, le=5)]
+    texture: str | None = Field(None, description="texture_id of the handbook's soils")
+    field_capacity: Annotated[float, Field(gt=0, lt=0.8)] | None = None
+    wilting_point: Annotated[float, Field(ge=0, lt=0.7)] | None = None
+    saturation: Annotated[float, Field(gt=0, lt=0.95)] | None = None
+
+    @model_validator(mode="after")
+    def _water_held(self) -> Self:
+        if self.texture is None and (self.field_capacity is None or self.wilting_point is None):
+            raise ValueError("give a texture, or both field_capacity and wilting_point")
+        if (
+            self.field_capacity is not None
+            and self.wilting_point is not None
+            and self.field_capacity <= self.wilting_point
+        ):
+            raise ValueError("field_capacity must be above wilting_point")
+        return self
+
+
+class SoilPart(Part):
+    """A soil profile with its evaporation layer, runoff and drainage."""
+
+    key: Key
+    name: Name
+    layers: Annotated[list[LayerPart], Field(min_length=1, max_length=12)]
+    evaporation_depth_m: Annotated[float, Field(ge=0.05, le=0.2)] = 0.10
+    rew_mm: Annotated[float, Field(gt=0, le=20)] | None = Field(
+        None, description="readily evaporable water; of the top layer's texture when not given"
+    )
+    tew_mm: Annotated[float, Field(gt=0, le=60)] | None = None
+    curve_number: Annotated[float, Field(ge=30, le=100)] | None = None
+    drainage_days: Annotated[int, Field(ge=0, le=10)] = 0
+
+    @model_validator(mode="after")
+    def _deeper_and_deeper(self) -> Self:
+        bottoms = [layer.bottom_m for layer in self.layers]
+        if any(below <= above for above, below in zip(bottoms, bottoms[1:], strict=False)):
+            raise ValueError(f"bottom_m must grow from layer to layer, not {bottoms}")
+        return self
+
+
+class SystemPart(Part):
+    """An application system and what it can deliver. Rates and depths are gross."""
+
+    key: Key
+    name: Name
+    kind: Name = Field(description="plain words, such as 'centre pivot'")
+    efficiency: Annotated[float, Field(gt=0.2, le=1)]
+    rate_mm_h: Annotated[float, Field(gt=0, le=200)]
+    wetting: str = Field("sprinkler", description="method_id of the handbook's wetted fractions")
+    wetted_fraction: Share | None = None
+    under_canopy: bool = False
+    root_wetted_fraction: Share = 1.0
+    least_mm: Depth = 0
+    most_mm: Annotated[float, Field(gt=0, le=500)] = 150
+    interval_days: Annotated[int, Field(ge=1, le=60)] = 1
+    cover_days: Annotated[int, Field(ge=1, le=30)] = 1
+    hours_per_day: Annotated[float, Field(gt=0, le=24)] = 24
+
+    @model_validator(mode="after")
+    def _least_below_most(self) -> Self:
+        if self.least_mm > self.most_mm:
+            raise ValueError(f"least_mm {self.least_mm} is above most_mm {self.most_mm}")
+        return self
+
+
+class FarmPart(Part):
+    key: Key
+    name: Name
+    grower: Name | None = None
+
+
+class SourcePart(Part):
+    """From which station a variable of a field comes, from a date on."""
+
+    variable: Variable
+    station: Key
+    since: date | None = None
+
+
+class KeepOffPart(Part):
+    """Dates, both included, on which a field must not be irrigated."""
+
+    first: date
+    last: date
+    why: Name
+
+    @model_validator(mode="after")
+    def _forward(self) -> Self:
+        if self.last < self.first:
+            raise ValueError(f"last {self.last} is before first {self.first}")
+        return self
+
+
+class BlockPart(Part):
+    """A part of a field with its own ledger."""
+
+    key: Key
+    name: Name
+    area_ha: Annotated[float, Field(gt=0, le=100_000)]
+    soil: Key | None = None
+    system: Key | None = None
+
+
+class FieldPart(Part):
+    """A field; without blocks it is one block, and the word is not shown."""
+
+    key: Key
+    name: Name
+    farm: Key
+    area_ha: Annotated[float, Field(gt=0, le=100_000)]
+    station: Key = Field(description="the station for every variable that `sources` does not name")
+    soil: Key
+    system: Key
+    sources: list[SourcePart] = []
+    blocks: list[BlockPart] = []
+    managed_by: str = Field("driest", description="'driest', 'median', or a block's key")
+    keep_offs: list[KeepOffPart] = []
+
+
+class SeasonPart(Part):
+    """A crop on a field from planting on. What is given overrides the handbook's row of the crop."""
+
+    field: Key
+    block: Key | None = Field(None, description="one block only; every block when not given")
+    crop: str = Field(description="crop_id of the handbook")
+    planting: date
+    coefficients: Literal["dual", "single"] = "dual"
+    kc_reference: Literal["short"] = Field("short", description="handbook Kc go with ETo only")
+    stage_days: tuple[int, int, int, int] | None = Field(
+        None, description="initial, development, mid-season, late; the planting day is day 1"
+    )
+    kc_ini: Annotated[float, Field(ge=0, le=2)] | None = None
+    kc_mid: Annotated[float, Field(ge=0, le=2)] | None = None
+    kc_end: Annotated[float, Field(ge=0, le=2)] | None = None
+    kcb_ini: Annotated[float, Field(ge=0, le=2)] | None = None
+    kcb_mid: Annotated[float, Field(ge=0, le=2)] | None = None
+    kcb_end: Annotated[float, Field(ge=0, le=2)] | None = None
+    kc_min: Annotated[float, Field(ge=0, le=0.3)] | None = None
+    height_m: Annotated[float, Field(gt=0, le=30)] | None = None
+    root_depth_min_m: Annotated[float, Field(gt=0, le=5)] | None = None
+    root_depth_max_m: Annotated[float, Field(gt=0, le=5)] | None = None
+    depletion_fraction: Annotated[float, Field(ge=0.1, le=0.8)] | None = None
+    mad: Annotated[float, Field(gt=0, le=0.95)] | None = None
+    climate_adjustment: Literal["trailing", "stage_mean", "day", "none"] = "trailing"
+    ledger_start: date | None = None
+    initial_depletion_mm: Depth | None = None
+    initial_depletion_fraction: Fraction | None = None
+    initial_subsoil_depletion_fraction: Fraction = 0
+    initial_evaporation_depletion_mm: Depth = 0
+    refill_to_mm: Depth = 0
+    rain_room_mm: Depth = 0
+    end: date | None = Field(None, description="harvest or frost; planting plus the stages if not given")
+    note: str | None = None
+
+    @model_validator(mode="after")
+    def _in_order(self) -> Self:
+        if self.end is not None and self.end <= self.planting:
+            raise ValueError(f"end {self.end} is not after planting {self.planting}")
+        if self.ledger_start is not None and self.ledger_start < self.planting:
+            raise ValueError(f"ledger_start {self.ledger_start} is before planting {self.planting}")
+        if self.stage_days is not None and min(self.stage_days) < 1:
+            raise ValueError("each of stage_days must be at least 1 day")
+        if self.initial_depletion_mm is not None and self.initial_depletion_fraction is not None:
+            raise ValueError("give initial_depletion_mm or initial_depletion_fraction, not both")
+        return self
+
+
+class IrrigationPart(Part):
+    """Water put on a field, on one day, as it was entered: exactly one amount."""
+
+    field: Key
+    block: Key | None = None
+    day: date
+    gross_mm: Annotated[float, Field(gt=0, le=1000)] | None = None
+    net_mm: Annotated[float, Field(gt=0, le=1000)] | None = None
+    hours: Annotated[float, Field(gt=0, le=1000)] | None = None
+    volume_m3: Annotated[float, Field(gt=0, le=1e8)] | None = None
+    purpose: Purpose = "crop"
+    confirmation: SaidToBeDone = "reported"
+    note: str | None = None
+
+    @model_validator(mode="after")
+    def _one_amount(self) -> Self:
+        given = [self.gross_mm, self.net_mm, self.hours, self.volume_m3]
+        if sum(value is not None for value in given) != 1:
+            raise ValueError("give exactly one of gross_mm, net_mm, hours, volume_m3")
+        return self
+
+
+class RainPart(Part):
+    """Rain of a field's own gauge on one day, in place of its station's."""
+
+    field: Key
+    day: date
+    rain_mm: Depth
+    note: str | None = None
+
+
+class Book(Part):
+    """A whole book."""
+
+    stations: list[StationPart] = []
+    soils: list[SoilPart] = []
+    systems: list[SystemPart] = []
+    farms: list[FarmPart] = []
+    fields: list[FieldPart] = []
+    seasons: list[SeasonPart] = []
+    irrigations: list[IrrigationPart] = []
+    rain: list[RainPart] = []
+
+
+class BookError(Exception):
+    """A book that cannot be loaded; `problems` has one line for each place."""
+
+    def __init__(self, problems: list[str]) -> None:
+        super().__init__("\n".join(problems))
+        self.problems = problems
+
+
+def read_book(path: Path) -> Book:
+    """The validated book of a file; raises BookError naming each place, value and reason."""
+    try:
+        raw = json.loads(path.read_text(encoding="utf-8-sig"))
+    except OSError as error:
+        raise BookError([f"{path}: cannot be read ({error.strerror})"]) from None
+    except UnicodeDecodeError:
+        raise BookError([f"{path}: is not UTF-8 text; save it as UTF-8"]) from None
+    except json.JSONDecodeError as error:
+        raise BookError(
+            [f"{path}, line {error.lineno}, column {error.colno}: not JSON ({error.msg})"]
+        ) from None
+    try:
+        return Book.model_validate(raw)
+    except ValidationError as error:
+        raise BookError([_place(path, raw, item) for item in error.errors()]) from None
+
+
+def _place(path: Path, raw: Any, item: Any) -> str:
+    """One line for one validation error: `book.json, fields 3 (mill-bottom), area_ha: ...`."""
+    words: list[str] = []
+    here = raw
+    for step in item["loc"]:
+        try:
+            here = here[step]
+        except (KeyError, IndexError, TypeError):
+            here = None
+        if isinstance(step, int):
+            label = here.get("key") or here.get("field") if isinstance(here, dict) else None
+            words[-1:] = [f"{words[-1] if words else 'item'} {step + 1}" + (f" ({label})" if label else "")]
+        else:
+            words.append(str(step))
+    value = item.get("input")
+    shown = "" if isinstance(value, (dict, list)) else f" (it is {value!r})"
+    return f"{path}, {', '.join(words) or 'top'}: {item['msg'].removeprefix('Value error, ')}{shown}"
