@@ -17,9 +17,7 @@ Name = Annotated[str, Field(min_length=1, max_length=80)]
 Fraction = Annotated[float, Field(ge=0, le=1)]
 Share = Annotated[float, Field(gt=0, le=1)]
 Depth = Annotated[float, Field(ge=0, le=2000)]
-Purpose = Literal[
-    "crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"
-]
+Purpose = Literal["crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"]
 Variable = Literal["energy", "temperature", "wind", "rain"]
 SaidToBeDone = Literal["advised", "presumed", "reported", "metered", "measured"]
 
@@ -201,7 +199,9 @@ class SeasonPart(Part):
     initial_evaporation_depletion_mm: Depth = 0
     refill_to_mm: Depth = 0
     rain_room_mm: Depth = 0
-    end: date | None = Field(None, description="harvest or frost; planting plus the stages if not given")
+    end: date | None = Field(
+        None, description="harvest or frost; planting plus the stages if not given"
+    )
     note: str | None = None
 
     @model_validator(mode="after")
@@ -298,9 +298,13 @@ def _place(path: Path, raw: Any, item: Any) -> str:
             here = None
         if isinstance(step, int):
             label = here.get("key") or here.get("field") if isinstance(here, dict) else None
-            words[-1:] = [f"{words[-1] if words else 'item'} {step + 1}" + (f" ({label})" if label else "")]
+            words[-1:] = [
+                f"{words[-1] if words else 'item'} {step + 1}" + (f" ({label})" if label else "")
+            ]
         else:
             words.append(str(step))
     value = item.get("input")
     shown = "" if isinstance(value, (dict, list)) else f" (it is {value!r})"
-    return f"{path}, {', '.join(words) or 'top'}: {item['msg'].removeprefix('Value error, ')}{shown}"
+    return (
+        f"{path}, {', '.join(words) or 'top'}: {item['msg'].removeprefix('Value error, ')}{shown}"
+    )

@@ -1,0 +1,93 @@
+"""Connections: one engine, a transaction to read and a transaction to write.
+
+SQLite and PostgreSQL run the same code. On SQLite a write begins with BEGIN IMMEDIATE, so two of
+them wait for each other instead of losing updates.
+"""
+
+import sqlite3
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import Any
+
+from alembic import command
+from alembic.config import Config
+from alembic.runtime.migration import MigrationContext
+from alembic.script import ScriptDirectory
+from sqlalchemy import Connection, Engine, create_engine, event
+from sqlalchemy.exc import OperationalError
+from sqlalchemy.orm import Session
+
+from app.resources import resource
+
+
+class DatabaseError(Exception):
+    """The database cannot be used; the message says what to do."""
+
+
+def make_engine(url: str) -> Engine:
+    """An engine for `sqlite:///...` or `postgresql://...`, with the settings the program needs."""
+    if url.startswith("postgresql"):
+        return create_engine(url, pool_pre_ping=True)
+    engine = create_engine(url, connect_args={"timeout": 30})
+    event.listen(engine, "connect", _prepare_sqlite)
+    event.listen(engine, "begin", _begin_sqlite)
+    return engine
+
+
+def _prepare_sqlite(connection: sqlite3.Connection, _record: Any) -> None:
+    connection.isolation_level = None
+    for pragma in ("journal_mode=WAL", "synchronous=NORMAL", "foreign_keys=ON"):
+        connection.execute(f"PRAGMA {pragma}")
+
+
+def _begin_sqlite(connection: Connection) -> None:
+    write = connection.get_execution_options().get("write", False)
+    connection.exec_driver_sql("BEGIN IMMEDIATE" if write else "BEGIN")
+
+
+class Database:
+    """The one door to storage: `with database.read() as session`, `with database.write() as ...`."""
+
+    def __init__(self, url: str) -> None:
+        self.url = url
+        self.engine = make_engine(url)
+
+    @contextmanager
+    def read(self) -> Iterator[Session]:
+        """A session whose changes, if any, are rolled back."""
+        with Session(self.engine) as session:
+            yield session
+            session.rollback()
+
+    @contextmanager
+    def write(self) -> Iterator[Session]:
+        """A session committed as a whole at the end, or rolled back as a whole on an error."""
+        engine = self.engine.execution_options(write=True)
+        with Session(engine) as session, session.begin():
+            yield session
+
+    def migrate(self) -> None:
+        """Bring the tables to the newest version; an up-to-date database is left as it is."""
+        try:
+            with self.engine.connect() as connection:
+                at = MigrationContext.configure(connection).get_current_heads()
+        except OperationalError as error:
+            raise DatabaseError(
+                f"the database {self.engine.url!r} cannot be opened: {error.orig}"
+            ) from None
+        config = alembic_config(self.engine)
+        if set(at) != set(ScriptDirectory.from_config(config).get_heads()):
+            command.upgrade(config, "head")
+
+    def close(self) -> None:
+        """Give the connections back."""
+        self.engine.dispose()
+
+
+def alembic_config(engine: Engine) -> Config:
+    """Alembic's settings for an engine, without an ini file."""
+    config = Config()
+    config.set_main_option("script_location", str(Path(resource("migrations"))))
+    config.attributes["engine"] = engine
+    return config
