@@ -1,4 +1,4 @@
-"""Runs the migrations on the engine that was handed in, or on RILLBOOK_DATABASE from the command line."""
+"""Runs the migrations on the engine handed in, else on RILLBOOK_DATABASE."""
 
 from alembic import context
 from sqlalchemy import Connection, Engine
@@ -9,7 +9,7 @@ from app.storage.tables import Base
 
 
 def run(engine: Engine) -> None:
-    """Migrate in one transaction; foreign keys rest meanwhile, so that SQLite may rebuild a table."""
+    """Migrate in one transaction; foreign keys rest, so that SQLite may rebuild a table."""
     with engine.connect() as connection:
         sqlite = connection.dialect.name == "sqlite"
         if sqlite:

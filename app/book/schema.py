@@ -1,12 +1,13 @@
 """The shape of a book file, validated whole before anything is stored.
 
-Every part carries a `key`, unique among its kind; parts name each other by key. Loading a book twice
-changes nothing; loading a changed book changes what differs and leaves the rest.
-Depths are mm, areas ha, heights and root depths m, water contents m3 of water per m3 of soil, fractions 0-1.
+Every part carries a `key`, unique among its kind; parts name each other by key. Loading a book
+twice changes nothing; loading a changed book changes what differs and leaves the rest. Depths are
+mm, areas ha, heights and root depths m, water contents m3 of water per m3 of soil, fractions 0-1.
 """
 
 import json
 from datetime import date
+from itertools import pairwise
 from pathlib import Path
 from typing import Annotated, Any, Literal, Self
 
@@ -45,7 +46,7 @@ class StationPart(Part):
 
 
 class LayerPart(Part):
-    """A soil layer, from the one above down to `bottom_m`: lab values, else of its texture class."""
+    """A soil layer, from the one above to `bottom_m`: lab values, else of its texture class."""
 
     bottom_m: Annotated[float, Field(gt=0, le=5)]
     texture: str | None = Field(None, description="texture_id of the handbook's soils")
@@ -83,7 +84,7 @@ class SoilPart(Part):
     @model_validator(mode="after")
     def _deeper_and_deeper(self) -> Self:
         bottoms = [layer.bottom_m for layer in self.layers]
-        if any(below <= above for above, below in zip(bottoms, bottoms[1:], strict=False)):
+        if any(below <= above for above, below in pairwise(bottoms)):
             raise ValueError(f"bottom_m must grow from layer to layer, not {bottoms}")
         return self
 
@@ -168,7 +169,7 @@ class FieldPart(Part):
 
 
 class SeasonPart(Part):
-    """A crop on a field from planting on. What is given overrides the handbook's row of the crop."""
+    """A crop on a field from planting on; what is given overrides the handbook's row."""
 
     field: Key
     block: Key | None = Field(None, description="one block only; every block when not given")

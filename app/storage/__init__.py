@@ -1,1 +1,1 @@
-"""The only room that speaks SQL: tables, connections, and one module of statements per aggregate."""
+"""The only room that speaks SQL: tables, connections, and the statements, by aggregate."""

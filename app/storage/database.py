@@ -47,7 +47,7 @@ def _begin_sqlite(connection: Connection) -> None:
 
 
 class Database:
-    """The one door to storage: `with database.read() as session`, `with database.write() as ...`."""
+    """The one door to storage: `with db.read() as session`, `with db.write() as session`."""
 
     def __init__(self, url: str) -> None:
         self.url = url

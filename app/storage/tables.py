@@ -145,7 +145,7 @@ class Block(Base):
 
 
 class Source(Base):
-    """The station that feeds a variable (energy, temperature, wind, rain) of a field since a day."""
+    """The station that feeds a variable (energy, temperature, wind, rain) of a field."""
 
     __tablename__ = "source"
     __table_args__ = (UniqueConstraint("field_id", "variable", "since"),)
@@ -324,7 +324,7 @@ class StationDay(Base):
 
 
 class LedgerDay(Base):
-    """One day of a block's ledger, every term kept; the key serves a morning, the index a history."""
+    """One day of a block's ledger; the key serves a morning, the index a field's history."""
 
     __tablename__ = "ledger_day"
     __table_args__ = (Index("ix_ledger_day_block_id_day", "block_id", "day"),)
