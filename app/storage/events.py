@@ -1,0 +1,63 @@
+"""Statements for events: what stands now, and the chain of corrections behind it."""
+
+from collections.abc import Iterable, Sequence
+from datetime import date
+from typing import NamedTuple
+
+from sqlalchemy import exists, select
+from sqlalchemy.orm import Session, aliased
+
+from app.storage.tables import Event
+
+VOID = "void"
+
+
+class Standing(NamedTuple):
+    """An event that stands: not superseded, not deleted."""
+
+    block_id: int
+    day: date
+    kind: str
+    amount: float
+    unit: str
+    purpose: str
+    confirmation: str
+
+
+def standing_events(session: Session, blocks: Sequence[int]) -> Iterable[Standing]:
+    """Events of blocks that stand, in the order of entry."""
+    later = aliased(Event)
+    rows = session.execute(
+        select(
+            Event.block_id,
+            Event.day,
+            Event.kind,
+            Event.amount,
+            Event.unit,
+            Event.purpose,
+            Event.confirmation,
+        )
+        .where(Event.block_id.in_(blocks))
+        .where(Event.kind != VOID)
+        .where(~exists().where(later.supersedes == Event.id))
+        .order_by(Event.id)
+    )
+    return (Standing(*row) for row in rows)
+
+
+def head_of(session: Session, event: Event) -> Event:
+    """The last of an event's corrections."""
+    while (later := session.scalar(select(Event).where(Event.supersedes == event.id))) is not None:
+        event = later
+    return event
+
+
+def by_origin(session: Session, prefix: str) -> list[Event]:
+    """Events whose origin is `prefix` or one of its later versions `prefix~2`, oldest first."""
+    return list(
+        session.scalars(
+            select(Event)
+            .where((Event.origin == prefix) | Event.origin.startswith(f"{prefix}~"))
+            .order_by(Event.id)
+        )
+    )

@@ -1,0 +1,308 @@
+"""Load a book: check it whole, then put in what is new and change what differs, in one transaction."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from datetime import UTC, date, datetime
+from typing import Any
+
+from sqlalchemy import select
+from sqlalchemy.orm import Session
+
+from app import handbook
+from app.book.references import Known, reference_problems
+from app.book.schema import (
+    Book,
+    BookError,
+    FieldPart,
+    IrrigationPart,
+    RainPart,
+    SeasonPart,
+)
+from app.storage import book as rows
+from app.storage.events import VOID, by_origin, head_of
+from app.storage.tables import (
+    Block,
+    Event,
+    Farm,
+    Field,
+    IrrigationSystem,
+    Season,
+    Soil,
+    Source,
+    Station,
+)
+
+VARIABLES = ("energy", "temperature", "wind", "rain")
+WHOLE = "whole"
+"""Key of the one block of a field without blocks."""
+
+
+@dataclass
+class Loaded:
+    """How many parts were added, changed, and found the same, by kind."""
+
+    added: dict[str, int] = field(default_factory=dict)
+    changed: dict[str, int] = field(default_factory=dict)
+    same: int = 0
+
+    def count(self, kind: str, outcome: str) -> None:
+        """One more part of a kind: outcome is added, changed or same."""
+        if outcome == "same":
+            self.same += 1
+        else:
+            tally = self.added if outcome == "added" else self.changed
+            tally[kind] = tally.get(kind, 0) + 1
+
+
+def load_book(session: Session, book: Book, who: str) -> Loaded:
+    """Put a book into the store; raises BookError, and changes nothing, if a name leads nowhere."""
+    problems = reference_problems(book, _known(session))
+    if problems:
+        raise BookError(problems)
+    loaded = Loaded()
+    _stations(session, book, who, loaded)
+    _shared(session, Soil, book.soils, who, loaded, rows.soil_blocks)
+    _shared(session, IrrigationSystem, book.systems, who, loaded, rows.system_blocks)
+    _shared(session, Farm, book.farms, who, loaded, None)
+    for part in book.fields:
+        _field(session, part, who, loaded)
+    session.flush()
+    blocks = _blocks(session)
+    for season in book.seasons:
+        _season(session, season, blocks, who, loaded)
+    _events(session, book, blocks, who, loaded)
+    return loaded
+
+
+def _known(session: Session) -> Known:
+    fields: dict[str, set[str]] = {}
+    for field_key, block_key in session.execute(select(Field.key, Block.key).join(Field.blocks)):
+        fields.setdefault(field_key, set())
+        if block_key != WHOLE:
+            fields[field_key].add(block_key)
+    return Known(
+        stations=frozenset(rows.keys_of(session, Station)),
+        soils=frozenset(rows.keys_of(session, Soil)),
+        systems=frozenset(rows.keys_of(session, IrrigationSystem)),
+        farms=frozenset(rows.keys_of(session, Farm)),
+        fields={key: frozenset(blocks) for key, blocks in fields.items()},
+        crops=frozenset(handbook.crops()),
+        textures=frozenset(handbook.soil_textures()),
+        wettings=frozenset(handbook.wettings()),
+    )
+
+
+def _stations(session: Session, book: Book, who: str, loaded: Loaded) -> None:
+    for part in book.stations:
+        row, outcome = _put(session, Station, part, who)
+        loaded.count("stations", outcome)
+        if outcome == "changed":
+            since = rows.first_contribution(session, row.id)
+            if since is not None:
+                rows.dirty_station(session, row.id, since)
+
+
+def _shared(
+    session: Session,
+    table: type[Soil] | type[IrrigationSystem] | type[Farm],
+    parts: list[Any],
+    who: str,
+    loaded: Loaded,
+    blocks_of: Callable[[Session, int], list[int]] | None,
+) -> None:
+    for part in parts:
+        row, outcome = _put(session, table, part, who)
+        loaded.count(table.__tablename__, outcome)
+        if outcome == "changed" and blocks_of is not None:
+            rows.dirty_blocks(session, blocks_of(session, row.id), rows.BEGINNING)
+
+
+def _put(session: Session, table: type[rows.Keyed], part: Any, who: str) -> tuple[rows.Keyed, str]:
+    details = part.model_dump(mode="json")
+    row = rows.find(session, table, part.key)
+    if row is not None and row.details == details:
+        return row, "same"
+    before = None if row is None else row.details
+    if row is None:
+        row = table(key=part.key, name=part.name, details=details)
+        session.add(row)
+    else:
+        row.name, row.details = part.name, details
+    session.flush()
+    rows.note_change(session, who, table.__tablename__, part.key, before, details)
+    return row, "added" if before is None else "changed"
+
+
+def _field(session: Session, part: FieldPart, who: str, loaded: Loaded) -> None:
+    details = part.model_dump(mode="json")
+    row = rows.find(session, Field, part.key)
+    if row is not None and row.details == details:
+        loaded.count("fields", "same")
+        return
+    before = None if row is None else row.details
+    if row is None:
+        row = Field(key=part.key)
+        session.add(row)
+    row.name, row.details, row.area_ha = part.name, details, part.area_ha
+    row.managed_by = part.managed_by
+    row.farm_id = rows.keys_of(session, Farm)[part.farm]
+    session.flush()
+    _put_blocks(session, row, part)
+    _put_sources(session, row, part)
+    rows.note_change(session, who, "field", part.key, before, details)
+    rows.dirty_blocks(session, [block.id for block in row.blocks], rows.BEGINNING)
+    loaded.count("fields", "added" if before is None else "changed")
+
+
+def _put_blocks(session: Session, row: Field, part: FieldPart) -> None:
+    soils, systems = rows.keys_of(session, Soil), rows.keys_of(session, IrrigationSystem)
+    there = {block.key: block for block in row.blocks}
+    wanted = [
+        (b.key, b.name, b.area_ha, b.soil or part.soil, b.system or part.system)
+        for b in part.blocks
+    ] or [(WHOLE, part.name, part.area_ha, part.soil, part.system)]
+    gone = sorted(set(there) - {key for key, *_ in wanted})
+    if gone:
+        raise BookError(
+            [
+                f"fields {part.key}, blocks: {', '.join(gone)} would vanish with a ledger of its own;"
+                " keep it, or give the field with the new blocks another key"
+            ]
+        )
+    for key, name, area, soil, system in wanted:
+        block = there.get(key) or Block(field=row, key=key)
+        block.name, block.area_ha = name, area
+        block.soil_id, block.system_id = soils[soil], systems[system]
+        session.add(block)
+    session.flush()
+
+
+def _put_sources(session: Session, row: Field, part: FieldPart) -> None:
+    stations = rows.keys_of(session, Station)
+    wanted = {(variable, rows.BEGINNING): part.station for variable in VARIABLES}
+    wanted.update({(s.variable, s.since or rows.BEGINNING): s.station for s in part.sources})
+    for source in list(row.sources):
+        if (source.variable, source.since) not in wanted:
+            row.sources.remove(source)
+            session.delete(source)
+    there = {(source.variable, source.since): source for source in row.sources}
+    for (variable, since), station in wanted.items():
+        source = there.get((variable, since))
+        if source is None:
+            source = Source(variable=variable, since=since)
+            row.sources.append(source)
+        source.station_id = stations[station]
+    session.flush()
+
+
+def _blocks(session: Session) -> dict[str, dict[str, Block]]:
+    """Field key to block key to block."""
+    found: dict[str, dict[str, Block]] = {}
+    for key, block in session.execute(
+        select(Field.key, Block).join(Field.blocks).order_by(Block.id)
+    ):
+        found.setdefault(key, {})[block.key] = block
+    return found
+
+
+def _named(blocks: dict[str, dict[str, Block]], part: Any) -> list[Block]:
+    of_field = blocks[part.field]
+    block = getattr(part, "block", None)
+    return list(of_field.values()) if block is None else [of_field[block]]
+
+
+def _season(
+    session: Session,
+    part: SeasonPart,
+    blocks: dict[str, dict[str, Block]],
+    who: str,
+    loaded: Loaded,
+) -> None:
+    details = part.model_dump(mode="json")
+    for block in _named(blocks, part):
+        row = session.scalar(
+            select(Season).where(Season.block_id == block.id, Season.planting == part.planting)
+        )
+        if row is not None and row.details == details:
+            loaded.count("seasons", "same")
+            continue
+        before = None if row is None else row.details
+        if row is None:
+            row = Season(block_id=block.id, planting=part.planting)
+            session.add(row)
+        row.crop, row.details = part.crop, details
+        session.flush()
+        key = f"{part.field}/{block.key}/{part.planting}"
+        rows.note_change(session, who, "season", key, before, details)
+        rows.dirty_blocks(session, [block.id], part.ledger_start or part.planting)
+        loaded.count("seasons", "added" if before is None else "changed")
+
+
+def _events(
+    session: Session,
+    book: Book,
+    blocks: dict[str, dict[str, Block]],
+    who: str,
+    loaded: Loaded,
+) -> None:
+    ordinals: dict[tuple[str, int, date], int] = {}
+    entries: list[tuple[str, IrrigationPart | RainPart]] = [
+        *(("irrigation", part) for part in book.irrigations),
+        *(("rain", part) for part in book.rain),
+    ]
+    now = datetime.now(UTC)
+    for kind, part in entries:
+        named = _named(blocks, part)
+        area = sum(block.area_ha for block in named)
+        for block in named:
+            nth = ordinals[kind, block.id, part.day] = (
+                ordinals.get((kind, block.id, part.day), 0) + 1
+            )
+            amount, unit = _amount(part, block.area_ha / area)
+            origin = f"book:{part.field}/{block.key}/{kind}/{part.day}/{nth}"
+            event = Event(
+                block_id=block.id,
+                kind=kind,
+                day=part.day,
+                amount=amount,
+                unit=unit,
+                purpose=getattr(part, "purpose", "crop"),
+                confirmation=getattr(part, "confirmation", "measured"),
+                note=part.note,
+                who=who,
+                entered=now,
+            )
+            loaded.count("events", _put_event(session, event, origin))
+
+
+def _amount(part: IrrigationPart | RainPart, share: float) -> tuple[float, str]:
+    """The amount as entered, and its unit; a volume is shared over blocks by area."""
+    if isinstance(part, RainPart):
+        return part.rain_mm, "rain_mm"
+    for unit in ("gross_mm", "net_mm", "hours"):
+        value: float | None = getattr(part, unit)
+        if value is not None:
+            return value, unit
+    assert part.volume_m3 is not None
+    return part.volume_m3 * share, "volume_m3"
+
+
+def _put_event(session: Session, event: Event, origin: str) -> str:
+    """Add the event unless the book said the same before; a changed entry supersedes."""
+    versions = by_origin(session, origin)
+    if not versions:
+        event.origin, outcome = origin, "added"
+    else:
+        last = versions[-1]
+        compared = ("amount", "unit", "purpose", "confirmation", "note")
+        if all(getattr(last, name) == getattr(event, name) for name in compared):
+            return "same"
+        head = head_of(session, last)
+        if head.kind == VOID:
+            return "same"
+        event.origin, event.supersedes = f"{origin}~{len(versions) + 1}", head.id
+        outcome = "changed"
+    session.add(event)
+    session.flush()
+    rows.dirty_blocks(session, [event.block_id], event.day)
+    return outcome
