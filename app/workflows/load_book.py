@@ -1,4 +1,4 @@
-"""Load a book: check it whole, then put in what is new and change what differs, in one transaction."""
+"""Load a book: check it whole, then put in what is new and change what differs."""
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
@@ -165,7 +165,7 @@ def _put_blocks(session: Session, row: Field, part: FieldPart) -> None:
     if gone:
         raise BookError(
             [
-                f"fields {part.key}, blocks: {', '.join(gone)} would vanish with a ledger of its own;"
+                f"fields {part.key}, blocks: {', '.join(gone)} would vanish with its ledger;"
                 " keep it, or give the field with the new blocks another key"
             ]
         )

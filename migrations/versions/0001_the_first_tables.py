@@ -20,8 +20,8 @@ def upgrade() -> None:
         sa.Column("who", sa.String(), nullable=False),
         sa.Column("kind", sa.String(), nullable=False),
         sa.Column("key", sa.String(), nullable=False),
-        sa.Column("before", sa.JSON(), nullable=True),
-        sa.Column("after", sa.JSON(), nullable=True),
+        sa.Column("before", sa.JSON(none_as_null=True), nullable=True),
+        sa.Column("after", sa.JSON(none_as_null=True), nullable=True),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_book_change")),
     )
     op.create_table(
@@ -29,7 +29,7 @@ def upgrade() -> None:
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("key", sa.String(), nullable=False),
         sa.Column("name", sa.String(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_farm")),
         sa.UniqueConstraint("key", name=op.f("uq_farm_key")),
     )
@@ -38,7 +38,7 @@ def upgrade() -> None:
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("key", sa.String(), nullable=False),
         sa.Column("name", sa.String(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_irrigation_system")),
         sa.UniqueConstraint("key", name=op.f("uq_irrigation_system_key")),
     )
@@ -47,7 +47,7 @@ def upgrade() -> None:
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("key", sa.String(), nullable=False),
         sa.Column("name", sa.String(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_soil")),
         sa.UniqueConstraint("key", name=op.f("uq_soil_key")),
     )
@@ -56,7 +56,7 @@ def upgrade() -> None:
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("key", sa.String(), nullable=False),
         sa.Column("name", sa.String(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.Column("dirty_from", sa.Date(), nullable=True),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_station")),
         sa.UniqueConstraint("key", name=op.f("uq_station_key")),
@@ -69,7 +69,7 @@ def upgrade() -> None:
         sa.Column("farm_id", sa.Integer(), nullable=False),
         sa.Column("area_ha", sa.Double(), nullable=False),
         sa.Column("managed_by", sa.String(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.ForeignKeyConstraint(["farm_id"], ["farm.id"], name=op.f("fk_field_farm_id_farm")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_field")),
         sa.UniqueConstraint("key", name=op.f("uq_field_key")),
@@ -83,7 +83,7 @@ def upgrade() -> None:
         sa.Column("station_id", sa.Integer(), nullable=False),
         sa.Column("file_name", sa.String(), nullable=False),
         sa.Column("sha256", sa.String(), nullable=False),
-        sa.Column("mapping", sa.JSON(), nullable=False),
+        sa.Column("mapping", sa.JSON(none_as_null=True), nullable=False),
         sa.Column("who", sa.String(), nullable=False),
         sa.Column("at", sa.DateTime(), nullable=False),
         sa.Column("state", sa.String(), nullable=False),
@@ -92,7 +92,7 @@ def upgrade() -> None:
         sa.Column("rows", sa.Integer(), nullable=False),
         sa.Column("first_day", sa.Date(), nullable=True),
         sa.Column("last_day", sa.Date(), nullable=True),
-        sa.Column("summary", sa.JSON(), nullable=False),
+        sa.Column("summary", sa.JSON(none_as_null=True), nullable=False),
         sa.ForeignKeyConstraint(
             ["station_id"], ["station.id"], name=op.f("fk_intake_station_id_station")
         ),
@@ -147,7 +147,7 @@ def upgrade() -> None:
         sa.Column("id", sa.Integer(), nullable=False),
         sa.Column("station_id", sa.Integer(), nullable=False),
         sa.Column("signature", sa.String(), nullable=False),
-        sa.Column("mapping", sa.JSON(), nullable=False),
+        sa.Column("mapping", sa.JSON(none_as_null=True), nullable=False),
         sa.ForeignKeyConstraint(
             ["station_id"], ["station.id"], name=op.f("fk_station_mapping_station_id_station")
         ),
@@ -277,7 +277,7 @@ def upgrade() -> None:
         sa.Column("block_id", sa.Integer(), nullable=False),
         sa.Column("crop", sa.String(), nullable=False),
         sa.Column("planting", sa.Date(), nullable=False),
-        sa.Column("details", sa.JSON(), nullable=False),
+        sa.Column("details", sa.JSON(none_as_null=True), nullable=False),
         sa.ForeignKeyConstraint(["block_id"], ["block.id"], name=op.f("fk_season_block_id_block")),
         sa.PrimaryKeyConstraint("id", name=op.f("pk_season")),
         sa.UniqueConstraint("block_id", "planting", name=op.f("uq_season_block_id_planting")),
@@ -300,7 +300,7 @@ def upgrade() -> None:
         sa.Column("volume_m3", sa.Double(), nullable=False),
         sa.Column("limit_day", sa.Date(), nullable=True),
         sa.Column("reason", sa.String(), nullable=False),
-        sa.Column("figures", sa.JSON(), nullable=False),
+        sa.Column("figures", sa.JSON(none_as_null=True), nullable=False),
         sa.Column("depletion_mm", sa.Double(), nullable=False),
         sa.Column("depletion_p10_mm", sa.Double(), nullable=False),
         sa.Column("depletion_p90_mm", sa.Double(), nullable=False),
@@ -309,7 +309,7 @@ def upgrade() -> None:
         sa.Column("change_mm", sa.Double(), nullable=True),
         sa.Column("rung", sa.Integer(), nullable=False),
         sa.Column("data_until", sa.Date(), nullable=True),
-        sa.Column("outlook", sa.JSON(), nullable=False),
+        sa.Column("outlook", sa.JSON(none_as_null=True), nullable=False),
         sa.ForeignKeyConstraint(["block_id"], ["block.id"], name=op.f("fk_advice_block_id_block")),
         sa.ForeignKeyConstraint(
             ["season_id"], ["season.id"], name=op.f("fk_advice_season_id_season")
@@ -330,8 +330,8 @@ def upgrade() -> None:
         sa.Column("rung", sa.Integer(), nullable=False),
         sa.Column("rn_mj_m2", sa.Double(), nullable=False),
         sa.Column("eto_mm", sa.Double(), nullable=False),
-        sa.Column("kcb", sa.Double(), nullable=False),
-        sa.Column("ke", sa.Double(), nullable=False),
+        sa.Column("kcb", sa.Double(), nullable=True),
+        sa.Column("ke", sa.Double(), nullable=True),
         sa.Column("ks", sa.Double(), nullable=False),
         sa.Column("kc_actual", sa.Double(), nullable=False),
         sa.Column("etc_potential_mm", sa.Double(), nullable=False),
@@ -351,10 +351,10 @@ def upgrade() -> None:
         sa.Column("raw_mm", sa.Double(), nullable=False),
         sa.Column("limit_mm", sa.Double(), nullable=False),
         sa.Column("depletion_mm", sa.Double(), nullable=False),
-        sa.Column("depletion_p10_mm", sa.Double(), nullable=False),
-        sa.Column("depletion_p90_mm", sa.Double(), nullable=False),
+        sa.Column("depletion_p10_mm", sa.Double(), nullable=True),
+        sa.Column("depletion_p90_mm", sa.Double(), nullable=True),
         sa.Column("subsoil_depletion_mm", sa.Double(), nullable=False),
-        sa.Column("evaporation_layer_depletion_mm", sa.Double(), nullable=False),
+        sa.Column("evaporation_layer_depletion_mm", sa.Double(), nullable=True),
         sa.Column("standing", sa.String(), nullable=False),
         sa.ForeignKeyConstraint(
             ["block_id"], ["block.id"], name=op.f("fk_ledger_day_block_id_block")

@@ -1,0 +1,161 @@
+"""Statements for ledgers: the blocks with all they rest on, and the ledger rows."""
+
+from collections.abc import Iterable, Sequence
+from datetime import date
+from typing import Any, NamedTuple
+
+from sqlalchemy import delete, func, insert, or_, select, update
+from sqlalchemy.orm import Session
+
+from app.storage.tables import (
+    Block,
+    Field,
+    IrrigationSystem,
+    LedgerDay,
+    Season,
+    Soil,
+    Source,
+    Station,
+)
+
+
+class BlockRow(NamedTuple):
+    """A block with the book's parts it rests on."""
+
+    block_id: int
+    block_key: str
+    field_id: int
+    field_key: str
+    area_ha: float
+    dirty_from: date | None
+    soil: dict[str, Any]
+    system: dict[str, Any]
+    field: dict[str, Any]
+
+
+class SeasonRow(NamedTuple):
+    """A season of a block."""
+
+    season_id: int
+    block_id: int
+    crop: str
+    planting: date
+    details: dict[str, Any]
+
+
+class SourceRow(NamedTuple):
+    """Which station feeds a variable of a field since when."""
+
+    field_id: int
+    variable: str
+    since: date
+    station_id: int
+
+
+def read_blocks(session: Session, blocks: Sequence[int] | None = None) -> list[BlockRow]:
+    """Blocks (all when None), by number."""
+    wanted = (
+        select(
+            Block.id,
+            Block.key,
+            Field.id,
+            Field.key,
+            Block.area_ha,
+            Block.dirty_from,
+            Soil.details,
+            IrrigationSystem.details,
+            Field.details,
+        )
+        .join(Field, Field.id == Block.field_id)
+        .join(Soil, Soil.id == Block.soil_id)
+        .join(IrrigationSystem, IrrigationSystem.id == Block.system_id)
+        .order_by(Block.id)
+    )
+    if blocks is not None:
+        wanted = wanted.where(Block.id.in_(blocks))
+    return [BlockRow(*row) for row in session.execute(wanted)]
+
+
+def read_seasons(session: Session, blocks: Sequence[int]) -> list[SeasonRow]:
+    """Seasons of blocks, by block and planting."""
+    return [
+        SeasonRow(*row)
+        for row in session.execute(
+            select(Season.id, Season.block_id, Season.crop, Season.planting, Season.details)
+            .where(Season.block_id.in_(blocks))
+            .order_by(Season.block_id, Season.planting)
+        )
+    ]
+
+
+def read_sources(session: Session, fields: Sequence[int]) -> list[SourceRow]:
+    """Sources of fields, oldest first."""
+    return [
+        SourceRow(*row)
+        for row in session.execute(
+            select(Source.field_id, Source.variable, Source.since, Source.station_id)
+            .where(Source.field_id.in_(fields))
+            .order_by(Source.field_id, Source.variable, Source.since)
+        )
+    ]
+
+
+def station_details(session: Session, stations: Sequence[int]) -> dict[int, dict[str, Any]]:
+    """The book's part of each station."""
+    return {
+        number: details
+        for number, details in session.execute(
+            select(Station.id, Station.details).where(Station.id.in_(stations))
+        )
+    }
+
+
+def last_ledger_days(session: Session) -> dict[int, date]:
+    """The last ledger day of each season that has one."""
+    return {
+        season: day
+        for season, day in session.execute(
+            select(LedgerDay.season_id, func.max(LedgerDay.day)).group_by(LedgerDay.season_id)
+        )
+    }
+
+
+def replace_ledger_days(
+    session: Session, since: dict[int, date], rows: Iterable[dict[str, Any]]
+) -> int:
+    """Put ledger rows in place of each block's rows from its day of `since` on."""
+    by_day: dict[date, list[int]] = {}
+    for block, day in since.items():
+        by_day.setdefault(day, []).append(block)
+    for day, blocks in by_day.items():
+        session.execute(
+            delete(LedgerDay).where(LedgerDay.block_id.in_(blocks), LedgerDay.day >= day)
+        )
+    many = list(rows)
+    if many:
+        session.execute(insert(LedgerDay), many)
+    return len(many)
+
+
+def clear_dirty(session: Session, blocks: Sequence[int]) -> None:
+    """The ledgers of these blocks are up to date."""
+    session.execute(update(Block).where(Block.id.in_(blocks)).values(dirty_from=None))
+
+
+def dirty_block_ids(session: Session) -> list[int]:
+    """Blocks whose ledger is to be recomputed."""
+    return list(session.scalars(select(Block.id).where(Block.dirty_from.is_not(None))))
+
+
+def depletion_before(
+    session: Session, blocks: Sequence[int], days: Sequence[date]
+) -> dict[tuple[int, date], float]:
+    """Closing depletion of blocks on days, by (block, day)."""
+    return {
+        (block, day): value
+        for block, day, value in session.execute(
+            select(LedgerDay.block_id, LedgerDay.day, LedgerDay.depletion_mm)
+            .where(LedgerDay.block_id.in_(blocks))
+            .where(or_(*(LedgerDay.day == day for day in days)))
+        )
+    }

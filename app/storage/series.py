@@ -1,0 +1,109 @@
+"""Station days as arrays on one unbroken axis of days, and the statements that keep them."""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from datetime import date, timedelta
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from sqlalchemy import delete, func, insert, select
+from sqlalchemy.orm import Session
+
+from app.storage.tables import Contribution, Intake, StationDay
+
+Floats = NDArray[np.float64]
+NUMBERS = (
+    "tmax",
+    "tmin",
+    "vapour_pressure",
+    "rh_min_used",
+    "wind_2m",
+    "rain",
+    "rn",
+    "rn_uncertainty",
+    "ra",
+    "eto",
+)
+
+
+@dataclass(frozen=True)
+class Series:
+    """A station's days from `first` on: arrays (days,), NaN and rung 0 where there is no row."""
+
+    first: date
+    rung: NDArray[np.int8]
+    values: dict[str, Floats]
+
+
+def read_series(
+    session: Session, stations: Sequence[int], first: date, last: date
+) -> dict[int, Series]:
+    """Series of each station over first..last, both included."""
+    days = (last - first).days + 1
+    found = {
+        station: Series(
+            first, np.zeros(days, np.int8), {name: np.full(days, np.nan) for name in NUMBERS}
+        )
+        for station in stations
+    }
+    columns = [getattr(StationDay, name) for name in NUMBERS]
+    rows = session.execute(
+        select(StationDay.station_id, StationDay.day, StationDay.rung, *columns)
+        .where(StationDay.station_id.in_(stations))
+        .where(StationDay.day.between(first, last))
+    )
+    for station, day, rung, *numbers in rows:
+        series, place = found[station], (day - first).days
+        series.rung[place] = rung
+        for name, number in zip(NUMBERS, numbers, strict=True):
+            if number is not None:
+                series.values[name][place] = number
+    return found
+
+
+def last_days(session: Session) -> dict[int, date]:
+    """The last day each station has sent rows for."""
+    return {
+        station: day
+        for station, day in session.execute(
+            select(Contribution.station_id, func.max(Contribution.day))
+            .join(Intake, Intake.id == Contribution.intake_id)
+            .where(Intake.state == "applied")
+            .group_by(Contribution.station_id)
+        )
+    }
+
+
+def applied_packs(
+    session: Session, station: int, first: date, last: date | None = None
+) -> list[bytes]:
+    """Packed rows of a station's applied intakes from a day on, in the order they were applied."""
+    wanted = (
+        select(Contribution.data)
+        .join(Intake, Intake.id == Contribution.intake_id)
+        .where(Contribution.station_id == station, Contribution.day >= first)
+        .where(Intake.state == "applied")
+        .order_by(Intake.applied_order, Contribution.day)
+    )
+    if last is not None:
+        wanted = wanted.where(Contribution.day <= last)
+    return list(session.scalars(wanted))
+
+
+def replace_station_days(
+    session: Session, station: int, since: date, rows: Iterable[dict[str, Any]]
+) -> int:
+    """Put a station's days from `since` on in place of what was there; returns how many."""
+    session.execute(
+        delete(StationDay).where(StationDay.station_id == station, StationDay.day >= since)
+    )
+    many = list(rows)
+    if many:
+        session.execute(insert(StationDay), many)
+    return len(many)
+
+
+def day_range(first: date, days: int) -> list[date]:
+    """`days` dates from `first` on."""
+    return [first + timedelta(days=step) for step in range(days)]
