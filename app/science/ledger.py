@@ -93,9 +93,7 @@ class BlockLedger:
     standing: NDArray[np.object_] = field()
 
 
-def block_ledgers(
-    plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]
-) -> list[BlockLedger]:
+def block_ledgers(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> list[BlockLedger]:
     """Ledgers of `plans` under `weather`, one each, in order."""
     raise NotImplementedError
 

@@ -1,6 +1,7 @@
 """The layered soil profile and what it holds down to a root depth."""
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -52,7 +53,7 @@ class Profile:
         if not self.layers:
             raise ValueError("layers is empty; a profile needs at least one layer")
         bottoms = [layer.bottom_m for layer in self.layers]
-        if any(b <= a for a, b in zip(bottoms, bottoms[1:], strict=False)):
+        if any(b <= a for a, b in pairwise(bottoms)):
             raise ValueError(f"layer bottoms must increase from the surface down; got {bottoms}")
         check_range("evaporation_depth_m", self.evaporation_depth_m, 0.05, 0.30)
         check_range("rew_mm", self.rew_mm, 0.0, 100.0)

@@ -1,0 +1,116 @@
+"""Evaporation from the surface layer: the dual crop coefficient's formulas."""
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from app.science.crop.climate import climate_term
+
+Floats = NDArray[np.float64]
+
+# FAO-56 eq 72: Kc max of a wet surface before the climate term.
+WET_SURFACE_KC = 1.2
+# FAO-56 eq 75 and 76: bounds that keep the fractions computable.
+LEAST_FRACTION, MOST_COVER, LEAST_SPAN = 0.01, 0.99, 0.01
+# FAO-56 chapter 7: rain above 3-4 mm wets the whole surface.
+WETTING_RAIN_MM = 3.0
+
+
+def _f(value: ArrayLike) -> Floats:
+    return np.asarray(value, dtype=np.float64)
+
+
+def total_evaporable_water(
+    field_capacity: ArrayLike, wilting_point: ArrayLike, depth: ArrayLike
+) -> Floats:
+    """TEW [mm] of a surface layer of `depth` [m]; water contents [m3 m-3].
+
+    Shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 73.
+    """
+    return np.asarray(1000.0 * (_f(field_capacity) - 0.5 * _f(wilting_point)) * _f(depth))
+
+
+def kc_max(kcb: ArrayLike, wind_2m: ArrayLike, rh_min: ArrayLike, height: ArrayLike) -> Floats:
+    """Upper limit of Kc after wetting [-].
+
+    kcb [-]; wind_2m [m s-1]; rh_min [%]; height [m]; shapes broadcast; NaN in, NaN out; the
+    climate term is held to the range of eq 62. Source: FAO-56 eq 72.
+    """
+    climate = WET_SURFACE_KC + climate_term(wind_2m, rh_min, height)
+    return np.asarray(np.maximum(climate, _f(kcb) + 0.05))
+
+
+def cover_fraction(
+    kcb: ArrayLike, kc_max: ArrayLike, height: ArrayLike, kc_min: ArrayLike
+) -> Floats:
+    """Fraction of soil covered by vegetation, 0-0.99, from Kcb.
+
+    kcb, kc_max, kc_min [-]; height [m]; shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 76
+    (both differences at least 0.01 below the line, 0 above it).
+    """
+    over = np.maximum(_f(kcb) - _f(kc_min), 0.0)
+    span = np.maximum(_f(kc_max) - _f(kc_min), LEAST_SPAN)
+    return np.asarray(np.minimum((over / span) ** (1.0 + 0.5 * _f(height)), MOST_COVER))
+
+
+def exposed_wetted_fraction(cover: ArrayLike, wetted: ArrayLike) -> Floats:
+    """Fraction few of soil both exposed and wetted, 0.01-1 (FAO-56 eq 75).
+
+    cover fc and wetted fw, 0-1; shapes broadcast; NaN in, NaN out.
+    """
+    return np.asarray(np.clip(np.minimum(1.0 - _f(cover), _f(wetted)), LEAST_FRACTION, 1.0))
+
+
+def under_canopy(wetted: ArrayLike, cover: ArrayLike) -> Floats:
+    """Wetted fraction seen by the sun where emitters stand under the canopy: fw (1 - 2/3 fc)
+    (FAO-56, note to eq 75). Shapes broadcast; NaN in, NaN out."""
+    return np.asarray(_f(wetted) * (1.0 - 2.0 / 3.0 * _f(cover)))
+
+
+def evaporation_reduction(depletion: ArrayLike, tew: ArrayLike, rew: ArrayLike) -> Floats:
+    """Kr, 0-1, from the layer's depletion De; depletion, tew > rew [mm].
+
+    Shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 74.
+    """
+    return np.asarray(np.clip((_f(tew) - _f(depletion)) / (_f(tew) - _f(rew)), 0.0, 1.0))
+
+
+def evaporation_coefficient(
+    reduction: ArrayLike, kc_max: ArrayLike, kcb: ArrayLike, exposed: ArrayLike
+) -> Floats:
+    """Ke [-] = min(Kr (Kc max - Kcb), few Kc max) (FAO-56 eq 71).
+
+    Shapes broadcast; NaN in, NaN out.
+    """
+    return np.asarray(np.minimum(_f(reduction) * (_f(kc_max) - _f(kcb)), _f(exposed) * _f(kc_max)))
+
+
+def rew_from_texture(sand: ArrayLike, clay: ArrayLike) -> Floats:
+    """Readily evaporable water [mm] from sand and clay [%].
+
+    Shapes broadcast; NaN in, NaN out. Source: relation quoted in J. Irrig. Drain. Eng. 131:2-13
+    (2005), from memory.
+    """
+    sa, cl = _f(sand), _f(clay)
+    fine = np.where(cl > 50.0, 11.0 - 0.06 * cl, 8.0 + 0.08 * cl)
+    return np.asarray(np.where(sa > 80.0, 20.0 - 0.15 * sa, fine) + 0.0 * (sa + cl))
+
+
+def wetted_fraction_series(
+    rain: Floats, irrigation_fw: Floats, opening: float = 1.0
+) -> tuple[Floats, Floats]:
+    """Wetted fraction of each day and whether an irrigation set it.
+
+    rain [mm] and irrigation_fw (NaN for no event), each (days, ...). An irrigation sets its own
+    fraction, else rain of 3 mm or more sets 1, else yesterday's holds; before any, `opening`.
+    Returns fw and a 0/1 array. Source: FAO-56 chapter 7, table 20.
+    """
+    irrigated = ~np.isnan(irrigation_fw)
+    rained = ~irrigated & (rain >= WETTING_RAIN_MM)
+    days = np.arange(rain.shape[0]).reshape((-1,) + (1,) * (rain.ndim - 1))
+    last = np.maximum.accumulate(np.where(irrigated | rained, days, -1), axis=0)
+    event = np.where(irrigated, irrigation_fw, 1.0)
+    known = last >= 0
+    index = np.maximum(last, 0)
+    fw = np.where(known, np.take_along_axis(event, index, axis=0), opening)
+    by_irrigation = known & np.take_along_axis(irrigated, index, axis=0)
+    return np.clip(fw, LEAST_FRACTION, 1.0), by_irrigation.astype(np.float64)

@@ -1,0 +1,75 @@
+"""Water contents of a soil from its texture and organic matter (Saxton & Rawls 2006)."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+Floats = NDArray[np.float64]
+
+# Saxton & Rawls 2006 (Soil Sci. Soc. Am. J. 70:1569-1578): range the equations are meant for.
+MOST_CLAY, MOST_ORGANIC_MATTER = 60.0, 8.0
+# Near-pure sand would give a negative wilting point.
+LEAST_WILTING_POINT = 0.005
+MINERAL_DENSITY = 2.65
+
+
+@dataclass(frozen=True, kw_only=True)
+class TextureWater:
+    """Water contents [m3 m-3], saturated conductivity [mm h-1] and bulk density [g cm-3]."""
+
+    wilting_point: Floats
+    field_capacity: Floats
+    saturation: Floats
+    conductivity: Floats
+    bulk_density: Floats
+
+
+def texture_water(
+    sand: ArrayLike, clay: ArrayLike, organic_matter: ArrayLike = 2.5
+) -> TextureWater:
+    """Soil water characteristics from sand and clay [% by weight] and organic matter [%].
+
+    sand 0-100, clay 0-60, sand + clay at most 100, organic_matter 0-8; shapes broadcast; NaN in,
+    NaN out. Raises ValueError outside these ranges. Source: Saxton & Rawls 2006, table 1 (wilting
+    point and field capacity checked against the text; saturation and conductivity from memory).
+    """
+    s = np.asarray(sand, dtype=np.float64) / 100.0
+    c = np.asarray(clay, dtype=np.float64) / 100.0
+    om = np.asarray(organic_matter, dtype=np.float64)
+    _refuse("sand", s * 100.0, 100.0)
+    _refuse("clay", c * 100.0, MOST_CLAY)
+    _refuse("sand and clay together", (s + c) * 100.0, 100.0 + 1e-9)
+    _refuse("organic matter", om, MOST_ORGANIC_MATTER)
+    first = (
+        -0.024 * s + 0.487 * c + 0.006 * om
+        + 0.005 * s * om - 0.013 * c * om + 0.068 * s * c + 0.031
+    )  # fmt: skip
+    wilting = np.maximum(first + 0.14 * first - 0.02, LEAST_WILTING_POINT)
+    first = (
+        -0.251 * s + 0.195 * c + 0.011 * om
+        + 0.006 * s * om - 0.027 * c * om + 0.452 * s * c + 0.299
+    )  # fmt: skip
+    capacity = first + 1.283 * first**2 - 0.374 * first - 0.015
+    first = (
+        0.278 * s + 0.034 * c + 0.022 * om
+        - 0.018 * s * om - 0.027 * c * om - 0.584 * s * c + 0.078
+    )  # fmt: skip
+    saturation = capacity + first + 0.636 * first - 0.107 - 0.097 * s + 0.043
+    slope = (np.log(capacity) - np.log(wilting)) / (np.log(1500.0) - np.log(33.0))
+    return TextureWater(
+        wilting_point=np.asarray(wilting),
+        field_capacity=np.asarray(capacity),
+        saturation=np.asarray(saturation),
+        conductivity=np.asarray(1930.0 * (saturation - capacity) ** (3.0 - slope)),
+        bulk_density=np.asarray(MINERAL_DENSITY * (1.0 - saturation)),
+    )
+
+
+def _refuse(name: str, values: Floats, most: float) -> None:
+    wrong = (values < 0.0) | (values > most)
+    if np.any(wrong):
+        raise ValueError(
+            f"{name} is {float(np.ravel(values)[np.argmax(np.ravel(wrong))]):g} %; "
+            f"the texture equations hold from 0 to {most:g} %"
+        )
