@@ -1,0 +1,337 @@
+"""Gather what a ledger rests on: for each block and season, a plan and its weather."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from datetime import date, timedelta
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from sqlalchemy.orm import Session
+
+from app.science.crop.season import CropSeason
+from app.science.energy.reference_et import eto_from_parts
+from app.science.energy.sun import extraterrestrial_radiation
+from app.science.ledger import BlockPlan, BlockWeather
+from app.science.outlook.usual import fill_gaps, usual_ahead
+from app.storage.events import Standing, standing_events
+from app.storage.ledgers import (
+    BlockRow,
+    SeasonRow,
+    SourceRow,
+    read_blocks,
+    read_seasons,
+    read_sources,
+    station_details,
+)
+from app.storage.series import read_series
+from app.workflows import agronomy
+
+Floats = NDArray[np.float64]
+HORIZON = 14
+"""Days ahead that advice looks at."""
+HISTORY = 60
+"""Days before a season that the usual for the date may look back on."""
+USUAL_RUNG = 9
+TODAY = timedelta(days=1)
+"""Ledgers close yesterday; water logged for today is already counted in the outlook."""
+AHEAD_SHARE = 0.27
+"""Standard uncertainty of a day's energy by the usual for the date (working value)."""
+
+
+@dataclass(frozen=True)
+class Subject:
+    """A block's season at hand: what to compute on, and what its advice needs.
+
+    plan and weather run from the ledger's start through `through` and `HORIZON` days on.
+    """
+
+    block: BlockRow
+    season: SeasonRow
+    crop: CropSeason
+    plan: BlockPlan
+    weather: BlockWeather
+    rn_share: Floats
+    past: int
+    """How many of the plan's days are past; the rest is the outlook."""
+    last_irrigation: date | None
+    rain_measured: NDArray[np.bool_]
+
+
+@dataclass(frozen=True)
+class FieldWeather:
+    """Weather of a set of sources on one axis of days, gaps filled by the usual."""
+
+    first: date
+    known_from: int
+    """Place of the first day with reference ET; days before cannot be reckoned with."""
+    eto: Floats
+    rain: Floats
+    u2: Floats
+    rh_min: Floats
+    rung: NDArray[np.int8]
+    rn: Floats
+    rn_share: Floats
+    rain_measured: NDArray[np.bool_]
+
+
+def assemble(
+    session: Session, blocks: Sequence[int], through: date, since: date | None = None
+) -> list[Subject]:
+    """Subjects of blocks for every season that has days from `since` (None: any) to `through`.
+
+    A season whose stations have no reference ET yet has no subject.
+    """
+    block_rows = {row.block_id: row for row in read_blocks(session, blocks)}
+    chosen = [
+        (row, crop)
+        for row, crop in seasons_of(session, blocks)
+        if _start(row) <= through and (since is None or crop.last_day.item() >= since)
+    ]
+    if not chosen:
+        return []
+    first = min(_start(row) for row, _ in chosen) - timedelta(days=HISTORY)
+    sources = _sources(session, {row.field_id for row in block_rows.values()})
+    weather = _Weather(session, sources, first, through)
+    events: dict[int, list[Standing]] = {}
+    for event in standing_events(session, blocks):
+        events.setdefault(event.block_id, []).append(event)
+    subjects = []
+    for row, crop in chosen:
+        block = block_rows[row.block_id]
+        subject = _subject(
+            block, row, crop, weather.of(block.field_id), events.get(block.block_id, []), through
+        )
+        if subject is not None:
+            subjects.append(subject)
+    return subjects
+
+
+def seasons_of(session: Session, blocks: Sequence[int]) -> list[tuple[SeasonRow, CropSeason]]:
+    """Seasons of blocks by block and planting; one that the next overtakes ends the day before."""
+    rows = read_seasons(session, blocks)
+    found = []
+    for row, later in zip(rows, [*rows[1:], None], strict=True):
+        crop = agronomy.crop_season(row.details, row.planting)
+        if later is not None and later.block_id == row.block_id:
+            eve = np.datetime64(_start(later), "D") - 1
+            if crop.last_day > eve:
+                crop = replace(crop, end=eve)
+        found.append((row, crop))
+    return found
+
+
+def _start(season: SeasonRow) -> date:
+    stated = season.details["ledger_start"]
+    return date.fromisoformat(stated) if stated else season.planting
+
+
+def _sources(session: Session, fields: set[int]) -> dict[int, tuple[SourceRow, ...]]:
+    found: dict[int, list[SourceRow]] = {field: [] for field in fields}
+    for row in read_sources(session, sorted(fields)):
+        found[row.field_id].append(row)
+    return {field: tuple(rows) for field, rows in found.items()}
+
+
+class _Weather:
+    """Weather by field, computed once for each distinct set of sources."""
+
+    def __init__(
+        self,
+        session: Session,
+        sources: dict[int, tuple[SourceRow, ...]],
+        first: date,
+        through: date,
+    ) -> None:
+        stations = sorted({row.station_id for rows in sources.values() for row in rows})
+        self.sources = sources
+        self.first, self.days = first, (through - first).days + 1
+        self.series = read_series(session, stations, first, through)
+        self.details = station_details(session, stations)
+        self.known: dict[tuple[Any, ...], FieldWeather] = {}
+
+    def of(self, field: int) -> FieldWeather:
+        rows = self.sources[field]
+        key = tuple((row.variable, row.since, row.station_id) for row in rows)
+        if key not in self.known:
+            self.known[key] = self._weather(rows)
+        return self.known[key]
+
+    def _weather(self, rows: tuple[SourceRow, ...]) -> FieldWeather:
+        station = {
+            name: self._stations(rows, name) for name in ("energy", "temperature", "wind", "rain")
+        }
+        energy, air, wind = station["energy"], station["temperature"], station["wind"]
+        rn = self._pick(energy, "rn")
+        rung = np.zeros(self.days, np.int8)
+        for number in np.unique(energy):
+            rung = np.where(energy == number, self.series[int(number)].rung, rung)
+        own = (energy == air) & (air == wind)
+        eto = np.where(own, self._pick(energy, "eto"), np.nan)
+        if not own.all():
+            parts = eto_from_parts(
+                self._pick(air, "tmax"),
+                self._pick(air, "tmin"),
+                self._pick(air, "vapour_pressure"),
+                rn,
+                self._pick(wind, "wind_2m"),
+                self._place(air, "elevation_m"),
+            )
+            eto = np.where(own, eto, parts[0])
+        axis = np.datetime64(self.first, "D") + np.arange(self.days + HORIZON)
+        latitude = self._place(energy, "latitude_deg")
+        ra = extraterrestrial_radiation(
+            np.r_[latitude, np.full(HORIZON, latitude[-1])], _day_of_year(axis)
+        )
+        return _completed(
+            self.first,
+            eto,
+            rn,
+            np.divide(self._pick(energy, "rn_uncertainty"), rn),
+            rung,
+            ra,
+            self._pick(station["rain"], "rain"),
+            self._pick(wind, "wind_2m"),
+            self._pick(air, "rh_min_used"),
+        )
+
+    def _stations(self, rows: tuple[SourceRow, ...], variable: str) -> NDArray[np.int64]:
+        """Station number of each day for a variable."""
+        numbers = np.zeros(self.days, np.int64)
+        for row in rows:
+            if row.variable == variable:
+                numbers[max(0, (row.since - self.first).days) :] = row.station_id
+        return numbers
+
+    def _pick(self, stations: NDArray[np.int64], name: str) -> Floats:
+        values = np.full(self.days, np.nan)
+        for number in np.unique(stations):
+            values = np.where(stations == number, self.series[int(number)].values[name], values)
+        return values
+
+    def _place(self, stations: NDArray[np.int64], name: str) -> Floats:
+        return np.array([float(self.details[int(number)][name]) for number in stations])
+
+
+def _day_of_year(days: NDArray[np.datetime64]) -> NDArray[np.int64]:
+    return (days - days.astype("datetime64[Y]")).astype(np.int64) + 1
+
+
+def _completed(
+    first: date,
+    eto: Floats,
+    rn: Floats,
+    rn_share: Floats,
+    rung: NDArray[np.int8],
+    ra: Floats,
+    rain: Floats,
+    u2: Floats,
+    rh_min: Floats,
+) -> FieldWeather:
+    """Fill gaps by the usual for the date and go on `HORIZON` days beyond the last day."""
+    days = eto.size
+    filled, was_filled = fill_gaps(eto, ra[:days])
+    energy, _ = fill_gaps(rn, ra[:days])
+    known = np.flatnonzero(~np.isnan(filled))
+    rung = np.where(was_filled, USUAL_RUNG, rung).astype(np.int8)
+    share = np.where(was_filled | ~np.isfinite(rn_share), AHEAD_SHARE, rn_share)
+    ahead = ra[days:]
+    return FieldWeather(
+        first=first,
+        known_from=int(known[0]) if known.size else days,
+        eto=np.r_[filled, usual_ahead(filled, ra[:days], ahead)],
+        rain=np.r_[np.nan_to_num(rain), np.zeros(HORIZON)],
+        u2=_steady(u2, 2.0),
+        rh_min=_steady(rh_min, 45.0),
+        rung=np.r_[rung, np.full(HORIZON, USUAL_RUNG, np.int8)],
+        rn=np.r_[energy, usual_ahead(energy, ra[:days], ahead)],
+        rn_share=np.r_[share, np.full(HORIZON, AHEAD_SHARE)],
+        rain_measured=np.r_[~np.isnan(rain), np.zeros(HORIZON, np.bool_)],
+    )
+
+
+def _steady(values: Floats, neutral: float, window: int = 30) -> Floats:
+    """Fill gaps, and the days ahead, with the mean of the 30 days before; `neutral` without any.
+
+    Only the climate adjustment of coefficients reads these, by their own 30-day mean; the neutral
+    values, 2 m/s and 45 %, are those of the handbook's tables.
+    """
+    steady = np.r_[values, np.full(HORIZON, np.nan)]
+    for day in np.flatnonzero(np.isnan(steady)):
+        before = steady[max(0, day - window) : day]
+        steady[day] = before.mean() if before.size else neutral
+    return steady
+
+
+def _subject(
+    block: BlockRow,
+    season: SeasonRow,
+    crop: CropSeason,
+    weather: FieldWeather,
+    events: list[Standing],
+    through: date,
+) -> Subject | None:
+    start = max(_start(season), weather.first + timedelta(days=weather.known_from))
+    last = min(crop.last_day.item(), through + timedelta(days=HORIZON))
+    days = (last - start).days + 1
+    if start > through or days <= 0:
+        return None
+    here = slice((start - weather.first).days, (start - weather.first).days + days)
+    gross, net = np.zeros(days), np.zeros(days)
+    wetted, rain = np.full(days, np.nan), weather.rain[here].copy()
+    measured = weather.rain_measured[here].copy()
+    gauge: dict[int, float] = {}
+    fraction = agronomy.wetted_fraction(block.system)
+    last_irrigation: date | None = None
+    for event in events:
+        place = (event.day - start).days
+        if event.day > through + TODAY or event.confirmation not in agronomy.COUNTED:
+            continue
+        if event.kind == "irrigation" and (last_irrigation is None or event.day > last_irrigation):
+            last_irrigation = event.day
+        if not 0 <= place < days:
+            continue
+        if event.kind == "rain":
+            gauge[place] = gauge.get(place, 0.0) + event.amount
+            continue
+        g, n = agronomy.gross_and_net(
+            event.amount, event.unit, event.purpose, block.system, block.area_ha
+        )
+        gross[place] += g
+        net[place] += n
+        wetted[place] = fraction
+    for place, amount in gauge.items():
+        rain[place], measured[place] = amount, True
+    details = season.details
+    return Subject(
+        block=block,
+        season=season,
+        crop=crop,
+        plan=BlockPlan(
+            season=crop,
+            profile=agronomy.profile(block.soil),
+            start=np.datetime64(start, "D"),
+            days=days,
+            irrigation_gross=gross,
+            irrigation_net=net,
+            irrigation_fw=wetted,
+            under_canopy=block.system["under_canopy"],
+            root_wetted_fraction=block.system["root_wetted_fraction"],
+            initial_depletion_mm=details["initial_depletion_mm"],
+            initial_depletion_fraction=details["initial_depletion_fraction"] or 0.0,
+            initial_subsoil_depletion_fraction=details["initial_subsoil_depletion_fraction"],
+            initial_evaporation_depletion_mm=details["initial_evaporation_depletion_mm"],
+        ),
+        weather=BlockWeather(
+            eto=weather.eto[here],
+            rain=rain,
+            u2=weather.u2[here],
+            rh_min=weather.rh_min[here],
+            rung=weather.rung[here],
+            rn=weather.rn[here],
+        ),
+        rn_share=weather.rn_share[here],
+        past=min(days, (through - start).days + 1),
+        last_irrigation=last_irrigation,
+        rain_measured=measured,
+    )

@@ -1,0 +1,199 @@
+"""Bring derived rows up to date: station days from their readings, ledgers from station days.
+
+Only what is dirty is touched, from its first dirty day, in the caller's transaction. A ledger is
+also carried on to the last closed day when no new reading came: those days rest on the usual for
+the date and are recomputed when the readings arrive.
+"""
+
+import zlib
+from collections.abc import Iterator
+from datetime import date, timedelta
+from typing import Any
+
+import numpy as np
+from sqlalchemy import select, update
+from sqlalchemy.orm import Session
+
+from app.intake import DayNote, aggregate, fold, unpack
+from app.science.energy.station_day import DailyWeather, StationDays, station_days
+from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletion
+from app.storage import book
+from app.storage.ledgers import (
+    clear_dirty,
+    last_ledger_days,
+    read_blocks,
+    replace_ledger_days,
+)
+from app.storage.series import applied_packs, replace_station_days
+from app.storage.tables import LedgerDay, Station
+from app.workflows import agronomy
+from app.workflows.assemble import Subject, seasons_of
+
+MEMBERS = 200
+LEDGER_COLUMNS = tuple(
+    column.name
+    for column in LedgerDay.__table__.columns
+    if column.name not in {"day", "block_id", "season_id"}
+)
+MEASURED = (
+    "tmean",
+    "rh_max",
+    "rh_min",
+    "shortwave_down",
+    "shortwave_up",
+    "longwave_down",
+    "longwave_up",
+)
+COMPUTED = (
+    "tmax",
+    "tmin",
+    "vapour_pressure",
+    "wind_2m",
+    "rain",
+    "rs",
+    "rso",
+    "ra",
+    "rn",
+    "rn_uncertainty",
+    "rn_measured",
+    "rn_modelled",
+    "rh_min_used",
+    "eto",
+    "etr",
+    "eto_uncertainty",
+)
+
+
+def recompute_stations(session: Session) -> int:
+    """Recompute the days of dirty stations and mark what hangs on them; returns station days."""
+    written = 0
+    stations = session.execute(
+        select(Station.id, Station.details, Station.dirty_from)
+        .where(Station.dirty_from.is_not(None))
+        .order_by(Station.id)
+        .with_for_update()
+    ).all()
+    for number, details, since in stations:
+        written += replace_station_days(
+            session, number, since, _days(session, number, details, since)
+        )
+        book.dirty_blocks(session, book.station_blocks(session, number), since)
+        session.execute(update(Station).where(Station.id == number).values(dirty_from=None))
+    return written
+
+
+def _days(
+    session: Session, station: int, details: dict[str, Any], since: date
+) -> Iterator[dict[str, Any]]:
+    """Rows of station_day from `since` to the last day with readings."""
+    packs = applied_packs(session, station, since - timedelta(days=1))
+    rows = fold([unpack(blob) for blob in packs])
+    if not len(rows):
+        return
+    offset = round(details["utc_offset_h"] * 3600)
+    last = np.datetime64(int(rows.instant[-1]) + offset - 1, "s").astype("datetime64[D]")
+    first = np.datetime64(since, "D")
+    if since == book.BEGINNING:
+        first = np.datetime64(int(rows.instant[0]) + offset - 1, "s").astype("datetime64[D]")
+    if last < first:
+        return
+    site = agronomy.site(details)
+    weather, notes = aggregate(rows, site, np.arange(first, last + 1))
+    yield from _station_rows(station, weather, station_days(site, weather), notes)
+
+
+def _station_rows(
+    station: int, weather: DailyWeather, days: StationDays, notes: list[DayNote]
+) -> Iterator[dict[str, Any]]:
+    columns = {name: _numbers(getattr(weather, name)) for name in MEASURED}
+    columns |= {name: _numbers(getattr(days, name)) for name in COMPUTED}
+    words: dict[date, list[str]] = {}
+    for note in notes:
+        words.setdefault(note.day, []).append(
+            f"{note.quantity}:{note.what}:{note.figure:g}:{note.reason}"
+        )
+    for place, day in enumerate(days.date.tolist()):
+        yield {
+            "station_id": station,
+            "day": day,
+            "rung": int(days.rung[place]),
+            "why_not": str(days.why_not[place]),
+            "humidity_rung": int(days.humidity_rung[place]),
+            "wind_rung": int(days.wind_rung[place]),
+            "flags": str(days.flags[place]),
+            "notes": "\n".join(words.get(day, [])),
+            **{name: values[place] for name, values in columns.items()},
+        }
+
+
+def _numbers(values: Any) -> list[float | None]:
+    """Floats for the database: None for NaN."""
+    return [None if value != value else value for value in np.asarray(values, float).tolist()]
+
+
+def due_ledgers(session: Session, through: date) -> dict[int, date]:
+    """Blocks whose ledger is dirty or stops before it should, and the day to write from."""
+    due: dict[int, date] = {}
+    blocks = read_blocks(session)
+    dirty = {row.block_id: row.dirty_from for row in blocks if row.dirty_from is not None}
+    last = last_ledger_days(session)
+    for season, crop in seasons_of(session, [row.block_id for row in blocks]):
+        until = min(through, crop.last_day.item())
+        if season.season_id in last and last[season.season_id] < until:
+            due[season.block_id] = last[season.season_id] + timedelta(days=1)
+        elif season.season_id not in last and season.planting <= until:
+            due[season.block_id] = min(season.planting, due.get(season.block_id, season.planting))
+    for block, since in dirty.items():
+        due[block] = min(since, due.get(block, since))
+    return due
+
+
+def recompute_ledgers(session: Session, subjects: list[Subject], since: dict[int, date]) -> int:
+    """Write the ledger rows of subjects from each block's day of `since` on; returns rows."""
+    plans = [subject.plan for subject in subjects]
+    ledgers = block_ledgers(plans, [subject.weather for subject in subjects])
+    rows: list[dict[str, Any]] = []
+    for subject, ledger in zip(subjects, ledgers, strict=True):
+        p10, p90 = depletion_range(subject)
+        rows.extend(_ledger_rows(subject, ledger, p10, p90, since[subject.block.block_id]))
+    written = replace_ledger_days(session, since, rows)
+    clear_dirty(session, sorted(since))
+    return written
+
+
+def depletion_range(subject: Subject) -> tuple[Any, Any]:
+    """p10 and p90 of the depletion of a subject's days, the outlook's among them.
+
+    The seed is of the block and its season, so that the same inputs give the same bytes and a new
+    day does not stir the days before.
+    """
+    name = f"{subject.block.field_key}/{subject.block.block_key}/{subject.season.planting}"
+    return ensemble_depletion(
+        subject.plan,
+        subject.weather,
+        seed=zlib.crc32(name.encode()),
+        members=MEMBERS,
+        rn_share=subject.rn_share,
+    )
+
+
+def _ledger_rows(
+    subject: Subject, ledger: BlockLedger, p10: Any, p90: Any, since: date
+) -> Iterator[dict[str, Any]]:
+    columns: dict[str, list[Any]] = {}
+    for name in LEDGER_COLUMNS:
+        values = getattr(ledger, name)
+        if name in {"rung", "standing"}:
+            columns[name] = values.tolist()
+        else:
+            columns[name] = _numbers(values)
+    columns["depletion_p10_mm"], columns["depletion_p90_mm"] = _numbers(p10), _numbers(p90)
+    for place in range(subject.past):
+        day = ledger.date[place].item()
+        if day >= since:
+            yield {
+                "day": day,
+                "block_id": subject.block.block_id,
+                "season_id": subject.season.season_id,
+                **{name: values[place] for name, values in columns.items()},
+            }
