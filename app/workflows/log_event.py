@@ -69,7 +69,7 @@ def log_rain(
     today: date,
     note: str | None = None,
 ) -> int:
-    """Log rain of a field's own gauge, which takes the place of its station's; raises EventError."""
+    """Log rain of a field's own gauge, in place of its station's; raises EventError."""
     _check(day, rain_mm, "rain_mm", today)
     return _log(
         db, "rain", field_key, None, day, rain_mm, "rain_mm", "crop", "measured", note,

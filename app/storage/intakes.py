@@ -1,0 +1,127 @@
+"""Statements for intakes: the file's bytes, its problems, what it contributed."""
+
+import hashlib
+import tempfile
+import zlib
+from collections.abc import Iterable, Sequence
+from datetime import date
+from typing import IO, Any, BinaryIO
+
+from sqlalchemy import delete, func, insert, select
+from sqlalchemy.orm import Session
+
+from app.storage.tables import (
+    Contribution,
+    Field,
+    Intake,
+    IntakeFile,
+    IntakeProblem,
+    Source,
+    StationMapping,
+)
+
+PIECE = 4 * 1024 * 1024
+IN_MEMORY = 16 * 1024 * 1024
+PROBLEMS_KEPT = 1000
+
+
+def compress(source: BinaryIO) -> tuple[str, list[bytes]]:
+    """SHA-256 of a file, and its bytes in compressed pieces."""
+    digest, pieces = hashlib.sha256(), []
+    source.seek(0)
+    while piece := source.read(PIECE):
+        digest.update(piece)
+        pieces.append(zlib.compress(piece, 6))
+    return digest.hexdigest(), pieces
+
+
+def keep_file(session: Session, intake: int, pieces: Sequence[bytes]) -> None:
+    """Keep the bytes of an intake's file."""
+    for number, piece in enumerate(pieces):
+        session.execute(insert(IntakeFile).values(intake_id=intake, piece=number, data=piece))
+
+
+def open_file(session: Session, intake: int) -> IO[bytes]:
+    """The bytes of an intake's file again, on disk where they are many; close it after use."""
+    file = tempfile.SpooledTemporaryFile(max_size=IN_MEMORY)  # noqa: SIM115
+    numbers = session.scalars(
+        select(IntakeFile.piece).where(IntakeFile.intake_id == intake).order_by(IntakeFile.piece)
+    ).all()
+    for number in numbers:
+        data = session.scalar(
+            select(IntakeFile.data).where(
+                IntakeFile.intake_id == intake, IntakeFile.piece == number
+            )
+        )
+        assert data is not None
+        file.write(zlib.decompress(data))
+    file.seek(0)
+    return file
+
+
+def replace_problems(session: Session, intake: int, problems: Iterable[dict[str, Any]]) -> None:
+    """Keep the problems of an intake in place of those of an earlier preview."""
+    session.execute(delete(IntakeProblem).where(IntakeProblem.intake_id == intake))
+    rows = [{"intake_id": intake, **problem} for problem in problems][:PROBLEMS_KEPT]
+    if rows:
+        session.execute(insert(IntakeProblem), rows)
+
+
+def contribute(session: Session, rows: Sequence[dict[str, Any]]) -> None:
+    """Keep the packed days of an intake."""
+    if rows:
+        session.execute(insert(Contribution), rows)
+
+
+def next_order(session: Session) -> int:
+    """The place of the next applied intake in the order of all."""
+    return (session.scalar(select(func.max(Intake.applied_order))) or 0) + 1
+
+
+def remembered(session: Session, station: int, signature: str) -> dict[str, Any] | None:
+    """How a header was read last time at a station."""
+    return session.scalar(
+        select(StationMapping.mapping).where(
+            StationMapping.station_id == station, StationMapping.signature == signature
+        )
+    )
+
+
+def remember(session: Session, station: int, signature: str, mapping: dict[str, Any]) -> None:
+    """Keep how a header is read at a station."""
+    row = session.scalar(
+        select(StationMapping).where(
+            StationMapping.station_id == station, StationMapping.signature == signature
+        )
+    )
+    if row is None:
+        row = StationMapping(station_id=station, signature=signature)
+        session.add(row)
+    row.mapping = mapping
+
+
+def fields_fed(session: Session, station: int) -> int:
+    """How many fields take a variable from a station."""
+    return (
+        session.scalar(
+            select(func.count(func.distinct(Source.field_id)))
+            .select_from(Source)
+            .join(Field, Field.id == Source.field_id)
+            .where(Source.station_id == station)
+        )
+        or 0
+    )
+
+
+def later_applied(session: Session, intake: Intake, first: date, last: date) -> int:
+    """How many intakes applied after this one touch the same days of its station."""
+    return (
+        session.scalar(
+            select(func.count())
+            .select_from(Intake)
+            .where(Intake.station_id == intake.station_id, Intake.state == "applied")
+            .where(Intake.applied_order > (intake.applied_order or 0))
+            .where(Intake.first_day <= last, Intake.last_day >= first)
+        )
+        or 0
+    )

@@ -1,0 +1,439 @@
+"""One uploaded file: kept, previewed, applied whole or not at all, undone exactly.
+
+The state of an intake: previewed -> applied -> undone, or previewed -> same (nothing in it was
+new), or previewed -> away (put away unread). Only `apply` and `undo` change readings, each in one
+transaction together with all that follows from it.
+"""
+
+from dataclasses import asdict, dataclass, field
+from datetime import UTC, date, datetime, timedelta
+from pathlib import PurePath
+from typing import Any, BinaryIO
+
+import numpy as np
+from sqlalchemy import select
+from sqlalchemy.orm import Session
+
+from app.intake import (
+    Clock,
+    IntakeError,
+    Mapping,
+    Problem,
+    Reading,
+    Rows,
+    Sniffed,
+    fold,
+    pack,
+    read,
+    sniff,
+    station_day,
+    unpack,
+)
+from app.intake.model import Progress
+from app.storage import book, intakes
+from app.storage.database import Database
+from app.storage.series import applied_packs
+from app.storage.tables import Intake, IntakeProblem, Station
+from app.workflows.bring_up_to_date import up_to_date
+
+PROBLEMS_SHOWN = 200
+
+
+class TakeInError(Exception):
+    """An intake that cannot be taken further; the message says why and what to do."""
+
+
+@dataclass(frozen=True)
+class Applied:
+    """What an apply or undo did; already_here: every row was there and the same."""
+
+    already_here: bool
+    rows: int
+    first_day: date | None
+    days_changed: int
+    blocks: int
+
+
+@dataclass(frozen=True)
+class Preview:
+    """What a file would bring, before anything is stored as a reading.
+
+    columns: one dict a column of the file (position, name, examples, why); questions: one dict
+    each (field, asks, choices [{value, label}], why, suggested, blocking). message: what is wrong
+    with the whole file, or "". Rows are counted as accepted (of them same as stored, differing
+    from stored) and refused.
+    """
+
+    intake_id: int
+    file_name: str
+    station_key: str
+    station_name: str
+    state: str
+    who: str
+    at: datetime
+    message: str
+    mapping: Mapping | None
+    remembered: bool
+    columns: list[dict[str, Any]]
+    questions: list[dict[str, Any]]
+    notes: list[str]
+    rows_accepted: int
+    rows_refused: int
+    rows_same: int
+    rows_differing: int
+    first_day: date | None
+    last_day: date | None
+    days_changed: list[date]
+    fields_touched: int
+    problems: list[Problem] = field(default_factory=list)
+    problems_total: int = 0
+
+
+def receive(
+    db: Database,
+    station_key: str,
+    file_name: str,
+    source: BinaryIO,
+    who: str,
+    mapping: Mapping | None = None,
+    progress: Progress | None = None,
+) -> int:
+    """Keep a file for a station and preview it; returns the intake's number.
+
+    A file that cannot be read is kept too, with the message that says why. Raises TakeInError
+    when there is no such station.
+    """
+    sha256, pieces = intakes.compress(source)
+    with db.write() as session:
+        station = _station(session, station_key)
+        intake = Intake(
+            station_id=station.id,
+            file_name=PurePath(file_name.replace("\\", "/")).name[:200] or "unnamed",
+            sha256=sha256,
+            mapping={},
+            who=who,
+            at=datetime.now(UTC),
+            state="previewed",
+            rows=0,
+            summary={},
+        )
+        session.add(intake)
+        session.flush()
+        intakes.keep_file(session, intake.id, pieces)
+        _preview(session, intake, station, source, mapping, progress)
+        return intake.id
+
+
+def remap(db: Database, intake_id: int, mapping: Mapping, who: str) -> None:
+    """Preview again with a corrected mapping; raises TakeInError."""
+    with db.write() as session:
+        intake = _open(session, intake_id)
+        with intakes.open_file(session, intake_id) as source:
+            _preview(session, intake, intake.station, source, mapping, None)
+        intake.who = who
+
+
+def discard(db: Database, intake_id: int, who: str) -> None:
+    """Put a previewed file away; raises TakeInError."""
+    with db.write() as session:
+        intake = _open(session, intake_id)
+        intake.state, intake.who = "away", who
+
+
+def apply(
+    db: Database, intake_id: int, who: str, today: date, progress: Progress | None = None
+) -> Applied:
+    """Take a previewed file in, whole; raises TakeInError, and then nothing is changed."""
+    with db.write() as session:
+        intake = _open(session, intake_id)
+        station = intake.station
+        if not intake.mapping:
+            raise TakeInError(intake.summary.get("message") or "This file cannot be read.")
+        clock = _clock(station)
+        try:
+            with intakes.open_file(session, intake_id) as source:
+                reading = read(source, Mapping.model_validate(intake.mapping), clock, progress)
+        except IntakeError as error:
+            raise TakeInError(str(error)) from None
+        changed = _compare(session, station, reading.rows, clock).days
+        intake.who, intake.applied_at = who, datetime.now(UTC)
+        if not changed:
+            intake.state = "same"
+            return Applied(True, len(reading.rows), intake.first_day, 0, 0)
+        intakes.contribute(
+            session,
+            [
+                {
+                    "intake_id": intake.id,
+                    "day": part.day,
+                    "station_id": station.id,
+                    "rows": part.rows,
+                    "data": part.blob,
+                }
+                for part in pack(reading.rows, clock)
+            ],
+        )
+        intake.state, intake.applied_order = "applied", intakes.next_order(session)
+        intake.rows = len(reading.rows)
+        intakes.remember(session, station.id, intake.mapping["signature"], intake.mapping)
+        session.flush()
+        return _land(session, station, intake, changed, today)
+
+
+def undo(db: Database, intake_id: int, who: str, today: date) -> Applied:
+    """Take an applied file out again: its days are exactly what they were without it."""
+    with db.write() as session:
+        intake = session.get(Intake, intake_id, with_for_update=True)
+        if intake is None or intake.state != "applied":
+            raise TakeInError("Only a file that has been taken in can be undone.")
+        clock = _clock(intake.station)
+        before = _stored(session, intake.station, intake.first_day, intake.last_day)
+        intake.state = "undone"
+        session.flush()
+        after = _stored(session, intake.station, intake.first_day, intake.last_day)
+        changed = _changed_days(before, after, clock)
+        intake.summary = {**intake.summary, "undone_by": who, "undone_at": str(datetime.now(UTC))}
+        return _land(session, intake.station, intake, changed, today)
+
+
+def preview_of(db: Database, intake_id: int) -> Preview:
+    """The preview as it stands; raises TakeInError when there is no such intake."""
+    with db.read() as session:
+        intake = session.get(Intake, intake_id)
+        if intake is None:
+            raise TakeInError(f"There is no intake {intake_id}.")
+        summary = intake.summary
+        problems = session.scalars(
+            select(IntakeProblem)
+            .where(IntakeProblem.intake_id == intake_id)
+            .order_by(IntakeProblem.id)
+            .limit(PROBLEMS_SHOWN)
+        )
+        return Preview(
+            intake_id=intake.id,
+            file_name=intake.file_name,
+            station_key=intake.station.key,
+            station_name=intake.station.name,
+            state=intake.state,
+            who=intake.who,
+            at=intake.at,
+            message=summary.get("message", ""),
+            mapping=Mapping.model_validate(intake.mapping) if intake.mapping else None,
+            remembered=summary.get("remembered", False),
+            columns=summary.get("columns", []),
+            questions=summary.get("questions", []),
+            notes=summary.get("notes", []),
+            rows_accepted=intake.rows,
+            rows_refused=summary.get("rows_refused", 0),
+            rows_same=summary.get("rows_same", 0),
+            rows_differing=summary.get("rows_differing", 0),
+            first_day=intake.first_day,
+            last_day=intake.last_day,
+            days_changed=[date.fromisoformat(day) for day in summary.get("days_changed", [])],
+            fields_touched=summary.get("fields_touched", 0),
+            problems=[
+                Problem(
+                    line=row.line,
+                    column=row.column,
+                    value=row.value,
+                    why=row.why,
+                    remedy=row.remedy,
+                    severity=row.severity,  # type: ignore[arg-type]
+                    count=row.count,
+                    last_line=row.last_line,
+                )
+                for row in problems
+            ],
+            problems_total=summary.get("problems_total", 0),
+        )
+
+
+def _station(session: Session, key: str) -> Station:
+    station = book.find(session, Station, key)
+    if station is None:
+        there = ", ".join(sorted(book.keys_of(session, Station))) or "none yet"
+        raise TakeInError(f"There is no station {key!r}; the stations are: {there}.")
+    return station
+
+
+def _open(session: Session, intake_id: int) -> Intake:
+    intake = session.get(Intake, intake_id, with_for_update=True)
+    if intake is None:
+        raise TakeInError(f"There is no intake {intake_id}.")
+    if intake.state != "previewed":
+        state = {"applied": "taken in", "undone": "undone", "same": "found to hold nothing new"}
+        raise TakeInError(
+            f"This file has already been {state.get(intake.state, 'put away')}; upload it again."
+        )
+    return intake
+
+
+def _clock(station: Station) -> Clock:
+    return Clock(station.details["utc_offset_h"], station.details["time_zone"])
+
+
+def _preview(
+    session: Session,
+    intake: Intake,
+    station: Station,
+    source: BinaryIO | Any,
+    mapping: Mapping | None,
+    progress: Progress | None,
+) -> None:
+    """Sniff and read a file; keep what it would bring in the intake's summary."""
+    clock = _clock(station)
+    summary: dict[str, Any] = {"message": ""}
+    intake.rows, intake.first_day, intake.last_day = 0, None, None
+    problems: list[Problem] = []
+    try:
+        sniffed = _sniff(session, station, source, clock, mapping)
+        intake.mapping = sniffed.mapping.model_dump(mode="json")
+        summary |= _seen(sniffed)
+        if not any(question.blocking for question in sniffed.questions):
+            reading = read(source, sniffed.mapping, clock, progress)
+            problems = list(reading.problems)
+            summary |= _brings(session, intake, station, reading, clock)
+    except IntakeError as error:
+        summary["message"] = str(error)
+    intake.summary = summary
+    intakes.replace_problems(session, intake.id, (_problem_row(item) for item in problems))
+
+
+def _sniff(
+    session: Session,
+    station: Station,
+    source: BinaryIO,
+    clock: Clock,
+    mapping: Mapping | None,
+) -> Sniffed:
+    """A given mapping is kept to; else the one remembered for this header; else a guess."""
+    source.seek(0)
+    if mapping is not None:
+        return sniff(source, clock, mapping)
+    sniffed = sniff(source, clock)
+    known = intakes.remembered(session, station.id, sniffed.mapping.signature)
+    if known is None:
+        return sniffed
+    source.seek(0)
+    return sniff(source, clock, Mapping.model_validate(known))
+
+
+def _seen(sniffed: Sniffed) -> dict[str, Any]:
+    return {
+        "columns": [
+            {"position": column.position, "name": column.name, "examples": list(seen), "why": why}
+            for column, seen, why in zip(
+                sniffed.mapping.columns, sniffed.examples, sniffed.why, strict=False
+            )
+        ],
+        "questions": [asdict(question) for question in sniffed.questions],
+        "notes": list(sniffed.notes),
+        "remembered": sniffed.remembered,
+    }
+
+
+def _brings(
+    session: Session, intake: Intake, station: Station, reading: Reading, clock: Clock
+) -> dict[str, Any]:
+    rows = reading.rows
+    if len(rows):
+        days = station_day(rows.instant, rows.interval_s, clock)
+        intake.first_day, intake.last_day = _date(days.min()), _date(days.max())
+    intake.rows = len(rows)
+    compared = _compare(session, station, rows, clock)
+    return {
+        "rows_refused": reading.counts.rows_refused,
+        "rows_same": compared.same,
+        "rows_differing": compared.differing,
+        "days_changed": [str(day) for day in compared.days],
+        "fields_touched": intakes.fields_fed(session, station.id) if compared.days else 0,
+        "problems_total": len(reading.problems) + reading.counts.problems_not_listed,
+        "counts": asdict(reading.counts),
+    }
+
+
+def _problem_row(problem: Problem) -> dict[str, Any]:
+    return {
+        "line": problem.line,
+        "last_line": problem.last_line or problem.line,
+        "column": problem.column,
+        "value": problem.value,
+        "why": problem.why,
+        "remedy": problem.remedy,
+        "severity": problem.severity,
+        "count": problem.count,
+    }
+
+
+@dataclass(frozen=True)
+class _Compared:
+    same: int
+    differing: int
+    days: list[date]
+
+
+def _compare(session: Session, station: Station, rows: Rows, clock: Clock) -> _Compared:
+    """Which stored days would change, how many rows are there the same, how many differ."""
+    if not len(rows):
+        return _Compared(0, 0, [])
+    days = station_day(rows.instant, rows.interval_s, clock)
+    stored = _stored(session, station, _date(days.min()), _date(days.max()))
+    if not len(stored):
+        return _Compared(0, 0, [_date(day) for day in np.unique(days)])
+    after = fold([stored, rows])
+    changed = _changed_days(stored, after, clock)
+    there = np.isin(rows.instant, stored.instant)
+    moved = _changed_instants(stored, after)
+    differing = int(np.isin(rows.instant[there], moved).sum())
+    return _Compared(int(there.sum()) - differing, differing, changed)
+
+
+def _stored(session: Session, station: Station, first: date | None, last: date | None) -> Rows:
+    if first is None or last is None:
+        return Rows.none()
+    return fold([unpack(blob) for blob in applied_packs(session, station.id, first, last)])
+
+
+def _changed_instants(before: Rows, after: Rows) -> Any:
+    """Instants whose values differ between two folds of the same station."""
+    union = np.union1d(before.instant, after.instant)
+    differs = np.isin(union, before.instant) != np.isin(union, after.instant)
+    for name in sorted(set(before.values) | set(after.values)):
+        a, b = _on(union, before, name), _on(union, after, name)
+        differs |= ~((a == b) | (np.isnan(a) & np.isnan(b)))
+    return union[differs]
+
+
+def _changed_days(before: Rows, after: Rows, clock: Clock) -> list[date]:
+    """Station days that differ between two folds."""
+    moved = _changed_instants(before, after)
+    days: set[date] = set()
+    for rows in (before, after):
+        of_rows = station_day(rows.instant, rows.interval_s, clock)
+        days.update(_date(day) for day in np.unique(of_rows[np.isin(rows.instant, moved)]))
+    return sorted(days)
+
+
+def _on(instants: Any, rows: Rows, name: str) -> Any:
+    values = np.full(instants.size, np.nan)
+    if name in rows.values:
+        values[np.searchsorted(instants, rows.instant)] = rows.values[name]
+    return values
+
+
+def _land(
+    session: Session, station: Station, intake: Intake, changed: list[date], today: date
+) -> Applied:
+    """Mark what a change of readings touches and bring it up to date.
+
+    A gap over midnight is filled from both sides, so the day before the first is touched too.
+    """
+    blocks = 0
+    if changed:
+        book.dirty_station(session, station.id, changed[0] - timedelta(days=1))
+        blocks = up_to_date(session, today).blocks
+    return Applied(False, intake.rows, intake.first_day, len(changed), blocks)
+
+
+def _date(day: Any) -> date:
+    return date(1970, 1, 1) + timedelta(days=int(day))
