@@ -22,6 +22,7 @@ WIND_ASSUMED = 2.0  # m s-1, FAO-56 chapter 3, where no wind is known
 ARID_DEW_POINT_OFFSET = 2.0  # K below Tmin, FAO-56 Annex 6 and eq 64
 K_RS_INTERIOR = 0.16  # degC-0.5, FAO-56 eq 50
 K_RS_COASTAL = 0.19  # degC-0.5, FAO-56 eq 50
+RH_LIMIT = 105.0  # %, ASCE-EWRI Appendix D: more than 3-5 % above 100 is a sensor fault
 LOW_SUN = 0.3  # rad, ASCE-EWRI hourly: below it cloudiness is carried over
 POLAR_NIGHT_CLOUD_RATIO = 0.7  # -, Rs/Rso where there is no sun to tell it, working value
 

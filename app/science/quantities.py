@@ -3,6 +3,8 @@
 from dataclasses import dataclass
 from typing import Literal
 
+from app.science import Bools, Floats
+
 Kind = Literal["mean", "max", "min", "sum"]
 
 
@@ -46,3 +48,13 @@ _TABLE = (
 )
 
 QUANTITIES: dict[str, Quantity] = {quantity.name: quantity for quantity in _TABLE}
+
+
+def outside(name: str, values: Floats) -> Bools:
+    """Where values lie outside their quantity's plausible range; NaN does not.
+
+    Arguments: `name` in QUANTITIES; `values`, any shape, in that quantity's unit. Returns the same
+    shape. Errors: KeyError for an unknown name.
+    """
+    quantity = QUANTITIES[name]
+    return (values < quantity.low) | (values > quantity.high)

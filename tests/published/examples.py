@@ -1,7 +1,8 @@
 """Reader of examples.csv: worked examples of the handbooks, printed value beside status.
 
-Source of the rows: FAO Irrigation and Drainage Paper 56 (1998), Examples 1-47 and Boxes; The ASCE
-Standardized Reference Evapotranspiration Equation (2005), Appendix C (from memory, as each row says).
+Source of the rows: FAO Irrigation and Drainage Paper 56 (1998), Examples 1-47 and Boxes;
+The ASCE Standardized Reference Evapotranspiration Equation (2005), Appendix C (from memory, as
+each row says).
 """
 
 import csv

@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from app.science import Floats
+from app.science import Floats, floats
 from app.science.constants import (
     ARID_DEW_POINT_OFFSET,
     ASCE,
@@ -18,7 +18,7 @@ def atmospheric_pressure(elevation: ArrayLike) -> Floats:
     Arguments: `elevation` z, any shape [m, -450..6000]. Returns P [kPa]. NaN gives NaN.
     Source: FAO-56 eq 7; ASCE-EWRI eq 3.
     """
-    z = np.asarray(elevation, dtype=np.float64)
+    z = floats(elevation)
     return np.asarray(101.3 * ((293.0 - 0.0065 * z) / 293.0) ** 5.26)
 
 
@@ -28,7 +28,7 @@ def psychrometric_constant(pressure: ArrayLike) -> Floats:
     Arguments: `pressure` P, any shape [kPa]. Returns gamma [kPa degC-1]. NaN gives NaN.
     Source: FAO-56 eq 8; ASCE-EWRI eq 4.
     """
-    return np.asarray(pressure, dtype=np.float64) * 0.665e-3
+    return floats(pressure) * 0.665e-3
 
 
 def saturation_vapour_pressure(temperature: ArrayLike) -> Floats:
@@ -37,7 +37,7 @@ def saturation_vapour_pressure(temperature: ArrayLike) -> Floats:
     Arguments: `temperature` T, any shape [degC, -50..60]. Returns e0 [kPa]. NaN gives NaN.
     Source: FAO-56 eq 11; ASCE-EWRI eq 7.
     """
-    t = np.asarray(temperature, dtype=np.float64)
+    t = floats(temperature)
     return np.asarray(0.6108 * np.exp(17.27 * t / (t + 237.3)))
 
 
@@ -56,7 +56,7 @@ def saturation_slope(temperature: ArrayLike, constants: Standard = ASCE) -> Floa
     Arguments: `temperature` T, any shape [degC]; `constants`. Returns Delta [kPa degC-1]. NaN
     gives NaN. Source: FAO-56 eq 13; ASCE-EWRI eq 5.
     """
-    t = np.asarray(temperature, dtype=np.float64)
+    t = floats(temperature)
     shifted = t + 237.3
     return np.asarray(constants.slope_factor * np.exp(17.27 * t / shifted) / (shifted * shifted))
 
@@ -67,7 +67,7 @@ def dew_point(vapour_pressure: ArrayLike) -> Floats:
     Arguments: `vapour_pressure` ea, any shape [kPa, above 0]. Returns Tdew [degC]; NaN where ea
     is NaN or not above 0. Source: FAO-56 Annex 3 eq 3-11.
     """
-    ea = np.asarray(vapour_pressure, dtype=np.float64)
+    ea = floats(vapour_pressure)
     log = np.log(np.where(ea > 0.0, ea, np.nan))
     return np.asarray((116.91 + 237.3 * log) / (16.78 - log))
 
@@ -84,8 +84,8 @@ def vapour_pressure_psychrometer(
     `coefficient` of the instrument [degC-1]. Returns ea [kPa]. NaN gives NaN.
     Source: FAO-56 eq 15, 16.
     """
-    wet = np.asarray(wet_bulb, dtype=np.float64)
-    gamma = coefficient * np.asarray(pressure, dtype=np.float64)
+    wet = floats(wet_bulb)
+    gamma = coefficient * floats(pressure)
     return saturation_vapour_pressure(wet) - gamma * (np.asarray(dry_bulb) - wet)
 
 
@@ -97,8 +97,8 @@ def vapour_pressure_rh_extremes(
     Arguments, shapes that broadcast: `tmax`, `tmin` [degC]; `rh_max`, `rh_min` [%, 0..100].
     Returns ea [kPa]. NaN gives NaN. Source: FAO-56 eq 17; ASCE-EWRI eq 11.
     """
-    at_dawn = saturation_vapour_pressure(tmin) * np.asarray(rh_max, dtype=np.float64)
-    at_noon = saturation_vapour_pressure(tmax) * np.asarray(rh_min, dtype=np.float64)
+    at_dawn = saturation_vapour_pressure(tmin) * floats(rh_max)
+    at_noon = saturation_vapour_pressure(tmax) * floats(rh_min)
     return (at_dawn + at_noon) / 200.0
 
 
@@ -108,7 +108,7 @@ def vapour_pressure_rh_max(tmin: ArrayLike, rh_max: ArrayLike) -> Floats:
     Arguments, shapes that broadcast: `tmin` [degC]; `rh_max` [%, 0..100]. Returns ea [kPa].
     NaN gives NaN. Source: FAO-56 eq 18; ASCE-EWRI eq 12.
     """
-    return saturation_vapour_pressure(tmin) * np.asarray(rh_max, dtype=np.float64) / 100.0
+    return saturation_vapour_pressure(tmin) * floats(rh_max) / 100.0
 
 
 def vapour_pressure_rh_mean(tmax: ArrayLike, tmin: ArrayLike, rh_mean: ArrayLike) -> Floats:
@@ -117,7 +117,7 @@ def vapour_pressure_rh_mean(tmax: ArrayLike, tmin: ArrayLike, rh_mean: ArrayLike
     Arguments, shapes that broadcast: `tmax`, `tmin` [degC]; `rh_mean` [%, 0..100]. Returns ea
     [kPa]. NaN gives NaN. Source: FAO-56 eq 19; ASCE-EWRI eq 13.
     """
-    mean = np.asarray(rh_mean, dtype=np.float64) / 100.0
+    mean = floats(rh_mean) / 100.0
     return mean * mean_saturation_vapour_pressure(tmax, tmin)
 
 
@@ -128,7 +128,7 @@ def vapour_pressure_tmin(tmin: ArrayLike, arid: bool = False) -> Floats:
     Source: FAO-56 eq 48 and Annex 6.
     """
     offset = ARID_DEW_POINT_OFFSET if arid else 0.0
-    return saturation_vapour_pressure(np.asarray(tmin, dtype=np.float64) - offset)
+    return saturation_vapour_pressure(floats(tmin) - offset)
 
 
 HUMIDITY_RUNGS = (
@@ -161,9 +161,9 @@ def best_vapour_pressure(
     HUMIDITY_RUNGS, 0 where even Tmin is NaN). Source: order of FAO-56 chapter 3 and ASCE-EWRI
     table 2, as told on the methods page.
     """
-    clipped = [np.minimum(np.asarray(rh, dtype=np.float64), 100.0) for rh in (rh_max, rh_min)]
-    mean = np.minimum(np.asarray(rh_mean, dtype=np.float64), 100.0)
-    direct = np.asarray(vapour_pressure, dtype=np.float64)
+    clipped = [np.minimum(floats(rh), 100.0) for rh in (rh_max, rh_min)]
+    mean = np.minimum(floats(rh_mean), 100.0)
+    direct = floats(vapour_pressure)
     direct = np.where(np.isnan(direct), saturation_vapour_pressure(dew_point), direct)
     candidates = (
         direct,

@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike
 
-from app.science import Floats
+from app.science import Floats, floats
 from app.science.constants import (
     ASCE,
     KELVIN,
@@ -19,7 +19,7 @@ def fourth_power_kelvin(temperature: ArrayLike) -> Floats:
     Arguments: `temperature`, any shape [degC]. Returns T^4 [K4]. NaN gives NaN.
     Source: FAO-56 eq 39 (0 degC is 273.16 K).
     """
-    kelvin = np.asarray(temperature, dtype=np.float64) + KELVIN
+    kelvin = floats(temperature) + KELVIN
     square = kelvin * kelvin
     return square * square
 
@@ -39,10 +39,8 @@ def clear_sky_ratio(shortwave: ArrayLike, clear_sky_shortwave: ArrayLike) -> Flo
     Arguments, shapes that broadcast: `shortwave` Rs, `clear_sky_shortwave` Rso [same unit].
     Returns the ratio [-]; NaN where an input is NaN or Rso is 0. Source: FAO-56 eq 39.
     """
-    rs, rso = np.broadcast_arrays(
-        np.asarray(shortwave, dtype=np.float64), np.asarray(clear_sky_shortwave, dtype=np.float64)
-    )
-    return np.divide(rs, rso, out=np.full(rs.shape, np.nan), where=rso > 0.0)
+    rs, rso = np.broadcast_arrays(floats(shortwave), floats(clear_sky_shortwave))
+    return np.asarray(np.divide(rs, rso, out=np.full(rs.shape, np.nan), where=rso > 0.0))
 
 
 def cloudiness(ratio: ArrayLike, constants: Standard = ASCE) -> Floats:
@@ -51,13 +49,13 @@ def cloudiness(ratio: ArrayLike, constants: Standard = ASCE) -> Floats:
     Arguments: `ratio` Rs/Rso, any shape [-], limited here to the standard's range; `constants`.
     Returns fcd [-]. NaN gives NaN. Source: FAO-56 eq 39; ASCE-EWRI eq 18, 45.
     """
-    limited = np.clip(ratio, constants.least_clear_sky_ratio, 1.0)
+    limited = np.clip(floats(ratio), constants.least_clear_sky_ratio, 1.0)
     return np.asarray(1.35 * limited - 0.35)
 
 
 def _emittance(vapour_pressure: ArrayLike) -> Floats:
     """Net emittance 0.34 - 0.14 sqrt(ea) between ground and clear sky; NaN for negative ea."""
-    ea = np.asarray(vapour_pressure, dtype=np.float64)
+    ea = floats(vapour_pressure)
     return 0.34 - 0.14 * np.sqrt(np.where(ea >= 0.0, ea, np.nan))
 
 
@@ -91,7 +89,7 @@ def net_longwave_hourly(
     NaN. Source: FAO-56 eq 39 with the hourly constant; ASCE-EWRI eq 44.
     """
     black = constants.sigma_hour * fourth_power_kelvin(temperature)
-    return black * _emittance(vapour_pressure) * np.asarray(cloud, dtype=np.float64)
+    return black * _emittance(vapour_pressure) * floats(cloud)
 
 
 def hourly_cloudiness(
@@ -103,7 +101,7 @@ def hourly_cloudiness(
     `constants`. Returns fcd (hours,); NaN until the first hour that tells it. A NaN ratio is
     carried over like a low sun. Source: ASCE-EWRI, hourly cloudiness below 0.3 rad.
     """
-    values = cloudiness(np.asarray(ratio, dtype=np.float64), constants)
+    values = cloudiness(floats(ratio), constants)
     tells = (np.asarray(sine_of_elevation) >= np.sin(LOW_SUN)) & ~np.isnan(values)
     last = np.maximum.accumulate(np.where(tells, np.arange(values.size), -1))
     return np.where(last >= 0, values[np.maximum(last, 0)], np.nan)

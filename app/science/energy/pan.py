@@ -6,7 +6,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import ArrayLike
 
-from app.science import Floats
+from app.science import Floats, floats
 
 Pan = Literal["class A", "sunken"]
 Fetch = Literal["green", "dry"]
@@ -81,9 +81,9 @@ def pan_coefficient(
     Source: FAO-56 table 7 with the ranges printed under it.
     """
     return _FORMULAS[pan, surroundings](
-        np.clip(np.asarray(wind_2m, dtype=np.float64), 1.0, 8.0),
-        np.clip(np.asarray(rh_mean, dtype=np.float64), 30.0, 84.0),
-        np.clip(np.asarray(fetch, dtype=np.float64), 1.0, 1000.0),
+        np.clip(floats(wind_2m), 1.0, 8.0),
+        np.clip(floats(rh_mean), 30.0, 84.0),
+        np.clip(floats(fetch), 1.0, 1000.0),
     )
 
 
@@ -93,4 +93,4 @@ def reference_et_from_pan(pan_evaporation: ArrayLike, coefficient: ArrayLike) ->
     Arguments, shapes that broadcast: `pan_evaporation` [mm d-1]; `coefficient` Kp [-]. Returns
     ETo [mm d-1]. NaN gives NaN. Source: FAO-56 eq 55.
     """
-    return np.asarray(pan_evaporation, dtype=np.float64) * np.asarray(coefficient, np.float64)
+    return floats(pan_evaporation) * floats(coefficient)

@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike
 
-from app.science import Floats
+from app.science import Floats, floats
 from app.science.constants import (
     ASCE,
     DAILY,
@@ -32,7 +32,7 @@ def evaporation_depth(energy: ArrayLike) -> Floats:
     Arguments: `energy`, any shape [MJ m-2]. Returns the depth [mm]. NaN gives NaN.
     Source: FAO-56 eq 20 (latent heat 2.45 MJ kg-1).
     """
-    return np.asarray(energy, dtype=np.float64) * MM_PER_MJ
+    return floats(energy) * MM_PER_MJ
 
 
 def soil_heat_flux_monthly(
@@ -44,9 +44,9 @@ def soil_heat_flux_monthly(
     the one after [degC; NaN after where not known yet]. Returns G [MJ m-2 d-1]. NaN before gives
     NaN. Source: FAO-56 eq 43 (with the month after), eq 44 (without).
     """
-    before = np.asarray(temperature_before, dtype=np.float64)
-    after = np.asarray(temperature_after, dtype=np.float64)
-    known = 0.14 * (np.asarray(temperature, dtype=np.float64) - before)
+    before = floats(temperature_before)
+    after = floats(temperature_after)
+    known = 0.14 * (floats(temperature) - before)
     return np.where(np.isnan(after), known, 0.07 * (after - before))
 
 
@@ -68,14 +68,14 @@ def daily_terms(
     ET. NaN gives NaN. Source: ASCE-EWRI eq 1; FAO-56 eq 6 and its worked examples.
     """
     figures = DAILY[surface]
-    tmean = (np.asarray(tmax, dtype=np.float64) + np.asarray(tmin, dtype=np.float64)) / 2.0
-    u2 = np.asarray(wind_2m, dtype=np.float64)
+    tmean = (floats(tmax) + floats(tmin)) / 2.0
+    u2 = floats(wind_2m)
     slope = saturation_slope(tmean, constants)
     gamma = psychrometric_constant(pressure)
     denominator = slope + gamma * (1.0 + figures.cd * u2)
-    available = np.asarray(net_radiation, dtype=np.float64) - soil_heat_flux
+    available = floats(net_radiation) - floats(soil_heat_flux)
     radiation = MM_PER_MJ * slope * available / denominator
-    deficit = mean_saturation_vapour_pressure(tmax, tmin) - vapour_pressure
+    deficit = mean_saturation_vapour_pressure(tmax, tmin) - floats(vapour_pressure)
     aerodynamic = gamma * figures.cn / (tmean + 273.0) * u2 * deficit / denominator
     return radiation, aerodynamic
 
@@ -103,7 +103,7 @@ def reference_et_daily(
     """
     _refuse_unknown(surface, constants)
     arguments = [
-        np.asarray(a, dtype=np.float64)
+        floats(a)
         for a in (tmax, tmin, vapour_pressure, net_radiation, wind_2m, pressure, soil_heat_flux)
     ]
     shape = np.broadcast_shapes(*(a.shape for a in arguments))
@@ -157,16 +157,16 @@ def reference_et_hourly(
     """
     _refuse_unknown(surface, constants)
     day, night = HOURLY_DAY[surface], HOURLY_NIGHT[surface]
-    t = np.asarray(temperature, dtype=np.float64)
-    rn = np.asarray(net_radiation, dtype=np.float64)
-    u2 = np.asarray(wind_2m, dtype=np.float64)
+    t = floats(temperature)
+    rn = floats(net_radiation)
+    u2 = floats(wind_2m)
     lit = rn > 0.0
     fao = constants.name == "FAO-56"
     cd = HOURLY_CD_FAO56 if fao else np.where(lit, day.cd, night.cd)
     available = rn - soil_heat_flux_hourly(rn, surface=surface)
     slope = saturation_slope(t, constants)
     gamma = psychrometric_constant(pressure)
-    deficit = saturation_vapour_pressure(t) - vapour_pressure
+    deficit = saturation_vapour_pressure(t) - floats(vapour_pressure)
     numerator = MM_PER_MJ * slope * available + gamma * day.cn / (t + 273.0) * u2 * deficit
     return np.asarray(numerator / (slope + gamma * (1.0 + cd * u2)))
 
@@ -177,7 +177,7 @@ def soil_heat_flux_hourly(net_radiation: ArrayLike, *, surface: Surface = "short
     Arguments: `net_radiation` Rn, any shape [MJ m-2 h-1]; `surface`. Returns G [MJ m-2 h-1].
     NaN gives NaN. Source: ASCE-EWRI eq 65, 66; FAO-56 eq 45, 46.
     """
-    rn = np.asarray(net_radiation, dtype=np.float64)
+    rn = floats(net_radiation)
     day, night = HOURLY_DAY[surface].soil_share, HOURLY_NIGHT[surface].soil_share
     return np.where(rn > 0.0, day, night) * rn
 
@@ -188,7 +188,7 @@ def hargreaves(tmax: ArrayLike, tmin: ArrayLike, extraterrestrial: ArrayLike) ->
     Arguments, shapes that broadcast: `tmax`, `tmin` [degC]; `extraterrestrial` Ra [MJ m-2 d-1].
     Returns mm d-1; NaN where an input is NaN or Tmax is below Tmin. Source: FAO-56 eq 52.
     """
-    high, low = np.asarray(tmax, dtype=np.float64), np.asarray(tmin, dtype=np.float64)
+    high, low = floats(tmax), floats(tmin)
     span = high - low
     root = np.sqrt(np.where(span >= 0.0, span, np.nan))
     return 0.0023 * ((high + low) / 2.0 + 17.8) * root * evaporation_depth(extraterrestrial)
@@ -209,7 +209,7 @@ def eto_from_parts(
     floor of 0.5; `elevation_m` [m]. Returns ETo, ETr [mm d-1]; a negative result counts as 0
     (common practice, no source). NaN gives NaN. Source: ASCE-EWRI eq 1, 3 and Appendix D.
     """
-    wind = np.maximum(np.asarray(wind_2m, dtype=np.float64), WIND_FLOOR)
+    wind = np.maximum(floats(wind_2m), WIND_FLOOR)
     pressure = atmospheric_pressure(elevation_m)
     surfaces: tuple[Surface, Surface] = ("short", "tall")
     eto, etr = (
@@ -238,19 +238,19 @@ def eto_uncertainty(
     (taken as independent). NaN gives NaN. Source: ASCE-EWRI eq 1, differentiated.
     """
     figures = DAILY["short"]
-    wind = np.maximum(np.asarray(wind_2m, dtype=np.float64), WIND_FLOOR)
-    tmean = (np.asarray(tmax, dtype=np.float64) + np.asarray(tmin, dtype=np.float64)) / 2.0
+    wind = np.maximum(floats(wind_2m), WIND_FLOOR)
+    tmean = (floats(tmax) + floats(tmin)) / 2.0
     pressure = atmospheric_pressure(elevation_m)
     gamma = psychrometric_constant(pressure)
     slope = saturation_slope(tmean)
     denominator = slope + gamma * (1.0 + figures.cd * wind)
     eto = reference_et_daily(tmax, tmin, vapour_pressure, rn, wind, pressure)
-    deficit = mean_saturation_vapour_pressure(tmax, tmin) - vapour_pressure
+    deficit = mean_saturation_vapour_pressure(tmax, tmin) - floats(vapour_pressure)
     pull = gamma * figures.cn / (tmean + 273.0)
-    by_rn = MM_PER_MJ * slope / denominator * rn_error
-    by_humidity = pull * wind / denominator * vapour_pressure_error
-    by_wind = (pull * deficit - eto * gamma * figures.cd) / denominator * wind_error
-    return np.sqrt(by_rn**2 + by_humidity**2 + by_wind**2)
+    by_rn = MM_PER_MJ * slope / denominator * floats(rn_error)
+    by_humidity = pull * wind / denominator * floats(vapour_pressure_error)
+    by_wind = (pull * deficit - eto * gamma * figures.cd) / denominator * floats(wind_error)
+    return np.asarray(np.sqrt(by_rn**2 + by_humidity**2 + by_wind**2))
 
 
 def _refuse_unknown(surface: str, constants: Standard) -> None:

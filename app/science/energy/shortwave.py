@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike
 
-from app.science import Floats
+from app.science import Floats, floats
 from app.science.constants import GRASS_ALBEDO, K_RS_COASTAL, K_RS_INTERIOR
 from app.science.energy.humidity import atmospheric_pressure
 
@@ -20,10 +20,10 @@ def clear_sky(
     Returns Rso in the unit of Ra. NaN gives NaN.
     Source: FAO-56 eq 36 (calibrated) and eq 37; ASCE-EWRI eq 19.
     """
-    ra = np.asarray(extraterrestrial, dtype=np.float64)
+    ra = floats(extraterrestrial)
     if angstrom is not None and angstrom != DEFAULT_ANGSTROM:
         return ra * (angstrom[0] + angstrom[1])
-    return ra * (0.75 + 2e-5 * np.asarray(elevation, dtype=np.float64))
+    return ra * (0.75 + 2e-5 * floats(elevation))
 
 
 def clear_sky_envelope(
@@ -41,14 +41,14 @@ def clear_sky_envelope(
     Source: ASCE-EWRI Appendix D (from memory); FAO-56 Annex 3 eq 3-17 to 3-20 in form.
     """
     pressure = atmospheric_pressure(elevation)
-    sine = np.asarray(sine_of_elevation, dtype=np.float64)
+    sine = floats(sine_of_elevation)
     sine = np.where(sine > 0.0, sine, np.nan)
-    water_mm = 0.14 * np.asarray(vapour_pressure, dtype=np.float64) * pressure + 2.1
+    water_mm = 0.14 * floats(vapour_pressure) * pressure + 2.1
     beam = 0.98 * np.exp(
         -0.00146 * pressure / (turbidity * sine) - 0.075 * (water_mm / sine) ** 0.4
     )
     diffuse = np.where(beam >= 0.15, 0.35 - 0.36 * beam, 0.18 + 0.82 * beam)
-    return np.asarray((beam + diffuse) * np.asarray(extraterrestrial, dtype=np.float64))
+    return np.asarray((beam + diffuse) * floats(extraterrestrial))
 
 
 def shortwave_from_sunshine(
@@ -63,12 +63,10 @@ def shortwave_from_sunshine(
     `day_length_h` N [h]; `angstrom` (a, b). Returns Rs [MJ m-2 d-1]; n/N counts as at most 1, and
     as 0 where N is 0. NaN gives NaN. Source: FAO-56 eq 35.
     """
-    n, length = np.broadcast_arrays(
-        np.asarray(sunshine_h, dtype=np.float64), np.asarray(day_length_h, dtype=np.float64)
-    )
+    n, length = np.broadcast_arrays(floats(sunshine_h), floats(day_length_h))
     fraction = np.divide(n, length, out=np.where(np.isnan(n), np.nan, 0.0), where=length > 0.0)
     share = angstrom[0] + angstrom[1] * np.minimum(fraction, 1.0)
-    return np.asarray(share * np.asarray(extraterrestrial, dtype=np.float64))
+    return np.asarray(share * floats(extraterrestrial))
 
 
 def shortwave_from_temperature_range(
@@ -84,11 +82,11 @@ def shortwave_from_temperature_range(
     [MJ m-2 d-1]; `tmax`, `tmin` [degC]; `coastal` takes kRs 0.19 instead of 0.16. Returns Rs
     [MJ m-2 d-1]; NaN where an input is NaN or Tmax is below Tmin. Source: FAO-56 eq 50.
     """
-    span = np.asarray(tmax, dtype=np.float64) - np.asarray(tmin, dtype=np.float64)
+    span = floats(tmax) - floats(tmin)
     root = np.sqrt(np.where(span >= 0.0, span, np.nan))
     k_rs = K_RS_COASTAL if coastal else K_RS_INTERIOR
-    rs = k_rs * root * np.asarray(extraterrestrial, dtype=np.float64)
-    return np.minimum(rs, np.asarray(clear_sky_shortwave, dtype=np.float64))
+    rs = k_rs * root * floats(extraterrestrial)
+    return np.minimum(rs, floats(clear_sky_shortwave))
 
 
 def net_shortwave(shortwave: ArrayLike, albedo: ArrayLike = GRASS_ALBEDO) -> Floats:
@@ -97,5 +95,5 @@ def net_shortwave(shortwave: ArrayLike, albedo: ArrayLike = GRASS_ALBEDO) -> Flo
     Arguments, shapes that broadcast: `shortwave` Rs [MJ m-2 per step]; `albedo` [-, 0..1].
     Returns Rns in the unit of Rs. NaN gives NaN. Source: FAO-56 eq 38; ASCE-EWRI eq 16.
     """
-    rs = np.asarray(shortwave, dtype=np.float64)
-    return rs * (1.0 - np.asarray(albedo, dtype=np.float64))
+    rs = floats(shortwave)
+    return rs * (1.0 - floats(albedo))

@@ -1,161 +1,125 @@
-"""A station's days: from checked daily weather to net radiation, reference ET and their ranges."""
-
-from dataclasses import dataclass, fields
+"""A station's days: from daily weather to net radiation, reference ET and their uncertainty."""
 
 import numpy as np
-from numpy.typing import NDArray
 
-from app.science import Days, Floats
+from app.science import Floats
+from app.science.constants import WIND_FLOOR
+from app.science.energy.day_checks import check_days, tokens
+from app.science.energy.humidity import (
+    HUMIDITY_SHARE,
+    best_vapour_pressure,
+    saturation_vapour_pressure,
+)
+from app.science.energy.ladder import (
+    best_rung,
+    candidates,
+    explain_rung,
+    rn_uncertainty,
+    rung_name,
+    why_not,
+)
+from app.science.energy.records import DailyWeather, Site, StationDays
+from app.science.energy.reference_et import eto_from_parts, eto_uncertainty
+from app.science.energy.shortwave import (
+    clear_sky,
+    shortwave_from_sunshine,
+    shortwave_from_temperature_range,
+)
+from app.science.energy.sun import day_length, day_of_year, extraterrestrial_daily
+from app.science.energy.wind import WIND_SHARE, best_wind
 
+__all__ = [
+    "DailyWeather",
+    "Site",
+    "StationDays",
+    "explain_rung",
+    "rung_name",
+    "station_days",
+]
 
-@dataclass(frozen=True)
-class Site:
-    """Where a station stands and what stands under it.
-
-    Arguments: `latitude_deg` [-90..90, north positive], `longitude_deg` [-180..180, east
-    positive], `elevation_m` [-450..6000], `utc_offset_h` fixed standard offset [-12..14],
-    `wind_height_m` [0.5..100], `reference_surface` (clipped, watered grass under the
-    radiometers), `arid`, `coastal`, Angstrom coefficients `angstrom_a`, `angstrom_b` [0..1, sum
-    at most 1].
-    Errors: ValueError naming the field, the value and the allowed range.
-    Source: FAO Irrigation and Drainage Paper 56 (1998), eq 35, 48, 50 for the coefficients.
-    """
-
-    latitude_deg: float
-    longitude_deg: float
-    elevation_m: float
-    utc_offset_h: float
-    wind_height_m: float = 2.0
-    reference_surface: bool = False
-    arid: bool = False
-    coastal: bool = False
-    angstrom_a: float = 0.25
-    angstrom_b: float = 0.50
-
-    def __post_init__(self) -> None:
-        for name, low, high in (
-            ("latitude_deg", -90.0, 90.0),
-            ("longitude_deg", -180.0, 180.0),
-            ("elevation_m", -450.0, 6000.0),
-            ("utc_offset_h", -12.0, 14.0),
-            ("wind_height_m", 0.5, 100.0),
-            ("angstrom_a", 0.0, 1.0),
-            ("angstrom_b", 0.0, 1.0),
-        ):
-            value = getattr(self, name)
-            if not low <= value <= high:
-                raise ValueError(f"{name} is {value}; it must lie between {low:g} and {high:g}")
-        total = self.angstrom_a + self.angstrom_b
-        if not 0.0 < total <= 1.0:
-            raise ValueError(
-                f"angstrom_a + angstrom_b is {total:g}; their sum must lie above 0 and at most 1"
-            )
-
-
-@dataclass(frozen=True)
-class DailyWeather:
-    """What a station measured, one value a day; every array has shape (days,), NaN is missing.
-
-    Arguments: `date` [datetime64[D]]; `tmax`, `tmin`, `tmean`, `dew_point` [degC]; `rh_max`,
-    `rh_min`, `rh_mean` [%]; `vapour_pressure`, `pressure` [kPa]; `wind` [m s-1 at the site's
-    wind height]; `shortwave_down`, `shortwave_up`, `longwave_down`, `longwave_up`,
-    `net_radiation` [MJ m-2 d-1]; `sunshine` [h]; `rain` [mm].
-    Errors: ValueError naming the field whose shape differs from that of `date`.
-    """
-
-    date: Days
-    tmax: Floats
-    tmin: Floats
-    tmean: Floats
-    rh_max: Floats
-    rh_min: Floats
-    rh_mean: Floats
-    vapour_pressure: Floats
-    dew_point: Floats
-    wind: Floats
-    shortwave_down: Floats
-    shortwave_up: Floats
-    longwave_down: Floats
-    longwave_up: Floats
-    net_radiation: Floats
-    sunshine: Floats
-    pressure: Floats
-    rain: Floats
-
-    def __post_init__(self) -> None:
-        for field in fields(self):
-            dtype = "datetime64[D]" if field.name == "date" else np.float64
-            values = np.asarray(getattr(self, field.name), dtype=dtype)
-            if values.shape != np.shape(self.date) or values.ndim != 1:
-                raise ValueError(
-                    f"{field.name} has shape {values.shape}; it must be one value a day, "
-                    f"shape {np.shape(self.date)}"
-                )
-            object.__setattr__(self, field.name, values)
-
-    @classmethod
-    def missing(cls, date: Days) -> "DailyWeather":
-        """Days (days,) on which nothing was measured; fill with `dataclasses.replace`."""
-        days = np.asarray(date, dtype="datetime64[D]")
-        empty = {f.name: np.full(days.shape, np.nan) for f in fields(cls) if f.name != "date"}
-        return cls(date=days, **empty)
-
-
-@dataclass(frozen=True)
-class StationDays:
-    """What a station's days amount to; every array has shape (days,), NaN where not to be had.
-
-    `rung` int8 (0 none) of the net radiation; `why_not` text codes for the higher rungs (see
-    `explain_rung`); `rn`, `rn_uncertainty`, `rn_measured` (best of rungs 1-3), `rn_modelled`
-    (rung 5), `rs`, `rso`, `ra` [MJ m-2 d-1]; `vapour_pressure` [kPa] and `humidity_rung` int8
-    (1..5); `wind_2m` [m s-1] and `wind_rung` int8 (1 measured, 3 assumed); `eto`, `etr`,
-    `eto_uncertainty`, `rain` [mm]; `rh_min_used` [%]; `tmax`, `tmin` [degC]; `flags` text:
-    space-separated `check=figure`.
-    """
-
-    date: Days
-    rung: NDArray[np.int8]
-    why_not: NDArray[np.object_]
-    rn: Floats
-    rn_uncertainty: Floats
-    rn_measured: Floats
-    rn_modelled: Floats
-    vapour_pressure: Floats
-    humidity_rung: NDArray[np.int8]
-    wind_2m: Floats
-    wind_rung: NDArray[np.int8]
-    rs: Floats
-    rso: Floats
-    ra: Floats
-    eto: Floats
-    etr: Floats
-    eto_uncertainty: Floats
-    rh_min_used: Floats
-    tmax: Floats
-    tmin: Floats
-    rain: Floats
-    flags: NDArray[np.object_]
+MEASURED_RUNGS = (1, 2, 3)
 
 
 def station_days(site: Site, weather: DailyWeather) -> StationDays:
-    """Net radiation by the best rung, reference ET and their uncertainty for each day."""
-    raise NotImplementedError("the ladder is being built")
+    """Net radiation by the best rung, reference ET and their uncertainty for each day.
+
+    Arguments: `site`; `weather` (days,), NaN where not measured. Returns StationDays (days,), NaN
+    and rung 0 where not even temperatures were measured. Values that fail a hard check are not
+    used; the checks that bit stand in `flags`.
+    Source: the methods page, sections on checks, ladder and reference ET; ASCE-EWRI eq 1.
+    """
+    j = day_of_year(weather.date)
+    ra = extraterrestrial_daily(site.latitude_deg, j)
+    angstrom = (site.angstrom_a, site.angstrom_b)
+    rso = clear_sky(ra, site.elevation_m, angstrom)
+    checked = check_days(site, weather, ra, rso)
+    good = checked.weather
+
+    ea, humidity_rung = best_vapour_pressure(
+        tmax=good.tmax,
+        tmin=good.tmin,
+        vapour_pressure=good.vapour_pressure,
+        dew_point=good.dew_point,
+        rh_max=good.rh_max,
+        rh_min=good.rh_min,
+        rh_mean=good.rh_mean,
+        arid=site.arid,
+    )
+    u2, wind_rung = best_wind(good.wind, site.wind_height_m)
+    rs_sunshine = shortwave_from_sunshine(
+        ra, good.sunshine, day_length(site.latitude_deg, j), angstrom
+    )
+    rs_temperature = shortwave_from_temperature_range(ra, good.tmax, good.tmin, rso, site.coastal)
+    by_rung = candidates(site, good, ea, rs_sunshine, rs_temperature, rso)
+    rn, rung = best_rung(by_rung)
+    rn_error = rn_uncertainty(rung, rn)
+    eto, etr = eto_from_parts(good.tmax, good.tmin, ea, rn, u2, site.elevation_m)
+    flags = np.empty(weather.date.shape, dtype=np.object_)
+    flags[:] = tokens(checked.findings, weather.date.size)
+    return StationDays(
+        date=weather.date,
+        rung=rung,
+        why_not=why_not(site, checked, rung),
+        rn=rn,
+        rn_uncertainty=rn_error,
+        rn_measured=best_rung(by_rung, MEASURED_RUNGS)[0],
+        rn_modelled=by_rung[5],
+        vapour_pressure=ea,
+        humidity_rung=humidity_rung,
+        wind_2m=u2,
+        wind_rung=wind_rung,
+        rs=_first_known(good.shortwave_down, rs_sunshine, rs_temperature),
+        rso=rso,
+        ra=ra,
+        eto=eto,
+        etr=etr,
+        eto_uncertainty=eto_uncertainty(
+            good.tmax,
+            good.tmin,
+            ea,
+            rn,
+            u2,
+            site.elevation_m,
+            rn_error=rn_error,
+            vapour_pressure_error=HUMIDITY_SHARE[humidity_rung] * ea,
+            wind_error=WIND_SHARE[wind_rung] * np.maximum(u2, WIND_FLOOR),
+        ),
+        rh_min_used=_lowest_humidity(good, ea),
+        tmax=good.tmax,
+        tmin=good.tmin,
+        rain=good.rain,
+        flags=flags,
+    )
 
 
-def rung_name(rung: int) -> str:
-    """The plain name of a rung of the net-radiation ladder, 0 (none) to 9."""
-    return RUNG_NAMES[rung]
+def _first_known(*sources: Floats) -> Floats:
+    best = sources[0]
+    for source in sources[1:]:
+        best = np.where(np.isnan(best), source, best)
+    return best
 
 
-RUNG_NAMES = (
-    "none",
-    "four components",
-    "measured sky",
-    "single net sensor",
-    "taught model",
-    "model from solar",
-    "solar from neighbours",
-    "sunshine hours",
-    "temperature range",
-    "usual for the date",
-)
+def _lowest_humidity(weather: DailyWeather, vapour_pressure: Floats) -> Floats:
+    """The day's lowest relative humidity [%]: measured, else by FAO-56 eq 63 from ea and Tmax."""
+    estimated = 100.0 * vapour_pressure / saturation_vapour_pressure(weather.tmax)
+    return np.minimum(_first_known(weather.rh_min, estimated), 100.0)

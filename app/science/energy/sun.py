@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from app.science import Days, Floats
+from app.science import Days, Floats, floats
 from app.science.constants import SOLAR_CONSTANT_HOUR
 
 
@@ -14,7 +14,7 @@ def day_of_year(date: Days) -> NDArray[np.int64]:
     """
     days = np.asarray(date).astype("datetime64[D]")
     first = days.astype("datetime64[Y]").astype("datetime64[D]")
-    return (days - first).astype(np.int64) + 1
+    return np.asarray((days - first).astype(np.int64) + 1)
 
 
 def inverse_distance(day: ArrayLike) -> Floats:
@@ -22,7 +22,7 @@ def inverse_distance(day: ArrayLike) -> Floats:
 
     Arguments: `day` J, any shape [1..366]. Returns d_r [-]. Source: FAO-56 eq 23.
     """
-    j = np.asarray(day, dtype=np.float64)
+    j = floats(day)
     return np.asarray(1.0 + 0.033 * np.cos(2.0 * np.pi / 365.0 * j))
 
 
@@ -31,7 +31,7 @@ def declination(day: ArrayLike) -> Floats:
 
     Arguments: `day` J, any shape [1..366]. Returns delta [rad]. Source: FAO-56 eq 24.
     """
-    j = np.asarray(day, dtype=np.float64)
+    j = floats(day)
     return np.asarray(0.409 * np.sin(2.0 * np.pi / 365.0 * j - 1.39))
 
 
@@ -41,7 +41,7 @@ def sunset_hour_angle(latitude_deg: ArrayLike, day: ArrayLike) -> Floats:
     Arguments, shapes that broadcast: `latitude_deg` [-90..90]; `day` J [1..366]. Returns omega_s
     [rad]. NaN gives NaN. Source: FAO-56 eq 25.
     """
-    latitude = np.radians(np.asarray(latitude_deg, dtype=np.float64))
+    latitude = np.radians(floats(latitude_deg))
     cosine = -np.tan(latitude) * np.tan(declination(day))
     return np.asarray(np.arccos(np.clip(cosine, -1.0, 1.0)))
 
@@ -61,14 +61,14 @@ def extraterrestrial_daily(latitude_deg: ArrayLike, day: ArrayLike) -> Floats:
     Arguments, shapes that broadcast: `latitude_deg` [-90..90]; `day` J [1..366]. Returns Ra
     [MJ m-2 d-1, not below 0]. NaN gives NaN. Source: FAO-56 eq 21; ASCE-EWRI eq 21.
     """
-    latitude = np.radians(np.asarray(latitude_deg, dtype=np.float64))
+    latitude = np.radians(floats(latitude_deg))
     delta = declination(day)
     sunset = sunset_hour_angle(latitude_deg, day)
-    angles = sunset * np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(
-        delta
-    ) * np.sin(sunset)
+    angles = sunset * np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(delta) * np.sin(
+        sunset
+    )
     ra = 24.0 / np.pi * SOLAR_CONSTANT_HOUR * inverse_distance(day) * angles
-    return np.maximum(ra, 0.0)
+    return np.asarray(np.maximum(ra, 0.0))
 
 
 def seasonal_correction(day: ArrayLike) -> Floats:
@@ -76,7 +76,7 @@ def seasonal_correction(day: ArrayLike) -> Floats:
 
     Arguments: `day` J, any shape [1..366]. Returns Sc [h]. Source: FAO-56 eq 32, 33.
     """
-    b = 2.0 * np.pi * (np.asarray(day, dtype=np.float64) - 81.0) / 364.0
+    b = 2.0 * np.pi * (floats(day) - 81.0) / 364.0
     return np.asarray(0.1645 * np.sin(2.0 * b) - 0.1255 * np.cos(b) - 0.025 * np.sin(b))
 
 
@@ -89,8 +89,8 @@ def hour_angle(
     [east positive]; `utc_offset_h`. Returns omega [rad, -pi..pi]. NaN gives NaN.
     Source: FAO-56 eq 31 (the zone's centre is 15 degrees an hour of offset).
     """
-    hours = np.asarray(clock_h, dtype=np.float64) - np.asarray(utc_offset_h, dtype=np.float64)
-    solar = hours + np.asarray(longitude_deg, dtype=np.float64) / 15.0 + seasonal_correction(day)
+    hours = floats(clock_h) - floats(utc_offset_h)
+    solar = hours + floats(longitude_deg) / 15.0 + seasonal_correction(day)
     angle = np.pi / 12.0 * (solar - 12.0)
     return np.asarray((angle + np.pi) % (2.0 * np.pi) - np.pi)
 
@@ -101,7 +101,7 @@ def sine_of_elevation(latitude_deg: ArrayLike, day: ArrayLike, omega: ArrayLike)
     Arguments, shapes that broadcast: `latitude_deg` [-90..90]; `day` J; `omega` [rad]. Returns
     sin(beta) [-]. NaN gives NaN. Source: FAO-56 Annex 3 eq 3-15; ASCE-EWRI eq 62.
     """
-    latitude = np.radians(np.asarray(latitude_deg, dtype=np.float64))
+    latitude = np.radians(floats(latitude_deg))
     delta = declination(day)
     return np.asarray(
         np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(delta) * np.cos(omega)
@@ -114,8 +114,8 @@ def daily_sine_of_elevation(latitude_deg: ArrayLike, day: ArrayLike) -> Floats:
     Arguments, shapes that broadcast: `latitude_deg` [-90..90]; `day` J. Returns sin(beta_24) [-],
     not below 0. NaN gives NaN. Source: FAO-56 Annex 3 eq 3-16.
     """
-    latitude = np.radians(np.asarray(latitude_deg, dtype=np.float64))
-    season = np.sin(2.0 * np.pi / 365.0 * np.asarray(day, dtype=np.float64) - 1.39)
+    latitude = np.radians(floats(latitude_deg))
+    season = np.sin(2.0 * np.pi / 365.0 * floats(day) - 1.39)
     angle = 0.85 + 0.3 * latitude * season - 0.42 * latitude * latitude
     return np.asarray(np.sin(np.maximum(angle, 0.0)))
 
@@ -130,18 +130,18 @@ def extraterrestrial_period(
     Only the part between sunrise and sunset counts. NaN gives NaN.
     Source: FAO-56 eq 28-30; ASCE-EWRI eq 48-57.
     """
-    latitude = np.radians(np.asarray(latitude_deg, dtype=np.float64))
+    latitude = np.radians(floats(latitude_deg))
     delta = declination(day)
     sunset = sunset_hour_angle(latitude_deg, day)
-    half = np.pi / 24.0 * np.asarray(length_h, dtype=np.float64)
-    middle = np.asarray(omega_mid, dtype=np.float64)
+    half = np.pi / 24.0 * floats(length_h)
+    middle = floats(omega_mid)
     begin = np.clip(middle - half, -sunset, sunset)
     end = np.clip(middle + half, -sunset, sunset)
-    angles = (end - begin) * np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(
-        delta
-    ) * (np.sin(end) - np.sin(begin))
+    angles = (end - begin) * np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(delta) * (
+        np.sin(end) - np.sin(begin)
+    )
     ra = 12.0 / np.pi * SOLAR_CONSTANT_HOUR * inverse_distance(day) * angles
-    return np.maximum(ra, 0.0)
+    return np.asarray(np.maximum(ra, 0.0))
 
 
 def elevation_at_instants(

@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from app.science import Floats
+from app.science import Floats, floats
 from app.science.constants import WIND_ASSUMED
 
 WIND_RUNGS = ("none", "measured", "neighbours", "assumed 2 m/s")
@@ -17,7 +17,7 @@ def wind_height_factor(height: ArrayLike) -> Floats:
     Arguments: `height` z, any shape [m, above 0.1]. Returns the factor [-], exactly 1 at 2 m;
     NaN where z is NaN or not above 0.1. Source: FAO-56 eq 47; ASCE-EWRI eq 33.
     """
-    z = np.asarray(height, dtype=np.float64)
+    z = floats(height)
     factor = 4.87 / np.log(67.8 * np.where(z > 0.1, z, np.nan) - 5.42)
     return np.where(z == 2.0, 1.0, factor)
 
@@ -28,7 +28,7 @@ def wind_at_2m(wind: ArrayLike, height: ArrayLike) -> Floats:
     Arguments, shapes that broadcast: `wind` uz [m s-1]; `height` z [m, above 0.1]. Returns u2
     [m s-1]. NaN gives NaN. Source: FAO-56 eq 47; ASCE-EWRI eq 33.
     """
-    return np.asarray(wind, dtype=np.float64) * wind_height_factor(height)
+    return floats(wind) * wind_height_factor(height)
 
 
 def best_wind(wind: ArrayLike, height: float) -> tuple[Floats, NDArray[np.int8]]:
