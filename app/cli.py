@@ -1,0 +1,324 @@
+"""The commands: each parses, calls one workflow, and prints; bad input is one line and exit 1."""
+
+import json
+import os
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import asdict
+from datetime import date
+from pathlib import Path
+from typing import Annotated, Any
+
+import typer
+from rich.console import Console
+from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
+
+from app.settings import Settings, SettingsError, read_settings
+
+app = typer.Typer(
+    name="rillbook",
+    help="Irrigation scheduling for farm advisors.",
+    no_args_is_help=True,
+    add_completion=False,
+    pretty_exceptions_enable=False,
+)
+export = typer.Typer(help="Write CSV to the terminal or a file.", no_args_is_help=True)
+app.add_typer(export, name="export")
+
+WHO = "command line"
+notes = Console(stderr=True, highlight=False)
+
+AsJson = Annotated[bool, typer.Option("--json", help="Print the outcome as JSON.")]
+On = Annotated[str | None, typer.Option(help="The day it is, such as 2026-07-14.")]
+Out = Annotated[Path | None, typer.Option(help="File to write; the terminal when not given.")]
+
+
+def main() -> None:
+    """Run a command; whatever the input, the last word is one line, not a traceback."""
+    from app.book import BookError
+    from app.intake import IntakeError
+    from app.storage.database import DatabaseError
+    from app.workflows.export import ExportError
+    from app.workflows.take_in import TakeInError
+
+    known = (BookError, IntakeError, DatabaseError, ExportError, TakeInError, SettingsError)
+    try:
+        app()
+    except known as error:
+        notes.print(f"rillbook: {error}", style="red", soft_wrap=True, markup=False)
+        sys.exit(1)
+    except OSError as error:
+        notes.print(f"rillbook: {error}", style="red", soft_wrap=True, markup=False)
+        sys.exit(1)
+    except KeyboardInterrupt:
+        sys.exit(130)
+
+
+@contextmanager
+def _database(on: str | None = None) -> Iterator[tuple[Any, Settings, date]]:
+    """The migrated database, the settings and the day it is."""
+    from dataclasses import replace
+
+    from app.storage.database import Database
+    from app.workflows.day_it_is import day_it_is
+
+    settings = read_settings()
+    if on is not None:
+        settings = replace(settings, today=_date(on))
+    db = Database(settings.database)
+    try:
+        db.migrate()
+        yield db, settings, day_it_is(db, settings)
+    finally:
+        db.close()
+
+
+def _date(text: str) -> date:
+    try:
+        return date.fromisoformat(text)
+    except ValueError:
+        raise typer.BadParameter(f"{text!r} is no date; write it as 2026-07-14") from None
+
+
+def _say(outcome: dict[str, Any], as_json: bool, text: str) -> None:
+    print(json.dumps(outcome, default=str) if as_json else text)
+
+
+@contextmanager
+def _progress(what: str) -> Iterator[Callable[[int, int], None]]:
+    """A bar on the terminal for what may take over a second; silent where nobody looks."""
+    bar = Progress(
+        TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn(),
+        console=notes, transient=True, disable=not notes.is_terminal,
+    )  # fmt: skip
+    with bar:
+        task = bar.add_task(what, total=None)
+        yield lambda done, total: bar.update(task, completed=done, total=total)
+
+
+@app.command()
+def demo(
+    port: Annotated[int, typer.Option(help="Port on 127.0.0.1.")] = 8000,
+    serve_it: Annotated[bool, typer.Option("--serve/--no-serve", hidden=True)] = True,
+) -> None:
+    """Fill a throw-away database with the demo basin and serve it."""
+    from app.demo import run_demo
+
+    run_demo(port, serve_it)
+
+
+@app.command()
+def serve(
+    port: Annotated[int, typer.Option(help="Port on 127.0.0.1.")] = 8000,
+) -> None:
+    """Serve the pages on 127.0.0.1 only: there are no accounts yet."""
+    import uvicorn
+
+    from app.main import create_app
+
+    with _database() as (db, settings, _):
+        print(f"Rillbook answers on http://127.0.0.1:{port} (this machine only; no accounts yet).")
+        uvicorn.run(create_app(settings, db), host="127.0.0.1", port=port, log_level="warning")
+
+
+@app.command()
+def load(
+    book_file: Annotated[Path, typer.Argument(metavar="BOOK.json")], as_json: AsJson = False
+) -> None:
+    """Load stations, soils, systems, farms, fields, seasons and events from a book file."""
+    from app.book import read_book
+    from app.workflows.load_book import load_book
+
+    book = read_book(book_file)
+    with _database() as (db, _, _), db.write() as session:
+        loaded = load_book(session, book, WHO)
+    outcome = asdict(loaded)
+    added = ", ".join(f"{count} {kind}" for kind, count in loaded.added.items()) or "nothing"
+    changed = ", ".join(f"{count} {kind}" for kind, count in loaded.changed.items()) or "nothing"
+    _say(outcome, as_json, f"Added {added}; changed {changed}; {loaded.same} the same.")
+
+
+@app.command()
+def schema() -> None:
+    """Print the JSON Schema of a book file."""
+    from app.book import Book
+
+    print(json.dumps(Book.model_json_schema(), indent=2))
+
+
+@app.command()
+def intake(
+    station: str,
+    file: Annotated[Path, typer.Argument()],
+    mapping: Annotated[Path | None, typer.Option(help="A mapping as --preview prints it.")] = None,
+    preview: Annotated[bool, typer.Option("--preview", help="Only say what would change.")] = False,
+    on: On = None,
+    as_json: AsJson = False,
+) -> None:
+    """Take a station's file in: checked, then applied whole or not at all."""
+    from app.workflows import take_in
+
+    chosen = _mapping(mapping)
+    with _database(on) as (db, _, today):
+        with file.open("rb") as source, _progress(f"Reading {file.name}") as step:
+            number = take_in.receive(db, station, file.name, source, WHO, chosen, step)
+        seen = take_in.preview_of(db, number)
+        if preview:
+            take_in.discard(db, number, WHO)
+            _say(_preview_json(seen), as_json, _preview_text(seen))
+            return
+        if seen.message or any(question["blocking"] for question in seen.questions):
+            take_in.discard(db, number, WHO)
+            raise take_in.TakeInError(_why_not(seen))
+        with _progress(f"Taking {file.name} in") as step:
+            applied = take_in.apply(db, number, WHO, today, step)
+    text = (
+        f"{file.name}: {applied.rows} rows, all here already; nothing changed."
+        if applied.already_here
+        else f"{file.name}: intake {number}, {applied.rows} rows, {seen.rows_refused} refused, "
+        f"{applied.days_changed} days changed from {applied.first_day}, "
+        f"{applied.blocks} ledgers recomputed."
+    )
+    _say({"intake": number, **asdict(applied)}, as_json, text)
+
+
+def _mapping(path: Path | None) -> Any:
+    from pydantic import ValidationError
+
+    from app.intake import IntakeError, Mapping
+
+    if path is None:
+        return None
+    try:
+        return Mapping.model_validate_json(path.read_bytes())
+    except ValidationError as error:
+        first = error.errors()[0]
+        place = ".".join(str(step) for step in first["loc"]) or "top"
+        raise IntakeError(
+            f"{path}, {place}: {first['msg']}; take the mapping that "
+            "`rillbook intake STATION FILE --preview --json` prints and change that"
+        ) from None
+
+
+def _preview_json(seen: Any) -> dict[str, Any]:
+    outcome = asdict(seen)
+    outcome["mapping"] = None if seen.mapping is None else seen.mapping.model_dump(mode="json")
+    return outcome
+
+
+def _preview_text(seen: Any) -> str:
+    if seen.message:
+        return f"{seen.file_name}: {seen.message}"
+    lines = [f"{seen.file_name} for {seen.station_name}"]
+    for column, place in zip(seen.mapping.columns, seen.columns, strict=False):
+        meaning = f"{column.quantity} [{column.unit}]" if column.quantity else "left out"
+        lines.append(f"  {place['name']}: {meaning}. {place['why']}")
+    lines += [_asked(question) for question in seen.questions]
+    lines.append(
+        f"{seen.rows_accepted} rows would be taken ({seen.rows_same} here already, "
+        f"{seen.rows_differing} differ), {seen.rows_refused} refused; "
+        f"{len(seen.days_changed)} days would change, {seen.fields_touched} fields with them."
+    )
+    for problem in seen.problems[:20]:
+        lines.append(
+            f"  line {problem.line}, {problem.column}, {problem.value!r}: "
+            f"{problem.why} {problem.remedy}"
+        )
+    return "\n".join(lines)
+
+
+def _asked(question: dict[str, Any]) -> str:
+    choices = ", ".join(f"{choice['value']} ({choice['label']})" for choice in question["choices"])
+    return f"  to be answered, {question['field']}: {question['asks']} {choices}. {question['why']}"
+
+
+def _why_not(seen: Any) -> str:
+    if seen.message:
+        return f"{seen.file_name}: {seen.message}"
+    asked = "\n".join(_asked(question) for question in seen.questions if question["blocking"])
+    return (
+        f"{seen.file_name} needs an answer first:\n{asked}\nPrint the mapping with "
+        "--preview --json, set the answer in it, and give it with --mapping."
+    )
+
+
+@app.command()
+def recompute(on: On = None, as_json: AsJson = False) -> None:
+    """Bring station days, ledgers and this morning's advice up to date."""
+    _up_to_date(on, as_json)
+
+
+@app.command()
+def advise(on: On = None, as_json: AsJson = False) -> None:
+    """Issue the morning's advice for every field, and say how many stand where."""
+    _up_to_date(on, as_json)
+
+
+def _up_to_date(on: str | None, as_json: bool) -> None:
+    from app.storage.exports import standings
+    from app.workflows.bring_up_to_date import bring_up_to_date
+
+    with _database(on) as (db, _, today):
+        with notes.status("Recomputing what changed"):
+            done = bring_up_to_date(db, today)
+        with db.read() as session:
+            counted = standings(session, today)
+    words = ", ".join(f"{count} {standing}" for standing, count in counted.items()) or "no crops"
+    text = (
+        f"{today}: {done.station_days} station days and {done.ledger_days} ledger days "
+        f"recomputed, {done.advices} advices issued; standing: {words}."
+    )
+    _say({"on": today, **asdict(done), "standing": counted}, as_json, text)
+
+
+@export.command("ledger")
+def export_ledger(
+    field: Annotated[str, typer.Option(help="Key of the field.")],
+    block: Annotated[str | None, typer.Option(help="Key of one block.")] = None,
+    out: Out = None,
+) -> None:
+    """A field's ledger, every column."""
+    from app.workflows.export import ledger_csv
+
+    with _database() as (db, _, _):
+        _write(ledger_csv(db, field, block), out)
+
+
+@export.command("station-days")
+def export_station_days(
+    station: Annotated[str, typer.Option(help="Key of the station.")], out: Out = None
+) -> None:
+    """A station's days with rungs and reference ET."""
+    from app.workflows.export import station_days_csv
+
+    with _database() as (db, _, _):
+        _write(station_days_csv(db, station), out)
+
+
+@export.command("advice")
+def export_advice(on: On = None, out: Out = None) -> None:
+    """The advice of a morning."""
+    from app.workflows.export import advice_csv
+
+    with _database(on) as (db, _, today):
+        _write(advice_csv(db, today), out)
+
+
+def _write(parts: Iterator[str], out: Path | None) -> None:
+    """To the terminal as it comes; to a file whole or not at all."""
+    if out is None:
+        for part in parts:
+            sys.stdout.write(part)
+        return
+    half = out.with_name(f".{out.name}.part")
+    try:
+        with half.open("w", encoding="utf-8", newline="") as file:
+            file.writelines(parts)
+        os.replace(half, out)
+    finally:
+        half.unlink(missing_ok=True)
+
+
+if __name__ == "__main__":
+    main()
