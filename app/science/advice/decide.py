@@ -3,12 +3,9 @@
 from dataclasses import dataclass, field
 
 import numpy as np
-from numpy.typing import NDArray
 
+from app.science import Bools, Days, Floats
 from app.science.advice.system import ApplicationSystem
-
-Floats = NDArray[np.float64]
-Days = NDArray[np.datetime64]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -26,7 +23,7 @@ class Outlook:
     limit: Floats
     taw: Floats
     etc: Floats
-    allowed: NDArray[np.bool_]
+    allowed: Bools
     p10: Floats | None = None
     p90: Floats | None = None
 

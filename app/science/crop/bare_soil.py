@@ -1,9 +1,9 @@
 """Kc of the initial stage from how often, how much and how much of the soil is wetted."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-Floats = NDArray[np.float64]
+from app.science import Floats
 
 # FAO-56 Annex 7: potential soil evaporation over ETo, and the ceiling of Kc ini.
 BARE_SOIL_FACTOR = 1.15

@@ -1,9 +1,9 @@
 """Adjustment of crop coefficients to wind and humidity."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-Floats = NDArray[np.float64]
+from app.science import Floats
 
 # FAO-56 eq 65 and 70: smaller table values are not adjusted.
 LEAST_ADJUSTED = 0.45
@@ -27,7 +27,7 @@ def adjust(
     rh_min: ArrayLike,
     height: ArrayLike,
     *,
-    least: float = LEAST_ADJUSTED,
+    least: ArrayLike = LEAST_ADJUSTED,
 ) -> Floats:
     """Tabulated coefficient adjusted to the climate where it is at least `least`.
 
@@ -36,7 +36,7 @@ def adjust(
     """
     table = np.asarray(coefficient, dtype=np.float64)
     adjusted = table + climate_term(wind_2m, rh_min, height)
-    return np.asarray(np.where(table >= least, adjusted, table))
+    return np.asarray(np.where(table >= np.asarray(least), adjusted, table))
 
 
 def alfalfa_to_grass(wind_2m: ArrayLike, rh_min: ArrayLike) -> Floats:

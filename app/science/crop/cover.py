@@ -1,20 +1,15 @@
 """Coefficients of stands that differ from the table's: cover, height, mulch, mixtures."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
+from app.science import Floats, floats
 from app.science.crop.climate import climate_term
-
-Floats = NDArray[np.float64]
 
 # FAO-56 eq 97: extinction of radiation in the canopy.
 EXTINCTION = 0.7
 # FAO-56 eq 105: ceiling of a windbreak's coefficient.
 WINDBREAK_MOST = 2.5
-
-
-def _f(value: ArrayLike) -> Floats:
-    return np.asarray(value, dtype=np.float64)
 
 
 def sin_noon_elevation(latitude_deg: ArrayLike, day_of_year: ArrayLike) -> Floats:
@@ -23,8 +18,8 @@ def sin_noon_elevation(latitude_deg: ArrayLike, day_of_year: ArrayLike) -> Float
     latitude_deg -90..90; day_of_year 1-366; shapes broadcast; NaN in, NaN out. Source: FAO-56
     eq 24 and the note to eq 98 (sin eta = sin phi sin delta + cos phi cos delta).
     """
-    latitude = np.deg2rad(_f(latitude_deg))
-    declination = 0.409 * np.sin(2.0 * np.pi * _f(day_of_year) / 365.0 - 1.39)
+    latitude = np.deg2rad(floats(latitude_deg))
+    declination = 0.409 * np.sin(2.0 * np.pi * floats(day_of_year) / 365.0 - 1.39)
     return np.asarray(
         np.sin(latitude) * np.sin(declination) + np.cos(latitude) * np.cos(declination)
     )
@@ -39,8 +34,8 @@ def effective_cover_rows(
     elevation_rad [rad] of the noon sun; shapes broadcast; NaN in, NaN out. Source: FAO-56,
     note to eq 98.
     """
-    shade = 1.0 + _f(height_width_ratio) / np.tan(_f(elevation_rad))
-    return np.asarray(np.minimum(_f(cover) * shade, 1.0))
+    shade = 1.0 + floats(height_width_ratio) / np.tan(floats(elevation_rad))
+    return np.asarray(np.minimum(floats(cover) * shade, 1.0))
 
 
 def effective_cover_round(cover: ArrayLike, sin_elevation: ArrayLike) -> Floats:
@@ -48,7 +43,7 @@ def effective_cover_round(cover: ArrayLike, sin_elevation: ArrayLike) -> Floats:
 
     Shapes broadcast; NaN in, NaN out. Source: FAO-56, note to eq 98.
     """
-    return np.asarray(np.minimum(_f(cover) / _f(sin_elevation), 1.0))
+    return np.asarray(np.minimum(floats(cover) / floats(sin_elevation), 1.0))
 
 
 def kcb_full(wind_2m: ArrayLike, rh_min: ArrayLike, height: ArrayLike) -> Floats:
@@ -57,7 +52,7 @@ def kcb_full(wind_2m: ArrayLike, rh_min: ArrayLike, height: ArrayLike) -> Floats
     wind_2m [m s-1], rh_min [%], height [m]; shapes broadcast; NaN in, NaN out. Source: FAO-56
     eq 100 and 101.
     """
-    return np.minimum(1.0 + 0.1 * _f(height), 1.20) + climate_term(wind_2m, rh_min, height)
+    return np.minimum(1.0 + 0.1 * floats(height), 1.20) + climate_term(wind_2m, rh_min, height)
 
 
 def kcb_from_cover(
@@ -72,9 +67,9 @@ def kcb_from_cover(
     cover, effective_cover 0-1; height [m]; full: Kcb at full cover [-]; kc_min [-]; shapes
     broadcast; NaN in, NaN out. Source: FAO-56 eq 98.
     """
-    fc, effective = _f(cover), _f(effective_cover)
-    density = np.minimum(np.minimum(1.0, 2.0 * fc), effective ** (1.0 / (1.0 + _f(height))))
-    return np.asarray(_f(kc_min) + (_f(full) - _f(kc_min)) * density)
+    fc, effective = floats(cover), floats(effective_cover)
+    density = np.minimum(np.minimum(1.0, 2.0 * fc), effective ** (1.0 / (1.0 + floats(height))))
+    return np.asarray(floats(kc_min) + (floats(full) - floats(kc_min)) * density)
 
 
 def density_coefficient(
@@ -85,11 +80,11 @@ def density_coefficient(
     canopy_multiplier 1.5-2.0; shapes broadcast; NaN in, NaN out. Source: Irrigation Science
     28:17-34 (2009), from memory.
     """
-    effective = _f(effective_cover)
+    effective = floats(effective_cover)
     return np.asarray(
         np.minimum(
-            np.minimum(1.0, _f(canopy_multiplier) * effective),
-            effective ** (1.0 / (1.0 + _f(height))),
+            np.minimum(1.0, floats(canopy_multiplier) * effective),
+            effective ** (1.0 / (1.0 + floats(height))),
         )
     )
 
@@ -99,7 +94,9 @@ def kcb_from_lai(lai: ArrayLike, full: ArrayLike, kc_min: ArrayLike = 0.15) -> F
 
     lai >= 0; full: Kcb at full cover [-]; shapes broadcast; NaN in, NaN out.
     """
-    return np.asarray(_f(kc_min) + (_f(full) - _f(kc_min)) * (1.0 - np.exp(-EXTINCTION * _f(lai))))
+    return np.asarray(
+        floats(kc_min) + (floats(full) - floats(kc_min)) * (1.0 - np.exp(-EXTINCTION * floats(lai)))
+    )
 
 
 def lai_from_kcb(kcb: ArrayLike, full: ArrayLike, kc_min: ArrayLike = 0.15) -> Floats:
@@ -107,7 +104,7 @@ def lai_from_kcb(kcb: ArrayLike, full: ArrayLike, kc_min: ArrayLike = 0.15) -> F
 
     kc_min <= kcb < full; shapes broadcast; NaN in, NaN out.
     """
-    share = (_f(kcb) - _f(kc_min)) / (_f(full) - _f(kc_min))
+    share = (floats(kcb) - floats(kc_min)) / (floats(full) - floats(kc_min))
     return np.asarray(-np.log(1.0 - share) / EXTINCTION)
 
 
@@ -117,7 +114,7 @@ def sparse_stand_reduction(cover: ArrayLike, dense: ArrayLike) -> Floats:
     cover and dense: fraction of cover, or LAI, of this stand and of a dense one; shapes
     broadcast; NaN in, NaN out. Source: FAO-56 eq 94 to 96.
     """
-    return np.asarray(1.0 - np.sqrt(_f(cover) / _f(dense)))
+    return np.asarray(1.0 - np.sqrt(floats(cover) / floats(dense)))
 
 
 def stomatal_factor(
@@ -129,9 +126,9 @@ def stomatal_factor(
     psychrometric constant gamma [kPa degC-1]; wind_2m [m s-1]; shapes broadcast; NaN in, NaN out.
     Source: FAO-56 eq 102.
     """
-    d, g, u2 = _f(slope), _f(gamma), _f(wind_2m)
+    d, g, u2 = floats(slope), floats(gamma), floats(wind_2m)
     open_stomata = d + g * (1.0 + 0.34 * u2)
-    return np.asarray(open_stomata / (d + g * (1.0 + 0.34 * u2 * _f(leaf_resistance) / 100.0)))
+    return np.asarray(open_stomata / (d + g * (1.0 + 0.34 * u2 * floats(leaf_resistance) / 100.0)))
 
 
 def mulched(coefficient: ArrayLike, reduction: ArrayLike) -> Floats:
@@ -139,7 +136,7 @@ def mulched(coefficient: ArrayLike, reduction: ArrayLike) -> Floats:
 
     Shapes broadcast; NaN in, NaN out. Source: FAO-56 chapter 10, Example 45.
     """
-    return np.asarray(_f(coefficient) * (1.0 - _f(reduction)))
+    return np.asarray(floats(coefficient) * (1.0 - floats(reduction)))
 
 
 def intercropped(
@@ -156,5 +153,5 @@ def windbreak(canopy_height: ArrayLike, width: ArrayLike, stomatal: ArrayLike = 
     canopy_height and width [m]; stomatal Fr [-]; shapes broadcast; NaN in, NaN out. Source:
     FAO-56 eq 105.
     """
-    tall = _f(stomatal) * _f(canopy_height) / _f(width)
+    tall = floats(stomatal) * floats(canopy_height) / floats(width)
     return np.asarray(np.minimum(1.2 + tall, WINDBREAK_MOST))

@@ -1,17 +1,16 @@
 """The crop coefficient, root and height curves of a season, day by day."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from app.science import Bools, Days, Floats
 from app.science.crop.climate import LEAST_ADJUSTED, adjust
 from app.science.crop.season import CropSeason
 
-Floats = NDArray[np.float64]
-Days = NDArray[np.datetime64]
-
-# METHODS of the project: length of the trailing mean of wind and humidity (working value).
+# Length of the trailing mean of wind and humidity (working value).
 TRAILING_DAYS = 30
 
 
@@ -25,7 +24,7 @@ class Curve:
     kc_min: Floats
     height: Floats
     root_depth: Floats
-    in_season: NDArray[np.bool_]
+    in_season: Bools
     stage: NDArray[np.int8]
 
 
@@ -42,10 +41,10 @@ def stage_progress(day: ArrayLike, stage_days: tuple[int, int, int, int]) -> tup
     return grown, aged
 
 
-def _ramp(day: Floats, before: int, length: int) -> Floats:
-    if length == 0:
-        return np.asarray(day > before, dtype=np.float64)
-    return np.asarray(np.clip((day - before) / length, 0.0, 1.0))
+def _ramp(day: Floats, before: float | Floats, length: float | Floats) -> Floats:
+    """0 up to `before`, 1 from `before + length` on, linear between; a step where length is 0."""
+    shortest = np.maximum(np.asarray(length, dtype=np.float64), 1e-9)
+    return np.asarray(np.clip((day - before) / shortest, 0.0, 1.0))
 
 
 def coefficient_on(
@@ -66,104 +65,128 @@ def coefficient_on(
 
 
 def season_curve(season: CropSeason, date: Days, wind_2m: Floats, rh_min: Floats) -> Curve:
-    """Curves of `season` on the consecutive days `date` under the weather of those days.
+    """Curves of one season; arguments as in `season_curves` but each (days,)."""
+    curve = season_curves([season], date[:, None], wind_2m[:, None], rh_min[:, None])
+    return Curve(**{name: values[:, 0] for name, values in vars(curve).items()})
 
-    date (days,) datetime64[D]; wind_2m [m s-1], rh_min [%] (days,), NaN-free inside the season.
-    Heights and roots follow the table's own curve, so that weather moves neither. Off season
-    (before planting, after `last_day`): bare soil, Kcb = Kc_min = 0 (Kc of the initial stage when
-    single); perennials keep the initial coefficient; roots keep the depth they reached.
+
+def season_curves(
+    seasons: Sequence[CropSeason], date: Days, wind_2m: Floats, rh_min: Floats
+) -> Curve:
+    """Curves of many seasons, each on its own consecutive days under the weather of those days.
+
+    date (days, seasons) datetime64[D]; wind_2m [m s-1] and rh_min [%], same shape, NaN-free
+    inside the season. Heights and roots follow the table's own curve, so that weather moves
+    neither. Off season (before planting, after the last day) the soil is bare: Kcb = Kc_min = 0
+    (Kc of the initial stage when single); perennials keep the initial coefficient; roots keep the
+    depth they reached. Returns (days, seasons) arrays.
     Source: FAO-56 eq 66, 62, 65, 70, 8-1; chapter 11 (off season).
     """
-    day = (date - season.planting.astype("datetime64[D]")).astype(np.float64) + 1.0
-    in_season = (day >= 1.0) & (date <= season.last_day)
-    k_mid, k_end = _adjusted(season, day, in_season, wind_2m, rh_min)
-    k = coefficient_on(day, season.stage_days, season.k_ini, k_mid, k_end)
-    dual = season.coefficients == "dual"
-    bare = 0.0 if dual and not season.perennial else season.k_ini
+    table = _Table(seasons)
+    day = (date - table.planting).astype(np.float64) + 1.0
+    in_season = (day >= 1.0) & (day <= table.last)
+    grown, aged = _progress(day, table)
+    k_mid, k_end = _adjusted(table, day, in_season, wind_2m, rh_min)
+    k = table.k_ini + grown * (k_mid - table.k_ini) + aged * (k_end - k_mid)
+    bare = np.where(table.dual & ~table.perennial, 0.0, table.k_ini)
+    growing = in_season | table.perennial
+    roots = _roots_progress(np.minimum(day, table.last), table)
+    number = 1 + (day > table.ends[0]) + (day > table.ends[1]) + (day > table.ends[2])
     return Curve(
         coefficient=np.where(in_season, np.maximum(k, 0.0), bare),
-        kc_min=np.where(in_season | season.perennial, season.kc_min, 0.0),
-        height=_height(season, day, in_season),
-        root_depth=_root_depth(season, day),
+        kc_min=np.where(growing, table.kc_min, 0.0),
+        height=_height(table, grown, in_season),
+        root_depth=table.root_min + (table.root_max - table.root_min) * roots,
         in_season=in_season,
-        stage=_stage(season, day, in_season),
+        stage=np.where(in_season, number, 0).astype(np.int8),
     )
+
+
+class _Table:
+    """The seasons' numbers as arrays (seasons,), ready to broadcast over days."""
+
+    def __init__(self, seasons: Sequence[CropSeason]) -> None:
+        def column(name: str) -> Floats:
+            return np.array([getattr(season, name) for season in seasons], dtype=np.float64)
+
+        self.planting = np.array([s.planting for s in seasons], dtype="datetime64[D]")
+        last_day = np.array([s.last_day for s in seasons], dtype="datetime64[D]")
+        self.last = (last_day - self.planting).astype(np.float64) + 1.0
+        self.lengths = np.array([s.stage_days for s in seasons], dtype=np.float64).T
+        self.ends = np.cumsum(self.lengths, axis=0)
+        self.dual = np.array([s.coefficients == "dual" for s in seasons])
+        self.perennial = np.array([s.perennial for s in seasons])
+        self.climate = np.array([s.climate_adjustment for s in seasons])
+        self.k_ini, self.k_mid, self.k_end = column("k_ini"), column("k_mid"), column("k_end")
+        self.kc_min, self.height = column("kc_min"), column("height_max_m")
+        self.root_max = column("root_max_m")
+        self.root_min = np.where(self.perennial, self.root_max, column("root_min_m"))
+
+
+def _progress(day: Floats, table: _Table) -> tuple[Floats, Floats]:
+    grown = _ramp(day, table.ends[0], table.lengths[1])
+    return grown, _ramp(day, table.ends[2], table.lengths[3])
+
+
+def _roots_progress(day: Floats, table: _Table) -> Floats:
+    """Share of root growth done: with the basal curve (FAO-56 eq 8-1) when dual; from planting to
+    the first day of mid-season when single."""
+    dual = _ramp(day, table.ends[0], table.lengths[1])
+    single = np.clip((day - 1.0) / np.maximum(table.ends[1], 1.0), 0.0, 1.0)
+    return np.where(table.dual, dual, single)
+
+
+def _height(table: _Table, grown: Floats, in_season: Bools) -> Floats:
+    """Height [m]: its maximum times Kcb / Kcb mid by the table, never shrinking (FAO-56 Annex 8);
+    perennials always at the maximum; bare soil 0."""
+    k = table.k_ini + grown * (table.k_mid - table.k_ini)
+    share = np.clip(k / np.maximum(table.k_mid, 1e-6), 0.0, 1.0)
+    tall = np.where(table.perennial, table.height, table.height * share)
+    return np.where(in_season | table.perennial, tall, 0.0)
 
 
 def _adjusted(
-    season: CropSeason, day: Floats, in_season: NDArray[np.bool_], wind: Floats, rh_min: Floats
+    table: _Table, day: Floats, in_season: Bools, wind: Floats, rh_min: Floats
 ) -> tuple[Floats, Floats]:
-    """k_mid and k_end of each day by the season's climate adjustment."""
-    shape = day.shape
-    if season.climate_adjustment == "none":
-        return np.full(shape, season.k_mid), np.full(shape, season.k_end)
-    first, development, mid, late = season.stage_days
-    opening = first + development
-    closing = opening + mid
-    if season.climate_adjustment == "stage_mean":
-        in_mid = in_season & (day > opening) & (day <= closing)
-        in_late = in_season & (day > closing) & (day <= closing + late)
-        climates = [
-            (_mean_where(wind, stage, in_season), _mean_where(rh_min, stage, in_season))
-            for stage in (in_mid, in_late)
-        ]
-    elif season.climate_adjustment == "day":
-        climates = [(wind, rh_min)] * 2
-    else:
-        climates = [(_trailing(wind, in_season), _trailing(rh_min, in_season))] * 2
-    least_mid = LEAST_ADJUSTED if season.coefficients == "dual" else 0.0
-    height = season.height_max_m
-    return (
-        adjust(season.k_mid, *climates[0], height, least=least_mid),
-        adjust(season.k_end, *climates[1], height),
-    )
+    """k_mid and k_end of each day by each season's climate adjustment."""
+    least_mid = np.where(table.dual, LEAST_ADJUSTED, 0.0)
+    k_mid = np.broadcast_to(table.k_mid, day.shape).copy()
+    k_end = np.broadcast_to(table.k_end, day.shape).copy()
+    for choice in set(table.climate.tolist()) - {"none"}:
+        those = np.flatnonzero(table.climate == choice)
+        inside = in_season[:, those]
+        u2, rh = (np.where(inside, x[:, those], np.nan) for x in (wind, rh_min))
+        ends, days = table.ends[:, those], day[:, those]
+        if choice == "stage_mean":
+            mid = (days > ends[1]) & (days <= ends[2])
+            late = (days > ends[2]) & (days <= ends[3])
+            for_mid = _mean_of(u2, mid), _mean_of(rh, mid)
+            for_end = _mean_of(u2, late), _mean_of(rh, late)
+        else:
+            daily = choice == "day"
+            for_mid = (u2, rh) if daily else (_trailing(u2, inside), _trailing(rh, inside))
+            for_end = for_mid
+        height = table.height[those]
+        k_mid[:, those] = adjust(table.k_mid[those], *for_mid, height, least=least_mid[those])
+        k_end[:, those] = adjust(table.k_end[those], *for_end, height)
+    return k_mid, k_end
 
 
-def _mean_where(values: Floats, stage: NDArray[np.bool_], season: NDArray[np.bool_]) -> Floats:
-    """Mean over the stage's days; over the season's where the stage is not in sight."""
-    chosen = stage if stage.any() else season
-    mean = float(values[chosen].mean()) if chosen.any() else np.nan
-    return np.full(values.shape, mean)
+def _mean_of(values: Floats, stage: Bools) -> Floats:
+    """Mean of each column over the stage's days; over its season where no such day is in sight."""
+    here = ~np.isnan(values)
+    chosen = np.where((stage & here).any(axis=0), stage & here, here)
+    count = chosen.sum(axis=0)
+    total = np.where(chosen, values, 0.0).sum(axis=0)
+    mean = np.divide(total, count, out=np.full(total.shape, np.nan), where=count > 0)
+    return np.broadcast_to(mean, values.shape)
 
 
-def _trailing(values: Floats, in_season: NDArray[np.bool_]) -> Floats:
+def _trailing(values: Floats, in_season: Bools) -> Floats:
     """Mean of the day and the up to 29 days of the season before it; NaN off season."""
-    kept = np.where(in_season, values, 0.0)
-    mean = np.full(values.shape, np.nan)
-    total = np.concatenate(([0.0], np.cumsum(kept)))
-    count = np.concatenate(([0], np.cumsum(in_season)))
-    here = np.flatnonzero(in_season)
-    from_day = np.maximum(here + 1 - TRAILING_DAYS, 0)
-    mean[here] = (total[here + 1] - total[from_day]) / (count[here + 1] - count[from_day])
-    return mean
-
-
-def _height(season: CropSeason, day: Floats, in_season: NDArray[np.bool_]) -> Floats:
-    """Height [m]: its maximum times Kcb / Kcb mid by the table, never shrinking (FAO-56 Annex 8);
-    perennials always at the maximum; bare soil 0."""
-    if season.perennial:
-        return np.full(day.shape, season.height_max_m)
-    before_late = (*season.stage_days[:3], 10**6)
-    k = coefficient_on(day, before_late, season.k_ini, season.k_mid, season.k_mid)
-    share = np.clip(k / season.k_mid, 0.0, 1.0) if season.k_mid > 0 else np.ones(day.shape)
-    return np.where(in_season, season.height_max_m * share, 0.0)
-
-
-def _root_depth(season: CropSeason, day: Floats) -> Floats:
-    """Root depth [m] by the table's basal curve (FAO-56 eq 8-1); with single coefficients linear
-    from planting to the first day of mid-season; perennials at the maximum; kept after harvest."""
-    if season.perennial:
-        return np.full(day.shape, season.root_max_m)
-    last = (season.last_day - season.planting.astype("datetime64[D]")).astype(np.float64) + 1.0
-    until = np.minimum(day, last)
-    if season.coefficients == "single":
-        share = _ramp(until - 1.0, 0, season.stage_days[0] + season.stage_days[1])
-    else:
-        share, _ = stage_progress(until, season.stage_days)
-    return season.root_min_m + (season.root_max_m - season.root_min_m) * share
-
-
-def _stage(season: CropSeason, day: Floats, in_season: NDArray[np.bool_]) -> NDArray[np.int8]:
-    ends = np.cumsum(season.stage_days)[:3]
-    number = 1 + np.searchsorted(ends, day - 1.0, side="right")
-    return np.where(in_season, number, 0).astype(np.int8)
+    total = np.zeros((values.shape[0] + 1, values.shape[1]))
+    np.cumsum(np.where(in_season, values, 0.0), axis=0, out=total[1:])
+    after = np.arange(1, values.shape[0] + 1)[:, None]
+    before = np.maximum(after - TRAILING_DAYS, np.argmax(in_season, axis=0))
+    sums = total[1:] - np.take_along_axis(total, before, axis=0)
+    return np.where(in_season, sums / np.maximum(after - before, 1), np.nan)

@@ -71,6 +71,8 @@ class CropSeason:
     @property
     def last_day(self) -> np.datetime64:
         """Last day of the season: `end`, else the last day of the late stage."""
+        last: np.datetime64 = self.planting.astype("datetime64[D]")
+        last = last + np.timedelta64(sum(self.stage_days) - 1, "D")
         if self.end is not None:
-            return self.end.astype("datetime64[D]")
-        return self.planting.astype("datetime64[D]") + np.timedelta64(sum(self.stage_days) - 1, "D")
+            last = self.end.astype("datetime64[D]")
+        return last

@@ -1,11 +1,10 @@
 """Evaporation from the surface layer: the dual crop coefficient's formulas."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
+from app.science import Floats, floats
 from app.science.crop.climate import climate_term
-
-Floats = NDArray[np.float64]
 
 # FAO-56 eq 72: Kc max of a wet surface before the climate term.
 WET_SURFACE_KC = 1.2
@@ -15,10 +14,6 @@ LEAST_FRACTION, MOST_COVER, LEAST_SPAN = 0.01, 0.99, 0.01
 WETTING_RAIN_MM = 3.0
 
 
-def _f(value: ArrayLike) -> Floats:
-    return np.asarray(value, dtype=np.float64)
-
-
 def total_evaporable_water(
     field_capacity: ArrayLike, wilting_point: ArrayLike, depth: ArrayLike
 ) -> Floats:
@@ -26,7 +21,9 @@ def total_evaporable_water(
 
     Shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 73.
     """
-    return np.asarray(1000.0 * (_f(field_capacity) - 0.5 * _f(wilting_point)) * _f(depth))
+    return np.asarray(
+        1000.0 * (floats(field_capacity) - 0.5 * floats(wilting_point)) * floats(depth)
+    )
 
 
 def kc_max(kcb: ArrayLike, wind_2m: ArrayLike, rh_min: ArrayLike, height: ArrayLike) -> Floats:
@@ -36,7 +33,7 @@ def kc_max(kcb: ArrayLike, wind_2m: ArrayLike, rh_min: ArrayLike, height: ArrayL
     climate term is held to the range of eq 62. Source: FAO-56 eq 72.
     """
     climate = WET_SURFACE_KC + climate_term(wind_2m, rh_min, height)
-    return np.asarray(np.maximum(climate, _f(kcb) + 0.05))
+    return np.asarray(np.maximum(climate, floats(kcb) + 0.05))
 
 
 def cover_fraction(
@@ -47,9 +44,9 @@ def cover_fraction(
     kcb, kc_max, kc_min [-]; height [m]; shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 76
     (both differences at least 0.01 below the line, 0 above it).
     """
-    over = np.maximum(_f(kcb) - _f(kc_min), 0.0)
-    span = np.maximum(_f(kc_max) - _f(kc_min), LEAST_SPAN)
-    return np.asarray(np.minimum((over / span) ** (1.0 + 0.5 * _f(height)), MOST_COVER))
+    over = np.maximum(floats(kcb) - floats(kc_min), 0.0)
+    span = np.maximum(floats(kc_max) - floats(kc_min), LEAST_SPAN)
+    return np.asarray(np.minimum((over / span) ** (1.0 + 0.5 * floats(height)), MOST_COVER))
 
 
 def exposed_wetted_fraction(cover: ArrayLike, wetted: ArrayLike) -> Floats:
@@ -57,13 +54,13 @@ def exposed_wetted_fraction(cover: ArrayLike, wetted: ArrayLike) -> Floats:
 
     cover fc and wetted fw, 0-1; shapes broadcast; NaN in, NaN out.
     """
-    return np.asarray(np.clip(np.minimum(1.0 - _f(cover), _f(wetted)), LEAST_FRACTION, 1.0))
+    return np.asarray(np.clip(np.minimum(1.0 - floats(cover), floats(wetted)), LEAST_FRACTION, 1.0))
 
 
 def under_canopy(wetted: ArrayLike, cover: ArrayLike) -> Floats:
     """Wetted fraction seen by the sun where emitters stand under the canopy: fw (1 - 2/3 fc)
     (FAO-56, note to eq 75). Shapes broadcast; NaN in, NaN out."""
-    return np.asarray(_f(wetted) * (1.0 - 2.0 / 3.0 * _f(cover)))
+    return np.asarray(floats(wetted) * (1.0 - 2.0 / 3.0 * floats(cover)))
 
 
 def evaporation_reduction(depletion: ArrayLike, tew: ArrayLike, rew: ArrayLike) -> Floats:
@@ -71,7 +68,9 @@ def evaporation_reduction(depletion: ArrayLike, tew: ArrayLike, rew: ArrayLike) 
 
     Shapes broadcast; NaN in, NaN out. Source: FAO-56 eq 74.
     """
-    return np.asarray(np.clip((_f(tew) - _f(depletion)) / (_f(tew) - _f(rew)), 0.0, 1.0))
+    return np.asarray(
+        np.clip((floats(tew) - floats(depletion)) / (floats(tew) - floats(rew)), 0.0, 1.0)
+    )
 
 
 def evaporation_coefficient(
@@ -81,7 +80,11 @@ def evaporation_coefficient(
 
     Shapes broadcast; NaN in, NaN out.
     """
-    return np.asarray(np.minimum(_f(reduction) * (_f(kc_max) - _f(kcb)), _f(exposed) * _f(kc_max)))
+    return np.asarray(
+        np.minimum(
+            floats(reduction) * (floats(kc_max) - floats(kcb)), floats(exposed) * floats(kc_max)
+        )
+    )
 
 
 def rew_from_texture(sand: ArrayLike, clay: ArrayLike) -> Floats:
@@ -90,7 +93,7 @@ def rew_from_texture(sand: ArrayLike, clay: ArrayLike) -> Floats:
     Shapes broadcast; NaN in, NaN out. Source: relation quoted in J. Irrig. Drain. Eng. 131:2-13
     (2005), from memory.
     """
-    sa, cl = _f(sand), _f(clay)
+    sa, cl = floats(sand), floats(clay)
     fine = np.where(cl > 50.0, 11.0 - 0.06 * cl, 8.0 + 0.08 * cl)
     return np.asarray(np.where(sa > 80.0, 20.0 - 0.15 * sa, fine) + 0.0 * (sa + cl))
 

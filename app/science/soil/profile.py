@@ -4,11 +4,10 @@ from dataclasses import dataclass
 from itertools import pairwise
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
+from app.science import Floats
 from app.science.crop.season import check_range
-
-Floats = NDArray[np.float64]
 
 
 @dataclass(frozen=True)

@@ -1,16 +1,12 @@
 """Water held for the roots, when they run short, and what salt adds to it."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-Floats = NDArray[np.float64]
+from app.science import Floats, floats
 
 # FAO-56 chapter 8, table 22: p holds at 5 mm/d and moves 0.04 for each mm/d, within 0.1-0.8.
 P_SLOPE, P_ETC, P_LEAST, P_MOST = 0.04, 5.0, 0.1, 0.8
-
-
-def _f(value: ArrayLike) -> Floats:
-    return np.asarray(value, dtype=np.float64)
 
 
 def total_available_water(
@@ -20,23 +16,27 @@ def total_available_water(
 
     Shapes broadcast; NaN in, NaN out.
     """
-    return np.asarray(1000.0 * (_f(field_capacity) - _f(wilting_point)) * _f(root_depth))
+    return np.asarray(
+        1000.0 * (floats(field_capacity) - floats(wilting_point)) * floats(root_depth)
+    )
 
 
 def depletion_fraction(table_p: ArrayLike, etc: ArrayLike) -> Floats:
     """Depletion fraction p of a day, 0.1-0.8, from the table's p and the day's unstressed ETc
     [mm d-1]. Shapes broadcast; NaN in, NaN out. Source: FAO-56 table 22, note 2."""
-    return np.asarray(np.clip(_f(table_p) + P_SLOPE * (P_ETC - _f(etc)), P_LEAST, P_MOST))
+    return np.asarray(np.clip(floats(table_p) + P_SLOPE * (P_ETC - floats(etc)), P_LEAST, P_MOST))
 
 
 def readily_available_water(p: ArrayLike, taw: ArrayLike) -> Floats:
     """RAW [mm] = p TAW (FAO-56 eq 83). Shapes broadcast; NaN in, NaN out."""
-    return np.asarray(_f(p) * _f(taw))
+    return np.asarray(floats(p) * floats(taw))
 
 
 def stress_coefficient(depletion: ArrayLike, taw: ArrayLike, raw: ArrayLike) -> Floats:
     """Ks, 0-1; depletion, taw > raw [mm]; shapes broadcast; NaN in, NaN out (FAO-56 eq 84)."""
-    return np.asarray(np.clip((_f(taw) - _f(depletion)) / (_f(taw) - _f(raw)), 0.0, 1.0))
+    return np.asarray(
+        np.clip((floats(taw) - floats(depletion)) / (floats(taw) - floats(raw)), 0.0, 1.0)
+    )
 
 
 def salinity_stress(
@@ -48,8 +48,8 @@ def salinity_stress(
     factor [-]. Meant for whole seasons and ece below threshold + 50/b. Shapes broadcast; NaN in,
     NaN out. Source: FAO-56 eq 91 and 92.
     """
-    over = np.maximum(_f(ece) - _f(threshold), 0.0)
-    return np.asarray(np.clip(1.0 - _f(slope) / (100.0 * _f(ky)) * over, 0.0, 1.0))
+    over = np.maximum(floats(ece) - floats(threshold), 0.0)
+    return np.asarray(np.clip(1.0 - floats(slope) / (100.0 * floats(ky)) * over, 0.0, 1.0))
 
 
 def leaching_requirement(ec_water: ArrayLike, ece_threshold: ArrayLike) -> Floats:
@@ -59,7 +59,7 @@ def leaching_requirement(ec_water: ArrayLike, ece_threshold: ArrayLike) -> Float
     salty for the formula LR is 0.9. Shapes broadcast; NaN in, NaN out. Source: FAO-29, quoted in
     FAO-56 chapter 8: ECiw / (5 ECe - ECiw).
     """
-    water, crop = _f(ec_water), _f(ece_threshold)
+    water, crop = floats(ec_water), floats(ece_threshold)
     room = 5.0 * crop - water
     ratio = water / np.where(room > 0.0, room, np.nan)
     bounded = np.where(room > 0.0, np.clip(ratio, 0.0, 0.9), 0.9)
@@ -71,8 +71,8 @@ def yield_share(et_actual: ArrayLike, et_potential: ArrayLike, ky: ArrayLike) ->
 
     Shapes broadcast; NaN in, NaN out.
     """
-    short = 1.0 - _f(et_actual) / _f(et_potential)
-    return np.asarray(np.clip(1.0 - _f(ky) * short, 0.0, 1.0))
+    short = 1.0 - floats(et_actual) / floats(et_potential)
+    return np.asarray(np.clip(1.0 - floats(ky) * short, 0.0, 1.0))
 
 
 def stress_from_yield(yield_actual: ArrayLike, yield_most: ArrayLike, ky: ArrayLike) -> Floats:
@@ -80,4 +80,4 @@ def stress_from_yield(yield_actual: ArrayLike, yield_most: ArrayLike, ky: ArrayL
 
     Shapes broadcast; NaN in, NaN out.
     """
-    return np.asarray(1.0 - (1.0 - _f(yield_actual) / _f(yield_most)) / _f(ky))
+    return np.asarray(1.0 - (1.0 - floats(yield_actual) / floats(yield_most)) / floats(ky))

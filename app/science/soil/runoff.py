@@ -1,9 +1,9 @@
 """Runoff of a day's rain by the NRCS curve number."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-Floats = NDArray[np.float64]
+from app.science import Floats
 
 # NRCS National Engineering Handbook (USDA-SCS 1985, NEH-4), antecedent runoff condition table:
 # average (II), dry (I) and wet (III) curve numbers; 0 added as the table's limit.

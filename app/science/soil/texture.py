@@ -3,9 +3,9 @@
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-Floats = NDArray[np.float64]
+from app.science import Floats
 
 # Saxton & Rawls 2006 (Soil Sci. Soc. Am. J. 70:1569-1578): range the equations are meant for.
 MOST_CLAY, MOST_ORGANIC_MATTER = 60.0, 8.0

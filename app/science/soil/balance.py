@@ -1,0 +1,229 @@
+"""The daily root-zone water balance: the only day loop of the project.
+
+`_day` is the balance of one day, written once. `balance` runs it over arrays of blocks,
+`balance_scalar` over plain floats for one block; both give the same bits. All that does not
+depend on the state of the soil is computed beforehand (`app.science.soil.terms`).
+
+Order of a day, wetting early (FAO-56 Annex 8): roots grow; rain less runoff, net irrigation and
+capillary rise come in; Kr and Ks from the depletions after that; evapotranspiration, cut so that
+neither layer goes below empty; drainage; correction by a reading.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass, fields
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from app.science import Floats
+from app.science.soil.root_zone import P_LEAST, P_MOST
+from app.science.soil.runoff import ABSTRACTION
+
+# Blocks worked on at a time, so that a day's arrays stay in the processor's cache.
+CHUNK = 4096
+
+
+class Blocks(NamedTuple):
+    """What stays the same all season, each (blocks,)."""
+
+    tew: Any  # total evaporable water [mm]
+    drying: Any  # TEW - REW [mm], above 0
+    p_base: Any  # p at no ET: table p + slope * 5 [-]
+    p_slope: Any  # fall of p for each mm of unstressed ETc [mm-1]
+    roots: Any  # wetted fraction of the root zone [-]
+    wet_at: Any  # evaporation layer depletion at which the soil counts as wet [mm]
+    wet_span: Any  # from there to where it counts as dry [mm], above 0
+    cn_wet: Any  # curve number wet [-]
+    cn_fall: Any  # curve number wet less dry [-]
+    drainage_days: Any  # 0 for drainage on the day
+
+
+class Days(NamedTuple):
+    """What does not depend on the state of the soil, each (days, blocks)."""
+
+    rain: Any  # [mm]
+    wet: Any  # rain on the root zone, net irrigation and capillary rise [mm]
+    surface: Any  # rain and irrigation where it falls on the evaporation layer [mm]
+    transpiration: Any  # Kcb ETo (Kc ETo with single coefficients), unstressed [mm]
+    evaporation: Any  # (Kc max - Kcb) ETo [mm]
+    evaporation_most: Any  # few Kc max ETo [mm]
+    exposed: Any  # few [-]
+    taw: Any  # [mm]
+    new_roots: Any  # share of the subsoil store that roots take over that day [-]
+    saturation: Any  # water between field capacity and saturation [mm]
+    correction: Any  # [mm], positive wets
+
+
+@dataclass(frozen=True, kw_only=True)
+class Terms:
+    """Everything the day loop needs: blocks, days, opening states and which branches are used.
+
+    depletion, subsoil, layer (blocks,): opening depletions of root zone, subsoil store and
+    evaporation layer [mm]. has_runoff, has_slow_drainage, has_correction: False skips a branch
+    no block uses. drain_before_et: the order of FAO-56 Example 38 as printed.
+    """
+
+    blocks: Blocks
+    days: Days
+    depletion: Floats
+    subsoil: Floats
+    layer: Floats
+    has_runoff: bool = False
+    has_slow_drainage: bool = False
+    has_correction: bool = False
+    drain_before_et: bool = False
+
+
+@dataclass(frozen=True, kw_only=True)
+class Balance:
+    """Each (days, blocks): end of day depletions [mm] of root zone, subsoil store and evaporation
+    layer; evaporation and transpiration [mm]; Ks [-]; RAW [mm]; deep percolation, depletion taken
+    over by new roots, runoff, correction applied [mm]."""
+
+    depletion: Floats
+    subsoil: Floats
+    layer: Floats
+    evaporation: Floats
+    transpiration: Floats
+    ks: Floats
+    raw: Floats
+    percolation: Floats
+    growth: Floats
+    runoff: Floats
+    correction: Floats
+
+
+COLUMNS = tuple(column.name for column in fields(Balance))
+
+
+def _day(
+    lo: Callable[[Any, Any], Any],
+    hi: Callable[[Any, Any], Any],
+    terms: Terms,
+    block: Blocks,
+    day: Days,
+    state: tuple[Any, Any, Any, Any],
+) -> tuple[tuple[Any, Any, Any, Any], tuple[Any, ...]]:
+    """One day of the balance; returns the new state and the day's columns.
+
+    lo, hi: smaller and larger of two (of floats or of arrays). state: root zone, subsoil and
+    evaporation layer depletion [mm], days in a row above field capacity. Source: FAO-56 eq 71,
+    74, 77 to 80, 84, 85, 88; NEH 630 chapter 10.
+    """
+    depletion, subsoil, layer, run = state
+    taw = day.taw
+    # Roots grow and take over the depletion of the soil they enter.
+    growth = subsoil * day.new_roots
+    subsoil = subsoil - growth
+    depletion = depletion + growth
+    # Water comes in.
+    runoff: Any = 0.0
+    wet, surface = day.wet, day.surface
+    if terms.has_runoff:
+        dryness = lo(hi((layer - block.wet_at) / block.wet_span, 0.0), 1.0)
+        held = 25400.0 / (block.cn_wet - block.cn_fall * dryness) - 254.0
+        over = hi(day.rain - ABSTRACTION * held, 0.0)
+        runoff = over * over / hi(day.rain + (1.0 - ABSTRACTION) * held, 1e-9)
+        wet = wet - runoff * block.roots
+        surface = surface - runoff
+    depletion = depletion - wet
+    layer = hi(layer - surface, 0.0)
+    percolation: Any = 0.0
+    if terms.drain_before_et:
+        drained = hi(depletion, 0.0)
+        percolation = drained - depletion
+        depletion = drained
+    # Evaporation, from the layer's water and the energy left by the crop.
+    moist = hi(block.tew - layer, 0.0)
+    reduction = lo(moist / block.drying, 1.0)
+    evaporation = lo(reduction * day.evaporation, day.evaporation_most)
+    evaporation = lo(evaporation, moist * day.exposed)
+    # Transpiration, reduced by stress; both within what the root zone holds.
+    p = block.p_base - block.p_slope * (day.transpiration + evaporation)
+    raw = lo(hi(p, P_LEAST), P_MOST) * taw
+    left = hi(taw - depletion, 0.0)
+    ks = lo(left / (taw - raw), 1.0)
+    evaporation = lo(evaporation, left)
+    transpiration = lo(ks * day.transpiration, left - evaporation)
+    layer = layer + evaporation / day.exposed
+    depletion = depletion + (evaporation + transpiration)
+    # Drainage of what is above field capacity.
+    if not terms.drain_before_et:
+        drained = hi(depletion, 0.0)
+        excess = drained - depletion
+        if terms.has_slow_drainage:
+            run = (run + 1.0) * (excess > 0.0)
+            at_once = hi(excess - day.saturation, 0.0)
+            share = hi(block.drainage_days + 2.0 - run, 1.0)
+            percolation = at_once + (excess - at_once) / share
+            depletion = depletion + percolation
+        else:
+            percolation = excess
+            depletion = drained
+    subsoil = hi(subsoil - percolation, 0.0)
+    # A reading corrects the close, within what the soil can hold.
+    correction: Any = 0.0
+    if terms.has_correction:
+        wettest = -(day.saturation * (block.drainage_days > 0.0))
+        corrected = hi(lo(depletion - day.correction, taw), lo(depletion, wettest))
+        correction = depletion - corrected
+        depletion = corrected
+    columns = (
+        depletion,
+        subsoil,
+        layer,
+        evaporation,
+        transpiration,
+        ks,
+        raw,
+        percolation,
+        growth,
+        runoff,
+        correction,
+    )
+    return (depletion, subsoil, layer, run), columns
+
+
+def balance(terms: Terms) -> Balance:
+    """Water balance of many blocks at once; blocks never touch each other.
+
+    terms: (days, blocks) arrays as in `Terms`, NaN-free. Returns arrays of the same shape.
+    """
+    days, blocks = terms.days.rain.shape
+    out = np.zeros((len(COLUMNS), days, blocks))
+    for first in range(0, blocks, CHUNK):
+        part = slice(first, min(first + CHUNK, blocks))
+        block = Blocks(*(values[part] for values in terms.blocks))
+        columns = [values[:, part] for values in terms.days]
+        state = (
+            terms.depletion[part],
+            terms.subsoil[part],
+            terms.layer[part],
+            np.zeros(part.stop - part.start),
+        )
+        for i in range(days):
+            day = Days(*(values[i] for values in columns))
+            state, result = _day(np.minimum, np.maximum, terms, block, day, state)
+            for row, values in zip(out, result, strict=True):
+                row[i, part] = values
+    return Balance(**dict(zip(COLUMNS, out, strict=True)))
+
+
+def balance_scalar(terms: Terms) -> Balance:
+    """The same balance in plain floats, block by block: quicker for one or a few blocks."""
+    days, blocks = terms.days.rain.shape
+    out = np.zeros((len(COLUMNS), days, blocks))
+    for b in range(blocks):
+        block = Blocks(*(float(values[b]) for values in terms.blocks))
+        state: tuple[Any, Any, Any, Any] = (
+            float(terms.depletion[b]),
+            float(terms.subsoil[b]),
+            float(terms.layer[b]),
+            0.0,
+        )
+        rows = []
+        for values in zip(*(column[:, b].tolist() for column in terms.days), strict=True):
+            state, result = _day(min, max, terms, block, Days(*values), state)
+            rows.append(result)
+        out[:, :, b] = np.array(rows, dtype=np.float64).reshape(days, len(COLUMNS)).T
+    return Balance(**dict(zip(COLUMNS, out, strict=True)))
