@@ -5,7 +5,17 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from app.science import Bools, Days, Floats
+from app.science.advice.keeping_up import chances, daily_change, keeps_up
+from app.science.advice.reasons import Reason
 from app.science.advice.system import ApplicationSystem
+
+# A millimetre over a hectare.
+M3_PER_MM_HA = 10.0
+# "soon" reaches this many days beyond "due"; inputs older than, or limit dates further apart
+# than, these days make an advice unsure (working values).
+SOON_DAYS, STALE_DAYS, WIDE_DAYS = 3, 2, 4
+# Leaching requirements up to this one are met by ordinary losses (NEH 623, from memory).
+LEACHING_COUNTS = 0.1
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -65,5 +75,203 @@ def decide(
     intake_mm: float | None = None,
     input_age_days: int = 0,
 ) -> Advice:
-    """Decide standing, day and depth."""
-    raise NotImplementedError
+    """Standing of a field this morning, and on which day to water it and how much.
+
+    depletion_now [mm]: at the opening of today (yesterday's close). area_ha above 0. refill_to_mm:
+    depletion to leave. rain_room_mm: room to leave for rain. last_irrigation: start of the last
+    application. leaching_requirement 0-0.9: above 0.1 it raises gross to 0.9 net / ((1 - LR)
+    efficiency). intake_mm: most net the soil takes in one application, None for no bound.
+    input_age_days: age of the oldest input.
+
+    The day is the last chance at or before the first close past the limit, brought forward by the
+    days the system needs to cover the field; a field that cannot be held starts at once. The depth
+    refills the opening depletion within the system's least and most. A depth below the least is
+    raised to it, even where it passes field capacity: the chance is the last one, and waiting
+    would pass the limit. Only allowed days are ever advised.
+    Standing, in this order: late (past the limit), due (passes it by the close of the second
+    chance if the first is skipped), soon (within three days after), wet (at or above field
+    capacity), easy. Returns an `Advice`; reasons in `app.science.advice.reasons`.
+    Raises ValueError for NaN in depletions and for wrong sizes.
+    Source: leaching, NEH 623 (from memory); the rest are the project's own rules.
+    """
+    _check(outlook, depletion_now, area_ha)
+    gap = max(system.interval_days, system.cover_days)
+    may_start = chances(outlook.allowed, _ready(outlook, last_irrigation, gap), system.cover_days)
+    passed = first_passed(outlook.depletion, outlook.limit)
+    late = bool(depletion_now > outlook.limit[0])
+    per_net = _gross_per_net(system.efficiency, leaching_requirement)
+    net_least, net_most = system.least_mm / per_net, system.deliverable_mm / per_net
+    if intake_mm is not None:
+        net_most = max(min(net_most, intake_mm), net_least)
+    change = daily_change(depletion_now, outlook.depletion, outlook.limit, outlook.etc)
+    behind = (late or passed is not None) and not keeps_up(
+        depletion_now, change, outlook.limit, may_start, net_least, net_most, gap
+    )
+    day, reason = _choose(
+        outlook, depletion_now, may_start, passed, late, behind, system, net_least
+    )
+    figures: dict[str, float | str] = {
+        "horizon_days": float(outlook.date.size),
+        "depletion_mm": float(depletion_now),
+        "limit_mm": float(outlook.limit[0]),
+        **_limit_figures(outlook, passed),
+    }
+    net, bound = 0.0, ""
+    if day is not None:
+        opening = _opening(outlook, depletion_now, day)
+        net, bound = _depth(
+            opening - refill_to_mm - rain_room_mm, net_least, net_most, system, intake_mm
+        )
+        figures |= {
+            "opening_mm": opening,
+            "refill_to_mm": refill_to_mm,
+            "rain_room_mm": rain_room_mm,
+            "efficiency": system.efficiency,
+            "chances_before": float(may_start[: passed + 1].sum()) if passed is not None else 0.0,
+            "bound": bound,
+            "past_field_capacity_mm": max(net - max(opening, 0.0), 0.0),
+            "cover_days": float(system.cover_days),
+            "first_chance": str(outlook.date[int(np.argmax(may_start))]),
+        }
+        if reason is Reason.FALLING_BEHIND:
+            figures |= {
+                "most_net_mm": net_most,
+                "interval_days": float(gap),
+                "etc_mm": float(np.nansum(outlook.etc)),
+            }
+    gross = net * per_net
+    return Advice(
+        standing=_standing(depletion_now, late, passed, may_start),
+        day=None if day is None else outlook.date[day],
+        net_mm=net,
+        gross_mm=gross,
+        hours=gross / system.rate_mm_h,
+        volume_m3=gross * area_ha * M3_PER_MM_HA,
+        reason=reason.value,
+        figures=figures,
+        limit_day=None if passed is None else outlook.date[passed],
+        falling_behind=behind,
+        unsure=input_age_days > STALE_DAYS or _wide(outlook),
+    )
+
+
+def first_passed(depletion: Floats, limit: Floats) -> int | None:
+    """Index of the first day that closes past the limit, None for none; NaN is never past."""
+    past = depletion > limit
+    return int(np.argmax(past)) if past.any() else None
+
+
+def _check(outlook: Outlook, depletion_now: float, area_ha: float) -> None:
+    days = outlook.date.shape
+    if outlook.date.size == 0:
+        raise ValueError("the outlook has no days; it needs at least today")
+    for name in ("depletion", "limit", "taw", "etc", "allowed"):
+        shape = getattr(outlook, name).shape
+        if shape != days:
+            raise ValueError(f"outlook.{name} has shape {shape}; its dates have {days}")
+    if np.isnan(depletion_now) or np.isnan(outlook.depletion).any():
+        raise ValueError("a depletion of the outlook is missing; fill the weather's gaps first")
+    if not area_ha > 0.0:
+        raise ValueError(f"area_ha is {area_ha:g}; it must be above 0")
+
+
+def _ready(outlook: Outlook, last: np.datetime64 | None, gap: int) -> int:
+    """First day (index) the interval since the last irrigation allows."""
+    if last is None:
+        return 0
+    since = (outlook.date[0] - last.astype("datetime64[D]")).astype(int)
+    return max(gap - int(since), 0)
+
+
+def _gross_per_net(efficiency: float, leaching_requirement: float) -> float:
+    if leaching_requirement > LEACHING_COUNTS:
+        return 0.9 / ((1.0 - min(leaching_requirement, 0.9)) * efficiency)
+    return 1.0 / efficiency
+
+
+def _standing(depletion_now: float, late: bool, passed: int | None, may_start: Bools) -> str:
+    if late:
+        return "late"
+    if passed is not None:
+        starts = np.flatnonzero(may_start)
+        second = int(starts[1]) if starts.size > 1 else may_start.size
+        if passed <= second:
+            return "due"
+        if passed <= second + SOON_DAYS:
+            return "soon"
+    return "wet" if depletion_now <= 0.0 else "easy"
+
+
+def _choose(
+    outlook: Outlook,
+    depletion_now: float,
+    may_start: Bools,
+    passed: int | None,
+    late: bool,
+    behind: bool,
+    system: ApplicationSystem,
+    net_least: float,
+) -> tuple[int | None, Reason]:
+    """The day to start (index) and why."""
+    if passed is None:
+        return None, Reason.BACK_WITHIN if late else Reason.LIMIT_NOT_REACHED
+    starts = np.flatnonzero(may_start)
+    if not starts.size:
+        return None, Reason.NO_CHANCE
+    first = int(starts[0])
+    in_time = starts[starts <= passed - (system.cover_days - 1)]
+    last = int(in_time[-1]) if in_time.size else first
+    if behind:
+        roomy = [s for s in starts.tolist() if _opening(outlook, depletion_now, s) >= net_least]
+        return min([*roomy, last]), Reason.FALLING_BEHIND
+    if late and passed == 0:
+        return first, Reason.PAST_LIMIT
+    if not in_time.size:
+        return first, Reason.NO_CHANCE_IN_TIME
+    covering = system.cover_days > 1 and bool((starts[starts <= passed] > last).any())
+    return last, Reason.COVERING if covering else Reason.LAST_CHANCE
+
+
+def _opening(outlook: Outlook, depletion_now: float, day: int) -> float:
+    return float(depletion_now if day == 0 else outlook.depletion[day - 1])
+
+
+def _depth(
+    wanted: float,
+    net_least: float,
+    net_most: float,
+    system: ApplicationSystem,
+    intake_mm: float | None,
+) -> tuple[float, str]:
+    """Net depth [mm] within the system's bounds, and the bound that set it."""
+    if wanted < net_least:
+        return net_least, "least"
+    if wanted > net_most:
+        if intake_mm is not None and intake_mm <= net_most:
+            return net_most, "intake"
+        return net_most, "most" if system.deliverable_mm >= system.most_mm else "hours"
+    return wanted, ""
+
+
+def _limit_figures(outlook: Outlook, passed: int | None) -> dict[str, float | str]:
+    if passed is None:
+        return {
+            "last_depletion_mm": float(outlook.depletion[-1]),
+            "last_limit_mm": float(outlook.limit[-1]),
+        }
+    return {
+        "limit_day": str(outlook.date[passed]),
+        "limit_day_depletion_mm": float(outlook.depletion[passed]),
+        "limit_day_limit_mm": float(outlook.limit[passed]),
+    }
+
+
+def _wide(outlook: Outlook) -> bool:
+    """Whether the limit dates of p90 (dry) and p10 (wet) lie more than four days apart; a date
+    beyond the horizon counts as the day after it."""
+    if outlook.p10 is None or outlook.p90 is None:
+        return False
+    dry = first_passed(outlook.p90, outlook.limit)
+    wet = first_passed(outlook.p10, outlook.limit)
+    beyond = outlook.date.size
+    return (beyond if wet is None else wet) - (beyond if dry is None else dry) > WIDE_DAYS
