@@ -1,0 +1,9 @@
+"""The pages."""
+
+from fastapi import APIRouter
+
+from app.web.pages import enter, rounds
+
+router = APIRouter(include_in_schema=False)
+for part in (enter, rounds):
+    router.include_router(part.router)

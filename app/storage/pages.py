@@ -1,0 +1,295 @@
+"""Read statements of the Rounds: plain rows, no joins in loops."""
+
+from collections.abc import Sequence
+from datetime import date, timedelta
+from typing import Any, NamedTuple
+
+from sqlalchemy import and_, exists, func, select
+from sqlalchemy.orm import Session, aliased
+
+from app.storage.tables import (
+    Advice,
+    Block,
+    Event,
+    Farm,
+    Field,
+    IrrigationSystem,
+    Season,
+    Source,
+    Station,
+    StationDay,
+)
+
+
+class RoundsRow(NamedTuple):
+    """One block with the advice of the morning; the advice's columns are None without one."""
+
+    field_id: int
+    field_key: str
+    field_name: str
+    managed_by: str
+    area_ha: float
+    farm_key: str
+    farm_name: str
+    block_id: int
+    block_key: str
+    block_name: str
+    system_name: str
+    crop: str | None
+    planting: date | None
+    season: dict[str, Any] | None
+    number: int | None
+    issued_on: date | None
+    standing: str | None
+    unsure: str
+    day: date | None
+    net_mm: float
+    gross_mm: float
+    hours: float
+    volume_m3: float
+    limit_day: date | None
+    reason: str
+    figures: dict[str, Any]
+    depletion_mm: float
+    depletion_p10_mm: float
+    depletion_p90_mm: float
+    limit_mm: float
+    taw_mm: float
+    change_mm: float | None
+    rung: int
+    data_until: date | None
+
+
+ADVICE_COLUMNS = (
+    Advice.number,
+    Advice.issued_on,
+    Advice.standing,
+    Advice.unsure,
+    Advice.day,
+    Advice.net_mm,
+    Advice.gross_mm,
+    Advice.hours,
+    Advice.volume_m3,
+    Advice.limit_day,
+    Advice.reason,
+    Advice.figures,
+    Advice.depletion_mm,
+    Advice.depletion_p10_mm,
+    Advice.depletion_p90_mm,
+    Advice.limit_mm,
+    Advice.taw_mm,
+    Advice.change_mm,
+    Advice.rung,
+    Advice.data_until,
+)
+
+
+def last_morning(session: Session, today: date) -> date | None:
+    """The last morning, at most today, on which advice was issued."""
+    return session.scalar(select(func.max(Advice.issued_on)).where(Advice.issued_on <= today))
+
+
+def rounds_rows(
+    session: Session, morning: date | None, farm: str | None = None, field: str | None = None
+) -> list[RoundsRow]:
+    """Every block with its advice of `morning`, of one farm or of one field if given."""
+    statement = (
+        select(
+            Field.id,
+            Field.key,
+            Field.name,
+            Field.managed_by,
+            Field.area_ha,
+            Farm.key,
+            Farm.name,
+            Block.id,
+            Block.key,
+            Block.name,
+            IrrigationSystem.name,
+            Season.crop,
+            Season.planting,
+            Season.details,
+            *ADVICE_COLUMNS,
+        )
+        .join(Farm, Farm.id == Field.farm_id)
+        .join(Block, Block.field_id == Field.id)
+        .join(IrrigationSystem, IrrigationSystem.id == Block.system_id)
+        .outerjoin(
+            Advice,
+            and_(Advice.block_id == Block.id, Advice.issued_on == morning, Advice.stands),
+        )
+        .outerjoin(Season, Season.id == Advice.season_id)
+        .order_by(Field.name, Field.id, Block.id)
+    )
+    if farm is not None:
+        statement = statement.where(Farm.key == farm)
+    if field is not None:
+        statement = statement.where(Field.key == field)
+    return [RoundsRow._make(row) for row in session.execute(statement)]
+
+
+class SourceRow(NamedTuple):
+    """Which station feeds a variable of a field, from when."""
+
+    field_id: int
+    variable: str
+    since: date
+    station_id: int
+    station_key: str
+    station_name: str
+
+
+def sources(
+    session: Session, today: date, farm: str | None = None, variable: str | None = None
+) -> list[SourceRow]:
+    """The sources that have begun, oldest first, so that the last of a variable is in force."""
+    statement = (
+        select(
+            Source.field_id, Source.variable, Source.since, Station.id, Station.key, Station.name
+        )
+        .join(Station, Station.id == Source.station_id)
+        .where(Source.since <= today)
+        .order_by(Source.field_id, Source.variable, Source.since)
+    )
+    if variable is not None:
+        statement = statement.where(Source.variable == variable)
+    if farm is not None:
+        statement = (
+            statement.join(Field, Field.id == Source.field_id)
+            .join(Farm, Farm.id == Field.farm_id)
+            .where(Farm.key == farm)
+        )
+    return [SourceRow._make(row) for row in session.execute(statement)]
+
+
+def current(rows: Sequence[SourceRow]) -> dict[tuple[int, str], SourceRow]:
+    """The source in force for each field and variable."""
+    return {(row.field_id, row.variable): row for row in rows}
+
+
+class EventRow(NamedTuple):
+    """An event that stands."""
+
+    id: int
+    block_id: int
+    block_key: str
+    block_name: str
+    kind: str
+    day: date
+    amount: float
+    unit: str
+    purpose: str
+    confirmation: str
+    note: str | None
+    who: str
+    entered: Any
+    supersedes: int | None
+
+
+def events_since(
+    session: Session, since: date, blocks: Sequence[int] | None = None
+) -> list[EventRow]:
+    """Events that stand from a day on, newest day first; of some blocks if given."""
+    later = aliased(Event)
+    statement = (
+        select(
+            Event.id,
+            Event.block_id,
+            Block.key,
+            Block.name,
+            Event.kind,
+            Event.day,
+            Event.amount,
+            Event.unit,
+            Event.purpose,
+            Event.confirmation,
+            Event.note,
+            Event.who,
+            Event.entered,
+            Event.supersedes,
+        )
+        .join(Block, Block.id == Event.block_id)
+        .where(Event.day >= since, Event.kind != "void")
+        .where(~exists().where(later.supersedes == Event.id))
+        .order_by(Event.day.desc(), Event.id.desc())
+    )
+    if blocks is not None:
+        statement = statement.where(Event.block_id.in_(blocks))
+    return [EventRow._make(row) for row in session.execute(statement)]
+
+
+class StationRow(NamedTuple):
+    """A station of the book."""
+
+    id: int
+    key: str
+    name: str
+    details: dict[str, Any]
+
+
+def stations(session: Session) -> list[StationRow]:
+    """Every station, by name."""
+    return [
+        StationRow._make(row)
+        for row in session.execute(
+            select(Station.id, Station.key, Station.name, Station.details).order_by(Station.name)
+        )
+    ]
+
+
+class RecentDay(NamedTuple):
+    """What the strip of troubles needs of a station's day."""
+
+    station_id: int
+    day: date
+    rung: int
+    why_not: str
+    flags: str
+
+
+def recent_days(session: Session, today: date, days: int = 15) -> list[RecentDay]:
+    """The last days of every station before today that hold data, oldest first."""
+    statement = (
+        select(
+            StationDay.station_id,
+            StationDay.day,
+            StationDay.rung,
+            StationDay.why_not,
+            StationDay.flags,
+        )
+        .where(StationDay.day > today - timedelta(days=days), StationDay.day < today)
+        .where(StationDay.rung > 0, StationDay.rung < 9)
+        .order_by(StationDay.station_id, StationDay.day)
+    )
+    return [RecentDay._make(row) for row in session.execute(statement)]
+
+
+def last_days(session: Session) -> dict[int, date]:
+    """The last day with data of each station."""
+    statement = (
+        select(StationDay.station_id, func.max(StationDay.day))
+        .where(StationDay.rung > 0, StationDay.rung < 9)
+        .group_by(StationDay.station_id)
+    )
+    return {row[0]: row[1] for row in session.execute(statement)}
+
+
+def farms(session: Session, key: str | None = None) -> list[tuple[str, str]]:
+    """Key and name of every farm (or the one), by name."""
+    statement = select(Farm.key, Farm.name).order_by(Farm.name)
+    if key is not None:
+        statement = statement.where(Farm.key == key)
+    return [(row[0], row[1]) for row in session.execute(statement)]
+
+
+def field_keys(session: Session, farm: str | None = None) -> set[str]:
+    """The keys of every field, or of one farm's."""
+    statement = select(Field.key)
+    if farm is not None:
+        statement = statement.join(Farm, Farm.id == Field.farm_id).where(Farm.key == farm)
+    return set(session.scalars(statement))
+
+
+def field_of_block(session: Session) -> dict[int, int]:
+    """The field of each block."""
+    return {row[0]: row[1] for row in session.execute(select(Block.id, Block.field_id))}

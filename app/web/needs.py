@@ -1,0 +1,58 @@
+"""What routes ask for: the database, the day it is, a number from a form."""
+
+import math
+from datetime import date
+from typing import Annotated
+
+from fastapi import Depends, Request
+
+from app.storage.database import Database
+from app.web.problems import RefusedError
+
+
+def get_db(request: Request) -> Database:
+    """The application's database."""
+    db: Database = request.app.state.db
+    return db
+
+
+AsDatabase = Annotated[Database, Depends(get_db)]
+
+
+def get_today(request: Request) -> date:
+    """The day it is."""
+    from app.workflows.day_it_is import day_it_is
+
+    return day_it_is(request.app.state.db, request.app.state.settings)
+
+
+AsToday = Annotated[date, Depends(get_today)]
+
+
+def read_number(text: str, field: str) -> float:
+    """A figure as people write it, `7.5` or `7,5`; raises RefusedError with the remedy."""
+    try:
+        value = float(text.strip().replace(",", "."))
+    except ValueError:
+        value = math.nan
+    if not math.isfinite(value):
+        raise RefusedError(
+            f"{field} is {text.strip()[:40]!r}, which is no number.",
+            field,
+            text[:40],
+            "Write a number such as 7.5.",
+        )
+    return value
+
+
+def read_day(text: str, field: str) -> date:
+    """A date as date inputs send it, `2026-07-14`; raises RefusedError with the remedy."""
+    try:
+        return date.fromisoformat(text.strip())
+    except ValueError:
+        raise RefusedError(
+            f"{field} is {text.strip()[:40]!r}, which is no date.",
+            field,
+            text[:40],
+            "Write the date as 2026-07-14.",
+        ) from None

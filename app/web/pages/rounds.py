@@ -1,0 +1,208 @@
+"""Rounds: the morning page, and logging irrigations in its rows."""
+
+import secrets
+from collections import defaultdict
+from datetime import date, timedelta
+from typing import Annotated
+from urllib.parse import urlencode
+
+from fastapi import APIRouter, Query, Request, Response
+from fastapi.responses import RedirectResponse
+from starlette.datastructures import FormData
+
+from app import wording
+from app.storage import pages as store
+from app.storage.database import Database
+from app.web import rounds_view as view
+from app.web.access import AsViewer, Viewer
+from app.web.managed import one_a_field
+from app.web.needs import AsDatabase, AsToday, read_day, read_number
+from app.web.problems import RefusedError
+from app.web.render import page
+from app.web.trouble import Trouble, troubles
+
+router = APIRouter()
+EVENTS_SHOWN_DAYS = 4
+Short = Annotated[str, Query(max_length=80)]
+
+
+@router.get("/")
+def rounds(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    farm: Short = "",
+    crop: Short = "",
+    station: Short = "",
+    standing: Short = "",
+    find: Short = "",
+    sort: Short = "urgency",
+    part: Short = "",
+    logged: Short = "",
+) -> Response:
+    """All fields the viewer answers for, most urgent first."""
+    sieve = view.Sieve(farm, crop, station, standing, find, sort, part)
+    return _show(request, db, viewer, today, sieve, logged=logged)
+
+
+@router.post("/rounds/log")
+async def log(request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday) -> Response:
+    """Log the hours of every row that was filled in, then back to the first of them."""
+    from starlette.concurrency import run_in_threadpool
+
+    form = await request.form(max_fields=20_000)
+    return await run_in_threadpool(_log, request, form, db, viewer, today)
+
+
+def _log(
+    request: Request, form: FormData, db: Database, viewer: Viewer, today: date
+) -> Response:
+    from app.workflows.log_event import EventError, log_irrigation
+
+    sieve = view.Sieve(**{name: str(form.get(name, "")) for name in vars(view.Sieve())})
+    token = str(form.get("token", "")) or secrets.token_urlsafe(12)
+    filled = {
+        name.removeprefix("h."): str(value)
+        for name, value in form.multi_items()
+        if name.startswith("h.") and str(value).strip()
+    }
+    errors: dict[str, str] = {}
+    done: list[str] = []
+    with db.read() as session:
+        own = store.field_keys(session, viewer.farm)
+    for key, typed in filled.items():
+        try:
+            if key not in own:
+                raise RefusedError("There is no such field.")
+            day = read_day(str(form.get("day", "")), "the day")
+            hours = read_number(typed, "hours")
+            log_irrigation(
+                db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today
+            )
+            done.append(key)
+        except RefusedError as error:
+            errors[key] = f"{error.says} {error.remedy}".strip()
+        except EventError as error:
+            errors[key] = str(error)
+    if request.headers.get("rillbook-fragment") == "rows":
+        shown = set(filled)
+        return _show(
+            request, db, viewer, today, view.Sieve(), errors, filled, only=shown, done=done
+        )
+    if errors:
+        return _show(request, db, viewer, today, sieve, errors, filled, done=done)
+    query = sieve.query() | ({"logged": str(len(done))} if done else {})
+    anchor = f"#{done[0]}" if done else ""
+    return RedirectResponse(f"/?{urlencode(query)}{anchor}", status_code=303)
+
+
+@router.post("/rounds/up-to-date")
+def up_to_date(db: AsDatabase, today: AsToday) -> Response:
+    """Work out what is not yet worked out for today."""
+    from app.workflows.bring_up_to_date import bring_up_to_date
+
+    bring_up_to_date(db, today)
+    return RedirectResponse("/", status_code=303)
+
+
+def _show(
+    request: Request,
+    db: Database,
+    viewer: Viewer,
+    today: date,
+    sieve: view.Sieve,
+    errors: dict[str, str] | None = None,
+    typed: dict[str, str] | None = None,
+    only: set[str] | None = None,
+    done: list[str] | None = None,
+    logged: str = "",
+) -> Response:
+    errors, typed = errors or {}, typed or {}
+    with db.read() as session:
+        morning = store.last_morning(session, today)
+        rows = [row for row, _ in one_a_field(store.rounds_rows(session, morning, viewer.farm))]
+        stations = store.stations(session)
+        energy = store.current(store.sources(session, today, viewer.farm, "energy"))
+        recent = store.recent_days(session, today)
+        last = store.last_days(session)
+        events = store.events_since(session, today - timedelta(days=EVENTS_SHOWN_DAYS))
+        field_of = store.field_of_block(session)
+    by_field: dict[int, list[store.EventRow]] = defaultdict(list)
+    for event in events:
+        by_field[field_of[event.block_id]].append(event)
+    facts = view.Facts(
+        today=today,
+        stations={station.key: station.name for station in stations},
+        energy={field: row for (field, _), row in energy.items()},
+        events=by_field,
+    )
+    sifted = view.sift(rows, sieve, facts)
+    if only is not None:
+        sifted = [row for row in rows if row.field_key in only]
+    found = len(sifted)
+    first = view.first_row(sieve.part, found)
+    sifted = sifted[first : first + view.ROWS_ON_A_PAGE]
+    worded = [
+        view.word_row(
+            row,
+            facts,
+            errors.get(row.field_key, ""),
+            typed.get(row.field_key, "") if row.field_key in errors else "",
+        )
+        for row in sifted
+    ]
+    status = 422 if errors else 200
+    said = _said(done, logged, len(errors))
+    common = {"rows": worded, "token": secrets.token_urlsafe(12), "said": said}
+    if only is not None:
+        return page(request, "parts/rounds_rows.html", status, **common)
+    return page(
+        request,
+        "pages/rounds.html",
+        status,
+        **common,
+        today=today,
+        morning=morning,
+        yesterday=today - timedelta(days=1),
+        total=len(rows),
+        found=found,
+        more=view.parts(sieve, found),
+        counts=view.counts(rows),
+        asked=view.asked_for(rows, today),
+        troubles=_troubles(stations, recent, last, facts, rows, today, viewer),
+        sieve=sieve,
+        sieve_query=sieve.query(),
+        sorts=[(name, label) for name, (label, _) in view.SORTS.items()],
+        farms=sorted({(row.farm_key, row.farm_name) for row in rows}, key=lambda f: f[1]),
+        crops=view.crops_of(rows),
+        stations=[(station.key, station.name) for station in stations],
+        standings=[*view.ORDER, "unsure", "none"],
+    )
+
+
+def _said(done: list[str] | None, logged: str, errors: int) -> str:
+    count = len(done) if done else int(logged) if logged.isdigit() else 0
+    said = f"Logged for {wording.counted(count, 'field', 'fields')}. " if count else ""
+    if errors:
+        said += f"Not logged for {wording.counted(errors, 'field', 'fields')}: see its row."
+    return said.strip()
+
+
+def _troubles(
+    stations: list[store.StationRow],
+    recent: list[store.RecentDay],
+    last: dict[int, date],
+    facts: view.Facts,
+    rows: list[store.RoundsRow],
+    today: date,
+    viewer: Viewer,
+) -> list[Trouble]:
+    """The strip: every station, or for a grower those that feed the farm."""
+    fields: dict[int, int] = defaultdict(int)
+    for row in rows:
+        source = facts.energy.get(row.field_id)
+        if source is not None:
+            fields[source.station_id] += 1
+    shown = [s for s in stations if viewer.farm is None or s.id in fields]
+    return troubles(shown, recent, last, fields, today)

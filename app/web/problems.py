@@ -1,0 +1,142 @@
+"""Refusals and errors: a page in plain words, or problem details (RFC 9457) for the API."""
+
+from collections.abc import Sequence
+from typing import Any
+
+from fastapi import FastAPI, Request
+from fastapi.exceptions import RequestValidationError
+from fastapi.responses import JSONResponse, PlainTextResponse, RedirectResponse, Response
+from starlette.exceptions import HTTPException
+from starlette.types import Scope
+
+from app.web.access import NoWayInError
+from app.web.render import page
+
+PROBLEM = "application/problem+json"
+TITLES = {
+    400: "This cannot be read",
+    401: "Nobody has entered yet",
+    403: "Not open to you",
+    404: "There is no such page",
+    405: "This address does not take that",
+    409: "Something stands in the way",
+    413: "Too large",
+    421: "Not served under this name",
+    422: "Something has to be put right first",
+    500: "Something went wrong on our side",
+}
+LOST_NOTHING = "Nothing was stored or changed."
+REFUSED = {
+    "host": "This server answers only as 127.0.0.1 or localhost, on its own machine; it was "
+    "asked for as {value!r}.",
+    "origin": "The form was sent from {value}, not from a page of this program. "
+    "Open the page here and send it again.",
+}
+
+
+class RefusedError(Exception):
+    """Input that cannot be used: field, value, what is wrong, and the remedy."""
+
+    def __init__(
+        self, says: str, field: str | None = None, value: str | None = None, remedy: str = ""
+    ) -> None:
+        super().__init__(says)
+        self.says, self.field, self.value, self.remedy = says, field, value, remedy
+
+
+def problem(status: int, detail: str, errors: Sequence[dict[str, Any]] = ()) -> JSONResponse:
+    """Problem details; `errors` name each field, value and remedy."""
+    content: dict[str, Any] = {
+        "title": TITLES.get(status, "Refused"),
+        "status": status,
+        "detail": detail,
+    }
+    if errors:
+        content["errors"] = list(errors)
+    return JSONResponse(content, status_code=status, media_type=PROBLEM)
+
+
+def refusal(scope: Scope, status: int, kind: str, value: str) -> Response:
+    """An answer before any route has been looked up."""
+    detail = REFUSED[kind].format(value=value[:100])
+    if scope["path"].startswith("/api/"):
+        return problem(status, detail)
+    return PlainTextResponse(f"{TITLES[status]}. {detail} {LOST_NOTHING}\n", status_code=status)
+
+
+def is_api(request: Request) -> bool:
+    """Whether the request wants problem details rather than a page."""
+    return request.url.path.startswith("/api/")
+
+
+def error_page(request: Request, status: int, detail: str, lines: Sequence[str] = ()) -> Response:
+    """A page that says what went wrong and leads back."""
+    title = TITLES.get(status, "Refused")
+    return page(request, "error.html", status, title=title, detail=detail, lines=lines)
+
+
+def _http(request: Request, error: Exception) -> Response:
+    assert isinstance(error, HTTPException)
+    detail = str(error.detail)
+    if error.status_code == 404 and detail == "Not Found":
+        detail = f"Nothing is kept at {request.url.path[:120]}."
+    if error.status_code == 405:
+        detail = f"{request.method} is not taken at {request.url.path[:120]}."
+    if is_api(request):
+        return problem(error.status_code, detail)
+    return error_page(request, error.status_code, detail)
+
+
+def _validation(request: Request, error: Exception) -> Response:
+    assert isinstance(error, RequestValidationError)
+    found = [
+        {
+            "field": ".".join(str(step) for step in item["loc"][1:]) or str(item["loc"][0]),
+            "value": _shown(item.get("input")),
+            "remedy": str(item["msg"]).removeprefix("Value error, "),
+        }
+        for item in error.errors()
+    ]
+    if is_api(request):
+        return problem(422, f"{LOST_NOTHING} See each of `errors`.", found)
+    if request.method == "GET" and request.scope.get("path_params"):
+        return error_page(request, 404, f"Nothing is kept at {request.url.path[:120]}.")
+    lines = [f"{item['field']} is {item['value']!r}: {item['remedy']}." for item in found]
+    return error_page(request, 422, LOST_NOTHING, lines)
+
+
+def _refused(request: Request, error: Exception) -> Response:
+    assert isinstance(error, RefusedError)
+    if is_api(request):
+        item = {"field": error.field, "value": error.value, "remedy": error.remedy}
+        return problem(422, error.says, [item] if error.field else [])
+    lines = [error.remedy] if error.remedy else []
+    return error_page(request, 422, f"{error.says} {LOST_NOTHING}", lines)
+
+
+def _needs_way_in(request: Request, error: Exception) -> Response:
+    if is_api(request):
+        return problem(401, "Open /enter/advisor, /enter/grower or /enter/admin first.")
+    return RedirectResponse("/enter", status_code=303)
+
+
+def _unforeseen(request: Request, error: Exception) -> Response:
+    detail = "The program met an error it does not know; it stands in the server's log."
+    if is_api(request):
+        return problem(500, detail)
+    return error_page(request, 500, detail)
+
+
+def _shown(value: Any) -> Any:
+    if isinstance(value, str):
+        return value[:100]
+    return value if value is None or isinstance(value, (int, float, bool)) else str(value)[:100]
+
+
+def install(app: FastAPI) -> None:
+    """Give the app its handlers."""
+    app.add_exception_handler(HTTPException, _http)
+    app.add_exception_handler(RequestValidationError, _validation)
+    app.add_exception_handler(RefusedError, _refused)
+    app.add_exception_handler(NoWayInError, _needs_way_in)
+    app.add_exception_handler(Exception, _unforeseen)

@@ -1,0 +1,70 @@
+"""Templates: one environment, one way to answer with a page."""
+
+from typing import Any
+
+from fastapi import Request
+from fastapi.responses import HTMLResponse
+from jinja2 import Environment, FileSystemLoader, StrictUndefined
+
+from app import wording
+from app.resources import resource
+from app.web.access import viewer_of
+
+PAGES = (
+    ("Rounds", "/", "/"),
+    ("Stations", "/stations", "/stations"),
+    ("Intake", "/intake", "/intake"),
+    ("Methods", "/methods", "/methods"),
+)
+
+
+def make_environment() -> Environment:
+    """The template environment: everything escaped, an unknown name is an error."""
+    environment = Environment(
+        loader=FileSystemLoader(resource("templates")),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        auto_reload=False,
+    )
+    environment.filters.update(
+        number=wording.number,
+        blank=wording.blank,
+        depth=wording.depth,
+        signed=wording.signed,
+        volume=wording.volume,
+        share=wording.share,
+        plain=wording.plain,
+        long_day=wording.long_day,
+        short_day=wording.short_day,
+        plain_day=wording.plain_day,
+        full_day=wording.full_day,
+        rung=wording.rung,
+    )
+    environment.globals.update(caution=wording.CAUTION, caution_title=wording.CAUTION_TITLE)
+    return environment
+
+
+def page(request: Request, template: str, status: int = 200, /, **context: Any) -> HTMLResponse:
+    """An answer from a template; every page knows its viewer and where it is."""
+    viewer = viewer_of(request)
+    text = request.app.state.templates.get_template(template).render(
+        context,
+        viewer=viewer,
+        demo=request.app.state.settings.demo,
+        asset=request.app.state.assets.address,
+        pages=[
+            (name, path, current_page(request.url.path, start))
+            for name, path, start in PAGES
+            if viewer.may("GET", path)
+        ],
+    )
+    return HTMLResponse(text, status_code=status)
+
+
+def current_page(path: str, start: str) -> bool:
+    """Whether a path belongs to a page of the menu; fields belong to Rounds."""
+    if start == "/":
+        return path == "/" or path.startswith(("/fields", "/rounds"))
+    return path == start or path.startswith(start + "/")

@@ -1,0 +1,248 @@
+"""What the Rounds show: rows already worded, sifted and put in order."""
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
+from datetime import date, timedelta
+from typing import Any, NamedTuple
+from urllib.parse import urlencode
+
+from app import wording
+from app.storage.pages import EventRow, RoundsRow, SourceRow
+from app.web.crops import crop_name, season_words
+
+ORDER = {"late": 0, "due": 1, "soon": 2, "easy": 3, "wet": 4}
+NOT_STANDING = 9
+ROWS_ON_A_PAGE = 500
+
+
+class Bar(NamedTuple):
+    """The bullet bar, in per cent of TAW: ink, limit, the part past it, the range."""
+
+    ink: int
+    limit: int
+    past: int
+    low: int
+    width: int
+
+
+def bar(depletion: float, limit: float, taw: float, p10: float, p90: float) -> Bar:
+    """The bullet bar of a depletion; nothing is drawn beyond TAW."""
+
+    def place(value: float) -> int:
+        return round(100 * min(max(value / taw, 0.0), 1.0)) if taw > 0 and value == value else 0
+
+    ink, tick, low = place(min(depletion, limit)), place(limit), place(p10)
+    return Bar(ink, tick, max(place(depletion) - tick, 0), low, max(place(p90) - low, 0))
+
+
+class Row(NamedTuple):
+    """One field of the Rounds."""
+
+    key: str
+    name: str
+    block: str
+    farm: str
+    crop: str
+    ran: str
+    error: str
+    typed: str
+    standing: str = "none"
+    unsure: str = ""
+    bar: Bar | None = None
+    depletion: str = ""
+    span: str = ""
+    limit: str = ""
+    taw: str = ""
+    when: str = ""
+    gross: str = ""
+    net: str = ""
+    hours: str = ""
+    why: str = ""
+    change: str = ""
+    rung: str = ""
+    age: str = ""
+
+
+@dataclass(frozen=True)
+class Sieve:
+    """What the advisor asked to see."""
+
+    farm: str = ""
+    crop: str = ""
+    station: str = ""
+    standing: str = ""
+    find: str = ""
+    sort: str = "urgency"
+    part: str = ""
+
+    def query(self) -> dict[str, str]:
+        """The parts that differ from the plain page."""
+        return {name: value for name, value in vars(self).items() if value and value != "urgency"}
+
+
+@dataclass(frozen=True)
+class Facts:
+    """What is known beside the rows themselves."""
+
+    today: date
+    stations: Mapping[str, str]
+    energy: Mapping[int, SourceRow] = field(default_factory=dict)
+    events: Mapping[int, Sequence[EventRow]] = field(default_factory=dict)
+
+
+SORTS: dict[str, tuple[str, Callable[[RoundsRow], Any]]] = {
+    "urgency": ("most urgent first", lambda row: urgency(row)),
+    "day": ("day to water", lambda row: (row.day or date.max, urgency(row))),
+    "field": ("field", lambda row: row.field_name.casefold()),
+    "farm": ("farm", lambda row: (row.farm_name.casefold(), urgency(row))),
+    "depletion": ("depletion, deepest first", lambda row: -(row.depletion_mm or 0.0)),
+    "hours": ("hours, longest first", lambda row: -(row.hours or 0.0)),
+}
+
+
+def urgency(row: RoundsRow) -> tuple[Any, ...]:
+    """The place of a row: standing, day to water, nearness to the limit, name."""
+    if row.number is None:
+        return (NOT_STANDING, date.max, 0.0, row.field_name)
+    nearness = row.depletion_mm / row.limit_mm if row.limit_mm > 0 else row.depletion_mm
+    return (
+        ORDER.get(row.standing or "", NOT_STANDING),
+        row.day or row.limit_day or date.max,
+        -nearness,
+        row.field_name,
+    )
+
+
+def sift(rows: Sequence[RoundsRow], sieve: Sieve, facts: Facts) -> list[RoundsRow]:
+    """The rows the sieve lets through, in its order."""
+    needle = sieve.find.strip().casefold()
+
+    def passes(row: RoundsRow) -> bool:
+        energy = facts.energy.get(row.field_id)
+        return (
+            (not sieve.farm or row.farm_key == sieve.farm)
+            and (not sieve.crop or row.crop == sieve.crop)
+            and (not sieve.station or (energy is not None and energy.station_key == sieve.station))
+            and (not sieve.standing or in_standing(row, sieve.standing))
+            and (not needle or needle in f"{row.field_name} {row.farm_name}".casefold())
+        )
+
+    return sorted(filter(passes, rows), key=SORTS.get(sieve.sort, SORTS["urgency"])[1])
+
+
+def first_row(part: str, found: int) -> int:
+    """Where a part of a long list begins; the first where `part` names none."""
+    number = int(part) if part.isdigit() and len(part) < 6 else 1
+    first = (number - 1) * ROWS_ON_A_PAGE
+    return first if 0 <= first < found else 0
+
+
+def parts(sieve: Sieve, found: int) -> list[tuple[str, str, bool]]:
+    """Label, query and whether it is shown, of each part of a list too long for one page."""
+    here = first_row(sieve.part, found)
+    starts = range(0, found, ROWS_ON_A_PAGE)
+    if len(starts) < 2:
+        return []
+    return [
+        (
+            f"{start + 1} to {min(start + ROWS_ON_A_PAGE, found)}",
+            urlencode(sieve.query() | {"part": str(number)}),
+            start == here,
+        )
+        for number, start in enumerate(starts, 1)
+    ]
+
+
+def in_standing(row: RoundsRow, standing: str) -> bool:
+    """Whether a row is counted under a standing; `unsure` is the mark, `none` no advice."""
+    if standing == "unsure":
+        return bool(row.unsure)
+    return (row.standing or "none") == standing
+
+
+def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> Row:
+    """A row in words."""
+    ran = "; ".join(event_words(event, facts.today) for event in facts.events.get(row.field_id, ()))
+    plain = Row(
+        row.field_key,
+        row.field_name,
+        row.block_name,
+        row.farm_name,
+        season_words(row.crop, row.planting, row.season, facts.today),
+        ran,
+        error,
+        typed,
+    )
+    if row.number is None:
+        return plain
+    watering = row.day is not None and row.gross_mm > 0
+    return plain._replace(
+        standing=row.standing or "none",
+        unsure=" ".join(wording.unsure(row.unsure, facts.stations)),
+        bar=bar(
+            row.depletion_mm, row.limit_mm, row.taw_mm, row.depletion_p10_mm, row.depletion_p90_mm
+        ),
+        depletion=wording.depth(row.depletion_mm),
+        span=span(row.depletion_p10_mm, row.depletion_p90_mm),
+        limit=wording.depth(row.limit_mm),
+        taw=wording.depth(row.taw_mm),
+        when=when(row.day, facts.today) if watering else "no water",
+        gross=wording.depth(row.gross_mm) if watering else "",
+        net=wording.depth(row.net_mm) if watering else "",
+        hours=wording.number(row.hours, 1) if watering else "",
+        why=wording.reason(row.reason, row.figures, facts.today),
+        change="" if row.change_mm is None else wording.signed(row.change_mm),
+        rung=wording.rung(row.rung),
+        age=age(row.data_until, facts.today),
+    )
+
+
+def when(day: date | None, today: date) -> str:
+    """The day to water: today, tomorrow, else weekday and date."""
+    if day is None:
+        return "no water"
+    return wording.NEAR.get((day - today).days) or wording.short_day(day)
+
+
+def span(p10: float, p90: float) -> str:
+    """The range, or nothing where there is none."""
+    if not (p10 == p10 and p90 == p90):
+        return ""
+    return f"{wording.depth(p10)} to {wording.depth(p90)}"
+
+
+def age(until: date | None, today: date) -> str:
+    """Until when the data reach, said only where that is before yesterday."""
+    if until is None:
+        return "no data"
+    return "" if until >= today - timedelta(days=1) else f"data to {wording.short_day(until)}"
+
+
+def event_words(event: EventRow, today: date) -> str:
+    """`7.5 h yesterday`, `12 mm of rain on Monday, presumed done`."""
+    amount = f"{wording.number(event.amount, 1)} {wording.word(wording.UNITS, event.unit)}"
+    kind = " rain" if event.kind == "rain" else ""
+    doubt = (
+        f", {wording.word(wording.CONFIRMATIONS, event.confirmation)}"
+        if event.confirmation in wording.UNCONFIRMED
+        else ""
+    )
+    return f"{amount}{kind} {wording.near_day(event.day, today)}{doubt}"
+
+
+def crops_of(rows: Sequence[RoundsRow]) -> list[tuple[str, str]]:
+    """The crops that stand on the fields, by name."""
+    return sorted({(row.crop, crop_name(row.crop)) for row in rows if row.crop}, key=lambda c: c[1])
+
+
+def counts(rows: Sequence[RoundsRow]) -> list[tuple[str, int]]:
+    """How many fields there are of each standing, and how many are unsure."""
+    found = [(name, sum(row.standing == name for row in rows)) for name in ORDER]
+    found.append(("unsure", sum(bool(row.unsure) for row in rows)))
+    return [(name, count) for name, count in found if count]
+
+
+def asked_for(rows: Sequence[RoundsRow], today: date) -> float:
+    """Volume [m3] asked for today and tomorrow."""
+    last = today + timedelta(days=1)
+    return sum(row.volume_m3 for row in rows if row.day is not None and row.day <= last)

@@ -1,0 +1,97 @@
+"""Stations with trouble: silent, fallen to a lower rung, or with checks that failed."""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from datetime import date, timedelta
+
+from app import wording
+from app.storage.pages import RecentDay, StationRow
+from app.wording import flag_words, why_words
+
+STALE_DAYS = 2
+
+
+@dataclass(frozen=True)
+class Trouble:
+    """One station's trouble, worded; `stale` when its data are older than two days."""
+
+    key: str
+    name: str
+    says: tuple[str, ...]
+    stale: bool
+    fields: int
+
+
+def age_days(last: date | None, today: date) -> int | None:
+    """Days between a station's last day with data and today; 1 is yesterday, as it should be."""
+    return None if last is None else (today - last).days
+
+
+def silence(last: date | None, today: date) -> str:
+    """What to say of a station by the last day it sent; nothing when yesterday is there."""
+    age = age_days(last, today)
+    if last is None or age is None:
+        return "has sent nothing yet."
+    if age <= 1:
+        return ""
+    if age == STALE_DAYS:
+        return f"yesterday is missing; last data {wording.short_day(last)}."
+    return f"nothing received for {wording.days(age - 1)}; last data {wording.short_day(last)}."
+
+
+def usual_rung(days: Sequence[RecentDay]) -> int:
+    """The rung that served most of the days; of two as frequent the better."""
+    rungs = [day.rung for day in days]
+    return min(set(rungs), key=lambda rung: (-rungs.count(rung), rung))
+
+
+def rung_fall(days: Sequence[RecentDay]) -> str:
+    """What to say when the last day rests on a lower rung than the days before it."""
+    if len(days) < 3 or days[-1].rung <= (usual := usual_rung(days[:-1])):
+        return ""
+    since = days[-1].day
+    for day in reversed(days):
+        if day.rung <= usual:
+            break
+        since = day.day
+    reason = why_words(days[-1].why_not, up_to=usual)
+    return (
+        f"energy fell from {wording.rung(usual)} to {wording.rung(days[-1].rung)} since "
+        f"{wording.short_day(since)}" + (f": {reason}." if reason else ".")
+    )
+
+
+def raised(days: Sequence[RecentDay], today: date) -> str:
+    """The checks that failed within the last two days."""
+    said: dict[str, None] = {}
+    for day in days:
+        if day.day >= today - timedelta(days=STALE_DAYS):
+            said.update(dict.fromkeys(flag_words(day.flags)))
+    return "; ".join(said) + "." if said else ""
+
+
+def troubles(
+    stations: Iterable[StationRow],
+    recent: Sequence[RecentDay],
+    last: dict[int, date],
+    fields: dict[int, int],
+    today: date,
+) -> list[Trouble]:
+    """Every station with trouble, silent ones first."""
+    found = []
+    for station in stations:
+        days = [day for day in recent if day.station_id == station.id]
+        quiet = silence(last.get(station.id), today)
+        says = [quiet, rung_fall(days), raised(days, today)]
+        if any(says):
+            age = age_days(last.get(station.id), today)
+            found.append(
+                Trouble(
+                    station.key,
+                    station.name,
+                    tuple(text for text in says if text),
+                    age is None or age > STALE_DAYS,
+                    fields.get(station.id, 0),
+                )
+            )
+    return sorted(found, key=lambda trouble: (not trouble.stale, trouble.name))

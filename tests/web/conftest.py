@@ -1,0 +1,76 @@
+"""The real app over a real database, in this process; no network."""
+
+import asyncio
+from collections.abc import Callable, Iterator
+from pathlib import Path
+from typing import Any
+
+import httpx
+import pytest
+
+from app.main import create_app
+from app.settings import Settings
+from app.storage.database import Database
+from tests.web.factory import TODAY, fill
+
+
+class Browser:
+    """Sends requests to the app as a page of its own would, and keeps the cookie."""
+
+    def __init__(self, db: Database, demo: bool = False) -> None:
+        self.db = db
+        self.app = create_app(Settings(database=db.url, today=TODAY, demo=demo), db)
+        self.cookies = httpx.Cookies()
+
+    def request(self, method: str, path: str, **more: Any) -> httpx.Response:
+        """One request."""
+
+        async def send() -> httpx.Response:
+            transport = httpx.ASGITransport(self.app, raise_app_exceptions=False)
+            async with httpx.AsyncClient(
+                transport=transport, base_url="http://localhost", cookies=self.cookies
+            ) as client:
+                answer = await client.request(method, path, **more)
+                self.cookies.update(client.cookies)
+                return answer
+
+        return asyncio.run(send())
+
+    def get(self, path: str, **more: Any) -> httpx.Response:
+        """GET."""
+        return self.request("GET", path, **more)
+
+    def post(self, path: str, **more: Any) -> httpx.Response:
+        """POST."""
+        return self.request("POST", path, **more)
+
+
+@pytest.fixture
+def empty_db(tmp_path: Path) -> Iterator[Database]:
+    """A migrated database without rows."""
+    db = Database(f"sqlite:///{tmp_path / 'pages.sqlite'}")
+    db.migrate()
+    yield db
+    db.close()
+
+
+@pytest.fixture(scope="module")
+def filled_db(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Database]:
+    """A database with the factory's rows, for tests that only read."""
+    db = Database(f"sqlite:///{tmp_path_factory.mktemp('filled') / 'pages.sqlite'}")
+    db.migrate()
+    fill(db)
+    yield db
+    db.close()
+
+
+@pytest.fixture
+def browse(filled_db: Database) -> Browser:
+    """The admin's browser on the factory's rows."""
+    return Browser(filled_db)
+
+
+@pytest.fixture
+def open_browser() -> Callable[..., Browser]:
+    """A browser on any database."""
+    return Browser
