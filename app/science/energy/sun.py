@@ -151,7 +151,8 @@ def elevation_at_instants(
 
     Arguments: `latitude_deg`, `longitude_deg` [east positive]; `instants_utc_s`, any shape
     [seconds since 1970-01-01 UTC]. Returns sin(beta) and d_r [-].
-    Source: FAO-56 eq 23, 24, 31-33 (within about half a degree of an almanac).
+    Source: FAO-56 eq 23, 24, 31-33 (within about 1.5 degrees of an almanac, for eq 24 is off by
+    up to a degree in autumn).
     """
     seconds = np.asarray(instants_utc_s).astype(np.int64)
     # the solar day the instant falls in at this longitude
