@@ -2,7 +2,7 @@
 
 import zlib
 from copy import deepcopy
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, timedelta
 from typing import Any
 
@@ -21,12 +21,16 @@ class Watered:
     events: list[dict[str, Any]]
     depletion: float
     limit: float
-    etc: float
+    left: int  # the limit is passed by the close of this day, today being 1; 0: it is passed
 
     @property
-    def days_left(self) -> float:
-        """Days from this morning until the limit is passed; negative when it is."""
-        return (self.limit - self.depletion) / max(self.etc, 0.1)
+    def standing(self) -> str:
+        """A guess at where the field stands: systems that cover a field in more than a day start earlier."""
+        if self.left == 0:
+            return "late"
+        if self.depletion <= 0:
+            return "wet"
+        return "due" if self.left <= 2 else "soon" if self.left <= 5 else "easy"
 
 
 def seasons_of(field: str, name: str, year: int) -> dict[str, Any]:
@@ -53,8 +57,15 @@ def part_of_book(knobs: dict[str, Any]) -> dict[str, Any]:
     fields, seasons = [], []
     for farm, grower in tables.GROWERS.items():
         for key, name, area, soil, system, _, before, now, _ in grower["fields"]:
-            part: dict[str, Any] = {"key": key, "name": name, "farm": farm, "area_ha": area,
-                                    "station": grower["station"], "soil": soil, "system": system}
+            part: dict[str, Any] = {
+                "key": key,
+                "name": name,
+                "farm": farm,
+                "area_ha": area,
+                "station": grower["station"],
+                "soil": soil,
+                "system": system,
+            }
             if key in tables.SOURCES:
                 part["sources"] = tables.SOURCES[key]
             if key in tables.BLOCKS:
@@ -70,8 +81,14 @@ def part_of_book(knobs: dict[str, Any]) -> dict[str, Any]:
                 ]
             fields.append(part)
             seasons += [seasons_of(key, before, 2025), seasons_of(key, now, 2026)]
-    return {"stations": tables.STATIONS, "soils": tables.SOILS, "systems": tables.SYSTEMS,
-            "farms": tables.FARMS, "fields": fields, "seasons": seasons}
+    return {
+        "stations": tables.STATIONS,
+        "soils": tables.SOILS,
+        "systems": tables.SYSTEMS,
+        "farms": tables.FARMS,
+        "fields": fields,
+        "seasons": seasons,
+    }
 
 
 def season_end(season: dict[str, Any]) -> date:
@@ -82,9 +99,17 @@ def season_end(season: dict[str, Any]) -> date:
 class Grower:
     """Waters one field through one season the way its grower does."""
 
-    def __init__(self, field: dict[str, Any], season: dict[str, Any], book: dict[str, Any],
-                 days: Days, how: str, habits: dict[str, Any]) -> None:
-        self.field, self.season, self.days, self.how, self.habits = field, season, days, how, habits
+    def __init__(
+        self,
+        field: dict[str, Any],
+        season: dict[str, Any],
+        book: dict[str, Any],
+        days: Days,
+        how: str,
+        habits: dict[str, Any],
+    ) -> None:
+        self.field, self.season, self.how, self.habits = field, season, how, habits
+        self.days = days
         crops, soils = table("crops.csv", "crop_id"), table("soils.csv", "texture_id")
         wetting = table("wetting.csv", "method_id")
         self.system = next(s for s in book["systems"] if s["key"] == field["system"])
@@ -93,7 +118,9 @@ class Grower:
         blocks = field.get("blocks") or [{}]
         blocks = [b for b in blocks if b and b["key"] == field["managed_by"]] or blocks
         self.roots = [
-            Root(crop_of(season, crops), soil_of(by_key[b.get("soil", field["soil"])], soils), share)
+            Root(
+                crop_of(season, crops), soil_of(by_key[b.get("soil", field["soil"])], soils), share
+            )
             for b in blocks
         ]
         self.fw = self.system.get("wetted_fraction") or float(
@@ -137,15 +164,34 @@ class Grower:
                 events.append(event)
                 previous, due, wait = day, None, self._mood(rng)
             for root in self.roots:
-                root.day((day - planting).days + 1, i, self.days, net, self.fw,
-                         s.get("under_canopy", False))
+                root.day(
+                    (day - planting).days + 1,
+                    i,
+                    self.days,
+                    net,
+                    self.fw,
+                    s.get("under_canopy", False),
+                )
         worst = max(self.roots, key=lambda r: r.depletion / r.limit)
-        return Watered(events, worst.depletion, worst.limit, worst.etc)
+        depletion, limit, left = worst.depletion, worst.limit, 0
+        while worst.depletion <= worst.limit and left < 14:
+            day, left = today + timedelta(left), left + 1
+            worst.day(
+                (day - planting).days + 1,
+                self.days.at(day),
+                self.days,
+                0.0,
+                self.fw,
+                s.get("under_canopy", False),
+            )
+        return Watered(events, depletion, limit, left)
 
     def _mood(self, rng: np.random.Generator) -> float:
         return float(self.habits["wait"] * (1 + 0.10 * rng.standard_normal()))
 
-    def _event(self, day: date, wanted: float, rng: np.random.Generator) -> tuple[dict[str, Any], float]:
+    def _event(
+        self, day: date, wanted: float, rng: np.random.Generator
+    ) -> tuple[dict[str, Any], float]:
         """The irrigation as the grower enters it, and its net depth [mm]."""
         s = self.system
         gross = float(np.clip(wanted / s["efficiency"], s["least_mm"], s["most_mm"]))
@@ -175,17 +221,18 @@ def aimed(grower: Grower, today: date, aim: str, knobs: dict[str, Any]) -> Water
     usual = grower.water(today)
     if aim not in knobs["aims"]:
         return usual
-    low, high = knobs["aims"][aim]
+    low, high, target = knobs["aims"][aim]
     best, distance = usual, np.inf
     for back in range(6, 24, 2):
         for part in (0.35, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.1, 1.2):
             for fill in (0.7, 0.85, 1.0, 1.15):
                 made = grower.water(today, (today - timedelta(back), part, fill))
-                left = 99.0 if made.depletion <= 0.5 else made.days_left
-                off = max(low - left, left - high, 0.0) + 0.05 * abs(part - 0.85) + 0.002 * back
+                left = 99.0 if made.depletion <= 0 else made.left
+                off = max(low - left, left - high, 0.0) + 0.1 * (left != target)
+                off += 0.05 * abs(part - 0.85) + 0.002 * back
                 if off < distance:
                     best, distance = made, off
-        if distance < 0.1:
+        if distance < 0.08:
             break
     return best
 
@@ -206,14 +253,18 @@ def make_book(days: dict[str, Days], knobs: dict[str, Any]) -> tuple[dict[str, A
         weather = days[part["station"]]
         if len(set(stations.values())) > 1:
             weather = mixed(*(days[stations[v]] for v in ("temperature", "energy", "wind", "rain")))
-        grower = Grower(part, season, book, weather, row[5], tables.GROWERS[farm])
+        weather = replace(weather, rain=weather.rain.copy(), slope=[])
+        for gauge in knobs["gauges"]:
+            if gauge["field"] == key:
+                weather.rain[weather.at(date.fromisoformat(gauge["day"]))] = gauge["rain_mm"]
+        grower = Grower(part, season, book, weather.ahead(today), row[5], tables.GROWERS[farm])
         running = date.fromisoformat(season["planting"]) <= today <= season_end(season)
         watered = aimed(grower, today, row[8] if running else "", knobs)
         irrigations += watered.events
         if running:
             report.append(
                 f"{key:15} {season['crop'][:22]:22} aim {row[8]:5} depletion {watered.depletion:5.1f} "
-                f"limit {watered.limit:5.1f} etc {watered.etc:4.1f} left {watered.days_left:5.1f} d, "
+                f"limit {watered.limit:5.1f} left {watered.left:2} {watered.standing} "
                 f"{len(watered.events)} irrigations"
             )
     irrigations += knobs["other_irrigations"]

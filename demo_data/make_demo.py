@@ -18,9 +18,14 @@ KNOBS: dict[str, Any] = {
     "today": "2026-07-14",
     "book": {
         "today": "2026-07-14",
-        # days left until the limit is passed, this morning: from, to
-        "aims": {"late": (-1.6, -0.25), "due": (0.4, 1.3), "soon": (2.3, 4.2), "easy": (5.5, 30.0),
-                 "wet": (98.0, 99.0)},
+        # the limit is passed by the close of which day, today being 1: from, to, best
+        "aims": {
+            "late": (0, 0, 0),
+            "due": (1, 2, 2),
+            "soon": (3, 5, 4),
+            "easy": (6, 14, 8),
+            "wet": (99, 99, 99),
+        },
         "other_irrigations": [
             {"field": "peach-corner", "day": "2026-04-19", "hours": 6, "purpose": "frost"},
             {"field": "north-rows", "day": "2025-04-17", "hours": 5, "purpose": "frost"},
@@ -29,8 +34,18 @@ KNOBS: dict[str, Any] = {
             {"field": "back-forty", "day": "2026-04-24", "gross_mm": 60, "purpose": "leaching"},
         ],
         "gauges": [
-            {"field": "low-meadow", "day": "2026-07-12", "rain_mm": 31, "note": "gauge at the dairy"},
-            {"field": "calf-pasture", "day": "2026-07-12", "rain_mm": 28, "note": "gauge at the dairy"},
+            {
+                "field": "low-meadow",
+                "day": "2026-07-12",
+                "rain_mm": 31,
+                "note": "gauge at the dairy",
+            },
+            {
+                "field": "calf-pasture",
+                "day": "2026-07-12",
+                "rain_mm": 28,
+                "note": "gauge at the dairy",
+            },
             {"field": "vine-terrace", "day": "2026-05-12", "rain_mm": 9.5},
         ],
     },
@@ -77,14 +92,22 @@ KNOBS: dict[str, Any] = {
         },
         # station 3: date -> which of high, low, rain were not read
         "unread": {
-            "2025-04-12": (2,), "2025-07-04": (0, 1, 2), "2025-11-27": (0, 1), "2025-12-25": (0, 1, 2),
-            "2026-05-09": (1,), "2026-06-14": (0, 1, 2), "2026-07-04": (2,),
+            "2025-04-12": (2,),
+            "2025-07-04": (0, 1, 2),
+            "2025-11-27": (0, 1),
+            "2025-12-25": (0, 1, 2),
+            "2026-05-09": (1,),
+            "2026-06-14": (0, 1, 2),
+            "2026-07-04": (2,),
         },
         "spikes": {
             "tarrow-north": [
-                ("t", "2025-04-22T13:30", 85.0), ("sw_down", "2025-06-24T11:00", 2480.0),
-                ("wind", "2025-09-03T16:00", 99.9), ("rh", "2026-03-18T07:00", 131.0),
-                ("t", "2026-06-11T04:00", -48.7), ("pressure", "2026-05-02T10:00", 0.0),
+                ("t", "2025-04-22T13:30", 85.0),
+                ("sw_down", "2025-06-24T11:00", 2480.0),
+                ("wind", "2025-09-03T16:00", 99.9),
+                ("rh", "2026-03-18T07:00", 131.0),
+                ("t", "2026-06-11T04:00", -48.7),
+                ("pressure", "2026-05-02T10:00", 0.0),
             ],
             "ferrin-bench": [("t", "2025-05-28T15:00", 71.5), ("wind", "2026-03-08T05:00", 402.0)],
         },
@@ -110,9 +133,15 @@ KNOBS: dict[str, Any] = {
         "late_name": "tarrow-north-june-found.csv",
     },
     "arrival": [
-        "tarrow-north-2025.csv", "ferrin-bench-2025.csv", "sand-lane-2025.csv",
-        "tarrow-north-2026-spring.csv", "sand-lane-2026.csv", "sand-lane-july.csv",
-        "ferrin-bench-2026.csv", "tarrow-north-2026-summer.csv", "tarrow-north-june-found.csv",
+        "tarrow-north-2025.csv",
+        "ferrin-bench-2025.csv",
+        "sand-lane-2025.csv",
+        "tarrow-north-2026-spring.csv",
+        "sand-lane-2026.csv",
+        "sand-lane-july.csv",
+        "ferrin-bench-2026.csv",
+        "tarrow-north-2026-summer.csv",
+        "tarrow-north-june-found.csv",
     ],
 }
 
@@ -145,8 +174,10 @@ def make_all() -> tuple[dict[str, bytes], list[str]]:
         files |= {file.name: file for file in write(record, loggers)}
     out = {name: files[name].data for name in KNOBS["arrival"]}
     out["intakes.json"] = as_json(
-        [{"station": files[n].station, "file": n, "mapping": files[n].mapping}
-         for n in KNOBS["arrival"]]
+        [
+            {"station": files[n].station, "file": n, "mapping": files[n].mapping}
+            for n in KNOBS["arrival"]
+        ]
     )
     book, report = make_book(station_table(weather, station_days), KNOBS["book"])
     out["book.json"] = as_json(book)

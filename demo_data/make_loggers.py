@@ -116,12 +116,30 @@ def four_components(weather: Weather, knobs: dict[str, Any]) -> list[File]:
         here = between(end, span)
         sw_up[here] = sw_down[here] * 0.52
         sw_down[here] *= 0.45
-    series = {"sw_down": sw_down, "sw_up": sw_up, "lw_down": lw_down, "lw_up": lw_up, "t": t,
-              "rh": rh, "wind": wind, "rain": rain, "pressure": pressure}
+    series = {
+        "sw_down": sw_down,
+        "sw_up": sw_up,
+        "lw_down": lw_down,
+        "lw_up": lw_up,
+        "t": t,
+        "rh": rh,
+        "wind": wind,
+        "rain": rain,
+        "pressure": pressure,
+    }
     for name, when, value in knobs["spikes"]["tarrow-north"]:
         series[name][end == np.datetime64(when)] = value
-    digits = {"sw_down": 1, "sw_up": 1, "lw_down": 1, "lw_up": 1, "t": 1, "rh": 1, "wind": 1,
-              "rain": 1, "pressure": 1}
+    digits = {
+        "sw_down": 1,
+        "sw_up": 1,
+        "lw_down": 1,
+        "lw_up": 1,
+        "t": 1,
+        "rh": 1,
+        "wind": 1,
+        "rain": 1,
+        "pressure": 1,
+    }
     columns = [stamp(end, "iso")] + [column(series[k], digits[k]) for k in digits]
     columns.append(column(battery, 1))
     lines = [",".join(row) for row in zip(*columns, strict=True)]
@@ -151,7 +169,10 @@ def four_components(weather: Weather, knobs: dict[str, Any]) -> list[File]:
         if name == knobs["cut_off"]:
             text = text[:-38]
         out.append(File("tarrow-north", name, text.encode("utf-8"), {}))
-    wide = (str(np.datetime64(knobs["late_file"][0]) - np.timedelta64(6, "h")), knobs["late_file"][1])
+    wide = (
+        str(np.datetime64(knobs["late_file"][0]) - np.timedelta64(6, "h")),
+        knobs["late_file"][1],
+    )
     order = np.flatnonzero(between(end, wide) & ~off)
     days = [order[k : k + 48] for k in range(0, len(order), 48)][::-1]  # newest page first
     rows = list(preamble) + list(head) + [lines[i] for page in days for i in page]
@@ -166,8 +187,10 @@ def pyranometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
     end = weather.end[width - 1 :: width][: len(weather.end) // width]
     n = len(end)
     night = blocks(weather["above"], width, np.max) <= 0
-    sun = blocks(weather["sw_down"], width, np.mean) * 0.0036 * (
-        knobs["bench_sun_gain"] + 0.008 * rng.standard_normal(n)
+    sun = (
+        blocks(weather["sw_down"], width, np.mean)
+        * 0.0036
+        * (knobs["bench_sun_gain"] + 0.008 * rng.standard_normal(n))
     )
     sun = np.where(night, -0.0036 * rng.uniform(0.2, 2.2, n), sun)
     t = blocks(weather["t"], width, np.mean) + 0.05 * rng.standard_normal(n)
@@ -187,13 +210,16 @@ def pyranometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
         series[name][end == np.datetime64(when)] = value
     digits = {"sun": 3, "t": 1, "top": 1, "low": 1, "rh": 0, "wind": 1, "rain": 1}
     columns = [stamp(end, "dmy 24")]
-    columns += [[v.replace(".", ",") for v in column(series[k], d, "-9999")]
-                for k, d in digits.items()]
+    columns += [
+        [v.replace(".", ",") for v in column(series[k], d, "-9999")] for k, d in digits.items()
+    ]
     columns.append([v.replace(".", ",") for v in column(supply, 1)])
     lines = [";".join(row) for row in zip(*columns, strict=True)]
-    head = ("Date;Time;Solar energy (MJ/m²);Air temperature (°C);Air temperature max (°C);"
-            "Air temperature min (°C);Relative humidity (%);Wind speed 10 m (km/h);Rain (mm);"
-            "Supply (V)")
+    head = (
+        "Date;Time;Solar energy (MJ/m²);Air temperature (°C);Air temperature max (°C);"
+        "Air temperature min (°C);Relative humidity (%);Wind speed 10 m (km/h);Rain (mm);"
+        "Supply (V)"
+    )
     off = np.zeros(n, dtype=bool)
     for span in knobs["off"]["ferrin-bench"]:
         off |= between(end, span)
@@ -216,8 +242,13 @@ def thermometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
     dates = stamp(day, "mdy")
     out = []
     for name, first, last, missing in knobs["files"]["sand-lane"]:
-        rows = ["Sand Lane", "Daily sheet, midnight to midnight", "Read by: R. Ossel", "",
-                "Date,High (F),Low (F),Rain (in)"]
+        rows = [
+            "Sand Lane",
+            "Daily sheet, midnight to midnight",
+            "Read by: R. Ossel",
+            "",
+            "Date,High (F),Low (F),Rain (in)",
+        ]
         for i in range(n):
             if not np.datetime64(first) <= day[i] <= np.datetime64(last):
                 continue

@@ -38,7 +38,9 @@ class Days:
     tmin: Array
     ea: Array
     elevation: float
-    slope: list[float] = field(default_factory=list)  # climate term of FAO-56 equation 62 without (h/3)^0.3
+    slope: list[float] = field(
+        default_factory=list
+    )  # climate term of FAO-56 equation 62 without (h/3)^0.3
 
     def __post_init__(self) -> None:
         """Trailing 30-day means, once."""
@@ -47,6 +49,17 @@ class Days:
             u2 = min(max(float(self.u2[trail].mean()), 1), 6)
             rh = min(max(float(self.rh_min[trail].mean()), 20), 80)
             self.slope.append(0.04 * (u2 - 2) - 0.004 * (rh - 45))
+
+    def ahead(self, today: date) -> "Days":
+        """These days up to yesterday, then dry days like the last seven."""
+        i = self.at(today)
+
+        def on(values: Array, usual: float) -> Array:
+            return np.concatenate([values[:i], np.full(16, usual)])
+
+        names = ("eto", "u2", "rh_min", "rn", "tmax", "tmin", "ea")
+        parts = {k: on(getattr(self, k), float(getattr(self, k)[i - 7 : i].mean())) for k in names}
+        return Days(self.first, rain=on(self.rain, 0.0), elevation=self.elevation, **parts)
 
     def at(self, day: date) -> int:
         return (day - self.first).days
@@ -59,7 +72,9 @@ def net_longwave(tmax: Array, tmin: Array, ea: Array, ratio: Array) -> Array:
     return np.asarray(4.901e-9 * warmth * (0.34 - 0.14 * np.sqrt(ea)) * cover)
 
 
-def reference_et(tmax: Array, tmin: Array, ea: Array, rn: Array, u2: Array, elevation: float) -> Array:
+def reference_et(
+    tmax: Array, tmin: Array, ea: Array, rn: Array, u2: Array, elevation: float
+) -> Array:
     """ASCE-EWRI short reference ET [mm d-1]."""
     gamma = 0.000665 * 101.3 * ((293 - 0.0065 * elevation) / 293) ** 5.26
     t = (tmax + tmin) / 2
@@ -98,8 +113,18 @@ def station_days(weather: Weather, measures: str) -> Days:
 def mixed(own: Days, energy: Days, wind: Days, rain: Days) -> Days:
     """The days of a field that takes its variables from several stations."""
     eto = reference_et(own.tmax, own.tmin, own.ea, energy.rn, wind.u2, own.elevation)
-    return Days(own.first, eto, rain.rain, wind.u2, own.rh_min, energy.rn, own.tmax, own.tmin,
-                own.ea, own.elevation)
+    return Days(
+        own.first,
+        eto,
+        rain.rain,
+        wind.u2,
+        own.rh_min,
+        energy.rn,
+        own.tmax,
+        own.tmin,
+        own.ea,
+        own.elevation,
+    )
 
 
 @dataclass
@@ -134,7 +159,9 @@ def crop_of(season: dict[str, Any], rows: dict[str, dict[str, str]]) -> Crop:
     row = rows[season["crop"]]
     dual = season.get("coefficients", "dual") == "dual"
     prefix = "kcb" if dual else "kc"
-    k = tuple(float(season.get(f"{prefix}_{s}", row[f"{prefix}_{s}"])) for s in ("ini", "mid", "end"))
+    k = tuple(
+        float(season.get(f"{prefix}_{s}", row[f"{prefix}_{s}"])) for s in ("ini", "mid", "end")
+    )
     return Crop(
         dual=dual,
         stages=season["stage_days"],
@@ -157,6 +184,7 @@ class Soil:
     layers: list[tuple[float, float, float]]
     rew: float
     tew: float
+    drainage_days: int
 
     def taw(self, depth: float) -> float:
         total, top = 0.0, 0.0
@@ -178,7 +206,12 @@ def soil_of(part: dict[str, Any], rows: dict[str, dict[str, str]]) -> Soil:
         else:
             fc, wp = layer["field_capacity"], layer["wilting_point"]
         layers.append((layer["bottom_m"], fc, wp))
-    return Soil(layers, float(rew or 8), 100 * (layers[0][1] - 0.5 * layers[0][2]))
+    return Soil(
+        layers,
+        float(rew or 8),
+        100 * (layers[0][1] - 0.5 * layers[0][2]),
+        part.get("drainage_days", 0),
+    )
 
 
 @dataclass
@@ -195,7 +228,7 @@ class Root:
     taw: float = 1.0
     limit: float = 1.0
     etc: float = 0.0
-    kcb: list[float] = field(default_factory=list)
+    soaked: int = 0  # days in a row above field capacity
 
     def start(self, fraction: float) -> None:
         depth = self.crop.root[1] if self.crop.perennial else self.crop.root[0]
@@ -241,7 +274,11 @@ class Root:
         if self.depletion > p * self.taw:
             ks = max((self.taw - self.depletion) / ((1 - p) * self.taw), 0)
         self.etc = (ks * k + ke) * eto
-        self.depletion = min(max(self.depletion + self.etc, 0.0), self.taw)
+        self.depletion = min(self.depletion + self.etc, self.taw)
+        excess = max(-self.depletion, 0.0)
+        self.soaked = self.soaked + 1 if excess else 0
+        wait = self.soil.drainage_days
+        self.depletion += excess / max(wait + 2 - self.soaked, 1) if wait else excess
         self.limit = (c.mad if c.mad is not None else p) * self.taw
 
 

@@ -252,8 +252,22 @@ def make(places: list[Place], knobs: dict[str, Any]) -> list[Weather]:
     for place in places:
         own = [persistent(rng, n, h) for h in (2, 8, 1.2)]
         made.append(
-            _station(place, end, knobs, season, clock, cloud, clean, front, storm_rain[place.key],
-                     air, moisture, breath, sway, own)
+            _station(
+                place,
+                end,
+                knobs,
+                season,
+                clock,
+                cloud,
+                clean,
+                front,
+                storm_rain[place.key],
+                air,
+                moisture,
+                breath,
+                sway,
+                own,
+            )
         )
     return made
 
@@ -279,8 +293,10 @@ def _station(
     rain = (front["rain"] * np.clip(1 + 0.22 * own[1], 0.3, 2) + storm_rain) * place.rain_factor
     rain = np.where(rain < 0.05, 0.0, rain)
     height, above = sun(place, end, knobs["utc_offset_h"])
-    pressure = 101.3 * ((293 - 0.0065 * place.elevation) / 293) ** 5.26 * (
-        1 - 0.0055 * front["wind"] + 0.0045 * sway
+    pressure = (
+        101.3
+        * ((293 - 0.0065 * place.elevation) / 293) ** 5.26
+        * (1 - 0.0055 * front["wind"] + 0.0045 * sway)
     )
     through = 1 - 0.76 * cloud**2.6
     rough = 0.75 * above * through
@@ -294,8 +310,14 @@ def _station(
     t = t + place.warm_nights * (wander < 0) * np.clip(-wander / 6, 0, 1) * (1 - cloud)
 
     dew = (
-        knobs["mean_dew"] + knobs["season_dew"] * season + 0.6 * lapse + 0.55 * (air + front["cold"])
-        + moisture + 2.6 * front["cloud"] + place.moist + 0.25 * own[0]
+        knobs["mean_dew"]
+        + knobs["season_dew"] * season
+        + 0.6 * lapse
+        + 0.55 * (air + front["cold"])
+        + moisture
+        + 2.6 * front["cloud"]
+        + place.moist
+        + 0.25 * own[0]
         + 0.8 * np.sin((clock - 4) / 24 * 2 * np.pi) * (season > 0)
     )
     after = _slab(np.minimum(rain / STEP_H, 3.0) * 0.9, 9.0)
@@ -312,16 +334,32 @@ def _station(
 
     breeze = np.clip(np.sin((clock - 8.5) / 13 * np.pi), 0, None) * ((clock > 8.5) & (clock < 21.5))
     wind = np.exp(
-        np.log(knobs["wind"]) - 0.25 + 0.10 * season + 0.75 * breeze * (1 - 0.45 * cloud)
-        + 0.75 * front["wind"] + breath + 0.24 * own[2] + 0.45 * (storm_rain > 0)
+        np.log(knobs["wind"])
+        - 0.25
+        + 0.10 * season
+        + 0.75 * breeze * (1 - 0.45 * cloud)
+        + 0.75 * front["wind"]
+        + breath
+        + 0.24 * own[2]
+        + 0.45 * (storm_rain > 0)
     )
     wind = np.clip(wind * place.wind_factor, 0.15, 17)
 
     sky = clear_sky(height, above, pressure, ea, clean)
     jitter = 1 + 0.10 * own[2] * np.clip(4 * cloud * (1 - cloud), 0, 1)
     sw = np.minimum(sky * through * np.clip(jitter, 0.4, 1.12), 0.84 * above)
-    values = {"t": t, "dew": dew, "ea": ea, "wind": wind, "rain": rain, "cloud": cloud,
-              "sw_down": sw, "pressure": pressure, "height": height, "above": above}
+    values = {
+        "t": t,
+        "dew": dew,
+        "ea": ea,
+        "wind": wind,
+        "rain": rain,
+        "cloud": cloud,
+        "sw_down": sw,
+        "pressure": pressure,
+        "height": height,
+        "above": above,
+    }
     values["rh"] = 100 * ea / saturation(t)
     values["lw_down"] = longwave_down(t, ea, cloud, height)
     values["sw_up"], values["lw_up"] = grass(values, pressure, height)

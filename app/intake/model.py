@@ -70,9 +70,11 @@ class ColumnMap(_Strict):
     factor: float = Field(default=1.0, description="multiplies the value in the file's unit")
     offset: float = Field(default=0.0, description="then added, in the file's unit")
     height_m: float | None = Field(default=None, description="height read from the name")
+    needs_body: bool = Field(
+        default=False, description="longwave to which sigma T^4 of its body must be added"
+    )
     body_position: int | None = Field(
-        default=None,
-        description="longwave without its body term: the column of the sensor body temperature",
+        default=None, ge=0, description="the column of that body temperature, None while undecided"
     )
 
 
@@ -87,7 +89,9 @@ class Mapping(_Strict):
     time: TimeLayout
     row_time: RowTime | None = Field(description="None while undecided")
     time_zone: str = Field(default="station", description="'station', 'UTC' or an IANA name")
-    interval_s: int | None = Field(description="step between rows [s], None while undecided")
+    interval_s: int | None = Field(
+        ge=1, le=86400, description="step between rows [s], None while undecided"
+    )
     missing: list[str]
     columns: list[ColumnMap]
     signature: str = Field(description="fingerprint of the header")
@@ -107,7 +111,7 @@ class Choice:
 
 @dataclass(frozen=True)
 class Question:
-    """Something only a person can settle. `field` is what `answer` takes; blocking ones stop `read`."""
+    """Something only a person can settle; `field` is what `answer` takes, blocking stops `read`."""
 
     field: str
     asks: str

@@ -22,7 +22,7 @@ from app.storage.tables import (
 BEGINNING = date(1900, 1, 1)
 """Before every record: dirty from here means all of it, and a source without a date began here."""
 
-Keyed = TypeVar("Keyed", Station, Soil, IrrigationSystem, Farm, Field)
+Keyed = TypeVar("Keyed", bound=Station | Soil | IrrigationSystem | Farm | Field)
 
 
 def keys_of(session: Session, table: type[Keyed]) -> dict[str, int]:

@@ -3,9 +3,10 @@
 import hashlib
 import tempfile
 import zlib
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
+from contextlib import contextmanager
 from datetime import date
-from typing import IO, Any, BinaryIO
+from typing import Any, BinaryIO, cast
 
 from sqlalchemy import delete, func, insert, select
 from sqlalchemy.orm import Session
@@ -41,22 +42,23 @@ def keep_file(session: Session, intake: int, pieces: Sequence[bytes]) -> None:
         session.execute(insert(IntakeFile).values(intake_id=intake, piece=number, data=piece))
 
 
-def open_file(session: Session, intake: int) -> IO[bytes]:
-    """The bytes of an intake's file again, on disk where they are many; close it after use."""
-    file = tempfile.SpooledTemporaryFile(max_size=IN_MEMORY)  # noqa: SIM115
+@contextmanager
+def open_file(session: Session, intake: int) -> Iterator[BinaryIO]:
+    """The bytes of an intake's file again, on disk where they are many."""
     numbers = session.scalars(
         select(IntakeFile.piece).where(IntakeFile.intake_id == intake).order_by(IntakeFile.piece)
     ).all()
-    for number in numbers:
-        data = session.scalar(
-            select(IntakeFile.data).where(
-                IntakeFile.intake_id == intake, IntakeFile.piece == number
+    with tempfile.SpooledTemporaryFile(max_size=IN_MEMORY) as file:
+        for number in numbers:
+            data = session.scalar(
+                select(IntakeFile.data).where(
+                    IntakeFile.intake_id == intake, IntakeFile.piece == number
+                )
             )
-        )
-        assert data is not None
-        file.write(zlib.decompress(data))
-    file.seek(0)
-    return file
+            assert data is not None
+            file.write(zlib.decompress(data))
+        file.seek(0)
+        yield cast(BinaryIO, file)
 
 
 def replace_problems(session: Session, intake: int, problems: Iterable[dict[str, Any]]) -> None:

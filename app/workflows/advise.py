@@ -208,7 +208,7 @@ def _day(day: date | None) -> np.datetime64 | None:
 
 
 def _date(day: np.datetime64 | None) -> date | None:
-    return None if day is None else day.astype("datetime64[D]").item()
+    return None if day is None else agronomy.as_date(day)
 
 
 def _rounded(values: Any) -> list[float | None]:

@@ -12,6 +12,12 @@ from app.science.crop.season import CropSeason
 from app.science.energy.station_day import Site
 from app.science.soil.profile import Layer, Profile
 
+
+def as_date(day: np.datetime64) -> date:
+    """A numpy day as a date."""
+    return date.fromisoformat(str(day.astype("datetime64[D]")))
+
+
 COUNTED = {"presumed", "reported", "metered", "measured"}
 """What is said to be done and counts as water on the field; what is only advised does not."""
 

@@ -11,7 +11,7 @@ from sqlalchemy.orm import Session
 
 from app.science.crop.season import CropSeason
 from app.science.energy.reference_et import eto_from_parts
-from app.science.energy.sun import extraterrestrial_radiation
+from app.science.energy.sun import day_of_year, extraterrestrial_daily
 from app.science.ledger import BlockPlan, BlockWeather
 from app.science.outlook.usual import fill_gaps, usual_ahead
 from app.storage.events import Standing, standing_events
@@ -86,7 +86,7 @@ def assemble(
     chosen = [
         (row, crop)
         for row, crop in seasons_of(session, blocks)
-        if _start(row) <= through and (since is None or crop.last_day.item() >= since)
+        if _start(row) <= through and (since is None or agronomy.as_date(crop.last_day) >= since)
     ]
     if not chosen:
         return []
@@ -180,8 +180,8 @@ class _Weather:
             eto = np.where(own, eto, parts[0])
         axis = np.datetime64(self.first, "D") + np.arange(self.days + HORIZON)
         latitude = self._place(energy, "latitude_deg")
-        ra = extraterrestrial_radiation(
-            np.r_[latitude, np.full(HORIZON, latitude[-1])], _day_of_year(axis)
+        ra = extraterrestrial_daily(
+            np.r_[latitude, np.full(HORIZON, latitude[-1])], day_of_year(axis)
         )
         return _completed(
             self.first,
@@ -211,10 +211,6 @@ class _Weather:
 
     def _place(self, stations: NDArray[np.int64], name: str) -> Floats:
         return np.array([float(self.details[int(number)][name]) for number in stations])
-
-
-def _day_of_year(days: NDArray[np.datetime64]) -> NDArray[np.int64]:
-    return (days - days.astype("datetime64[Y]")).astype(np.int64) + 1
 
 
 def _completed(
@@ -256,7 +252,7 @@ def _steady(values: Floats, neutral: float, window: int = 30) -> Floats:
     Only the climate adjustment of coefficients reads these, by their own 30-day mean; the neutral
     values, 2 m/s and 45 %, are those of the handbook's tables.
     """
-    steady = np.r_[values, np.full(HORIZON, np.nan)]
+    steady: Floats = np.r_[values, np.full(HORIZON, np.nan)]
     for day in np.flatnonzero(np.isnan(steady)):
         before = steady[max(0, day - window) : day]
         steady[day] = before.mean() if before.size else neutral
@@ -272,7 +268,7 @@ def _subject(
     through: date,
 ) -> Subject | None:
     start = max(_start(season), weather.first + timedelta(days=weather.known_from))
-    last = min(crop.last_day.item(), through + timedelta(days=HORIZON))
+    last = min(agronomy.as_date(crop.last_day), through + timedelta(days=HORIZON))
     days = (last - start).days + 1
     if start > through or days <= 0:
         return None

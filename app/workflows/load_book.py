@@ -187,9 +187,8 @@ def _put_sources(session: Session, row: Field, part: FieldPart) -> None:
             session.delete(source)
     there = {(source.variable, source.since): source for source in row.sources}
     for (variable, since), station in wanted.items():
-        source = there.get((variable, since))
-        if source is None:
-            source = Source(variable=variable, since=since)
+        source = there.get((variable, since)) or Source(variable=variable, since=since)
+        if source not in row.sources:
             row.sources.append(source)
         source.station_id = stations[station]
     session.flush()

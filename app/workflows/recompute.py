@@ -138,7 +138,7 @@ def due_ledgers(session: Session, through: date) -> dict[int, date]:
     dirty = {row.block_id: row.dirty_from for row in blocks if row.dirty_from is not None}
     last = last_ledger_days(session)
     for season, crop in seasons_of(session, [row.block_id for row in blocks]):
-        until = min(through, crop.last_day.item())
+        until = min(through, agronomy.as_date(crop.last_day))
         if season.season_id in last and last[season.season_id] < until:
             due[season.block_id] = last[season.season_id] + timedelta(days=1)
         elif season.season_id not in last and season.planting <= until:
@@ -189,7 +189,7 @@ def _ledger_rows(
             columns[name] = _numbers(values)
     columns["depletion_p10_mm"], columns["depletion_p90_mm"] = _numbers(p10), _numbers(p90)
     for place in range(subject.past):
-        day = ledger.date[place].item()
+        day = agronomy.as_date(ledger.date[place])
         if day >= since:
             yield {
                 "day": day,

@@ -52,9 +52,7 @@ def test_a_failed_write_leaves_nothing(db: Database) -> None:
 def test_foreign_keys_hold(db: Database) -> None:
     def orphan() -> None:
         with db.write() as session:
-            session.add(
-                Block(field_id=7, key="x", name="X", area_ha=1, soil_id=7, system_id=7)
-            )
+            session.add(Block(field_id=7, key="x", name="X", area_ha=1, soil_id=7, system_id=7))
 
     with pytest.raises(IntegrityError):
         orphan()
