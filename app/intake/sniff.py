@@ -70,9 +70,7 @@ def answer(mapping: Mapping, answers: dict[str, str]) -> Mapping:
         parts = field.split(".")
         if field == "time.order":
             data["time"]["order"] = value
-        elif field in ("row_time", "time_zone"):
-            data[field] = value
-        elif field == "interval_s":
+        elif field in ("row_time", "time_zone") or field == "interval_s":
             data[field] = value
         elif parts[0] == "columns" and len(parts) == 3:
             _answer_column(data["columns"], parts[1], parts[2], value)
