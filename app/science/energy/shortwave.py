@@ -64,7 +64,8 @@ def shortwave_from_sunshine(
     as 0 where N is 0. NaN gives NaN. Source: FAO-56 eq 35.
     """
     n, length = np.broadcast_arrays(floats(sunshine_h), floats(day_length_h))
-    fraction = np.divide(n, length, out=np.where(np.isnan(n), np.nan, 0.0), where=length > 0.0)
+    dark = np.where((length <= 0.0) & ~np.isnan(n), 0.0, np.nan)
+    fraction = np.divide(n, length, out=dark, where=length > 0.0)
     share = angstrom[0] + angstrom[1] * np.minimum(fraction, 1.0)
     return np.asarray(share * floats(extraterrestrial))
 
