@@ -51,20 +51,25 @@ def profile(details: dict[str, Any]) -> Profile:
         if held[2] is None:
             held[2] = min(0.95, held[0] + 0.15)
         layers.append(Layer(part["bottom_m"], *held))
-    top = details["layers"][0]["texture"]
-    rew = details["rew_mm"]
-    if rew is None:
-        rew = handbook.soil_texture(top).rew_mm if top else 9.0
     evaporable = 1000 * (layers[0].field_capacity - 0.5 * layers[0].wilting_point)
     tew = details["tew_mm"] or evaporable * details["evaporation_depth_m"]
     return Profile(
         layers=tuple(layers),
         evaporation_depth_m=details["evaporation_depth_m"],
-        rew_mm=min(rew, 0.9 * tew),
+        rew_mm=_readily_evaporable(details, tew),
         tew_mm=details["tew_mm"],
         curve_number=details["curve_number"],
         drainage_days=details["drainage_days"],
     )
+
+
+def _readily_evaporable(details: dict[str, Any], tew: float) -> float:
+    """REW as given; else of the top layer's texture, or the middle of the handbook's medium soils
+    where only lab values are known, and then at most nine tenths of TEW."""
+    if details["rew_mm"] is not None:
+        return float(details["rew_mm"])
+    texture = details["layers"][0]["texture"]
+    return min(handbook.soil_texture(texture or "loam").rew_mm, 0.9 * tew)
 
 
 def crop_season(details: dict[str, Any], planting: date) -> CropSeason:

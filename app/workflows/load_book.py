@@ -3,6 +3,7 @@
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from datetime import UTC, date, datetime
+from functools import partial
 from typing import Any
 
 from sqlalchemy import select
@@ -15,6 +16,7 @@ from app.book.schema import (
     BookError,
     FieldPart,
     IrrigationPart,
+    Part,
     RainPart,
     SeasonPart,
 )
@@ -31,6 +33,7 @@ from app.storage.tables import (
     Source,
     Station,
 )
+from app.workflows import agronomy
 
 VARIABLES = ("energy", "temperature", "wind", "rain")
 WHOLE = "whole"
@@ -56,7 +59,7 @@ class Loaded:
 
 def load_book(session: Session, book: Book, who: str) -> Loaded:
     """Put a book into the store; raises BookError, and changes nothing, if a name leads nowhere."""
-    problems = reference_problems(book, _known(session))
+    problems = reference_problems(book, _known(session)) or _science_problems(book)
     if problems:
         raise BookError(problems)
     loaded = Loaded()
@@ -64,14 +67,42 @@ def load_book(session: Session, book: Book, who: str) -> Loaded:
     _shared(session, Soil, book.soils, who, loaded, rows.soil_blocks)
     _shared(session, IrrigationSystem, book.systems, who, loaded, rows.system_blocks)
     _shared(session, Farm, book.farms, who, loaded, None)
+    keys = _Keys(session)
     for part in book.fields:
-        _field(session, part, who, loaded)
+        _field(session, part, keys, who, loaded)
     session.flush()
     blocks = _blocks(session)
     for season in book.seasons:
         _season(session, season, blocks, who, loaded)
     _events(session, book, blocks, who, loaded)
     return loaded
+
+
+def _science_problems(book: Book) -> list[str]:
+    """What science would refuse: a profile, a system, a season that makes no sense as a whole."""
+    trials: list[tuple[str, Callable[[], object]]] = [
+        *((f"stations {p.key}", partial(agronomy.site, _plain(p))) for p in book.stations),
+        *((f"soils {p.key}", partial(agronomy.profile, _plain(p))) for p in book.soils),
+        *(
+            (f"systems {p.key}", partial(agronomy.application_system, _plain(p)))
+            for p in book.systems
+        ),
+        *(
+            (f"seasons {n} ({p.field})", partial(agronomy.crop_season, _plain(p), p.planting))
+            for n, p in enumerate(book.seasons, 1)
+        ),
+    ]
+    lines = []
+    for place, trial in trials:
+        try:
+            trial()
+        except (ValueError, handbook.NotPublishedError) as error:
+            lines.append(f"{place}: {error}")
+    return lines
+
+
+def _plain(part: Part) -> dict[str, Any]:
+    return part.model_dump(mode="json")
 
 
 def _known(session: Session) -> Known:
@@ -118,7 +149,7 @@ def _shared(
 
 
 def _put(session: Session, table: type[rows.Keyed], part: Any, who: str) -> tuple[rows.Keyed, str]:
-    details = part.model_dump(mode="json")
+    details = _plain(part)
     row = rows.find(session, table, part.key)
     if row is not None and row.details == details:
         return row, "same"
@@ -133,29 +164,36 @@ def _put(session: Session, table: type[rows.Keyed], part: Any, who: str) -> tupl
     return row, "added" if before is None else "changed"
 
 
-def _field(session: Session, part: FieldPart, who: str, loaded: Loaded) -> None:
-    details = part.model_dump(mode="json")
+class _Keys:
+    """Key to number of what a field names."""
+
+    def __init__(self, session: Session) -> None:
+        self.farms = rows.keys_of(session, Farm)
+        self.soils = rows.keys_of(session, Soil)
+        self.systems = rows.keys_of(session, IrrigationSystem)
+        self.stations = rows.keys_of(session, Station)
+
+
+def _field(session: Session, part: FieldPart, keys: _Keys, who: str, loaded: Loaded) -> None:
+    details = _plain(part)
     row = rows.find(session, Field, part.key)
     if row is not None and row.details == details:
         loaded.count("fields", "same")
         return
     before = None if row is None else row.details
-    if row is None:
-        row = Field(key=part.key)
-        session.add(row)
+    row = row or Field(key=part.key)
     row.name, row.details, row.area_ha = part.name, details, part.area_ha
-    row.managed_by = part.managed_by
-    row.farm_id = rows.keys_of(session, Farm)[part.farm]
+    row.managed_by, row.farm_id = part.managed_by, keys.farms[part.farm]
+    session.add(row)
     session.flush()
-    _put_blocks(session, row, part)
-    _put_sources(session, row, part)
+    _put_blocks(session, row, part, keys)
+    _put_sources(session, row, part, keys)
     rows.note_change(session, who, "field", part.key, before, details)
     rows.dirty_blocks(session, [block.id for block in row.blocks], rows.BEGINNING)
     loaded.count("fields", "added" if before is None else "changed")
 
 
-def _put_blocks(session: Session, row: Field, part: FieldPart) -> None:
-    soils, systems = rows.keys_of(session, Soil), rows.keys_of(session, IrrigationSystem)
+def _put_blocks(session: Session, row: Field, part: FieldPart, keys: _Keys) -> None:
     there = {block.key: block for block in row.blocks}
     wanted = [
         (b.key, b.name, b.area_ha, b.soil or part.soil, b.system or part.system)
@@ -170,15 +208,15 @@ def _put_blocks(session: Session, row: Field, part: FieldPart) -> None:
             ]
         )
     for key, name, area, soil, system in wanted:
-        block = there.get(key) or Block(field=row, key=key)
+        block = there.get(key) or Block(key=key)
         block.name, block.area_ha = name, area
-        block.soil_id, block.system_id = soils[soil], systems[system]
-        session.add(block)
+        block.soil_id, block.system_id = keys.soils[soil], keys.systems[system]
+        if block not in row.blocks:
+            row.blocks.append(block)
     session.flush()
 
 
-def _put_sources(session: Session, row: Field, part: FieldPart) -> None:
-    stations = rows.keys_of(session, Station)
+def _put_sources(session: Session, row: Field, part: FieldPart, keys: _Keys) -> None:
     wanted = {(variable, rows.BEGINNING): part.station for variable in VARIABLES}
     wanted.update({(s.variable, s.since or rows.BEGINNING): s.station for s in part.sources})
     for source in list(row.sources):
@@ -188,9 +226,9 @@ def _put_sources(session: Session, row: Field, part: FieldPart) -> None:
     there = {(source.variable, source.since): source for source in row.sources}
     for (variable, since), station in wanted.items():
         source = there.get((variable, since)) or Source(variable=variable, since=since)
+        source.station_id = keys.stations[station]
         if source not in row.sources:
             row.sources.append(source)
-        source.station_id = stations[station]
     session.flush()
 
 
@@ -217,7 +255,7 @@ def _season(
     who: str,
     loaded: Loaded,
 ) -> None:
-    details = part.model_dump(mode="json")
+    details = _plain(part)
     for block in _named(blocks, part):
         row = session.scalar(
             select(Season).where(Season.block_id == block.id, Season.planting == part.planting)
@@ -226,11 +264,9 @@ def _season(
             loaded.count("seasons", "same")
             continue
         before = None if row is None else row.details
-        if row is None:
-            row = Season(block_id=block.id, planting=part.planting)
-            session.add(row)
+        row = row or Season(block_id=block.id, planting=part.planting)
         row.crop, row.details = part.crop, details
-        session.flush()
+        session.add(row)
         key = f"{part.field}/{block.key}/{part.planting}"
         rows.note_change(session, who, "season", key, before, details)
         rows.dirty_blocks(session, [block.id], part.ledger_start or part.planting)

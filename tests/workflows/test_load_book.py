@@ -81,6 +81,18 @@ def test_every_name_that_leads_nowhere_is_told_at_once(db: Database) -> None:
         assert session.scalar(select(func.count()).select_from(Block)) == 0
 
 
+def test_what_the_handbook_leaves_blank_must_be_given(db: Database) -> None:
+    raw = copy.deepcopy(basin.BOOK)
+    raw["soils"][1]["rew_mm"] = 19.9
+    raw["soils"][1]["tew_mm"] = 8
+    raw["systems"][0]["least_mm"] = 30
+    raw["systems"][0]["hours_per_day"] = 2
+    with pytest.raises(BookError) as caught:
+        load(db, raw)
+    assert "systems pivot: the hours allow only 12.0 mm" in str(caught.value)
+    assert "soils lab: rew_mm is 19.9; it must be less than" in str(caught.value)
+
+
 @pytest.mark.parametrize(
     ("change", "says"),
     [

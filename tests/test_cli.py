@@ -1,0 +1,154 @@
+"""The commands as a person types them: a real process, a real database, clear words."""
+
+import csv
+import io
+import json
+import os
+import subprocess
+import sys
+from datetime import date, timedelta
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from app.wording import CAUTION
+from tests.workflows import basin
+
+
+class Shell:
+    """Runs `rillbook` in a folder of its own, on the day of the basin."""
+
+    def __init__(self, folder: Path) -> None:
+        self.folder = folder
+
+    def run(self, *words: str, code: int = 0) -> subprocess.CompletedProcess[str]:
+        """Run a command; its exit code must be `code`."""
+        environment = {
+            **os.environ,
+            "RILLBOOK_DATABASE": f"sqlite:///{self.folder / 'book.sqlite'}",
+            "RILLBOOK_TODAY": str(basin.TODAY),
+            "PYTHONWARNINGS": "error",
+        }
+        done = subprocess.run(
+            [sys.executable, "-m", "app.cli", *words],
+            capture_output=True,
+            text=True,
+            env=environment,
+            timeout=60,
+        )
+        assert done.returncode == code, done.stdout + done.stderr
+        assert "Traceback" not in done.stderr
+        return done
+
+    def json(self, *words: str) -> Any:
+        """What a command prints with --json."""
+        return json.loads(self.run(*words, "--json").stdout)
+
+
+@pytest.fixture
+def shell(tmp_path: Path) -> Shell:
+    (tmp_path / "book.json").write_text(json.dumps(basin.BOOK))
+    (tmp_path / "bench.csv").write_bytes(basin.daily_csv())
+    (tmp_path / "meadow.csv").write_bytes(basin.daily_csv())
+    return Shell(tmp_path)
+
+
+def test_the_main_job_by_command(shell: Shell) -> None:
+    folder = shell.folder
+    assert shell.json("load", str(folder / "book.json"))["added"]["fields"] == 2
+    assert shell.json("load", str(folder / "book.json"))["added"] == {}
+    preview = shell.json("intake", "bench", str(folder / "bench.csv"), "--preview")
+    assert preview["rows_accepted"] == 122
+    applied = shell.json("intake", "bench", str(folder / "bench.csv"))
+    assert applied["rows"] == 122
+    assert applied["blocks"] == 3
+    shell.run("intake", "meadow", str(folder / "meadow.csv"))
+    assert "nothing changed" in shell.run("intake", "bench", str(folder / "bench.csv")).stdout
+    advised = shell.json("advise")
+    assert advised["on"] == str(basin.TODAY)
+    assert sum(advised["standing"].values()) == 3
+
+    ledger = rows(shell.run("export", "ledger", "--field", "long-piece").stdout)
+    assert ledger[0]["date"] == "2026-04-20"
+    assert ledger[-1]["date"] == str(basin.TODAY - timedelta(days=1))
+    days = rows(shell.run("export", "station-days", "--station", "bench").stdout)
+    assert len(days) == 122
+    assert float(days[0]["tmax"]) == pytest.approx(9.0, abs=6)
+    advice = rows(shell.run("export", "advice", "--on", str(basin.TODAY)).stdout)
+    assert [row["field"] for row in advice] == ["Long Piece", "Two Halves", "Two Halves"]
+
+
+def rows(text: str) -> list[dict[str, str]]:
+    """The rows of an export, whose header carries the caution."""
+    head, caution, *lines = text.splitlines(keepends=True)
+    assert head.startswith("# ")
+    assert caution == f"# {CAUTION}\n"
+    return list(csv.DictReader(io.StringIO("".join(lines))))
+
+
+def test_an_export_to_a_file_is_whole(shell: Shell) -> None:
+    shell.run("load", str(shell.folder / "book.json"))
+    shell.run("intake", "bench", str(shell.folder / "bench.csv"))
+    out = shell.folder / "out.csv"
+    shell.run("export", "station-days", "--station", "bench", "--out", str(out))
+    assert len(out.read_text().splitlines()) == 125
+    assert sorted(path.name for path in shell.folder.glob("*out*")) == ["out.csv"]
+
+
+def test_the_schema_is_a_json_schema_of_a_book(shell: Shell) -> None:
+    schema = json.loads(shell.run("schema").stdout)
+    assert schema["type"] == "object"
+    assert {"stations", "fields", "seasons"} <= set(schema["properties"])
+
+
+@pytest.mark.parametrize(
+    ("words", "says"),
+    [
+        (["load", "none.json"], "cannot be read"),
+        (["intake", "bench", "none.csv"], "none.csv"),
+        (["export", "ledger", "--field", "none"], "no field 'none'"),
+        (["export", "station-days", "--station", "none"], "no station 'none'"),
+    ],
+)
+def test_bad_input_is_one_line_and_exit_1(shell: Shell, words: list[str], says: str) -> None:
+    done = shell.run(*words, code=1)
+    assert says in done.stderr
+    assert len(done.stderr.strip().splitlines()) == 1
+
+
+def test_a_station_that_is_not_there_names_those_that_are(shell: Shell) -> None:
+    shell.run("load", str(shell.folder / "book.json"))
+    done = shell.run("intake", "bemch", str(shell.folder / "bench.csv"), code=1)
+    assert "bench, meadow" in done.stderr
+
+
+def test_a_date_of_two_readings_is_asked_and_answered_by_a_mapping(shell: Shell) -> None:
+    folder = shell.folder
+    shell.run("load", str(folder / "book.json"))
+    lines = ["date,tmax (degC),tmin (degC),rain (mm)"]
+    lines += [f"{day:02}/{day:02}/2026,20,5,0" for day in range(1, 5)]
+    lines += [f"0{m}/0{d}/2026,21,6,0" for m, d in ((5, 6), (6, 7))]
+    path = folder / "ambiguous.csv"
+    path.write_text("\n".join(lines) + "\n")
+    refused = shell.run("intake", "bench", str(path), code=1).stderr
+    assert "needs an answer" in refused
+    mapping = shell.json("intake", "bench", str(path), "--preview")["mapping"]
+    mapping["time"]["order"] = "mdy"
+    (folder / "mapping.json").write_text(json.dumps(mapping))
+    applied = shell.json("intake", "bench", str(path), "--mapping", str(folder / "mapping.json"))
+    assert applied["rows"] == 6
+    assert applied["first_day"] == str(date(2026, 1, 1))
+
+
+def test_wrong_settings_say_how_to_mend_them(tmp_path: Path) -> None:
+    for name, value in (("RILLBOOK_TODAY", "14.7.2026"), ("RILLBOOK_DATABASE", "mysql://x")):
+        done = subprocess.run(
+            [sys.executable, "-m", "app.cli", "advise"],
+            capture_output=True,
+            text=True,
+            env={**os.environ, name: value},
+            cwd=Path(__file__).parent.parent,
+        )
+        assert done.returncode == 1
+        assert name in done.stderr
