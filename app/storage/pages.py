@@ -37,7 +37,7 @@ class RoundsRow(NamedTuple):
     system_name: str
     crop: str | None
     planting: date | None
-    season: dict[str, Any] | None
+    stage_days: list[int] | None
     number: int | None
     issued_on: date | None
     standing: str | None
@@ -108,7 +108,7 @@ def rounds_rows(
             IrrigationSystem.name,
             Season.crop,
             Season.planting,
-            Season.details,
+            Season.details["stage_days"],
             *ADVICE_COLUMNS,
         )
         .join(Farm, Farm.id == Field.farm_id)

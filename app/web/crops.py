@@ -5,7 +5,6 @@ from datetime import date
 from functools import cache
 from itertools import accumulate
 from pathlib import Path
-from typing import Any
 
 from app import handbook
 from app.wording import STAGES
@@ -37,10 +36,12 @@ def stage(stage_days: list[int] | None, day: int) -> str:
     return ""
 
 
-def season_words(crop: str | None, planting: date | None, details: Any, today: date) -> str:
+def season_words(
+    crop: str | None, planting: date | None, stage_days: list[int] | None, today: date
+) -> str:
     """`maize, day 68, mid-season`."""
     if crop is None or planting is None:
         return ""
     day = season_day(planting, today)
-    name = stage((details or {}).get("stage_days"), day)
+    name = stage(stage_days, day)
     return f"{crop_name(crop)}, day {day}" + (f", {name}" if name else "")

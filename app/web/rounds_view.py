@@ -40,7 +40,6 @@ class Row(NamedTuple):
 
     key: str
     name: str
-    block: str
     farm: str
     crop: str
     ran: str
@@ -166,9 +165,8 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
     plain = Row(
         row.field_key,
         row.field_name,
-        row.block_name,
         row.farm_name,
-        season_words(row.crop, row.planting, row.season, facts.today),
+        season_words(row.crop, row.planting, row.stage_days, facts.today),
         ran,
         error,
         typed,
@@ -190,10 +188,10 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
         gross=wording.depth(row.gross_mm) if watering else "",
         net=wording.depth(row.net_mm) if watering else "",
         hours=wording.number(row.hours, 1) if watering else "",
-        why=wording.reason(row.reason, row.figures, facts.today),
-        change="" if row.change_mm is None else wording.signed(row.change_mm),
+        why=wording.reason(row.reason, row.figures, row.day, facts.today),
+        change="" if row.change_mm is None else f"{wording.signed(row.change_mm)} mm; ",
         rung=wording.rung(row.rung),
-        age=age(row.data_until, facts.today),
+        age="" if row.unsure.startswith("stale") else age(row.data_until, facts.today),
     )
 
 

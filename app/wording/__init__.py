@@ -58,12 +58,16 @@ from app.wording.figures import (
     volume,
 )
 from app.wording.reasons import (
+    BOUNDS,
+    NOT_HELD,
     REASONS,
+    bound,
     reason,
     sentence,
 )
 
 __all__ = [
+    "BOUNDS",
     "CAUTION",
     "CAUTION_TITLE",
     "CONFIRMATIONS",
@@ -74,6 +78,7 @@ __all__ = [
     "MONTHS",
     "NARROW",
     "NEAR",
+    "NOT_HELD",
     "NO_FIGURE",
     "PRINTED_UNITS",
     "PURPOSES",
@@ -93,6 +98,7 @@ __all__ = [
     "WIND_RUNGS",
     "UnwordedCode",
     "blank",
+    "bound",
     "check_word",
     "counted",
     "days",

@@ -120,10 +120,11 @@ def unsure(codes: str, stations: Mapping[str, str]) -> list[str]:
         kind, _, rest = code.partition(":")
         if kind == "stale":
             station, _, age = rest.partition(":")
-            name = stations.get(station, station)
-            said.append(f"{name} has sent nothing for {days(int(float(age)))}; check the soil.")
+            name, old = stations.get(station, station), int(float(age))
+            last = "has sent nothing yet" if old >= 9999 else f"last data {days(old)} ago"
+            said.append(f"{name}: {last}; check the soil.")
         elif kind == "range":
-            said.append(f"The range spans {days(int(float(rest)))} between early and late.")
+            said.append(f"The range is wide: {days(int(float(rest)))} between early and late.")
         else:
             said.append(word({}, code))
     return said

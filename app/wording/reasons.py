@@ -7,32 +7,62 @@ from datetime import date
 from typing import Any
 
 from app.wording.codes import UnwordedCode
-from app.wording.figures import days, depth, near_day, number, share, volume
-
-
-class _Figures(string.Formatter):
-    """Puts figures into a sentence: `{net_mm:mm}`, `{limit_day:near}`, `{station:name}`."""
-
-    def __init__(self, today: date) -> None:
-        self.today = today
-
-    def format_field(self, value: Any, format_spec: str) -> str:
-        if format_spec in ("near", "weekday"):
-            return near_day(date.fromisoformat(str(value)), self.today)
-        if format_spec == "name":
-            return str(value)
-        return FIGURES[format_spec](float(value))
-
+from app.wording.figures import NEAR, days, depth, near_day, number, share, volume
 
 FIGURES = {
-    "mm": depth,
-    "mm1": lambda value: number(value, 1),
+    "mm": lambda value: f"{depth(value)} mm",
     "h": lambda value: number(value, 1),
     "n": number,
     "days": lambda value: days(round(value)),
     "share": share,
     "m3": volume,
 }
+REASONS = {
+    "limit_not_reached": "Within its limit for {horizon_days:days}.",
+    "back_within": "Past its limit now, and back within it without watering.",
+    "last_chance": "Passes its limit {limit_day:on}; {day:near} is the last chance before.",
+    "last_chance_same_day": "Passes its limit by the close of {day:near} unless watered.",
+    "covering": (
+        "Passes its limit {limit_day:on}; covering the field takes {cover_days:days}, "
+        "so it starts {day:on}."
+    ),
+    "past_limit": "Past its limit: {depletion_mm:mm} of {limit_mm:mm}.",
+    "no_chance_in_time": (
+        "Passes its limit {limit_day:on}; the first chance, {first_chance:near}, "
+        "comes too late to hold it."
+    ),
+    "falling_behind": (
+        "The system falls behind: at most {most_net_mm:mm} net every {interval_days:days}, "
+        "against {etc_mm:mm} of crop ET in {horizon_days:days}."
+    ),
+    "no_chance": (
+        "Passes its limit {limit_day:on}, and there is no chance to water within "
+        "{horizon_days:days}: keep-off or interval."
+    ),
+}
+BOUNDS = {
+    "": "",
+    "least": "The depth is the least the system applies.",
+    "most": "The depth is the most the system applies at once.",
+    "hours": "The depth is what the system’s hours allow.",
+    "intake": "The depth is the most the soil takes in at once.",
+}
+NOT_HELD = "{past_field_capacity_mm:mm} of it the root zone cannot hold."
+
+
+class _Figures(string.Formatter):
+    """Puts figures into a sentence: `{net_mm:mm}`, `{limit_day:on}`, `{cover_days:days}`."""
+
+    def __init__(self, today: date) -> None:
+        self.today = today
+
+    def format_field(self, value: Any, format_spec: str) -> str:
+        if format_spec in ("near", "on"):
+            day = date.fromisoformat(str(value))
+            said = near_day(day, self.today)
+            nearby = (day - self.today).days in NEAR
+            return said if format_spec == "near" or nearby else f"on {said}"
+        return FIGURES[format_spec](float(value))
 
 
 def sentence(template: str, figures: Mapping[str, Any], today: date) -> str:
@@ -41,14 +71,26 @@ def sentence(template: str, figures: Mapping[str, Any], today: date) -> str:
     return text[:1].upper() + text[1:]
 
 
-REASONS = {
-    "late": "Past its limit.",
-}
+def reason(code: str, figures: Mapping[str, Any], day: date | None, today: date) -> str:
+    """The sentence of an advice's reason; `day` is the day to water.
 
-
-def reason(code: str, figures: Mapping[str, Any], today: date) -> str:
-    """The sentence of an advice's reason; a code without one warns and is shown as it is."""
+    A code without a sentence warns (`UnwordedCode`) and is shown as it is.
+    """
+    known = {**figures, "day": str(day)} if day is not None else figures
+    if code == "last_chance" and known.get("limit_day") == known.get("day"):
+        code = "last_chance_same_day"
     if code not in REASONS:
         warnings.warn(f"no sentence for {code!r}", UnwordedCode, stacklevel=2)
         return code.replace("_", " ")
-    return sentence(REASONS[code], figures, today)
+    return sentence(REASONS[code], known, today)
+
+
+def bound(figures: Mapping[str, Any], today: date) -> str:
+    """What set the depth instead of the depletion, and what of it cannot be held."""
+    code = str(figures.get("bound", ""))
+    if code not in BOUNDS:
+        warnings.warn(f"no sentence for bound {code!r}", UnwordedCode, stacklevel=2)
+    said = [BOUNDS.get(code, code)]
+    if float(figures.get("past_field_capacity_mm", 0.0)) >= 0.05:
+        said.append(sentence(NOT_HELD, figures, today))
+    return " ".join(text for text in said if text)

@@ -291,10 +291,12 @@ def advice(number: int, block: int, issued_on: date = TODAY) -> dict[str, Any]:
     }
 
 
+NEXT = {"horizon_days": 14.0, "depletion_mm": 71.0, "limit_mm": 66.0}
+LIMIT = {**NEXT, "limit_day": str(TODAY + timedelta(days=2)), "bound": ""}
 REASON_OF: dict[str, tuple[str, dict[str, Any]]] = {
-    "late": ("late", {}),
-    "due": ("late", {}),
-    "soon": ("late", {}),
-    "easy": ("late", {}),
-    "wet": ("late", {}),
+    "late": ("past_limit", {**LIMIT, "limit_day": str(TODAY)}),
+    "due": ("last_chance", LIMIT),
+    "soon": ("covering", {**LIMIT, "cover_days": 2.0, "bound": "most"}),
+    "easy": ("limit_not_reached", NEXT),
+    "wet": ("limit_not_reached", NEXT),
 }

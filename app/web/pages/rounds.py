@@ -55,9 +55,7 @@ async def log(request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday
     return await run_in_threadpool(_log, request, form, db, viewer, today)
 
 
-def _log(
-    request: Request, form: FormData, db: Database, viewer: Viewer, today: date
-) -> Response:
+def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: date) -> Response:
     from app.workflows.log_event import EventError, log_irrigation
 
     sieve = view.Sieve(**{name: str(form.get(name, "")) for name in vars(view.Sieve())})
@@ -77,9 +75,7 @@ def _log(
                 raise RefusedError("There is no such field.")
             day = read_day(str(form.get("day", "")), "the day")
             hours = read_number(typed, "hours")
-            log_irrigation(
-                db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today
-            )
+            log_irrigation(db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today)
             done.append(key)
         except RefusedError as error:
             errors[key] = f"{error.says} {error.remedy}".strip()
