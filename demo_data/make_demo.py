@@ -1,7 +1,7 @@
 """Make the demo basin: an invented, semi-arid, irrigated valley with its weather and its farms.
 
-Run `python demo_data/make_demo.py` to write every file of this folder anew, byte for byte the same;
-`--out FOLDER` writes elsewhere. All places, people and numbers are invented. The knobs are in KNOBS.
+Run `python demo_data/make_demo.py` to write every file of this folder anew, byte for byte the
+same; `--out FOLDER` writes elsewhere. Places, people and numbers are invented. KNOBS has the knobs.
 """
 
 import argparse
@@ -9,9 +9,8 @@ import json
 from pathlib import Path
 from typing import Any
 
-from make_book import make_book, station_table
+from make_book import make_book
 from make_loggers import File, four_components, pyranometer, thermometer
-from make_water import station_days
 from make_weather import Place, make
 
 KNOBS: dict[str, Any] = {
@@ -179,7 +178,7 @@ def make_all() -> tuple[dict[str, bytes], list[str]]:
             for n in KNOBS["arrival"]
         ]
     )
-    book, report = make_book(station_table(weather, station_days), KNOBS["book"])
+    book, report = make_book(weather, KNOBS["book"])
     out["book.json"] = as_json(book)
     return out, report
 

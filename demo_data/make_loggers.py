@@ -1,4 +1,4 @@
-"""What three invented loggers made of the weather, their dirt included, in each one's own file layout."""
+"""What three invented loggers made of the weather, dirt included, each in its own file layout."""
 
 from collections.abc import Callable
 from dataclasses import dataclass
@@ -38,7 +38,7 @@ def blocks(values: Array, width: int, how: Callable[..., Any]) -> Array:
 
 
 def stamp(end: Times, layout: str) -> list[str]:
-    """Local time stamps: 'iso', 'dmy 24' (midnight is 24:00 of the day it closes), or 'mdy' (a date)."""
+    """Local time stamps: 'iso', 'dmy 24' (midnight is 24:00 of the day it ends), 'mdy' (a date)."""
     out = []
     for moment in end:
         text = str(moment.astype("datetime64[m]"))
@@ -79,7 +79,7 @@ def frosted_dawns(weather: Weather, wanted: int) -> list[np.datetime64]:
 
 
 def four_components(weather: Weather, knobs: dict[str, Any]) -> list[File]:
-    """Station 1: radiation in four components, half hours, ISO stamps, plain comma file in UTF-8."""
+    """Station 1: four radiation components, half hours, ISO stamps, plain comma file in UTF-8."""
     rng = np.random.default_rng(knobs["seed"] + 1)
     end, n = weather.end, len(weather.end)
     t = weather["t"] + 0.04 * rng.standard_normal(n)
@@ -181,7 +181,7 @@ def four_components(weather: Weather, knobs: dict[str, Any]) -> list[File]:
 
 
 def pyranometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
-    """Station 2: hourly, solar energy an hour, decimal comma, day.month.year, wind at 10 m in km/h."""
+    """Station 2: hourly, solar energy an hour, decimal comma, day.month.year, km/h at 10 m."""
     rng = np.random.default_rng(knobs["seed"] + 2)
     width = PER_DAY // 24
     end = weather.end[width - 1 :: width][: len(weather.end) // width]
@@ -232,7 +232,7 @@ def pyranometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
 
 
 def thermometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
-    """Station 3: highest and lowest temperature and rain of each day, in US units, month/day/year."""
+    """Station 3: each day's highest and lowest temperature and rain, US units, month/day/year."""
     rng = np.random.default_rng(knobs["seed"] + 3)
     n = len(weather.end) // PER_DAY
     day = weather.end[PER_DAY - 1 :: PER_DAY][:n].astype("datetime64[m]") - np.timedelta64(1, "D")

@@ -3,25 +3,15 @@
 Short forms of FAO Irrigation and Drainage Paper 56: equations 6, 39, 62, 66, 71-79, 82-88.
 """
 
-import csv
 from dataclasses import dataclass, field
 from datetime import date, timedelta
-from functools import cache
 from itertools import accumulate
-from pathlib import Path
 from typing import Any
 
 import numpy as np
+from make_crops import NUMBERS
+from make_tables import TEXTURES
 from make_weather import PER_DAY, Array, Weather, saturation
-
-HANDBOOK = Path(__file__).resolve().parent.parent / "app" / "handbook"
-
-
-@cache
-def table(name: str, key: str) -> dict[str, dict[str, str]]:
-    """A handbook table by its key column."""
-    with (HANDBOOK / name).open(encoding="utf-8", newline="") as stream:
-        return {row[key]: row for row in csv.DictReader(stream)}
 
 
 @dataclass
@@ -154,26 +144,25 @@ class Crop:
         return middle + (last - middle) * min((day - mid) / (late - mid), 1.0)
 
 
-def crop_of(season: dict[str, Any], rows: dict[str, dict[str, str]]) -> Crop:
+def crop_of(season: dict[str, Any]) -> Crop:
     """The crop numbers of a season of the book."""
-    row = rows[season["crop"]]
+    (ini, mid, end), height, p, perennial = NUMBERS[season["crop"]]
     dual = season.get("coefficients", "dual") == "dual"
     prefix = "kcb" if dual else "kc"
-    k = tuple(
-        float(season.get(f"{prefix}_{s}", row[f"{prefix}_{s}"])) for s in ("ini", "mid", "end")
-    )
+    deepest = season["root_depth_max_m"]
     return Crop(
         dual=dual,
         stages=season["stage_days"],
-        k=(k[0], k[1], k[2]),
-        height=float(season.get("height_m", row["height_max_m"])),
-        root=(
-            float(season.get("root_depth_min_m", row["root_depth_min_m"])),
-            float(season.get("root_depth_max_m", row["root_depth_max_m"])),
+        k=(
+            season.get(f"{prefix}_ini", ini),
+            season.get(f"{prefix}_mid", mid),
+            season.get(f"{prefix}_end", end),
         ),
-        p=float(season.get("depletion_fraction", row["depletion_fraction_p"])),
+        height=season.get("height_m", height),
+        root=(season.get("root_depth_min_m", deepest), deepest),
+        p=p,
         mad=season.get("mad"),
-        perennial=row["kind"] in {"perennial", "tree", "vine", "forage"},
+        perennial=perennial,
     )
 
 
@@ -194,24 +183,18 @@ class Soil:
         return total
 
 
-def soil_of(part: dict[str, Any], rows: dict[str, dict[str, str]]) -> Soil:
+def soil_of(part: dict[str, Any]) -> Soil:
     """The numbers of a soil of the book."""
     layers, rew = [], part.get("rew_mm")
     for layer in part["layers"]:
         if "texture" in layer:
-            row = rows[layer["texture"]]
-            fc = float(row["theta_fc_mid_m3m3"] or row["sr_theta_fc_m3m3"])
-            wp = float(row["theta_wp_mid_m3m3"] or row["sr_theta_wp_m3m3"])
-            rew = rew or float(row["rew_mid_mm"] or 9)
+            fc, wp, evaporable = TEXTURES[layer["texture"]]
+            rew = rew or evaporable
         else:
             fc, wp = layer["field_capacity"], layer["wilting_point"]
         layers.append((layer["bottom_m"], fc, wp))
-    return Soil(
-        layers,
-        float(rew or 8),
-        100 * (layers[0][1] - 0.5 * layers[0][2]),
-        part.get("drainage_days", 0),
-    )
+    tew = 100 * (layers[0][1] - 0.5 * layers[0][2])
+    return Soil(layers, float(rew or 8), tew, part.get("drainage_days", 0))
 
 
 @dataclass

@@ -1,9 +1,9 @@
-"""The invented valley's weather: one latent series of fronts, cloud and air, felt by every station.
+"""The invented valley's weather: one latent series of fronts, cloud and air for all stations.
 
-Everything is local standard time. A step's value is the mean (rain: the sum) over the step that ENDS
-at its time. Standard formulas: sun and clear-sky radiation after FAO Irrigation and Drainage Paper 56
-(equations 21-28, Annex 3 equations 3-17 to 3-20); clear-sky longwave with a water-vapour emissivity;
-surface temperature by the Penman-Monteith energy balance of clipped, watered grass.
+Everything is local standard time. A step's value is the mean (rain: the sum) over the step that
+ENDS at its time. Standard formulas: sun and clear-sky radiation after FAO Irrigation and Drainage
+Paper 56 (equations 21-28, Annex 3 equations 3-17 to 3-20); clear-sky longwave with a water-vapour
+emissivity; surface temperature by the Penman-Monteith energy balance of clipped, watered grass.
 """
 
 from dataclasses import dataclass, field
@@ -82,7 +82,7 @@ def warm(angle: Array, lag_days: float = 20) -> Array:
 
 
 def sun(place: Place, end: NDArray[np.datetime64], utc_offset: float) -> tuple[Array, Array]:
-    """Sine of the sun's height at mid-step (0 below the horizon) and sunlight above the air [W/m2]."""
+    """Sine of the sun's height at mid-step (0 when it is down), sunlight above the air [W/m2]."""
     middle = end - np.timedelta64(STEP_MIN * 30, "s")
     day = (middle - middle.astype("datetime64[Y]")) / np.timedelta64(1, "D")
     hour = (day % 1) * 24
@@ -111,7 +111,7 @@ def clear_sky(height: Array, above: Array, pressure: Array, ea: Array, clean: Ar
 def fronts(
     rng: np.random.Generator, end: NDArray[np.datetime64], knobs: dict[str, Any]
 ) -> dict[str, Array]:
-    """Fronts by chance: cloud shield, rain that all stations share, cold after them, wind with them."""
+    """Fronts by chance: cloud shield, rain all stations share, cold after them, wind with them."""
     n = len(end)
     season = warm(year_angle(end), 70)
     cloud, rain, cold, wind = (np.zeros(n) for _ in range(4))
@@ -225,7 +225,7 @@ def grass(values: dict[str, Array], pressure: Array, height: Array) -> tuple[Arr
 
 
 def make(places: list[Place], knobs: dict[str, Any]) -> list[Weather]:
-    """The weather of every place from `knobs["first"]` to `knobs["last"]`, the same for one seed."""
+    """The weather of every place from knobs["first"] to knobs["last"], the same for one seed."""
     rng = np.random.default_rng(knobs["seed"])
     first, last = np.datetime64(knobs["first"], "m"), np.datetime64(knobs["last"], "m")
     end = np.arange(first + np.timedelta64(STEP_MIN, "m"), last + 1, np.timedelta64(STEP_MIN, "m"))

@@ -1,0 +1,165 @@
+"""The crops of the invented valley as they are grown there, and their numbers."""
+
+from typing import Any
+
+# A crop as it is grown in the valley: month and day of planting (green-up for what stays), stages.
+# "since" is the year before the one it is named for.
+CROPS: dict[str, dict[str, Any]] = {
+    "maize": {
+        "crop": "maize_grain",
+        "planting": "05-02",
+        "stage_days": [30, 40, 50, 35],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.2,
+        "mad": 0.5,
+    },
+    "silage": {
+        "crop": "maize_grain",
+        "planting": "05-10",
+        "stage_days": [25, 40, 45, 12],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.2,
+        "kcb_end": 0.9,
+        "note": "silage, cut green",
+    },
+    "sweet-corn": {
+        "crop": "maize_sweet",
+        "planting": "05-20",
+        "stage_days": [20, 30, 25, 10],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 0.9,
+        "mad": 0.45,
+    },
+    "wheat": {
+        "crop": "wheat_winter_nonfrozen",
+        "planting": "since-10-01",
+        "stage_days": [40, 165, 60, 28],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.5,
+        "mad": 0.65,
+    },
+    "spring-wheat": {
+        "crop": "wheat_spring",
+        "planting": "03-29",
+        "stage_days": [20, 30, 45, 25],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.2,
+    },
+    "barley": {
+        "crop": "barley",
+        "planting": "03-27",
+        "stage_days": [20, 30, 45, 25],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.2,
+    },
+    "alfalfa": {
+        "crop": "alfalfa_hay_averaged",
+        "planting": "03-30",
+        "coefficients": "single",
+        "stage_days": [10, 30, 145, 30],
+        "root_depth_max_m": 1.6,
+        "mad": 0.55,
+    },
+    "potato": {
+        "crop": "potato",
+        "planting": "04-22",
+        "stage_days": [30, 30, 55, 25],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 0.6,
+        "mad": 0.35,
+    },
+    "onion": {
+        "crop": "onion_dry",
+        "planting": "03-31",
+        "stage_days": [30, 40, 60, 25],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 0.5,
+        "mad": 0.35,
+    },
+    "tomato": {
+        "crop": "tomato",
+        "planting": "05-18",
+        "stage_days": [25, 35, 45, 25],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.0,
+        "mad": 0.4,
+        "note": "transplants",
+    },
+    "beet": {
+        "crop": "sugarbeet",
+        "planting": "04-08",
+        "stage_days": [40, 45, 70, 30],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 1.1,
+        "mad": 0.5,
+    },
+    "bean": {
+        "crop": "beans_dry",
+        "planting": "05-30",
+        "stage_days": [20, 30, 35, 20],
+        "root_depth_min_m": 0.3,
+        "root_depth_max_m": 0.8,
+        "mad": 0.45,
+    },
+    "apple": {
+        "crop": "apple_cherry_pear_cover_frost",
+        "planting": "04-08",
+        "stage_days": [25, 50, 95, 35],
+        "root_depth_max_m": 1.2,
+        "mad": 0.5,
+    },
+    "young-apple": {
+        "crop": "apple_cherry_pear_bare_frost",
+        "planting": "04-08",
+        "stage_days": [25, 50, 95, 35],
+        "root_depth_max_m": 0.8,
+        "height_m": 2.2,
+        "kcb_ini": 0.2,
+        "kcb_mid": 0.55,
+        "kcb_end": 0.4,
+        "note": "third leaf",
+    },
+    "grapes": {
+        "crop": "grapes_wine",
+        "planting": "04-24",
+        "stage_days": [25, 50, 60, 40],
+        "root_depth_max_m": 1.3,
+        "mad": 0.5,
+    },
+    "peach": {
+        "crop": "stone_fruit_bare_frost",
+        "planting": "04-02",
+        "stage_days": [25, 55, 75, 45],
+        "root_depth_max_m": 1.2,
+    },
+    "pasture": {
+        "crop": "pasture_rotated",
+        "planting": "03-26",
+        "coefficients": "single",
+        "stage_days": [10, 25, 160, 30],
+        "root_depth_max_m": 0.9,
+    },
+}
+
+# What the growers' own balance takes for a crop, so that the book does not change with the
+# handbook: coefficients (basal, or single where the season is single), height, part of TAW, whether
+# it stays in the ground.
+# FAO Irrigation and Drainage Paper 56, Tables 12, 17 and 22.
+NUMBERS: dict[str, tuple[tuple[float, float, float], float, float, bool]] = {
+    "maize_grain": ((0.15, 1.15, 0.5), 2.0, 0.55, False),
+    "maize_sweet": ((0.15, 1.10, 1.0), 1.5, 0.50, False),
+    "wheat_winter_nonfrozen": ((0.15, 1.10, 0.225), 1.0, 0.55, False),
+    "wheat_spring": ((0.15, 1.10, 0.225), 1.0, 0.55, False),
+    "barley": ((0.15, 1.10, 0.15), 1.0, 0.55, False),
+    "alfalfa_hay_averaged": ((0.40, 0.95, 0.90), 0.7, 0.55, True),
+    "potato": ((0.15, 1.10, 0.65), 0.6, 0.35, False),
+    "onion_dry": ((0.15, 0.95, 0.65), 0.4, 0.30, False),
+    "tomato": ((0.15, 1.10, 0.70), 0.6, 0.40, False),
+    "sugarbeet": ((0.15, 1.15, 0.50), 0.5, 0.55, False),
+    "beans_dry": ((0.15, 1.10, 0.25), 0.4, 0.45, False),
+    "apple_cherry_pear_cover_frost": ((0.45, 1.15, 0.90), 4.0, 0.50, True),
+    "apple_cherry_pear_bare_frost": ((0.35, 0.90, 0.65), 4.0, 0.50, True),
+    "grapes_wine": ((0.15, 0.65, 0.40), 2.0, 0.45, True),
+    "stone_fruit_bare_frost": ((0.35, 0.85, 0.60), 3.0, 0.50, True),
+    "pasture_rotated": ((0.40, 0.95, 0.85), 0.3, 0.60, True),
+}
