@@ -21,7 +21,9 @@ _DATE = re.compile(
     r"(?:\d{1,4}\s*[-/.]\s*\d{1,2}\s*[-/.]\s*\d{1,4}|\d{1,2}[-/. ][A-Za-z]{3,10}\.?[-/., ]+\d{2,4}"
     r"|[A-Za-z]{3,10}\.? \d{1,2},? \d{4})(?:[T,\s]+\d{1,2}[:h].*)?|\d{8}T\d{4,6}Z?"
 )
-_TIME = re.compile(r"\d{1,2}:\d{1,2}(?::\d{2}(?:[.,]\d+)?)?\s*(?:[AaPp]\.?\s?[Mm]\.?)?|\d{1,2}\s?[AaPp][Mm]")
+_TIME = re.compile(
+    r"\d{1,2}:\d{1,2}(?::\d{2}(?:[.,]\d+)?)?\s*(?:[AaPp]\.?\s?[Mm]\.?)?|\d{1,2}\s?[AaPp][Mm]"
+)
 
 
 def split_line(line: str, delimiter: str) -> list[str]:

@@ -86,9 +86,7 @@ def _typed(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk | 
     rows = data.count(b"\n")
     blanks = plan.delimiter == "blanks"
     mark = DELIMITERS[plan.delimiter]
-    if b"\x00" in data or (
-        not blanks and data.count(mark.encode()) != rows * (plan.width - 1)
-    ):
+    if b"\x00" in data or (not blanks and data.count(mark.encode()) != rows * (plan.width - 1)):
         return None
     types: dict[int, str] = dict.fromkeys(range(plan.width), "S1")
     types.update(dict.fromkeys(plan.texts, f"S{_WIDEST_DATE}"))
@@ -244,5 +242,3 @@ def _empty(plan: Plan) -> Chunk:
     columns: dict[int, Texts | Floats] = {i: np.zeros(0, "S1") for i in plan.texts}
     columns.update({i: np.zeros(0) for i in plan.numbers})
     return Chunk(np.zeros(0, np.int32), columns)
-
-

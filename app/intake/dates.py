@@ -219,9 +219,7 @@ def _figure(raw: NDArray[np.uint8], place: tuple[int, int] | int) -> Instants:
     return total
 
 
-def days_of(
-    year: Instants, month: Instants, day: Instants
-) -> tuple[Instants, NDArray[np.bool_]]:
+def days_of(year: Instants, month: Instants, day: Instants) -> tuple[Instants, NDArray[np.bool_]]:
     """Days since 1970-01-01 and whether the date exists between 1900 and 2199."""
     good = (year >= 1900) & (year < 2200) & (month >= 1) & (month <= 12) & (day >= 1)
     months = np.where(good, (year - 1970) * 12 + month - 1, 0)

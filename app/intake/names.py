@@ -114,8 +114,9 @@ def read_name(name: str, unit_text: str = "", kind_text: str = "") -> NameSays:
     sunny = re.search(r"sun|sol|insol", bare, re.IGNORECASE)
     stated = [text for text in bracketed if sunny or text.strip().lower() != "min"]
     unit, unknown = _stated_unit([unit_text, *stated])
-    words = plain_words(bare) + [w for b in bracketed if b != unit for w in plain_words(b)
-                                 if w in KIND_OF_WORD]
+    words = plain_words(bare) + [
+        w for b in bracketed if b != unit for w in plain_words(b) if w in KIND_OF_WORD
+    ]
     words += [word for word in plain_words(kind_text) if word in KIND_OF_WORD]
     if unit or unknown:
         quantity, why = _quantity(words, unit)

@@ -134,7 +134,9 @@ def _check(mapping: Mapping) -> None:
 
 def _lines_above(head: bytes, mapping: Mapping) -> frozenset[str]:
     text = head.decode(mapping.encoding, errors="replace").lstrip("\ufeff")
-    above = text.replace("\r\n", "\n").replace("\r", "\n").split("\n")[: mapping.first_data_line - 1]
+    above = (
+        text.replace("\r\n", "\n").replace("\r", "\n").split("\n")[: mapping.first_data_line - 1]
+    )
     return frozenset(stripped for stripped in (line.strip() for line in above) if stripped)
 
 
@@ -178,9 +180,10 @@ def _is_cut(before: bytes, last: bytes, plan: Plan) -> bool:
     if len(decimals) != 1 or decimals == {0}:
         return False
     here = len(fields[-1].rpartition(plan.decimal)[2]) if plan.decimal in fields[-1] else 0
-    return here < next(iter(decimals)) and fields[-1].lstrip("-").replace(
-        plan.decimal, "", 1
-    ).isdigit()
+    return (
+        here < next(iter(decimals))
+        and fields[-1].lstrip("-").replace(plan.decimal, "", 1).isdigit()
+    )
 
 
 def _refuse_dates(chunk: Chunk, times: Times, mapping: Mapping, report: Report) -> None:

@@ -96,9 +96,7 @@ def _answer_column(columns: list[dict[str, object]], position: str, key: str, va
         column[key] = value
 
 
-def _fresh(
-    source: BinaryIO, encoding: str, table: Table, when: When, clock: Clock
-) -> Sniffed:
+def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clock) -> Sniffed:
     questions: list[Question] = []
     notes = [f"dates: {when.why}"]
     layout, suggested = when.layout, None
@@ -108,7 +106,9 @@ def _fresh(
         suggested = layout.model_copy(update={"order": order.suggested})
         notes.append(f"order of the date: {order.why}")
         if order.settled is None:
-            questions.append(_order_question(order.choices, order.suggested, order.why, table, when))
+            questions.append(
+                _order_question(order.choices, order.suggested, order.why, table, when)
+            )
     else:
         layout = layout.model_copy(update={"order": "ymd"})
     interval, step_note = _interval(table, suggested or layout)
@@ -144,9 +144,7 @@ def _fresh(
     return _sniffed(mapping, questions, table, guesses, notes, remembered=False)
 
 
-def _remembered(
-    remembered: Mapping, table: Table, encoding: str, when: When
-) -> Sniffed | None:
+def _remembered(remembered: Mapping, table: Table, encoding: str, when: When) -> Sniffed | None:
     """The remembered meaning over this file's own layout; None where its dates do not fit."""
     times = sample_times(table, remembered.time)
     if times.size < 0.9 * min(len(table.rows), 2000):
@@ -261,7 +259,9 @@ def _row_time(
 
 
 def _writes_24(table: Table, layout: TimeLayout) -> bool:
-    positions = [c.position for c in layout.columns if c.role in ("instant", "time", "hhmm", "hour")]
+    positions = [
+        c.position for c in layout.columns if c.role in ("instant", "time", "hhmm", "hour")
+    ]
     return any(
         "24:00" in row[i] or row[i] in ("2400", "24") for row in table.rows[:200] for i in positions
     )
@@ -282,7 +282,9 @@ def _row_time_question(why: str) -> Question:
 
 def _interval_question(why: str) -> Question:
     choices = tuple(
-        Choice(str(s), "1 day" if s == _DAY else f"{s // 3600} h" if s >= 3600 else f"{s // 60} min")
+        Choice(
+            str(s), "1 day" if s == _DAY else f"{s // 3600} h" if s >= 3600 else f"{s // 60} min"
+        )
         for s in _STEPS
     )
     return Question("interval_s", "How much time does one row cover?", choices, why)
@@ -311,6 +313,3 @@ def _order_question(
         why,
         suggested,
     )
-
-
-

@@ -94,9 +94,7 @@ def guess_columns(table: Table, taken: set[int], interval_s: int) -> list[Column
             guesses.append(ColumnGuess(empty, why))
         else:
             used[says.quantity] = name
-            column = empty.model_copy(
-                update={"quantity": says.quantity, "height_m": says.height_m}
-            )
+            column = empty.model_copy(update={"quantity": says.quantity, "height_m": says.height_m})
             values = column_values(table, i)
             guesses.append(_unit_guess(column, values, interval_s, says.why, says.unknown_unit))
     return [_ask_body(guess, guesses, table, interval_s) for guess in guesses]
@@ -127,7 +125,9 @@ def _unit_guess(
     column: ColumnMap, values: Floats, interval_s: int, name_why: str, unknown: str | None
 ) -> ColumnGuess:
     quantity = str(column.quantity)
-    fitting = [u for u in _candidates(quantity, interval_s) if _looks(values, u, quantity, interval_s)]
+    fitting = [
+        u for u in _candidates(quantity, interval_s) if _looks(values, u, quantity, interval_s)
+    ]
     height = _height_question(column)
     if unknown is not None:
         why = f"its unit is written {unknown!r}, which is not known here"
@@ -148,7 +148,9 @@ def _unit_guess(
         f"may be {labels}" if fitting else "fit no usual unit"
     )
     suggested = fitting[0] if fitting else None
-    return ColumnGuess(column, f"{name_why}; {why}", (unit_question(column, why, suggested), *height))
+    return ColumnGuess(
+        column, f"{name_why}; {why}", (unit_question(column, why, suggested), *height)
+    )
 
 
 def _candidates(quantity: str, interval_s: int) -> tuple[str, ...]:

@@ -95,7 +95,9 @@ def _from_texts(columns: list[list[str]], words: list[str]) -> tuple[TimeLayout,
     if _has_clock(columns[date]):
         return _layout((date, "instant")), "the column holds dates with a clock time"
     if times:
-        return _layout((date, "date"), (times[0], "time")), "one column holds dates, one clock times"
+        return _layout(
+            (date, "date"), (times[0], "time")
+        ), "one column holds dates, one clock times"
     for i, name in enumerate(words):
         role = _named_role(name, columns[i])
         if i != date and role in ("hhmm", "hour"):
@@ -118,9 +120,9 @@ def _mostly(cells: list[str], kind: str) -> bool:
 
 
 def _has_clock(cells: list[str]) -> bool:
-    return sum(bool(re.search(r"\d[T,\s]+\d{1,2}[:h]|\dT\d{4}", cell)) for cell in cells) > 0.5 * len(
-        cells
-    )
+    return sum(
+        bool(re.search(r"\d[T,\s]+\d{1,2}[:h]|\dT\d{4}", cell)) for cell in cells
+    ) > 0.5 * len(cells)
 
 
 def _named_role(name: str, cells: list[str]) -> TimeRole | None:

@@ -31,9 +31,7 @@ def _warn_order(steps: Instants, line: Ints, falling: int, report: Report) -> No
     at = int(np.flatnonzero(steps < 0)[0]) + 1
     whole = falling > 0.5 * steps.size
     why = "the file runs from new to old" if whole else "earlier than the line before it"
-    report.add(
-        int(line[at]), "(line)", "", why, "Nothing to do: the rows were sorted.", "warning"
-    )
+    report.add(int(line[at]), "(line)", "", why, "Nothing to do: the rows were sorted.", "warning")
 
 
 def _once(
