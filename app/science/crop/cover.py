@@ -5,9 +5,12 @@ from numpy.typing import ArrayLike
 
 from app.science import Floats, floats
 from app.science.crop.climate import climate_term
+from app.science.energy.sun import declination
 
 # FAO-56 eq 97: extinction of radiation in the canopy.
 EXTINCTION = 0.7
+# FAO-56 Example 47 solves eq 97 for LAI with 1.4 in place of 1 / 0.7.
+LAI_PER_LOG = 1.4
 # FAO-56 eq 105: ceiling of a windbreak's coefficient.
 WINDBREAK_MOST = 2.5
 
@@ -18,11 +21,8 @@ def sin_noon_elevation(latitude_deg: ArrayLike, day_of_year: ArrayLike) -> Float
     latitude_deg -90..90; day_of_year 1-366; shapes broadcast; NaN in, NaN out. Source: FAO-56
     eq 24 and the note to eq 98 (sin eta = sin phi sin delta + cos phi cos delta).
     """
-    latitude = np.deg2rad(floats(latitude_deg))
-    declination = 0.409 * np.sin(2.0 * np.pi * floats(day_of_year) / 365.0 - 1.39)
-    return np.asarray(
-        np.sin(latitude) * np.sin(declination) + np.cos(latitude) * np.cos(declination)
-    )
+    latitude, delta = np.deg2rad(floats(latitude_deg)), declination(day_of_year)
+    return np.asarray(np.sin(latitude) * np.sin(delta) + np.cos(latitude) * np.cos(delta))
 
 
 def effective_cover_rows(
@@ -100,12 +100,12 @@ def kcb_from_lai(lai: ArrayLike, full: ArrayLike, kc_min: ArrayLike = 0.15) -> F
 
 
 def lai_from_kcb(kcb: ArrayLike, full: ArrayLike, kc_min: ArrayLike = 0.15) -> Floats:
-    """Leaf area index that gives `kcb`: FAO-56 eq 97 solved for LAI.
+    """Leaf area index that gives `kcb`: eq 97 solved for LAI, with the print's rounded constant.
 
-    kc_min <= kcb < full; shapes broadcast; NaN in, NaN out.
+    kc_min <= kcb < full; shapes broadcast; NaN in, NaN out. Source: FAO-56 Example 47.
     """
     share = (floats(kcb) - floats(kc_min)) / (floats(full) - floats(kc_min))
-    return np.asarray(-np.log(1.0 - share) / EXTINCTION)
+    return np.asarray(-LAI_PER_LOG * np.log(1.0 - share))
 
 
 def sparse_stand_reduction(cover: ArrayLike, dense: ArrayLike) -> Floats:
