@@ -112,6 +112,7 @@ CROPS: dict[str, dict[str, Any]] = {
         "crop": "apple_cherry_pear_bare_frost",
         "planting": "04-08",
         "stage_days": [25, 50, 95, 35],
+        "root_depth_min_m": 0.6,
         "root_depth_max_m": 0.8,
         "height_m": 2.2,
         "kcb_ini": 0.2,

@@ -174,7 +174,7 @@ def make_all() -> tuple[dict[str, bytes], list[str]]:
     out = {name: files[name].data for name in KNOBS["arrival"]}
     out["intakes.json"] = as_json(
         [
-            {"station": files[n].station, "file": n, "mapping": files[n].mapping}
+            {"station": files[n].station, "file": n, "answers": files[n].answers}
             for n in KNOBS["arrival"]
         ]
     )

@@ -18,7 +18,7 @@ class File:
     station: str
     name: str
     data: bytes
-    mapping: dict[str, Any]
+    answers: dict[str, Any]  # to what the file leaves open
 
 
 def between(end: Times, span: tuple[str, str] | list[str]) -> NDArray[np.bool_]:
@@ -247,7 +247,7 @@ def thermometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
             "Daily sheet, midnight to midnight",
             "Read by: R. Ossel",
             "",
-            "Date,High (F),Low (F),Rain (in)",
+            "Date,Max temp (F),Min temp (F),Rain (in)",
         ]
         for i in range(n):
             if not np.datetime64(first) <= day[i] <= np.datetime64(last):
