@@ -2,6 +2,7 @@
 
 import datetime as dt
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -45,7 +46,7 @@ def aggregate(
     weather = DailyWeather.missing(np.asarray(days, "datetime64[D]"))
     if wanted.size == 0:
         return weather, []
-    fields: dict[str, Floats] = {}
+    fields: dict[str, Any] = {}
     missing: dict[tuple[str, int], str] = {}
     notes: list[DayNote] = []
     for step in np.unique(rows.interval_s).tolist():

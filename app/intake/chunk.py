@@ -1,10 +1,13 @@
 """One block of lines to typed columns: typed at once, and only where that fails cell by cell."""
 
 import io
+from collections.abc import Hashable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import pandas as pd
+from numpy.typing import NDArray
 
 from app.intake.cells import DELIMITERS, split_line
 from app.intake.dates import Texts
@@ -68,29 +71,29 @@ def plan_of(mapping: Mapping, repeated: frozenset[str]) -> Plan:
 def parse(block: Block, plan: Plan, report: Report) -> Chunk:
     """Columns of one block; lines above the first data line are passed over."""
     skip = max(plan.first_data_line - block.first_line, 0)
-    data, first_line = block.data, block.first_line
-    if skip:
-        kept = data.split(b"\n", skip)
-        data = kept[skip] if len(kept) > skip else b""
-        first_line += skip
-    if not data:
+    if skip >= block.lines:
         return _empty(plan)
-    if not data.endswith(b"\n"):
-        data += b"\n"
-    report.counts.lines += data.count(b"\n")
-    return _typed(data, first_line, plan, report) or _by_cell(data, first_line, plan, report)
+    data, first_line, rows = block.data, block.first_line + skip, block.lines - skip
+    if skip:
+        data = data.split(b"\n", skip)[skip]
+    report.counts.lines += rows
+    return _typed(data, first_line, rows, plan, report) or _by_cell(
+        data, first_line, plan, report
+    )
 
 
-def _typed(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk | None:
+def _typed(
+    data: bytes, first_line: int, rows: int, plan: Plan, report: Report
+) -> Chunk | None:
     """All rows at once; None when any row or cell is not as it should be."""
-    rows = data.count(b"\n")
     blanks = plan.delimiter == "blanks"
     mark = DELIMITERS[plan.delimiter]
     if b"\x00" in data or (not blanks and data.count(mark.encode()) != rows * (plan.width - 1)):
         return None
-    types: dict[int, str] = dict.fromkeys(range(plan.width), "S1")
+    types: dict[Hashable, str] = dict.fromkeys(range(plan.width), "S1")
     types.update(dict.fromkeys(plan.texts, f"S{_WIDEST_DATE}"))
     types.update(dict.fromkeys(plan.numbers, "float64"))
+    missing: Any = {i: list(plan.missing[i]) for i in plan.numbers}
     try:
         frame = pd.read_csv(
             io.BytesIO(data),
@@ -99,7 +102,7 @@ def _typed(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk | 
             sep=r"\s+" if blanks else mark,
             decimal=plan.decimal,
             dtype=types,
-            na_values={i: list(plan.missing[i]) for i in plan.numbers},
+            na_values=missing,
             keep_default_na=False,
             skip_blank_lines=False,
             skipinitialspace=True,
@@ -110,7 +113,7 @@ def _typed(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk | 
         return None
     if len(frame) != rows or not isinstance(frame.index, pd.RangeIndex):
         return None
-    if blanks and not (frame[plan.width - 1].to_numpy() == frame[plan.width - 1].to_numpy()).all():
+    if blanks and _short_rows(frame[plan.width - 1].to_numpy()):
         return None
     columns: dict[int, Texts | Floats] = {i: frame[i].to_numpy() for i in plan.texts}
     for i in plan.numbers:
@@ -124,6 +127,13 @@ def _typed(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk | 
         )
     line = np.arange(first_line, first_line + rows, dtype=np.int32)
     return Chunk(line, columns)
+
+
+def _short_rows(last: NDArray[np.generic]) -> bool:
+    """Whether the last column has an empty field: among blanks that is a row cut short."""
+    if last.dtype.kind == "f":
+        return bool(np.isnan(last.astype(np.float64)).any())
+    return bool((last.astype("S3") == b"").any() | (last.astype("S3") == b"nan").any())
 
 
 def _by_cell(data: bytes, first_line: int, plan: Plan, report: Report) -> Chunk:

@@ -52,7 +52,7 @@ def civil_to_utc(local: Instants, name: str) -> Civil:
 
 
 def _changes(zone: ZoneInfo, low: int, high: int) -> tuple[Instants, Instants, Instants]:
-    """Offsets [s] before and after each change, and its instant [UTC s]; a first row for the start."""
+    """Offsets [s] before and after each change and its instant [UTC s], the start first."""
     day = low // _DAY - 2
     last = high // _DAY + 2
     before, after, at = [], [], []

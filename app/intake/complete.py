@@ -42,7 +42,7 @@ def sun_mean_of_day(grid: Grid, name: str) -> Figure:
     judged = _Judged(values.shape[0])
     judged.need(_share(present, light), DAYLIGHT_SHARE, "of the daylight")
     judged.allow_filled(_share(_filled(grid, name), light, empty=0.0))
-    judged.need(present.any(axis=1) * 1.0, 1.0, "of the day")
+    judged.refuse(~_any(present), "no readings")
     read = present & light
     by_day = np.where(read, values, 0.0).sum(axis=1) / np.maximum(read.sum(axis=1), 1)
     at_night = np.where(present & ~light, values, 0.0).sum(axis=1)
@@ -56,7 +56,7 @@ def sum_of_day(grid: Grid, name: str, *, daylight: bool = False) -> Figure:
     judged = _Judged(values.shape[0])
     if daylight:
         judged.need(_share(present, ~grid.night), DAYLIGHT_SHARE, "of the daylight")
-        judged.need(present.any(axis=1) * 1.0, 1.0, "of the day")
+        judged.refuse(~_any(present), "no readings")
     else:
         judged.need(_share(present), DAY_SHARE, "of the intervals")
     return judged.figure(np.where(present, values, 0.0).sum(axis=1))
@@ -73,8 +73,7 @@ def extreme_of_day(grid: Grid, name: str, *, highest: bool) -> Figure:
     quarter = np.arange(values.shape[1]) * 4 // values.shape[1]
     quarters = min(4, values.shape[1])
     for part in range(quarters):
-        read = (~np.isnan(values[:, quarter == part])).any(axis=1)
-        judged.refuse(~read, "a quarter of the day without a reading")
+        judged.refuse(~_any(~np.isnan(values[:, quarter == part])), "a quarter of the day without a reading")
     worst = -np.inf if highest else np.inf
     read_only = np.where(np.isnan(values), worst, values)
     return judged.figure(read_only.max(axis=1) if highest else read_only.min(axis=1))
@@ -108,6 +107,10 @@ class _Judged:
 
     def figure(self, values: Floats) -> Figure:
         return Figure(np.where(self._good, values, np.nan), self._reason)
+
+
+def _any(which: Bools) -> Bools:
+    return np.asarray(which.any(axis=1), np.bool_)
 
 
 def _filled(grid: Grid, name: str) -> Bools:

@@ -1,4 +1,4 @@
-"""What a column's name says: quantity, unit, kind of figure, height. English and Spanish wordings."""
+"""What a column's name says, in English or Spanish: quantity, unit, kind of figure, height."""
 
 import re
 import unicodedata
@@ -34,7 +34,8 @@ _LEAVE_OUT = (
     (r"case|body|sensor|housing|dome|internal|inside|interior|indoor|carcasa|cuerpo",
      "the instrument's own temperature"),
     (r"record|rec|recno|id|no|index|station|estacion|nr|num|serial|site", "a label"),
-    (r"heat flux|g flux|shf|soil heat|co2|no2|ozone|pm 10|lightning|snow depth|water depth|sea level|quantity", "not used"),
+    (r"heat flux|g flux|shf|soil heat|co2|no2|ozone|pm 10|lightning|snow depth|water depth"
+     r"|sea level|quantity", "not used"),
 )  # fmt: skip
 
 _SW = r"shortwave|short wave|sw|solar|onda corta|k|rs|rg|sun|sol|kurz"

@@ -22,7 +22,7 @@ _DECIMALS = 5  # 0 ... 4 decimals are tried
 _AS_FLOAT = _DECIMALS
 _ABSENT = np.int32(-(2**31))
 _LARGEST = 2.0e9
-_LEVEL = 6
+_LEVEL = 3  # level 6 is twice as slow for 3 % less
 SECONDS_A_DAY = 86400
 
 
@@ -40,31 +40,32 @@ def pack(rows: Rows, clock: Clock) -> list[DayPack]:
     if len(rows) == 0:
         return []
     day = station_day(rows.instant, rows.interval_s, clock)
-    order = np.argsort(day, kind="stable")
-    starts = np.flatnonzero(np.r_[True, np.diff(day[order]) != 0])
-    names = sorted(rows.values)
-    coded, kinds = _code_columns(rows, names, order, starts)
-    instants = rows.instant[order]
-    lines, intervals = rows.line[order], rows.interval_s[order]
-    packs = []
-    for place, (begin, end) in enumerate(zip(starts, np.r_[starts[1:], order.size], strict=True)):
-        cut = slice(int(begin), int(end))
-        kept = [i for i in range(len(names)) if kinds[i, place] >= 0]
-        blob = _blob(
-            instants[cut],
-            lines[cut],
-            intervals[cut],
-            [names[i] for i in kept],
-            [int(kinds[i, place]) for i in kept],
-            [
-                rows.values[names[i]][order[cut]]
-                if kinds[i, place] == _AS_FLOAT
-                else coded[kinds[i, place]][i][cut]
-                for i in kept
-            ],
+    if np.any(np.diff(day) < 0):
+        order = np.argsort(day, kind="stable")
+        day = day[order]
+        rows = Rows(
+            rows.instant[order],
+            rows.line[order],
+            rows.interval_s[order],
+            {name: column[order] for name, column in rows.values.items()},
         )
-        date = dt.date(1970, 1, 1) + dt.timedelta(days=int(day[order[begin]]))
-        packs.append(DayPack(date, blob, int(end - begin)))
+    starts = np.flatnonzero(np.r_[True, np.diff(day) != 0])
+    ends = np.r_[starts[1:], day.size]
+    coded = {
+        name: _code_column(rows.values[name], starts, ends - starts) for name in sorted(rows.values)
+    }
+    packs = []
+    for place, (begin, end) in enumerate(zip(starts.tolist(), ends.tolist(), strict=True)):
+        cut = slice(begin, end)
+        columns: list[tuple[str, int, Ints | Floats]] = []
+        for name, (whole, kinds) in coded.items():
+            kind = int(kinds[place])
+            if kind >= 0:
+                column = rows.values[name] if kind == _AS_FLOAT else whole
+                columns.append((name, kind, column[cut]))
+        blob = _blob(rows.instant[cut], rows.line[cut], rows.interval_s[cut], columns)
+        date = dt.date(1970, 1, 1) + dt.timedelta(days=int(day[begin]))
+        packs.append(DayPack(date, blob, end - begin))
     return packs
 
 
@@ -78,50 +79,56 @@ def unpack(blob: bytes) -> Rows:
         ) from error
 
 
-def _code_columns(
-    rows: Rows, names: list[str], order: NDArray[np.intp], starts: NDArray[np.intp]
-) -> tuple[list[list[Ints]], NDArray[np.int8]]:
-    """Whole-number forms by decimals and column, and per column and day which form is exact.
+def _code_column(
+    values: Floats, starts: NDArray[np.intp], sizes: NDArray[np.intp]
+) -> tuple[Ints, NDArray[np.int8]]:
+    """Whole-number form of a column, and per day its decimals.
 
     The form is -1 where the day has no value at all and `_AS_FLOAT` where none is exact.
     """
-    coded: list[list[Ints]] = [[] for _ in range(_DECIMALS)]
-    kinds = np.full((len(names), starts.size), _AS_FLOAT, np.int8)
-    for i, name in enumerate(names):
-        values = rows.values[name][order]
-        absent = np.isnan(values)
-        for decimals in reversed(range(_DECIMALS)):
-            whole = np.rint(values * 10.0**decimals)
-            fits = (whole / 10.0**decimals == values) & (np.abs(whole) < _LARGEST) | absent
-            fits &= ~(np.signbit(values) & (values == 0.0))
-            exact = np.logical_and.reduceat(fits, starts)
-            kinds[i, exact] = decimals
-            whole[absent | ~fits] = _ABSENT
-            coded[decimals].append(whole.astype(np.int32))
-        kinds[i, np.logical_and.reduceat(absent, starts)] = -1
+    absent = np.isnan(values)
+    kinds = np.full(starts.size, _AS_FLOAT, np.int8)
+    coded = np.full(values.size, _ABSENT, np.int32)
+    minus_zero = np.signbit(values) & (values == 0.0)
+    for decimals in range(_DECIMALS):
+        scale = 10.0**decimals
+        whole = np.rint(values * scale)
+        fits = ((whole / scale == values) & (np.abs(whole) < _LARGEST) & ~minus_zero) | absent
+        exact = np.logical_and.reduceat(fits, starts) & (kinds == _AS_FLOAT)
+        kinds[exact] = decimals
+        rows = np.repeat(exact, sizes) & ~absent
+        coded[rows] = whole[rows].astype(np.int32)
+        if not (kinds == _AS_FLOAT).any():
+            break
+    kinds[np.logical_and.reduceat(absent, starts)] = -1
     return coded, kinds
 
 
 def _blob(
-    instant: Instants,
-    line: Ints,
-    interval_s: Ints,
-    names: list[str],
-    kinds: list[int],
-    columns: list[NDArray[np.int32] | Floats],
+    instant: Instants, line: Ints, interval_s: Ints, columns: list[tuple[str, int, Ints | Floats]]
 ) -> bytes:
-    header = json.dumps({"n": instant.size, "names": names, "kinds": kinds}, sort_keys=True)
-    parts = [_LENGTH.pack(len(header)), header.encode()]
-    parts.append(np.diff(instant, prepend=0).astype("<i8").tobytes())
-    parts.append(np.diff(line, prepend=np.int32(0)).astype("<i4").tobytes())
-    parts.append(np.diff(interval_s, prepend=np.int32(0)).astype("<i4").tobytes())
-    for kind, column in zip(kinds, columns, strict=True):
+    said = {
+        "n": instant.size,
+        "names": [name for name, _, _ in columns],
+        "kinds": [kind for _, kind, _ in columns],
+    }
+    header = json.dumps(said, sort_keys=True).encode()
+    parts = [_LENGTH.pack(len(header)), header, _steps(instant, "<i8"), _steps(line, "<i4")]
+    parts.append(_steps(interval_s, "<i4"))
+    for _, kind, column in columns:
         if kind == _AS_FLOAT:
             raw = np.frombuffer(column.astype("<f8").tobytes(), np.uint8)
             parts.append(raw.reshape(-1, 8).T.tobytes())
         else:
-            parts.append(np.diff(column, prepend=column.dtype.type(0)).astype("<i4").tobytes())
+            parts.append(_steps(column, "<i4"))
     return MAGIC + zlib.compress(b"".join(parts), _LEVEL)
+
+
+def _steps(whole: NDArray[np.generic], layout: str) -> bytes:
+    """The first value and the differences from one to the next, which wrap around."""
+    steps = whole.astype(layout)
+    steps[1:] -= steps[:-1].copy()
+    return steps.tobytes()
 
 
 def _unpacked(blob: bytes) -> Rows:

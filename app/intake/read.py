@@ -147,7 +147,7 @@ def _closed(found: Iterator[Block], plan: Plan, report: Report) -> Iterator[Bloc
             yield block
             continue
         before, _, last = block.data.rpartition(b"\n")
-        number = block.first_line + block.data.count(b"\n")
+        number = block.first_line + block.lines - 1
         if number >= plan.first_data_line and _is_cut(before, last, plan):
             report.counts.lines += 1
             report.counts.rows_refused += 1
@@ -160,9 +160,9 @@ def _closed(found: Iterator[Block], plan: Plan, report: Report) -> Iterator[Bloc
                 "refused",
             )
             if before:
-                yield Block(before + b"\n", block.first_line)
+                yield Block(before + b"\n", block.first_line, block.lines - 1)
         else:
-            yield Block(block.data + b"\n", block.first_line)
+            yield Block(block.data + b"\n", block.first_line, block.lines)
 
 
 def _is_cut(before: bytes, last: bytes, plan: Plan) -> bool:

@@ -252,8 +252,9 @@ def _row_time(
     if when.starts:
         return "start", []
     clocks = sample_times(table, layout) % _DAY
-    if interval == _DAY and clocks.size and np.all(clocks == 0) and not _writes_24(table, layout):
-        why = "one row a day, always at 00:00, may stand for the day that begins or the one that ended"
+    midnight = clocks.size > 0 and bool(np.all(clocks == 0))
+    if interval == _DAY and midnight and not _writes_24(table, layout):
+        why = "one row a day, always at 00:00, may mean the day that begins or the one that ended"
         return None, [_row_time_question(why)]
     return "end", []
 
@@ -288,6 +289,12 @@ def _interval_question(why: str) -> Question:
         for s in _STEPS
     )
     return Question("interval_s", "How much time does one row cover?", choices, why)
+
+
+def _duration(seconds: int) -> str:
+    if seconds == _DAY:
+        return "1 day"
+    return f"{seconds // 3600} h" if seconds >= 3600 else f"{seconds // 60} min"
 
 
 def _order_question(

@@ -9,7 +9,7 @@ import numpy as np
 from app.intake.cells import kind_of
 from app.intake.dates import read_times
 from app.intake.errors import IntakeError
-from app.intake.model import Instants, TimeColumn, TimeLayout, TimeRole
+from app.intake.model import Floats, Instants, TimeColumn, TimeLayout, TimeRole
 from app.intake.names import plain_words
 from app.intake.sniff_table import Table
 
@@ -29,6 +29,8 @@ _SAYS_WHEN = re.compile(
     r"\b(?:date|datetime|time|timestamp|stamp|fecha|hora|when|end|start|datum|zeit|tmstamp|ts|dt"
     r"|epoch|unix|serial|day|dia|instant|interval|period)\b"
 )
+_CLOCK = re.compile(r"\d[T,\s]+\d{1,2}[:h]|\dT\d{4}")
+_RUN_ON = re.compile(r"(?:19|20|21)\d\d(?:0[1-9]|1[0-2])(?:[0-3]\d)(?:\d{4}|\d{6})?")
 _START = re.compile(r"\b(?:start|begin|beginning|from|inicio|desde|starting)\b")
 _UTC = re.compile(r"\b(?:utc|gmt|zulu)\b")
 _UNNAMED: tuple[tuple[TimeRole, ...], ...] = (
@@ -143,10 +145,10 @@ def _named_role(name: str, cells: list[str]) -> TimeRole | None:
     return None
 
 
-def _numbers(cells: list[str]) -> np.ndarray | None:
+def _numbers(cells: list[str]) -> Floats | None:
+    given = [cell.replace(",", ".") for cell in cells if kind_of(cell) != "missing"]
     try:
-        return np.array([float(cell.replace(",", ".")) for cell in cells if kind_of(cell) != "missing"]
-                        or [np.nan])  # fmt: skip
+        return np.array([float(cell) for cell in given] or [np.nan])
     except ValueError:
         return None
 
@@ -170,7 +172,7 @@ def _from_named_parts(columns: list[list[str]], words: list[str]) -> tuple[TimeL
     if "hhmm" in roles and "hour" not in roles:
         kept.append("hhmm")
     else:
-        kept += [role for role in ("hour", "minute", "second") if role in roles]  # type: ignore[misc]
+        kept += [role for role in ("hour", "minute", "second") if role in roles]
     why = "the names say " + ", ".join(role.replace("_", " ") for role in kept)
     return _layout(*((roles[role], role) for role in kept)), why
 
@@ -183,10 +185,9 @@ def _from_one_number(columns: list[list[str]], words: list[str]) -> tuple[TimeLa
         if values is None or not np.isfinite(values).all():
             continue
         low, high = float(values.min()), float(values.max())
-        if all(re.fullmatch(r"\d{8}|\d{12}|\d{14}", cell) for cell in cells):
-            if 19000101 <= int(cells[0][:8]) <= 22001231 and "01" <= cells[0][4:6] <= "12":
-                role: TimeRole = "date" if len(cells[0]) == 8 else "instant"
-                return _layout((i, role)), "figures run on as year, month, day"
+        if all(_RUN_ON.fullmatch(cell) for cell in cells):
+            role: TimeRole = "date" if len(cells[0]) == 8 else "instant"
+            return _layout((i, role)), "figures run on as year, month, day"
         rising = np.count_nonzero(np.diff(values) > 0) >= 0.8 * max(values.size - 1, 0)
         if not rising or (i not in named and values.size < 5):
             continue
@@ -228,7 +229,7 @@ def sample_times(table: Table, layout: TimeLayout, most: int = 2000) -> Instants
         else:
             columns[column.position] = np.array([_number(cell) for cell in cells])
     times = read_times(layout, columns, len(rows))
-    return times.local[times.why == 0]
+    return np.asarray(times.local[times.why == 0], np.int64)
 
 
 def _number(cell: str) -> float:

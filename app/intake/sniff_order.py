@@ -20,7 +20,7 @@ _MOST_BYTES = 256 * 1024 * 1024
 
 @dataclass(frozen=True)
 class Order:
-    """The order found: `settled` None means a person must say; `line` is the one that settled it."""
+    """The order found; `settled` None means a person must say."""
 
     settled: DateOrder | None
     suggested: DateOrder

@@ -2,6 +2,7 @@
 
 import hashlib
 from collections import Counter
+from collections.abc import Callable
 from dataclasses import dataclass
 
 from app.intake.cells import DELIMITERS, kind_of, split_line
@@ -167,13 +168,13 @@ def _fit(line: str, delimiter: str, width: int) -> list[str] | None:
 def _refuse_split_decimals(counts: list[int], delimiter: str, width: int) -> None:
     if delimiter == "," and any(width / 2 < count < width for count in counts):
         raise IntakeError(
-            f"The header names {counts[0]} columns and the rows have {width} fields: commas seem to "
-            "part both the fields and the decimals. Export with semicolons or decimal points."
+            f"The header names {counts[0]} columns and the rows have {width} fields: commas seem "
+            "to part both the fields and the decimals. Export with semicolons or decimal points."
         )
 
 
-def _share(texts: list[str], test: object) -> float:
-    return sum(bool(test(text)) for text in texts) / max(len(texts), 1)  # type: ignore[operator]
+def _share(texts: list[str], test: Callable[[str], bool]) -> float:
+    return sum(test(text) for text in texts) / max(len(texts), 1)
 
 
 def _is_kind(text: str) -> bool:

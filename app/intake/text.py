@@ -47,7 +47,7 @@ _BOMS = (
 )
 _MARKUP = (
     (("<!doctype html", "<html", "<head", "<body"), "a web page",
-     "The logger or the site answered with a page, often a sign-in; download the data file itself."),
+     "The site answered with a page, often a sign-in; download the data file itself."),
     (("<?xml", "<"), "a markup file (XML)", "Export the readings as CSV."),
     (("{", "[{"), "a JSON file", "Export the readings as CSV."),
 )  # fmt: skip
@@ -62,6 +62,7 @@ class Block:
 
     data: bytes
     first_line: int
+    lines: int
     ends_open: bool = False
 
 
@@ -146,7 +147,7 @@ def blocks(
     decoder = None
     if encoding != "utf-8":
         decoder = codecs.getincrementaldecoder(encoding)(errors="replace")
-    line, done, carry = 1, 0, b""
+    line, done, carry, newline = 1, 0, b"", b"\n"
     while raw := source.read(BLOCK_BYTES):
         data = raw if decoder is None else decoder.decode(raw).encode("utf-8", errors="replace")
         if done == 0:
@@ -162,19 +163,21 @@ def blocks(
         whole, carry = data[:cut], data[cut:] + held
         if len(carry) > LONGEST_LINE:
             raise IntakeError(
-                f"Line {line + whole.count(b'%c' % 10)} is longer than {LONGEST_LINE} bytes: this "
+                f"Line {line + whole.count(newline)} is longer than {LONGEST_LINE} bytes: this "
                 "is no table with one row a line. Export the readings again."
             )
         if whole:
-            yield Block(whole, line)
-            line += whole.count(b"\n")
+            count = whole.count(b"\n")
+            yield Block(whole, line, count)
+            line += count
         if progress:
             progress(done, size)
     if decoder is not None:
         carry += decoder.decode(b"", final=True).encode()
     rest = carry.replace(b"\r", b"\n")
     if rest.strip(b"\n\x00\x1a"):
-        yield Block(rest, line, ends_open=not rest.endswith(b"\n"))
+        ends_open = not rest.endswith(b"\n")
+        yield Block(rest, line, rest.count(b"\n") + ends_open, ends_open)
 
 
 def _is_ascii(data: bytes) -> bool:
