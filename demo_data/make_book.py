@@ -76,10 +76,25 @@ def weather_of(
     return own.ahead(today)
 
 
-def make_book(weather: list[Weather], knobs: dict[str, Any]) -> tuple[dict[str, Any], list[str]]:
+def days_seen(weather: list[Weather], stuck: dict[str, list[tuple[str, str]]]) -> dict[str, Days]:
+    """Every station's days, with 2 m/s where its anemometer was stuck."""
+    days = {}
+    for record in weather:
+        own = station_days(record, MEASURES[record.place.key])
+        for first, last in stuck.get(record.place.key, []):
+            a, b = (own.at(date.fromisoformat(day[:10])) for day in (first, last))
+            own.u2[a : b + 1] = 2.0
+        own = replace(own, eto=own.reference_et(), slope=[])
+        days[record.place.key] = own
+    return days
+
+
+def make_book(
+    weather: list[Weather], knobs: dict[str, Any], stuck: dict[str, list[tuple[str, str]]]
+) -> tuple[dict[str, Any], list[str]]:
     """The whole book, and a line for each field on where it stands today."""
     today = date.fromisoformat(knobs["today"])
-    days = {w.place.key: station_days(w, MEASURES[w.place.key]) for w in weather}
+    days = days_seen(weather, stuck)
     book: dict[str, Any] = {
         "stations": tables.STATIONS,
         "soils": tables.SOILS,

@@ -21,8 +21,8 @@ KNOBS: dict[str, Any] = {
         "aims": {
             "late": (0, 0, 0),
             "due": (1, 2, 2),
-            "soon": (3, 5, 4),
-            "easy": (6, 14, 8),
+            "soon": (4, 5, 5),
+            "easy": (7, 14, 11),
             "wet": (99, 99, 99),
         },
         "other_irrigations": [
@@ -178,7 +178,7 @@ def make_all() -> tuple[dict[str, bytes], list[str]]:
             for n in KNOBS["arrival"]
         ]
     )
-    book, report = make_book(weather, KNOBS["book"])
+    book, report = make_book(weather, KNOBS["book"], loggers["stuck_wind"])
     out["book.json"] = as_json(book)
     return out, report
 

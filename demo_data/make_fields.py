@@ -28,23 +28,23 @@ Mill Bottom     | 11.2 |river-silt      |solid-set       |hours |potato      |on
 Home Field      | 24.0 |valley-loam     |wheel-line      |hours |beet        |wheat      |easy
 Weir Ground     | 16.3 |river-silt      |solid-set       |hours |onion       |potato     |due
 Heron Strip     |  6.8 |river-silt      |solid-set       |net   |spring-wheat|onion      |due
-Sluice Field    | 19.5 |valley-loam     |furrow-siphon   |volume|maize       |beet       |soon
-Gravel Pit Piece|  9.4 |quarry-gravel   |hand-move       |hours |bean        |sweet-corn |due
+Sluice Field    | 19.5 |valley-loam     |furrow-siphon   |volume|maize       |beet       |easy
+Gravel Pit Piece|  9.4 |quarry-gravel   |hand-move       |hours |bean        |sweet-corn |soon
 Creek Bend      | 13.7 |river-silt      |hand-move       |hours |alfalfa     |alfalfa    |easy
 # quarry-flat
 Quarry Flat 1   | 30.4 |quarry-gravel   |wheel-line      |hours |alfalfa     |alfalfa    |late
-Quarry Flat 2   | 28.9 |bench-silt      |wheel-line      |hours |alfalfa     |alfalfa    |soon
+Quarry Flat 2   | 28.9 |bench-silt      |wheel-line      |hours |alfalfa     |alfalfa    |easy
 Stone Barn      | 41.5 |bench-silt      |pivot-high      |gross |spring-wheat|potato     |soon
 Upper Bench     | 44.2 |bench-silt      |pivot-high      |gross |potato      |wheat      |easy
-Windbreak       | 18.6 |bench-silt      |furrow-alternate|volume|maize       |bean       |due
+Windbreak       | 18.6 |bench-silt      |furrow-alternate|volume|maize       |bean       |soon
 Cutting Ground  | 15.2 |quarry-gravel   |wheel-line      |net   |barley      |maize      |due
 Long Terrace    | 22.3 |bench-silt      |furrow-siphon   |volume|bean        |beet       |easy
 # lower-lane
 Back Forty      | 16.2 |slough-clay     |furrow-siphon   |volume|wheat       |beet       |soon
-Sand Strip      |  7.6 |lane-sand       |hand-move       |hours |bean        |maize      |due
+Sand Strip      |  7.6 |lane-sand       |hand-move       |hours |bean        |maize      |soon
 Cottonwood      | 12.9 |river-silt      |furrow-siphon   |gross |maize       |beet       |easy
 Levee Field     | 20.1 |pivot-sandy-loam|wheel-line      |hours |alfalfa     |alfalfa    |easy
-Dry Slough      | 25.8 |slough-clay     |furrow-alternate|volume|beet        |bean       |easy
+Dry Slough      | 25.8 |slough-clay     |furrow-alternate|volume|beet        |bean       |soon
 Lane End        |  5.5 |lane-sand       |solid-set       |hours |onion       |onion      |due
 Old Yard        |  3.4 |river-silt      |drip-beds       |hours |tomato      |onion      |due
 # orchard-road
@@ -52,8 +52,8 @@ North Rows      | 14.6 |orchard-loam    |micro-orchard   |hours |apple       |ap
 South Rows      | 12.1 |orchard-loam    |micro-orchard   |hours |apple       |apple      |easy
 Young Block     |  6.3 |orchard-loam    |micro-orchard   |volume|young-apple |young-apple|easy
 Vine Terrace    |  9.8 |terrace-stony   |drip-vines      |hours |grapes      |grapes     |easy
-Hill Vines      |  7.2 |terrace-stony   |drip-vines      |hours |grapes      |grapes     |soon
-Peach Corner    |  4.1 |orchard-loam    |micro-orchard   |volume|peach       |peach      |due
+Hill Vines      |  7.2 |terrace-stony   |drip-vines      |hours |grapes      |grapes     |easy
+Peach Corner    |  4.1 |orchard-loam    |micro-orchard   |volume|peach       |peach      |soon
 # low-meadow
 Low Meadow      | 26.4 |meadow-clay-loam|border-canal    |gross |pasture     |pasture    |wet
 Calf Pasture    |  8.8 |meadow-clay-loam|border-canal    |gross |pasture     |pasture    |wet
@@ -145,7 +145,10 @@ KEEP_OFFS: dict[str, list[tuple[str, str, str]]] = {
 # no water on these days: a pivot broken, a pump out, a canal bank slipped
 BROKEN: dict[str, list[tuple[str, str, str]]] = {
     "railway-pivot": [("2026-05-27", "2026-06-03", "gearbox broken")],
-    "quarry-flat-1": [("2025-07-14", "2025-07-22", "mainline burst")],
     "long-piece": [("2026-07-10", "2026-07-13", "pivot stopped, panel fault")],
-    "bridge-alfalfa": [("2026-07-10", "2026-07-13", "canal bank slipped")],
+    "quarry-flat-1": [
+        ("2025-07-14", "2025-07-22", "mainline burst"),
+        ("2026-07-07", "2026-07-13", "bales still on the field"),
+    ],
+    "bridge-alfalfa": [("2026-07-09", "2026-07-13", "canal bank slipped")],
 }

@@ -181,7 +181,7 @@ def aimed(grower: Grower, today: date, aim: tuple[int, int, int] | None) -> Wate
     for back in range(22, 4, -2):
         run = grower.go(run, today - timedelta(back))
         for part in (0.35, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.1, 1.2):
-            for fill in (0.7, 0.85, 1.0, 1.15, 1.8):
+            for fill in (0.5, 0.7, 0.85, 1.0, 1.15, 1.8):
                 made = grower.standing(grower.go(run.branch(), today, (part, fill)))
                 left = 99 if made.depletion <= 0 else made.left
                 off = max(low - left, left - high, 0) + 0.1 * min(abs(left - target), 5)

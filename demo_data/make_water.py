@@ -51,6 +51,10 @@ class Days:
         parts = {k: on(getattr(self, k), float(getattr(self, k)[i - 7 : i].mean())) for k in names}
         return Days(self.first, rain=on(self.rain, 0.0), elevation=self.elevation, **parts)
 
+    def reference_et(self) -> Array:
+        """Reference ET of what these days hold now [mm d-1]."""
+        return reference_et(self.tmax, self.tmin, self.ea, self.rn, self.u2, self.elevation)
+
     def at(self, day: date) -> int:
         return (day - self.first).days
 
