@@ -6,7 +6,7 @@ from datetime import date, timedelta
 
 from app import wording
 from app.storage.pages import RecentDay, StationRow
-from app.wording import flag_words, why_words
+from app.wording import flag_words, why_not_rung
 
 STALE_DAYS = 2
 
@@ -31,12 +31,12 @@ def silence(last: date | None, today: date) -> str:
     """What to say of a station by the last day it sent; nothing when yesterday is there."""
     age = age_days(last, today)
     if last is None or age is None:
-        return "has sent nothing yet."
+        return "Has sent nothing yet."
     if age <= 1:
         return ""
     if age == STALE_DAYS:
-        return f"yesterday is missing; last data {wording.short_day(last)}."
-    return f"nothing received for {wording.days(age - 1)}; last data {wording.short_day(last)}."
+        return f"Yesterday is missing; last data {wording.short_day(last)}."
+    return f"Nothing received for {wording.days(age - 1)}; last data {wording.short_day(last)}."
 
 
 def usual_rung(days: Sequence[RecentDay]) -> int:
@@ -54,9 +54,9 @@ def rung_fall(days: Sequence[RecentDay]) -> str:
         if day.rung <= usual:
             break
         since = day.day
-    reason = why_words(days[-1].why_not, up_to=usual)
+    reason = why_not_rung(days[-1].why_not, usual)
     return (
-        f"energy fell from {wording.rung(usual)} to {wording.rung(days[-1].rung)} since "
+        f"Energy fell from {wording.rung(usual)} to {wording.rung(days[-1].rung)} since "
         f"{wording.short_day(since)}" + (f": {reason}." if reason else ".")
     )
 
@@ -67,7 +67,8 @@ def raised(days: Sequence[RecentDay], today: date) -> str:
     for day in days:
         if day.day >= today - timedelta(days=STALE_DAYS):
             said.update(dict.fromkeys(flag_words(day.flags)))
-    return "; ".join(said) + "." if said else ""
+    text = "; ".join(said)
+    return f"{text[:1].upper()}{text[1:]}." if said else ""
 
 
 def troubles(

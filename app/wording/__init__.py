@@ -11,6 +11,7 @@ from app.wording.codes import (
     FLAGS,
     HUMIDITY_RUNGS,
     INTAKE_STATES,
+    OWN_GAUGE,
     PRINTED_UNITS,
     PURPOSES,
     QUANTITIES,
@@ -32,7 +33,7 @@ from app.wording.codes import (
     rung,
     unsure,
     why_codes,
-    why_words,
+    why_not_rung,
     word,
 )
 from app.wording.figures import (
@@ -80,6 +81,7 @@ __all__ = [
     "NEAR",
     "NOT_HELD",
     "NO_FIGURE",
+    "OWN_GAUGE",
     "PRINTED_UNITS",
     "PURPOSES",
     "QUANTITIES",
@@ -120,6 +122,6 @@ __all__ = [
     "unsure",
     "volume",
     "why_codes",
-    "why_words",
+    "why_not_rung",
     "word",
 ]

@@ -63,6 +63,7 @@ UNIT_CHOICES = {
     "net_mm": "mm net",
     "volume_m3": "m³",
 }
+OWN_GAUGE = "mm of rain, own gauge"
 PURPOSES = {
     "crop": "crop",
     "pre-plant": "pre-plant",
@@ -239,7 +240,6 @@ def why_codes(codes: str) -> list[tuple[int, str]]:
     return found
 
 
-def why_words(codes: str, up_to: int = 9) -> str:
-    """Why no better rung served, of the rungs up to `up_to`, each reason once."""
-    said = dict.fromkeys(reason for number_, reason in why_codes(codes) if number_ <= up_to)
-    return "; ".join(said)
+def why_not_rung(codes: str, number: int) -> str:
+    """Why a rung did not serve; nothing where its reason is not among the codes."""
+    return "; ".join(reason for code, reason in why_codes(codes) if code == number)

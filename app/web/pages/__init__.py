@@ -2,8 +2,8 @@
 
 from fastapi import APIRouter
 
-from app.web.pages import enter, rounds
+from app.web.pages import enter, fields, rounds
 
 router = APIRouter(include_in_schema=False)
-for part in (enter, rounds):
+for part in (enter, rounds, fields):
     router.include_router(part.router)

@@ -1,0 +1,210 @@
+"""What the Field page shows, worded."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from datetime import date, timedelta
+from typing import Any
+
+from app import wording
+from app.storage.pages_field import BlockRow, SeasonRow
+from app.web.charts import DepletionChart, depletion_chart
+from app.web.crops import season_words
+from app.web.rounds_view import Bar, bar, span, when
+
+CHART_DAYS = 35
+LEDGER_DAYS = 14
+
+
+@dataclass(frozen=True)
+class Order:
+    """The one sentence that matters, and what stands under it."""
+
+    lead: str
+    rest: str
+    standing: str
+    why: str
+    bound: str
+    unsure: tuple[str, ...]
+    state: str
+
+
+def order(
+    advice: Mapping[str, Any] | None, today: date, stations: Mapping[str, str]
+) -> Order | None:
+    """An advice as a sentence; None without one."""
+    if advice is None:
+        return None
+    watering = advice["day"] is not None and advice["gross_mm"] > 0
+    lead = f"Water {when(advice['day'], today)}:" if watering else "No water needed."
+    if not watering and advice["standing"] in ("late", "due"):
+        lead = "No chance to water."
+    rest = (
+        f"{wording.depth(advice['gross_mm'])} mm gross, {wording.number(advice['hours'], 1)} hours,"
+        f" {wording.volume(advice['volume_m3'])} m³."
+        if watering
+        else ""
+    )
+    ranged = span(advice["depletion_p10_mm"], advice["depletion_p90_mm"])
+    state = (
+        f"{wording.depth(advice['depletion_mm'])} mm"
+        + (f" ({ranged})" if ranged else "")
+        + f" are missing from the root zone; the limit is {wording.depth(advice['limit_mm'])}."
+    )
+    if watering:
+        state += f" {wording.depth(advice['net_mm'])} mm of it reach the root zone (net)."
+    return Order(
+        lead,
+        rest,
+        advice["standing"],
+        wording.reason(advice["reason"], advice["figures"], advice["day"], today),
+        wording.bound(advice["figures"], today),
+        tuple(wording.unsure(advice["unsure"], stations)),
+        state,
+    )
+
+
+def bar_of(advice: Mapping[str, Any]) -> Bar:
+    """The bullet bar of an advice."""
+    names = ("depletion_mm", "limit_mm", "taw_mm", "depletion_p10_mm", "depletion_p90_mm")
+    return bar(*(float(advice[name]) for name in names))
+
+
+def facts(
+    advice: Mapping[str, Any] | None,
+    block: BlockRow,
+    season: SeasonRow | None,
+    today: date,
+) -> list[tuple[str, str]]:
+    """Why this number: what the depth and the day rest on."""
+    if advice is None or season is None:
+        return []
+    mad = season.details.get("mad")
+    share_of_taw = f"MAD {wording.share(mad)}" if mad is not None else "RAW"
+    system = block.system
+    found = [
+        ("in reach of the roots (TAW)", f"{wording.depth(advice['taw_mm'])} mm"),
+        (f"limit ({share_of_taw})", f"{wording.depth(advice['limit_mm'])} mm"),
+        ("depletion this morning", f"{wording.depth(advice['depletion_mm'])} mm"),
+    ]
+    expected = _expected_et(advice, today)
+    if expected:
+        found.append(expected)
+    if advice["limit_day"] is not None:
+        found.append(("closes past the limit", wording.short_day(advice["limit_day"])))
+    figures = advice["figures"]
+    for name, label in (("refill_to_mm", "left for a deficit"), ("rain_room_mm", "room for rain")):
+        if float(figures.get(name) or 0.0) > 0:
+            found.append((label, f"{wording.depth(float(figures[name]))} mm"))
+    found += [
+        ("application efficiency", wording.share(system.get("efficiency"))),
+        ("rate, gross", f"{wording.number(system.get('rate_mm_h'), 1)} mm/h"),
+        ("area", f"{wording.number(block.area_ha, 1)} ha"),
+        ("energy of the last day", wording.rung(advice["rung"])),
+    ]
+    if advice["data_until"] is not None:
+        found.append(("data to", wording.short_day(advice["data_until"])))
+    return found
+
+
+def _expected_et(advice: Mapping[str, Any], today: date) -> tuple[str, str] | None:
+    """Crop ET expected up to the advised day, or over the outlook without one."""
+    ahead = advice["outlook"]
+    until = advice["day"] or advice["limit_day"]
+    days = [date.fromisoformat(day) for day in ahead.get("date", [])]
+    total = sum(
+        value or 0.0
+        for day, value in zip(days, ahead.get("etc", []), strict=False)
+        if until is None or day < until
+    )
+    if not days or total <= 0:
+        return None
+    if until is not None:
+        return f"crop ET expected before {when(until, today)}", f"{wording.depth(total)} mm"
+    return f"crop ET expected in {wording.days(len(days))}", f"{wording.depth(total)} mm"
+
+
+def chart(
+    ledger: Sequence[Mapping[str, Any]], advice: Mapping[str, Any] | None, whole: bool
+) -> DepletionChart | None:
+    """The drawing of the last weeks (or the whole season) and the days ahead."""
+    shown = list(ledger if whole else ledger[-CHART_DAYS:])
+    ahead = advice["outlook"] if advice is not None else {}
+    return depletion_chart(
+        [row["day"] for row in shown],
+        [row["depletion_mm"] for row in shown],
+        [row["limit_mm"] for row in shown],
+        [row["rain_mm"] for row in shown],
+        [row["irrigation_net_mm"] for row in shown],
+        [date.fromisoformat(day) for day in ahead.get("date", [])],
+        ahead.get("depletion", []),
+        ahead.get("limit", []),
+        ahead.get("p10", []),
+        ahead.get("p90", []),
+    )
+
+
+def ahead_rows(advice: Mapping[str, Any] | None) -> list[tuple[str, ...]]:
+    """The days ahead as a table: day, ETo, crop ET, depletion, range, limit."""
+    if advice is None:
+        return []
+    ahead = advice["outlook"]
+    names = ("date", "eto", "etc", "depletion", "p10", "p90", "limit")
+    columns = [ahead.get(name, []) for name in names]
+    return [
+        (
+            wording.short_day(date.fromisoformat(day)),
+            wording.number(eto, 1),
+            wording.number(etc, 1),
+            wording.number(depletion, 1),
+            span(_nan(p10), _nan(p90)),
+            wording.number(limit, 1),
+        )
+        for day, eto, etc, depletion, p10, p90, limit in zip(*columns, strict=False)
+    ]
+
+
+def _nan(value: float | None) -> float:
+    return float("nan") if value is None else value
+
+
+def soil_rows(soil: Mapping[str, Any]) -> list[tuple[str, str, str, str, str]]:
+    """The layers of a profile: depth, texture, field capacity, wilting point, held."""
+    rows, top = [], 0.0
+    for layer in soil.get("layers", []):
+        bottom = layer["bottom_m"]
+        capacity, wilting = layer.get("field_capacity"), layer.get("wilting_point")
+        held = (
+            wording.number(1000 * (capacity - wilting) * (bottom - top))
+            if capacity is not None and wilting is not None
+            else wording.NO_FIGURE
+        )
+        rows.append(
+            (
+                f"{wording.number(top, 2)} to {wording.number(bottom, 2)} m",
+                (layer.get("texture") or "measured").replace("_", " "),
+                wording.share(capacity),
+                wording.share(wilting),
+                held,
+            )
+        )
+        top = bottom
+    return rows
+
+
+def title(block: BlockRow, season: SeasonRow | None, today: date) -> str:
+    """Farm, area, crop and system in one line."""
+    crop = (
+        season_words(season.crop, season.planting, season.details.get("stage_days"), today)
+        + f" (planted {wording.plain_day(season.planting)})"
+        if season is not None
+        else "nothing planted"
+    )
+    kind = block.system.get("kind") or block.system_name
+    return f"{block.farm_name} · {wording.number(block.area_ha, 1)} ha · {crop} · {kind}"
+
+
+def first_ledger_day(season: SeasonRow | None, today: date, whole: bool) -> date:
+    """From which day the page reads the ledger."""
+    if whole and season is not None:
+        return season.planting
+    return today - timedelta(days=CHART_DAYS)

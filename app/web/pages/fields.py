@@ -1,0 +1,327 @@
+"""Field: chart, advice with its reasons, ledger, events; and a day's working."""
+
+import secrets
+from datetime import date, timedelta
+from typing import Annotated
+
+from fastapi import APIRouter, Form, HTTPException, Query, Request, Response
+from fastapi.responses import RedirectResponse, StreamingResponse
+
+from app import wording
+from app.storage import pages as store
+from app.storage import pages_field as store_field
+from app.storage.database import Database
+from app.storage.pages_field import BlockRow
+from app.web import field_view as view
+from app.web.access import AsViewer, Viewer
+from app.web.managed import managed
+from app.web.measured import compare
+from app.web.needs import AsDatabase, AsToday, read_day, read_number
+from app.web.problems import RefusedError
+from app.web.render import page
+from app.web.working_view import working
+
+router = APIRouter()
+Text = Annotated[str, Form(max_length=400)]
+NO_FIELD = "There is no such field, or it is not on your farm."
+
+
+@router.get("/fields/{key}")
+def field(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    block: str = "",
+    season: Annotated[str, Query(max_length=10)] = "",
+) -> Response:
+    """One field: what to do, why, and the whole ledger behind it."""
+    return show(request, db, viewer, today, key, block, season == "whole")
+
+
+def show(
+    request: Request,
+    db: Database,
+    viewer: Viewer,
+    today: date,
+    key: str,
+    block_key: str = "",
+    whole: bool = False,
+    error: str = "",
+) -> Response:
+    """The Field page, with an error over its forms if there is one."""
+    blocks = own_blocks(db, viewer, key)
+    with db.read() as session:
+        morning = store.last_morning(session, today)
+        rounds = store.rounds_rows(session, morning, viewer.farm, key)
+        chosen = choose(blocks, block_key or managed(rounds).block_key)
+        season = store_field.season_at(session, chosen.id, today)
+        first = view.first_ledger_day(season, today, whole)
+        ledger = store_field.ledger_days(session, chosen.id, first) if season else []
+        advice = store_field.last_advice(session, chosen.id, today) if season else None
+        past = store_field.past_advice(session, chosen.id, today)
+        events = store.events_since(
+            session,
+            season.planting - timedelta(days=60) if season else today - timedelta(days=365),
+            [item.id for item in blocks],
+        )
+        sources = store.current(store.sources(session, today, viewer.farm))
+        stations = store.stations(session)
+        energy = sources.get((chosen.field_id, "energy"))
+        station_days = (
+            store_field.station_days(
+                session, [energy.station_id], season.planting, today - timedelta(days=1)
+            )
+            if energy is not None and season is not None
+            else []
+        )
+    elevation = {item.id: item.details.get("elevation_m", 0.0) for item in stations}
+    if advice is not None and season is not None and advice["season_id"] != season.id:
+        advice = None
+    return page(
+        request,
+        "pages/field.html",
+        422 if error else 200,
+        today=today,
+        yesterday=today - timedelta(days=1),
+        block=chosen,
+        blocks=blocks if len(blocks) > 1 else [],
+        standings={row.block_key: row.standing or "none" for row in rounds},
+        managed_by=managed(rounds).block_key,
+        title=view.title(chosen, season, today),
+        season=season,
+        order=view.order(advice, today, {item.key: item.name for item in stations}),
+        bar=view.bar_of(advice) if advice else None,
+        advice=advice,
+        facts=view.facts(advice, chosen, season, today),
+        chart=view.chart(ledger, advice, whole),
+        ahead=view.ahead_rows(advice),
+        ledger=list(reversed(ledger if whole else ledger[-view.LEDGER_DAYS :])),
+        whole=whole,
+        past=past,
+        events=events,
+        units=wording.UNITS,
+        unit_choices=wording.UNIT_CHOICES,
+        log_units=[*wording.UNIT_CHOICES.items(), ("rain_mm", wording.OWN_GAUGE)],
+        purposes=wording.PURPOSES,
+        confirmations=wording.CONFIRMATIONS,
+        variables=wording.VARIABLES,
+        sources=[row for (number, _), row in sources.items() if number == chosen.field_id],
+        energy=energy,
+        compared=compare(station_days, elevation.get(energy.station_id, 0.0)) if energy else None,
+        soil=view.soil_rows(chosen.soil),
+        token=secrets.token_urlsafe(12),
+        error=error,
+    )
+
+
+def own_blocks(db: Database, viewer: Viewer, key: str) -> list[BlockRow]:
+    """The blocks of a field the viewer may see; 404 otherwise."""
+    with db.read() as session:
+        blocks = store_field.field_blocks(session, key, viewer.farm)
+    if not blocks:
+        raise HTTPException(404, NO_FIELD)
+    return blocks
+
+
+def choose(blocks: list[BlockRow], key: str) -> BlockRow:
+    """The block of a key; 404 when the field has none of that key."""
+    for block in blocks:
+        if block.key == key:
+            return block
+    raise HTTPException(404, "This field has no such block.")
+
+
+def own_event(db: Database, viewer: Viewer, key: str, event_id: int) -> None:
+    """404 unless the event is of this field and the field is the viewer's."""
+    own_blocks(db, viewer, key)
+    with db.read() as session:
+        if store_field.event_owner(session, event_id) != key:
+            raise HTTPException(404, "There is no such entry on this field.")
+
+
+@router.post("/fields/{key}/events")
+def log(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    day: Text = "",
+    amount: Text = "",
+    unit: Text = "hours",
+    block: Text = "",
+    purpose: Text = "crop",
+    confirmation: Text = "reported",
+    note: Text = "",
+    token: Text = "",
+) -> Response:
+    """Log an irrigation, or rain of the field's own gauge."""
+    from app.workflows.log_event import EventError, log_irrigation, log_rain
+
+    own_blocks(db, viewer, key)
+    token = token or secrets.token_urlsafe(12)
+    try:
+        on, much = read_day(day, "the day"), read_number(amount, "the amount")
+        if unit == "rain_mm":
+            log_rain(db, key, on, much, viewer.who, token, today, note.strip() or None)
+        else:
+            log_irrigation(
+                db, key, block or None, on, much, unit, viewer.who, token, today,
+                purpose, confirmation, note.strip() or None,
+            )  # fmt: skip
+    except (EventError, RefusedError) as error:
+        return show(request, db, viewer, today, key, block, error=said(error))
+    return back(key, block)
+
+
+@router.post("/fields/{key}/events/{event_id}")
+def correct(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    event_id: int,
+    day: Text = "",
+    amount: Text = "",
+    unit: Text = "hours",
+    note: Text = "",
+    token: Text = "",
+) -> Response:
+    """Correct an entry: the old one stays in the history."""
+    from app.workflows.log_event import EventError, correct_event
+
+    own_event(db, viewer, key, event_id)
+    token = token or secrets.token_urlsafe(12)
+    try:
+        on, much = read_day(day, "the day"), read_number(amount, "the amount")
+        correct_event(db, event_id, on, much, unit, viewer.who, token, today, note.strip())
+    except (EventError, RefusedError) as error:
+        return show(request, db, viewer, today, key, error=said(error))
+    return back(key)
+
+
+@router.post("/fields/{key}/events/{event_id}/delete")
+def delete(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    event_id: int,
+    token: Text = "",
+) -> Response:
+    """Delete an entry: it no longer counts, and stays in the history."""
+    from app.workflows.log_event import EventError, void_event
+
+    own_event(db, viewer, key, event_id)
+    try:
+        void_event(db, event_id, viewer.who, token or secrets.token_urlsafe(12), today)
+    except EventError as error:
+        return show(request, db, viewer, today, key, error=said(error))
+    return back(key)
+
+
+def said(error: Exception) -> str:
+    """An error of a form in one line, with its remedy."""
+    if isinstance(error, RefusedError):
+        return f"{error.says} {error.remedy}".strip()
+    text = str(error)
+    return text[:1].upper() + text[1:] + "."
+
+
+def back(key: str, block: str = "") -> Response:
+    """Back to the field's events."""
+    query = f"?block={block}" if block else ""
+    return RedirectResponse(f"/fields/{key}{query}#events", status_code=303)
+
+
+@router.get("/fields/{key}/days/{day}")
+def days_working(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    day: date,
+    block: str = "",
+) -> Response:
+    """Every term of one ledger day: its equation, its inputs, where they came from."""
+    blocks = own_blocks(db, viewer, key)
+    with db.read() as session:
+        if not block:
+            morning = store.last_morning(session, today)
+            block = managed(store.rounds_rows(session, morning, viewer.farm, key)).block_key
+        chosen = choose(blocks, block)
+        rows = store_field.ledger_days(
+            session, chosen.id, day - timedelta(days=1), day + timedelta(days=1)
+        )
+        season = store_field.season_at(session, chosen.id, day)
+        current = store.current(store.sources(session, day, viewer.farm))
+        sources = {
+            variable: row
+            for (number, variable), row in current.items()
+            if number == chosen.field_id
+        }
+        station_days = {
+            row["station_id"]: row
+            for row in store_field.station_days(
+                session, sorted({row.station_id for row in sources.values()}), day, day
+            )
+        }
+        events = [e for e in store.events_since(session, day, [chosen.id]) if e.day == day]
+    by_day = {row["day"]: row for row in rows}
+    if day not in by_day:
+        raise HTTPException(404, f"The ledger of this field has no {wording.full_day(day)}.")
+    return page(
+        request,
+        "pages/working.html",
+        block=chosen,
+        many=len(blocks) > 1,
+        day=day,
+        season=season,
+        before=by_day.get(day - timedelta(days=1)),
+        after=by_day.get(day + timedelta(days=1)),
+        row=by_day[day],
+        sections=working(
+            by_day[day],
+            by_day.get(day - timedelta(days=1)),
+            chosen,
+            season,
+            sources,
+            station_days,
+            events,
+        ),
+    )
+
+
+@router.get("/fields/{key}/ledger.csv")
+def ledger_file(db: AsDatabase, viewer: AsViewer, key: str, block: str = "") -> Response:
+    """The ledger as CSV, the caution in its header."""
+    from app.workflows.export import ledger_csv
+
+    blocks = own_blocks(db, viewer, key)
+    if block:
+        choose(blocks, block)
+    return csv_answer(ledger_csv(db, key, block or None), f"ledger-{key}.csv")
+
+
+def csv_answer(lines: object, name: str) -> StreamingResponse:
+    """A CSV file to be saved."""
+    return StreamingResponse(
+        lines,  # type: ignore[arg-type]
+        media_type="text/csv; charset=utf-8",
+        headers={"Content-Disposition": f'attachment; filename="{name}"'},
+    )
+
+
+@router.get("/advice.csv")
+def advice_file(db: AsDatabase, today: AsToday) -> Response:
+    """The morning's advice as CSV."""
+    from app.workflows.export import advice_csv
+
+    with db.read() as session:
+        morning = store.last_morning(session, today) or today
+    return csv_answer(advice_csv(db, morning), f"advice-{morning}.csv")
