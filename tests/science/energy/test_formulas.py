@@ -15,6 +15,7 @@ from app.science.energy import humidity as hum
 from app.science.energy import longwave as lw
 from app.science.energy import pan, shortwave, sun, wind
 from app.science.energy import reference_et as ref
+from tests.science.energy.records import PAYERNE, payerne_days
 
 # function, and for each argument three ordinary values
 FORMULAS: list[tuple[Callable[..., Floats], list[tuple[float, float, float]]]] = [
@@ -168,6 +169,17 @@ def test_hour_angle_is_zero_at_solar_noon_and_wraps() -> None:
     assert (np.abs(angles) <= np.pi).all()
 
 
+@pytest.mark.parametrize("longitude", [-179.0, -75.0, 0.0, 100.0, 179.0])
+def test_solar_day_changes_at_solar_midnight(longitude: float) -> None:
+    """Definition: the day number of an instant is that of the local mean solar day."""
+    midnight = np.datetime64("2021-09-23T00:00:00").astype(np.int64) - round(longitude * 240.0)
+    _, distance = sun.elevation_at_instants(40.0, longitude, np.array([midnight - 1, midnight]))
+    np.testing.assert_array_equal(distance, sun.inverse_distance([265, 266]))
+    noon = midnight + 43_200
+    high, _ = sun.elevation_at_instants(0.0, longitude, np.array([noon]))
+    assert high[0] > 0.99
+
+
 def test_clear_sky_takes_calibrated_coefficients() -> None:
     """FAO-56 eq 36 with calibrated coefficients, eq 37 with the defaults."""
     assert shortwave.clear_sky(40.0, 1000.0, (0.2, 0.52)) == pytest.approx(40.0 * 0.72)
@@ -183,6 +195,23 @@ def test_clear_sky_envelope_range() -> None:
     assert np.isnan(shortwave.clear_sky_envelope(1.0, 0.0, 1.0, -0.1))
     murky = shortwave.clear_sky_envelope(1.0, z, ea, sine, turbidity=0.5)
     assert (murky < share).all()
+
+
+def test_clear_sky_envelope_is_touched_on_clear_days() -> None:
+    """FAO-56 Annex 5: on clear days Rs touches the envelope; BSRN Payerne, June 2016, within 5 %.
+
+    The sky of 22-24, 27 and 28 June was clear (ratio to eq 37 above 0.9).
+    """
+    days = payerne_days()
+    j = sun.day_of_year(days.date)
+    ra = sun.extraterrestrial_daily(PAYERNE.latitude_deg, j)
+    sine = sun.daily_sine_of_elevation(PAYERNE.latitude_deg, j)
+    envelope = shortwave.clear_sky_envelope(ra, PAYERNE.elevation_m, days.vapour_pressure, sine)
+    clear = days.shortwave_down / shortwave.clear_sky(ra, PAYERNE.elevation_m) > 0.9
+    assert clear.sum() == 5
+    ratio = (days.shortwave_down / envelope)[clear]
+    assert ratio.min() > 0.95
+    assert ratio.max() < 1.05
 
 
 def test_shortwave_from_sunshine_and_range_bounds() -> None:
@@ -233,6 +262,15 @@ def test_tall_surface_uses_more_in_dry_wind() -> None:
     short = ref.reference_et_daily(35.0, 15.0, 1.0, 16.0, 4.0, 90.0)
     tall = ref.reference_et_daily(35.0, 15.0, 1.0, 16.0, 4.0, 90.0, surface="tall")
     assert tall > 1.2 * short
+
+
+def test_hourly_soil_heat_flux_shares() -> None:
+    """ASCE-EWRI table 1 (from memory): 0.1 and 0.5 of Rn short, 0.04 and 0.2 tall."""
+    day_and_night = np.array([2.0, -0.2])
+    short = ref.soil_heat_flux_hourly(day_and_night)
+    tall = ref.soil_heat_flux_hourly(day_and_night, surface="tall")
+    np.testing.assert_allclose(short, [0.2, -0.1])
+    np.testing.assert_allclose(tall, [0.08, -0.04])
 
 
 def test_fao56_knows_no_tall_surface() -> None:
