@@ -71,12 +71,17 @@ def season_curve(season: CropSeason, date: Days, wind_2m: Floats, rh_min: Floats
 
 
 def season_curves(
-    seasons: Sequence[CropSeason], date: Days, wind_2m: Floats, rh_min: Floats
+    seasons: Sequence[CropSeason],
+    date: Days,
+    wind_2m: Floats,
+    rh_min: Floats,
+    within: Bools | None = None,
 ) -> Curve:
     """Curves of many seasons, each on its own consecutive days under the weather of those days.
 
     date (days, seasons) datetime64[D]; wind_2m [m s-1] and rh_min [%], same shape, NaN-free
-    inside the season. Heights and roots follow the table's own curve, so that weather moves
+    inside the season. within: False on days that only pad a shorter season's column, taken as off
+    season. Heights and roots follow the table's own curve, so that weather moves
     neither. Off season (before planting, after the last day) the soil is bare: Kcb = Kc_min = 0
     (Kc of the initial stage when single); perennials keep the initial coefficient; roots keep the
     depth they reached. Returns (days, seasons) arrays.
@@ -85,6 +90,8 @@ def season_curves(
     table = _Table(seasons)
     day = (date - table.planting).astype(np.float64) + 1.0
     in_season = (day >= 1.0) & (day <= table.last)
+    if within is not None:
+        in_season &= within
     grown, aged = _progress(day, table)
     k_mid, k_end = _adjusted(table, day, in_season, wind_2m, rh_min)
     k = table.k_ini + grown * (k_mid - table.k_ini) + aged * (k_end - k_mid)
@@ -177,7 +184,8 @@ def _mean_of(values: Floats, stage: Bools) -> Floats:
     here = ~np.isnan(values)
     chosen = np.where((stage & here).any(axis=0), stage & here, here)
     count = chosen.sum(axis=0)
-    total = np.where(chosen, values, 0.0).sum(axis=0)
+    # Added up day by day (a plain sum's order depends on the array's shape).
+    total = np.cumsum(np.where(chosen, values, 0.0), axis=0)[-1]
     mean = np.divide(total, count, out=np.full(total.shape, np.nan), where=count > 0)
     return np.broadcast_to(mean, values.shape)
 

@@ -153,10 +153,10 @@ def _day(
         excess = drained - depletion
         if terms.has_slow_drainage:
             run = (run + 1.0) * (excess > 0.0)
-            at_once = hi(excess - day.saturation, 0.0)
             share = hi(block.drainage_days + 2.0 - run, 1.0)
-            percolation = at_once + (excess - at_once) / share
-            depletion = depletion + percolation
+            held = lo(excess, day.saturation) * (1.0 - 1.0 / share)
+            percolation = excess - held
+            depletion = drained - held
         else:
             percolation = excess
             depletion = drained
@@ -165,7 +165,8 @@ def _day(
     correction: Any = 0.0
     if terms.has_correction:
         wettest = -(day.saturation * (block.drainage_days > 0.0))
-        corrected = hi(lo(depletion - day.correction, taw), lo(depletion, wettest))
+        driest = hi(depletion, taw)
+        corrected = hi(lo(depletion - day.correction, driest), lo(depletion, wettest))
         correction = depletion - corrected
         depletion = corrected
     columns = (

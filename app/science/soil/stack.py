@@ -65,10 +65,11 @@ def stack_plans(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> 
     _check(plans, supplies)
     starts = np.array([plan.start for plan in plans], dtype="datetime64[D]")
     date = starts + np.arange(days).astype("timedelta64[D]")[:, None]
+    within = np.arange(days)[:, None] < np.array([plan.days for plan in plans])
     seasons = [plan.season for plan in plans]
     return Stack(
         plans=plans,
-        curve=season_curves(seasons, date, supplies.u2, supplies.rh_min),
+        curve=season_curves(seasons, date, supplies.u2, supplies.rh_min, within),
         supplies=supplies,
         openings=_openings(plans),
     )
