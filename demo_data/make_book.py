@@ -69,7 +69,7 @@ def weather_of(
     own = days[field["station"]]
     if len(set(stations.values())) > 1:
         own = mixed(*(days[station] for station in stations.values()))
-    own = replace(own, rain=own.rain.copy(), slope=[])
+    own = replace(own, rain=own.rain.copy(), slope=[], today=[])
     for gauge in gauges:
         if gauge["field"] == field["key"]:
             own.rain[own.at(date.fromisoformat(gauge["day"]))] = gauge["rain_mm"]
@@ -84,7 +84,7 @@ def days_seen(weather: list[Weather], stuck: dict[str, list[tuple[str, str]]]) -
         for first, last in stuck.get(record.place.key, []):
             a, b = (own.at(date.fromisoformat(day[:10])) for day in (first, last))
             own.u2[a : b + 1] = 2.0
-        own = replace(own, eto=own.reference_et(), slope=[])
+        own = replace(own, eto=own.reference_et(), slope=[], today=[])
         days[record.place.key] = own
     return days
 

@@ -28,17 +28,20 @@ class Days:
     tmin: Array
     ea: Array
     elevation: float
-    slope: list[float] = field(
-        default_factory=list
-    )  # climate term of FAO-56 equation 62 without (h/3)^0.3
+    # climate term of FAO-56 equation 62 without its (h/3)^0.3: of the day, of the last 30 days
+    today: list[float] = field(default_factory=list)
+    slope: list[float] = field(default_factory=list)
 
     def __post_init__(self) -> None:
-        """Trailing 30-day means, once."""
+        """The climate terms, once."""
         for i in range(len(self.eto)):
-            trail = slice(max(i - 29, 0), i + 1)
-            u2 = min(max(float(self.u2[trail].mean()), 1), 6)
-            rh = min(max(float(self.rh_min[trail].mean()), 20), 80)
-            self.slope.append(0.04 * (u2 - 2) - 0.004 * (rh - 45))
+            self.today.append(self._term(slice(i, i + 1)))
+            self.slope.append(self._term(slice(max(i - 29, 0), i + 1)))
+
+    def _term(self, days: slice) -> float:
+        u2 = min(max(float(self.u2[days].mean()), 1), 6)
+        rh = min(max(float(self.rh_min[days].mean()), 20), 80)
+        return 0.04 * (u2 - 2) - 0.004 * (rh - 45)
 
     def ahead(self, today: date) -> "Days":
         """These days up to yesterday, then dry days like the last seven."""
@@ -240,15 +243,15 @@ class Root:
         ke = 0.0
         self.depletion = self.depletion - rain * self.share - net
         if c.dual:
-            kc_max = max(1.2 + slope * (self.height / 3) ** 0.3, k + 0.05)
+            kc_max = max(1.2 + w.today[i] * (self.height / 3) ** 0.3, k + 0.05)
             open_ = max(k - c.kc_min, 0.01) / max(kc_max - c.kc_min, 0.01)
             cover = min(open_ ** (1 + 0.5 * self.height), 0.99)
             if under:
                 fw *= 1 - 2 / 3 * cover
-            if rain > 3:
-                self.wetted = 1.0
-            elif net > 0:
+            if net > 0:
                 self.wetted = fw
+            elif rain > 3:
+                self.wetted = 1.0
             exposed = max(min(1 - cover, self.wetted), 0.01)
             self.top = max(self.top - rain - (net / fw if net > 0 else 0), 0)
             dry = self.soil.tew - self.top
