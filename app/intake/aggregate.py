@@ -144,9 +144,7 @@ def _energy(mean_flux: Figure) -> Figure:
     return Figure(mean_flux.values * MJ_A_DAY, mean_flux.reason)
 
 
-def _daily(
-    rows: Rows, site: Site, wanted: Instants
-) -> tuple[dict[str, Figure], list[DayNote]]:
+def _daily(rows: Rows, site: Site, wanted: Instants) -> tuple[dict[str, Figure], list[DayNote]]:
     """Daily rows straight through, each on the day its middle falls in; the last of a day wins."""
     middle = rows.instant + round(site.utc_offset_h * 3600) - SECONDS_A_DAY // 2
     day = middle // SECONDS_A_DAY

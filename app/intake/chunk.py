@@ -77,14 +77,10 @@ def parse(block: Block, plan: Plan, report: Report) -> Chunk:
     if skip:
         data = data.split(b"\n", skip)[skip]
     report.counts.lines += rows
-    return _typed(data, first_line, rows, plan, report) or _by_cell(
-        data, first_line, plan, report
-    )
+    return _typed(data, first_line, rows, plan, report) or _by_cell(data, first_line, plan, report)
 
 
-def _typed(
-    data: bytes, first_line: int, rows: int, plan: Plan, report: Report
-) -> Chunk | None:
+def _typed(data: bytes, first_line: int, rows: int, plan: Plan, report: Report) -> Chunk | None:
     """All rows at once; None when any row or cell is not as it should be."""
     blanks = plan.delimiter == "blanks"
     mark = DELIMITERS[plan.delimiter]

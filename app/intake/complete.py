@@ -73,7 +73,9 @@ def extreme_of_day(grid: Grid, name: str, *, highest: bool) -> Figure:
     quarter = np.arange(values.shape[1]) * 4 // values.shape[1]
     quarters = min(4, values.shape[1])
     for part in range(quarters):
-        judged.refuse(~_any(~np.isnan(values[:, quarter == part])), "a quarter of the day without a reading")
+        judged.refuse(
+            ~_any(~np.isnan(values[:, quarter == part])), "a quarter of the day without a reading"
+        )
     worst = -np.inf if highest else np.inf
     read_only = np.where(np.isnan(values), worst, values)
     return judged.figure(read_only.max(axis=1) if highest else read_only.min(axis=1))

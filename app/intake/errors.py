@@ -1,5 +1,7 @@
 """The one error of the intake room."""
 
+from app.errors import InputError
 
-class IntakeError(Exception):
+
+class IntakeError(InputError):
     """A file or a mapping that cannot be used; the message says what is wrong and what to do."""

@@ -29,6 +29,7 @@ from app.science.quantities import QUANTITIES
 from app.units import UNITS, fits, to_si
 
 _DAY = 86400
+_TAIL = 8192  # bytes of the lines before the last that tell whether the last is whole
 _SIGMA = 5.670374419e-8  # W m-2 K-4, Stefan-Boltzmann constant (CODATA 2018)
 _REMEDY_DATE = "The row is left out. Mend the date in the file, or choose another date layout."
 
@@ -142,13 +143,15 @@ def _lines_above(head: bytes, mapping: Mapping) -> frozenset[str]:
 
 def _closed(found: Iterator[Block], plan: Plan, report: Report) -> Iterator[Block]:
     """Blocks with the last line taken off where the file was cut in the middle of it."""
+    recent = b""
     for block in found:
         if not block.ends_open:
+            recent = block.data[-_TAIL:]
             yield block
             continue
         before, _, last = block.data.rpartition(b"\n")
         number = block.first_line + block.lines - 1
-        if number >= plan.first_data_line and _is_cut(before, last, plan):
+        if number >= plan.first_data_line and _is_cut(recent + before, last, plan):
             report.counts.lines += 1
             report.counts.rows_refused += 1
             report.add(
@@ -169,7 +172,7 @@ def _is_cut(before: bytes, last: bytes, plan: Plan) -> bool:
     fields = split_line(last.decode("utf-8", errors="replace"), plan.delimiter)
     if len(fields) < plan.width:
         return True
-    lines = before.rsplit(b"\n", 30)[-30:]
+    lines = before.strip(b"\n").rsplit(b"\n", 30)[-30:]
     rows = [split_line(text.decode("utf-8", errors="replace"), plan.delimiter) for text in lines]
     ends = [row[-1] for row in rows if len(row) == plan.width]
     if len(ends) < 3:
