@@ -6,6 +6,7 @@ from typing import Any
 
 import numpy as np
 
+from app.science import Floats
 from app.science.energy.reference_et import eto_from_parts
 
 NEEDS = ("tmax", "tmin", "vapour_pressure", "wind_2m", "rn_measured", "rn_modelled")
@@ -32,9 +33,17 @@ def compare(days: Sequence[Mapping[str, Any]], elevation_m: float) -> Comparison
         return None
     values = {name: np.array([row[name] for row in rows], dtype=np.float64) for name in NEEDS}
     measured, modelled = values["rn_measured"], values["rn_modelled"]
-    weather = [values[name] for name in ("tmax", "tmin", "vapour_pressure")]
-    by_model, _ = eto_from_parts(*weather, modelled, values["wind_2m"], elevation_m)
-    by_sensor, _ = eto_from_parts(*weather, measured, values["wind_2m"], elevation_m)
+
+    def eto(rn: Floats) -> Floats:
+        return eto_from_parts(
+            values["tmax"],
+            values["tmin"],
+            values["vapour_pressure"],
+            rn,
+            values["wind_2m"],
+            elevation_m,
+        )[0]
+
     total = float(measured.sum())
     return Comparison(
         days=len(days),
@@ -44,7 +53,7 @@ def compare(days: Sequence[Mapping[str, Any]], elevation_m: float) -> Comparison
         more=float(modelled.sum()) / total - 1.0 if total else 0.0,
         bias_mj=float((modelled - measured).mean()),
         rmse_mj=float(np.sqrt(((modelled - measured) ** 2).mean())),
-        eto_mm=float(np.nansum(by_model - by_sensor)),
+        eto_mm=float(np.nansum(eto(modelled) - eto(measured))),
     )
 
 

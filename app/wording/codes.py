@@ -146,6 +146,9 @@ QUANTITIES = {
     "vapour_pressure": "vapour pressure",
     "dew_point": "dew point",
     "relative_humidity": "relative humidity",
+    "air_temperature_max": "maximum temperature",
+    "air_temperature_min": "minimum temperature",
+    "vapour_pressure_deficit": "vapour pressure deficit",
     "relative_humidity_max": "maximum relative humidity",
     "relative_humidity_min": "minimum relative humidity",
     "rh_max": "maximum relative humidity",
@@ -200,6 +203,13 @@ FLAGS = {
     "above_shortwave": "above what the sun gives",
     "above_saturation": "above saturation",
     "stuck": "the same figure all day",
+}
+NOTES = {
+    "missing": "missing",
+    "filled": "filled over a short gap",
+    "set_aside": "set aside",
+    "offset": "below zero at night, counted as zero",
+    "clipped": "clipped to 100 %",
 }
 WHY_NOT = {
     "surface": "the site is not declared clipped, watered grass",

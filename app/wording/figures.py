@@ -55,6 +55,11 @@ def plain(value: float) -> str:
     return f"{value:.6g}"
 
 
+def reading(value: float) -> str:
+    """A reading as it was measured, to at most five figures; nothing for none."""
+    return "" if not math.isfinite(value) else f"{value:.5g}".replace("-", MINUS)
+
+
 # Dates
 
 WEEKDAYS = ("Monday", "Tuesday", "Wednesday", "Thursday", "Friday", "Saturday", "Sunday")

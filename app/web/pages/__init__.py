@@ -2,8 +2,8 @@
 
 from fastapi import APIRouter
 
-from app.web.pages import enter, fields, rounds
+from app.web.pages import enter, fields, rounds, stations
 
 router = APIRouter(include_in_schema=False)
-for part in (enter, rounds, fields):
+for part in (enter, rounds, fields, stations):
     router.include_router(part.router)
