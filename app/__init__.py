@@ -1,3 +1,3 @@
-"""Rillbook: which field to water, how much, for how long and by when, with every number defended."""
+"""Rillbook: which field to water, how much, for how many hours and by when, and why."""
 
 __version__ = "0.1.0"

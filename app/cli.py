@@ -14,7 +14,8 @@ import typer
 from rich.console import Console
 from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
 
-from app.settings import Settings, SettingsError, read_settings
+from app.errors import InputError
+from app.settings import Settings, read_settings
 
 app = typer.Typer(
     name="rillbook",
@@ -36,19 +37,9 @@ Out = Annotated[Path | None, typer.Option(help="File to write; the terminal when
 
 def main() -> None:
     """Run a command; whatever the input, the last word is one line, not a traceback."""
-    from app.book import BookError
-    from app.intake import IntakeError
-    from app.storage.database import DatabaseError
-    from app.workflows.export import ExportError
-    from app.workflows.take_in import TakeInError
-
-    known = (BookError, IntakeError, DatabaseError, ExportError, TakeInError, SettingsError)
     try:
         app()
-    except known as error:
-        notes.print(f"rillbook: {error}", style="red", soft_wrap=True, markup=False)
-        sys.exit(1)
-    except OSError as error:
+    except (InputError, OSError) as error:
         notes.print(f"rillbook: {error}", style="red", soft_wrap=True, markup=False)
         sys.exit(1)
     except KeyboardInterrupt:

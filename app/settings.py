@@ -6,8 +6,10 @@ from dataclasses import dataclass
 from datetime import date
 from pathlib import Path
 
+from app.errors import InputError
 
-class SettingsError(Exception):
+
+class SettingsError(InputError):
     """A setting that cannot be used; the message says which, why and how to mend it."""
 
 

@@ -6,7 +6,7 @@ import json
 import os
 import subprocess
 import sys
-from datetime import date, timedelta
+from datetime import timedelta
 from pathlib import Path
 from typing import Any
 
@@ -123,22 +123,23 @@ def test_a_station_that_is_not_there_names_those_that_are(shell: Shell) -> None:
     assert "bench, meadow" in done.stderr
 
 
-def test_a_date_of_two_readings_is_asked_and_answered_by_a_mapping(shell: Shell) -> None:
+def test_what_a_file_leaves_open_is_asked_and_answered_by_a_mapping(shell: Shell) -> None:
     folder = shell.folder
     shell.run("load", str(folder / "book.json"))
-    lines = ["date,tmax (degC),tmin (degC),rain (mm)"]
-    lines += [f"{day:02}/{day:02}/2026,20,5,0" for day in range(1, 5)]
-    lines += [f"0{m}/0{d}/2026,21,6,0" for m, d in ((5, 6), (6, 7))]
-    path = folder / "ambiguous.csv"
+    lines = ["date,tmax (degC),tmin (degC),wind"]
+    lines += [f"2026-05-{day:02},20,5,{2 + day % 3}" for day in range(1, 11)]
+    path = folder / "open.csv"
     path.write_text("\n".join(lines) + "\n")
     refused = shell.run("intake", "bench", str(path), code=1).stderr
     assert "needs an answer" in refused
+    assert "m/s" in refused
     mapping = shell.json("intake", "bench", str(path), "--preview")["mapping"]
-    mapping["time"]["order"] = "mdy"
+    wind = next(column for column in mapping["columns"] if column["name"] == "wind")
+    wind["unit"] = "m/s"
     (folder / "mapping.json").write_text(json.dumps(mapping))
     applied = shell.json("intake", "bench", str(path), "--mapping", str(folder / "mapping.json"))
-    assert applied["rows"] == 6
-    assert applied["first_day"] == str(date(2026, 1, 1))
+    assert applied["rows"] == 10
+    assert applied["first_day"] == "2026-05-01"
 
 
 def test_wrong_settings_say_how_to_mend_them(tmp_path: Path) -> None:

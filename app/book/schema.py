@@ -13,6 +13,8 @@ from typing import Annotated, Any, Literal, Self
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
 
+from app.errors import InputError
+
 Key = Annotated[str, Field(pattern=r"^[a-z0-9]+(-[a-z0-9]+)*$", max_length=60)]
 Name = Annotated[str, Field(min_length=1, max_length=80)]
 Fraction = Annotated[float, Field(ge=0, le=1)]
@@ -262,7 +264,7 @@ class Book(Part):
     rain: list[RainPart] = []
 
 
-class BookError(Exception):
+class BookError(InputError):
     """A book that cannot be loaded; `problems` has one line for each place."""
 
     def __init__(self, problems: list[str]) -> None:

@@ -18,10 +18,11 @@ from sqlalchemy import Connection, Engine, create_engine, event
 from sqlalchemy.exc import OperationalError
 from sqlalchemy.orm import Session
 
+from app.errors import InputError
 from app.resources import resource
 
 
-class DatabaseError(Exception):
+class DatabaseError(InputError):
     """The database cannot be used; the message says what to do."""
 
 
@@ -55,10 +56,9 @@ class Database:
 
     @contextmanager
     def read(self) -> Iterator[Session]:
-        """A session whose changes, if any, are rolled back."""
+        """A session whose changes, if any, are lost."""
         with Session(self.engine) as session:
             yield session
-            session.rollback()
 
     @contextmanager
     def write(self) -> Iterator[Session]:

@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from datetime import date, timedelta
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -111,7 +112,8 @@ def seasons_of(session: Session, blocks: Sequence[int]) -> list[tuple[SeasonRow,
     """Seasons of blocks by block and planting; one that the next overtakes ends the day before."""
     rows = read_seasons(session, blocks)
     found = []
-    for row, later in zip(rows, [*rows[1:], None], strict=True):
+    for row, later in pairwise([*rows, None]):
+        assert row is not None
         crop = agronomy.crop_season(row.details, row.planting)
         if later is not None and later.block_id == row.block_id:
             eve = np.datetime64(_start(later), "D") - 1

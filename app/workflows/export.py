@@ -11,6 +11,7 @@ from typing import Any
 
 from sqlalchemy import select
 
+from app.errors import InputError
 from app.storage import exports
 from app.storage.database import Database
 from app.storage.tables import Station
@@ -19,7 +20,7 @@ from app.wording import CAUTION
 FORMULA = ("=", "+", "-", "@", "\t", "\r")
 
 
-class ExportError(Exception):
+class ExportError(InputError):
     """There is nothing of that name to export."""
 
 

@@ -11,6 +11,7 @@ from sqlalchemy import select
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
+from app.errors import InputError
 from app.storage import book
 from app.storage.database import Database
 from app.storage.events import VOID, head_of
@@ -23,7 +24,7 @@ PURPOSES = {"crop", "pre-plant", "germination", "leaching", "frost", "cooling", 
 CONFIRMATIONS = {"advised", "presumed", "reported", "metered", "measured"}
 
 
-class EventError(Exception):
+class EventError(InputError):
     """An entry that cannot be taken; the message says which value, why, and the remedy."""
 
 

@@ -90,11 +90,10 @@ def _days(
     rows = fold([unpack(blob) for blob in packs])
     if not len(rows):
         return
-    offset = round(details["utc_offset_h"] * 3600)
-    last = np.datetime64(int(rows.instant[-1]) + offset - 1, "s").astype("datetime64[D]")
-    first = np.datetime64(since, "D")
-    if since == book.BEGINNING:
-        first = np.datetime64(int(rows.instant[0]) + offset - 1, "s").astype("datetime64[D]")
+    offset = round(details["utc_offset_h"] * 3600) - 1
+    ends = np.array([rows.instant[0], rows.instant[-1]]) + offset
+    earliest, last = ends.astype("datetime64[s]").astype("datetime64[D]")
+    first = max(np.datetime64(since, "D"), earliest)
     if last < first:
         return
     site = agronomy.site(details)

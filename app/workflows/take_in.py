@@ -14,6 +14,7 @@ import numpy as np
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
+from app.errors import InputError
 from app.intake import (
     Clock,
     IntakeError,
@@ -39,7 +40,7 @@ from app.workflows.bring_up_to_date import up_to_date
 PROBLEMS_SHOWN = 200
 
 
-class TakeInError(Exception):
+class TakeInError(InputError):
     """An intake that cannot be taken further; the message says why and what to do."""
 
 

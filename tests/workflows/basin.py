@@ -91,8 +91,9 @@ def daily_csv(
 ) -> bytes:
     """A believable daily record, a pure function of the date."""
     lines = ["date,tmax (degC),tmin (degC),rhmax (%),rhmin (%),wind (m/s),solar (MJ/m2),rain (mm)"]
-    for n in range((last - first).days + 1):
-        day = first + timedelta(days=n)
+    for step in range((last - first).days + 1):
+        day = first + timedelta(days=step)
+        n = (day - FIRST).days
         wave = math.sin(2 * math.pi * (day.timetuple().tm_yday - 105) / 365)
         wobble = math.sin(n * 1.7) + 0.5 * math.sin(n * 0.6)
         rain = 6.5 if n % 11 == 3 else 0.0

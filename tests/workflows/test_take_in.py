@@ -68,7 +68,8 @@ def test_undo_out_of_order_leaves_what_later_files_said(db: Database) -> None:
     basin.take(db, "bench", basin.daily_csv(date(2026, 6, 15), warmer=5))
     take_in.undo(db, first, "admin", basin.TODAY)
     with db.read() as session:
-        tmax = dict(session.execute(select(StationDay.day, StationDay.tmax)).tuples().all())
+        bench = select(StationDay.day, StationDay.tmax).where(StationDay.station_id == 1)
+        tmax = {day: value for day, value in session.execute(bench)}
     plain = {
         line.split(",")[0]: float(line.split(",")[1])
         for line in basin.daily_csv().decode().splitlines()[1:]
