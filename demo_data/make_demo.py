@@ -22,7 +22,7 @@ KNOBS: dict[str, Any] = {
             "late": (0, 0, 0),
             "due": (1, 2, 2),
             "soon": (4, 5, 5),
-            "easy": (7, 14, 11),
+            "easy": (7, 14, 9),
             "wet": (99, 99, 99),
         },
         "other_irrigations": [

@@ -178,13 +178,14 @@ def aimed(grower: Grower, today: date, aim: tuple[int, int, int] | None) -> Wate
         return grower.standing(grower.go(run, today))
     low, high, target = aim
     best, distance = grower.standing(grower.go(run.branch(), today)), np.inf
-    for back in range(22, 4, -2):
+    for back in range(20, 4, -3):
         run = grower.go(run, today - timedelta(back))
-        for part in (0.35, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.1, 1.2):
-            for fill in (0.5, 0.7, 0.85, 1.0, 1.15, 1.8):
+        for part in (0.35, 0.5, 0.65, 0.8, 0.9, 1.0, 1.15):
+            for fill in (0.5, 0.75, 0.9, 1.0, 1.2):
                 made = grower.standing(grower.go(run.branch(), today, (part, fill)))
                 left = 99 if made.depletion <= 0 else made.left
                 off = max(low - left, left - high, 0) + 0.1 * min(abs(left - target), 5)
+                off += 0.2 * (0 < made.depletion < 5)
                 if left == 0:
                     off += 2 * abs(made.depletion / made.limit - 1.1)
                 off += 0.05 * abs(part - 0.85) + 0.05 * abs(fill - 1.0) + 0.002 * back
