@@ -50,7 +50,7 @@ Old Yard        |  3.4 |river-silt      |drip-beds       |hours |tomato      |on
 # orchard-road
 North Rows      | 14.6 |orchard-loam    |micro-orchard   |hours |apple       |apple      |soon
 South Rows      | 12.1 |orchard-loam    |micro-orchard   |hours |apple       |apple      |easy
-Young Block     |  6.3 |orchard-loam    |micro-orchard   |volume|young-apple |young-apple|easy
+Young Block     |  6.3 |orchard-loam    |drip-vines      |volume|young-apple |young-apple|easy
 Vine Terrace    |  9.8 |terrace-stony   |drip-vines      |hours |grapes      |grapes     |easy
 Hill Vines      |  7.2 |terrace-stony   |drip-vines      |hours |grapes      |grapes     |easy
 Peach Corner    |  4.1 |orchard-loam    |micro-orchard   |volume|peach       |peach      |soon
