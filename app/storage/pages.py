@@ -288,8 +288,3 @@ def field_keys(session: Session, farm: str | None = None) -> set[str]:
     if farm is not None:
         statement = statement.join(Farm, Farm.id == Field.farm_id).where(Farm.key == farm)
     return set(session.scalars(statement))
-
-
-def field_of_block(session: Session) -> dict[int, int]:
-    """The field of each block."""
-    return {row[0]: row[1] for row in session.execute(select(Block.id, Block.field_id))}

@@ -149,7 +149,7 @@ def _bars(
 
 
 def _dates(every: Sequence[date], count: int, x: object, today: date | None) -> tuple[Mark, ...]:
-    """About five dates along the foot, the last known day among them."""
+    """About five mornings along the foot, this one among them."""
     assert callable(x)
     gap = max(7 * round(count / 35), 7) if count > 20 else max(count // 4, 1)
     anchor = today or every[0]
@@ -159,7 +159,8 @@ def _dates(every: Sequence[date], count: int, x: object, today: date | None) -> 
         if every[0] <= day <= every[-1]:
             where = x(day)
             side = "mid" if LEFT + 30 < where < WIDTH - 40 else "end" if where > LEFT + 30 else ""
-            found.append(Mark(where, HEIGHT - 8, 0.0, f"{wording.plain_day(day)}", side))
+            morning = wording.plain_day(day + timedelta(days=1))
+            found.append(Mark(where, HEIGHT - 8, 0.0, morning, side))
     return tuple(found)
 
 

@@ -3,6 +3,7 @@
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date, timedelta
+from itertools import accumulate
 from typing import Any
 
 from app import wording
@@ -10,6 +11,7 @@ from app.storage.pages_field import BlockRow, SeasonRow
 from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
 from app.web.rounds_view import Bar, bar, span, when
+from app.workflows import agronomy
 
 CHART_DAYS = 35
 LEDGER_DAYS = 14
@@ -51,7 +53,7 @@ def order(
         + f" are missing from the root zone; the limit is {wording.depth(advice['limit_mm'])}."
     )
     if watering:
-        state += f" {wording.depth(advice['net_mm'])} mm of it reach the root zone (net)."
+        state += f" {wording.depth(advice['net_mm'])} mm net reach it."
     return Order(
         lead,
         rest,
@@ -170,25 +172,47 @@ def _nan(value: float | None) -> float:
 def soil_rows(soil: Mapping[str, Any]) -> list[tuple[str, str, str, str, str]]:
     """The layers of a profile: depth, texture, field capacity, wilting point, held."""
     rows, top = [], 0.0
-    for layer in soil.get("layers", []):
-        bottom = layer["bottom_m"]
-        capacity, wilting = layer.get("field_capacity"), layer.get("wilting_point")
-        held = (
-            wording.number(1000 * (capacity - wilting) * (bottom - top))
-            if capacity is not None and wilting is not None
-            else wording.NO_FIGURE
-        )
+    profile = agronomy.profile(dict(soil))
+    for part, layer in zip(soil["layers"], profile.layers, strict=True):
+        held = 1000 * (layer.field_capacity - layer.wilting_point) * (layer.bottom_m - top)
         rows.append(
             (
-                f"{wording.number(top, 2)} to {wording.number(bottom, 2)} m",
-                (layer.get("texture") or "measured").replace("_", " "),
-                wording.share(capacity),
-                wording.share(wilting),
-                held,
+                f"{wording.number(top, 2)} to {wording.number(layer.bottom_m, 2)} m",
+                (part["texture"] or "as measured").replace("_", " "),
+                wording.share(layer.field_capacity),
+                wording.share(layer.wilting_point),
+                wording.number(held),
             )
         )
-        top = bottom
+        top = layer.bottom_m
     return rows
+
+
+def season_facts(season: SeasonRow | None) -> list[tuple[str, str]]:
+    """The crop as it is reckoned with: stages, coefficients, roots, depletion fraction."""
+    if season is None:
+        return []
+    crop = agronomy.crop_season(season.details, season.planting)
+    ends = [season.planting + timedelta(days=days - 1) for days in accumulate(crop.stage_days)]
+    symbol = "Kcb" if crop.coefficients == "dual" else "Kc"
+    coefficients = (crop.k_ini, crop.k_mid, crop.k_end)
+    facts = [
+        (f"{name} to", wording.plain_day(end))
+        for name, end in zip(wording.STAGES, ends, strict=False)
+    ]
+    return [
+        *facts,
+        (
+            f"{symbol} initial, mid, end",
+            ", ".join(wording.number(value, 2) for value in coefficients),
+        ),
+        (
+            "roots",
+            f"{wording.number(crop.root_min_m, 2)} to {wording.number(crop.root_max_m, 2)} m",
+        ),
+        ("p of the table", wording.number(crop.depletion_fraction, 2)),
+        ("limit", f"MAD {wording.share(crop.mad)} of TAW" if crop.mad is not None else "RAW"),
+    ]
 
 
 def title(block: BlockRow, season: SeasonRow | None, today: date) -> str:

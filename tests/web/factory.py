@@ -6,6 +6,7 @@ from typing import Any
 from sqlalchemy import insert
 from sqlalchemy.orm import Session
 
+from app.book.schema import LayerPart, SeasonPart, SoilPart, SystemPart
 from app.storage.database import Database
 from app.storage.tables import (
     Advice,
@@ -47,10 +48,17 @@ def fill(db: Database, fields: int = 12, days: int = 40, hostile: bool = True) -
         ):
             details = {**STATION, "key": key, "name": name}
             session.add(Station(id=number, key=key, name=name, details=details, dirty_from=None))
-        layer = {"bottom_m": 1.2, "texture": None, "field_capacity": 0.3, "wilting_point": 0.15}
-        session.add(Soil(id=1, key="loam", name="Loam", details={"layers": [layer]}))
-        system = {"kind": "centre pivot", "efficiency": 0.8, "rate_mm_h": 7.2, "most_mm": 40.0}
-        session.add(IrrigationSystem(id=1, key="pivot", name="Centre pivot", details=system))
+        layer = LayerPart(bottom_m=1.2, field_capacity=0.3, wilting_point=0.15)
+        soil = SoilPart(key="loam", name="Loam", layers=[layer])
+        session.add(Soil(id=1, key="loam", name="Loam", details=soil.model_dump(mode="json")))
+        system = SystemPart(
+            key="pivot", name="Pivot", kind="centre pivot", efficiency=0.8, rate_mm_h=7.2
+        )
+        session.add(
+            IrrigationSystem(
+                id=1, key="pivot", name="Pivot", details=system.model_dump(mode="json")
+            )
+        )
         for number, (key, name) in enumerate(
             [("hollin", "Hollin Farm"), ("tern", "Tern Creek"), ("odd", HOSTILE)], 1
         ):
@@ -174,14 +182,13 @@ def _block(session: Session, number: int, block: int, key: str, days: int) -> No
     session.flush()
     if number == 7:  # nothing grows here
         return
-    season = {
-        "crop": "maize_grain",
-        "coefficients": "dual",
-        "stage_days": [25, 40, 45, 30],
-        "mad": 0.5,
-        "refill_to_mm": 0,
-        "rain_room_mm": 0,
-    }
+    season = SeasonPart(
+        field=f"field-{number}",
+        crop="maize_grain",
+        planting=PLANTING,
+        stage_days=(25, 40, 45, 30),
+        mad=0.5,
+    ).model_dump(mode="json")
     session.add(
         Season(id=block, block_id=block, crop="maize_grain", planting=PLANTING, details=season)
     )

@@ -111,6 +111,7 @@ def show(
         energy=energy,
         compared=compare(station_days, elevation.get(energy.station_id, 0.0)) if energy else None,
         soil=view.soil_rows(chosen.soil),
+        season_facts=view.season_facts(season),
         token=secrets.token_urlsafe(12),
         error=error,
     )

@@ -123,15 +123,14 @@ def _show(
         recent = store.recent_days(session, today)
         last = store.last_days(session)
         events = store.events_since(session, today - timedelta(days=EVENTS_SHOWN_DAYS))
-        field_of = store.field_of_block(session)
-    by_field: dict[int, list[store.EventRow]] = defaultdict(list)
+    by_block: dict[int, list[store.EventRow]] = defaultdict(list)
     for event in events:
-        by_field[field_of[event.block_id]].append(event)
+        by_block[event.block_id].append(event)
     facts = view.Facts(
         today=today,
         stations={station.key: station.name for station in stations},
         energy={field: row for (field, _), row in energy.items()},
-        events=by_field,
+        events=by_block,
     )
     sifted = view.sift(rows, sieve, facts)
     if only is not None:
