@@ -59,7 +59,7 @@ Low Meadow      | 26.4 |meadow-clay-loam|border-canal    |gross |pasture     |pa
 Calf Pasture    |  8.8 |meadow-clay-loam|border-canal    |gross |pasture     |pasture    |wet
 Long Alfalfa    | 33.7 |meadow-clay-loam|border-canal    |volume|alfalfa     |alfalfa    |easy
 Bridge Alfalfa  | 19.9 |slough-clay     |border-canal    |volume|alfalfa     |alfalfa    |late
-Silage Flat     | 38.5 |valley-loam     |pivot-low       |gross |silage      |silage     |soon
+Silage Flat     | 38.5 |valley-loam     |pivot-low       |gross |silage      |silage     |easy
 Parlour Field   | 17.4 |meadow-clay-loam|furrow-siphon   |gross |barley      |silage     |easy
 """
 

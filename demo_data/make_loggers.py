@@ -235,7 +235,8 @@ def thermometer(weather: Weather, knobs: dict[str, Any]) -> list[File]:
     """Station 3: each day's highest and lowest temperature and rain, US units, month/day/year."""
     rng = np.random.default_rng(knobs["seed"] + 3)
     n = len(weather.end) // PER_DAY
-    day = weather.end[PER_DAY - 1 :: PER_DAY][:n].astype("datetime64[m]") - np.timedelta64(1, "D")
+    midnight: Times = weather.end[PER_DAY - 1 :: PER_DAY][:n]
+    day = np.asarray(midnight - np.timedelta64(1, "D"), dtype="datetime64[m]")
     high = blocks(weather["t"], PER_DAY, np.max) * 1.8 + 32 + 0.3 * rng.standard_normal(n)
     low = blocks(weather["t"], PER_DAY, np.min) * 1.8 + 32 + 0.3 * rng.standard_normal(n)
     rain = np.round(blocks(weather["rain"], PER_DAY, np.sum) / 25.4, 2)

@@ -51,7 +51,9 @@ class Days:
             return np.concatenate([values[:i], np.full(16, usual)])
 
         names = ("eto", "u2", "rh_min", "rn", "tmax", "tmin", "ea")
-        parts = {k: on(getattr(self, k), float(getattr(self, k)[i - 7 : i].mean())) for k in names}
+        parts: dict[str, Any] = {
+            k: on(getattr(self, k), float(getattr(self, k)[i - 7 : i].mean())) for k in names
+        }
         return Days(self.first, rain=on(self.rain, 0.0), elevation=self.elevation, **parts)
 
     def reference_et(self) -> Array:
