@@ -57,7 +57,6 @@ def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
     eto, days = stack.supplies.eto, terms.days
     seasons = [plan.season for plan in stack.plans]
     dual = np.array([season.coefficients == "dual" for season in seasons])
-    mad = np.array([season.mad for season in seasons], dtype=np.float64)
     demand = eto > 0.0
     over = np.where(demand, eto, 1.0)
     infiltrated = days.rain - result.runoff
@@ -82,11 +81,20 @@ def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
         "root_depth_m": stack.curve.root_depth,
         "taw_mm": days.taw,
         "raw_mm": result.raw,
-        "limit_mm": np.where(np.isnan(mad), result.raw, mad * days.taw),
+        "limit_mm": _limit(stack, days.taw, result.raw),
         "depletion_mm": result.depletion,
         "subsoil_depletion_mm": result.subsoil,
         "evaporation_layer_depletion_mm": np.where(dual, result.layer, np.nan),
     }
+
+
+def _limit(stack: Stack, taw: Floats, raw: Floats) -> Floats:
+    """Depletion not to be passed: MAD x TAW, RAW where no MAD is set; all of TAW where no crop
+    stands (off season of annuals), so that bare soil never calls for water."""
+    seasons = [plan.season for plan in stack.plans]
+    mad = np.array([season.mad for season in seasons], dtype=np.float64)
+    standing = stack.curve.in_season | np.array([season.perennial for season in seasons])
+    return np.where(standing, np.where(np.isnan(mad), raw, mad * taw), taw)
 
 
 def _ledger(

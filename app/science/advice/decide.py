@@ -1,11 +1,12 @@
 """When to irrigate a field and how much: the decision for one morning."""
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from app.science import Bools, Days, Floats
-from app.science.advice.keeping_up import chances, daily_change, keeps_up
+from app.science.advice.keeping_up import Ahead, chances, daily_change, holds
 from app.science.advice.reasons import Reason
 from app.science.advice.system import ApplicationSystem
 
@@ -84,7 +85,8 @@ def decide(
     input_age_days: age of the oldest input.
 
     The day is the last chance at or before the first close past the limit, brought forward by the
-    days the system needs to cover the field; a field that cannot be held starts at once. The depth
+    days the system needs to cover the field, and further where it could not hold the limit over
+    the horizon from that day on; a field that cannot be held starts at once. The depth
     refills the opening depletion within the system's least and most. A depth below the least is
     raised to it, even where it passes field capacity: the chance is the last one, and waiting
     would pass the limit. Only allowed days are ever advised.
@@ -95,53 +97,43 @@ def decide(
     Source: leaching, NEH 623 (from memory); the rest are the project's own rules.
     """
     _check(outlook, depletion_now, area_ha)
-    gap = max(system.interval_days, system.cover_days)
-    may_start = chances(outlook.allowed, _ready(outlook, last_irrigation, gap), system.cover_days)
+    per_net = _gross_per_net(system.efficiency, leaching_requirement)
+    ahead = _ahead(
+        outlook, depletion_now, system, per_net, refill_to_mm, intake_mm, last_irrigation
+    )
     passed = first_passed(outlook.depletion, outlook.limit)
     late = bool(depletion_now > outlook.limit[0])
-    per_net = _gross_per_net(system.efficiency, leaching_requirement)
-    net_least, net_most = system.least_mm / per_net, system.deliverable_mm / per_net
-    if intake_mm is not None:
-        net_most = max(min(net_most, intake_mm), net_least)
-    change = daily_change(depletion_now, outlook.depletion, outlook.limit, outlook.etc)
-    behind = (late or passed is not None) and not keeps_up(
-        depletion_now, change, outlook.limit, may_start, net_least, net_most, gap
-    )
-    day, reason = _choose(
-        outlook, depletion_now, may_start, passed, late, behind, system, net_least
-    )
+
+    def depth(day: int) -> float:
+        wanted = float(ahead.opening[day]) - refill_to_mm - rain_room_mm
+        return min(max(wanted, ahead.net_least), ahead.net_most)
+
+    day, reason = _choose(ahead, passed, late, system.cover_days, depth)
+    net = 0.0 if day is None else depth(day)
+    gross = net * per_net
     figures: dict[str, float | str] = {
         "horizon_days": float(outlook.date.size),
         "depletion_mm": float(depletion_now),
         "limit_mm": float(outlook.limit[0]),
         **_limit_figures(outlook, passed),
     }
-    net, bound = 0.0, ""
     if day is not None:
-        opening = _opening(outlook, depletion_now, day)
-        net, bound = _depth(
-            opening - refill_to_mm - rain_room_mm, net_least, net_most, system, intake_mm
-        )
+        opening = float(ahead.opening[day])
         figures |= {
             "opening_mm": opening,
             "refill_to_mm": refill_to_mm,
             "rain_room_mm": rain_room_mm,
             "efficiency": system.efficiency,
-            "chances_before": float(may_start[: passed + 1].sum()) if passed is not None else 0.0,
-            "bound": bound,
+            "bound": _bound(opening - refill_to_mm - rain_room_mm, ahead, system, intake_mm),
             "past_field_capacity_mm": max(net - max(opening, 0.0), 0.0),
             "cover_days": float(system.cover_days),
-            "first_chance": str(outlook.date[int(np.argmax(may_start))]),
+            "most_net_mm": ahead.net_most,
+            "interval_days": float(ahead.gap),
+            "etc_mm": float(np.nansum(outlook.etc)),
+            **_chance_figures(outlook, ahead, passed),
         }
-        if reason is Reason.FALLING_BEHIND:
-            figures |= {
-                "most_net_mm": net_most,
-                "interval_days": float(gap),
-                "etc_mm": float(np.nansum(outlook.etc)),
-            }
-    gross = net * per_net
     return Advice(
-        standing=_standing(depletion_now, late, passed, may_start),
+        standing=_standing(depletion_now, late, passed, ahead.may_start),
         day=None if day is None else outlook.date[day],
         net_mm=net,
         gross_mm=gross,
@@ -150,7 +142,7 @@ def decide(
         reason=reason.value,
         figures=figures,
         limit_day=None if passed is None else outlook.date[passed],
-        falling_behind=behind,
+        falling_behind=reason is Reason.FALLING_BEHIND,
         unsure=input_age_days > STALE_DAYS or _wide(outlook),
     )
 
@@ -202,55 +194,82 @@ def _standing(depletion_now: float, late: bool, passed: int | None, may_start: B
     return "wet" if depletion_now <= 0.0 else "easy"
 
 
-def _choose(
+def _ahead(
     outlook: Outlook,
     depletion_now: float,
-    may_start: Bools,
+    system: ApplicationSystem,
+    per_net: float,
+    leave: float,
+    intake_mm: float | None,
+    last_irrigation: np.datetime64 | None,
+) -> Ahead:
+    gap = max(system.interval_days, system.cover_days)
+    net_least, net_most = system.least_mm / per_net, system.deliverable_mm / per_net
+    if intake_mm is not None:
+        net_most = max(min(net_most, intake_mm), net_least)
+    ready = _ready(outlook, last_irrigation, gap)
+    return Ahead(
+        opening=np.concatenate(([depletion_now], outlook.depletion[:-1])),
+        change=daily_change(depletion_now, outlook.depletion, outlook.limit, outlook.etc),
+        limit=outlook.limit,
+        may_start=chances(outlook.allowed, ready, system.cover_days),
+        net_least=net_least,
+        net_most=net_most,
+        leave=leave,
+        gap=gap,
+    )
+
+
+def _choose(
+    ahead: Ahead,
     passed: int | None,
     late: bool,
-    behind: bool,
-    system: ApplicationSystem,
-    net_least: float,
+    cover_days: int,
+    depth: Callable[[int], float],
 ) -> tuple[int | None, Reason]:
-    """The day to start (index) and why."""
+    """The day to start (index) and why: the latest start in time that holds the limit."""
     if passed is None:
         return None, Reason.BACK_WITHIN if late else Reason.LIMIT_NOT_REACHED
-    starts = np.flatnonzero(may_start)
-    if not starts.size:
+    starts: list[int] = np.flatnonzero(ahead.may_start).tolist()
+    if not starts:
         return None, Reason.NO_CHANCE
-    first = int(starts[0])
-    in_time = starts[starts <= passed - (system.cover_days - 1)]
-    last = int(in_time[-1]) if in_time.size else first
-    if behind:
-        roomy = [s for s in starts.tolist() if _opening(outlook, depletion_now, s) >= net_least]
-        return min([*roomy, last]), Reason.FALLING_BEHIND
+    in_time = [s for s in starts if s <= passed - (cover_days - 1)]
+    tried = in_time or starts[:1]
+    last = tried[-1]
+    roomy = [s for s in tried if s == last or ahead.opening[s] >= ahead.net_least]
+    held = [s for s in roomy if holds(ahead, s, depth(s))]
+    if not held:
+        return roomy[0], Reason.FALLING_BEHIND
     if late and passed == 0:
-        return first, Reason.PAST_LIMIT
-    if not in_time.size:
-        return first, Reason.NO_CHANCE_IN_TIME
-    covering = system.cover_days > 1 and bool((starts[starts <= passed] > last).any())
+        return held[-1], Reason.PAST_LIMIT
+    if not in_time:
+        return last, Reason.NO_CHANCE_IN_TIME
+    if held[-1] < last:
+        return held[-1], Reason.EARLY_TO_KEEP_UP
+    covering = any(last < s <= passed for s in starts)
     return last, Reason.COVERING if covering else Reason.LAST_CHANCE
 
 
-def _opening(outlook: Outlook, depletion_now: float, day: int) -> float:
-    return float(depletion_now if day == 0 else outlook.depletion[day - 1])
+def _bound(wanted: float, ahead: Ahead, system: ApplicationSystem, intake_mm: float | None) -> str:
+    """What set the depth instead of the depletion: "", least, most, hours or intake."""
+    if wanted < ahead.net_least:
+        return "least"
+    if wanted <= ahead.net_most:
+        return ""
+    if intake_mm is not None and intake_mm <= ahead.net_most:
+        return "intake"
+    return "most" if system.deliverable_mm >= system.most_mm else "hours"
 
 
-def _depth(
-    wanted: float,
-    net_least: float,
-    net_most: float,
-    system: ApplicationSystem,
-    intake_mm: float | None,
-) -> tuple[float, str]:
-    """Net depth [mm] within the system's bounds, and the bound that set it."""
-    if wanted < net_least:
-        return net_least, "least"
-    if wanted > net_most:
-        if intake_mm is not None and intake_mm <= net_most:
-            return net_most, "intake"
-        return net_most, "most" if system.deliverable_mm >= system.most_mm else "hours"
-    return wanted, ""
+def _chance_figures(outlook: Outlook, ahead: Ahead, passed: int | None) -> dict[str, float | str]:
+    starts = np.flatnonzero(ahead.may_start)
+    in_time = starts[starts <= passed] if passed is not None else starts
+    last = in_time[-1] if in_time.size else starts[0]
+    return {
+        "chances_before": float(in_time.size),
+        "first_chance": str(outlook.date[starts[0]]),
+        "last_chance": str(outlook.date[last]),
+    }
 
 
 def _limit_figures(outlook: Outlook, passed: int | None) -> dict[str, float | str]:

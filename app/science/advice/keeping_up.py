@@ -1,4 +1,6 @@
-"""Whether a system can hold the limit over the days ahead, and when it can be used."""
+"""When a system can be used, and whether a first application holds the limit from there on."""
+
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -30,68 +32,63 @@ def daily_change(depletion_now: float, depletion: Floats, limit: Floats, etc: Fl
     return np.where(stressed, np.maximum(change, etc), change)
 
 
-def keeps_up(
-    depletion_now: float,
-    change: Floats,
-    limit: Floats,
-    may_start: Bools,
-    net_least: float,
-    net_most: float,
-    gap: int,
-) -> bool:
-    """Whether some plain use of the chances holds the limit from the first chance on.
+@dataclass(frozen=True, kw_only=True)
+class Ahead:
+    """The days ahead as a system meets them: opening, change and limit of depletion [mm] (H,),
+    days an application may start (H,), net bounds [mm] of one application, depletion [mm] it
+    leaves, and days from one start to the next."""
 
-    Tried: at every chance with room; only where waiting for the next chance would pass the limit;
-    and the latter after an early first application. change and limit (H,) [mm]; may_start (H,);
-    net_least and net_most [mm] of an application; gap: days from one start to the next. A field
-    past its limit at the first chance may recover within the horizon. True without a chance.
+    opening: Floats
+    change: Floats
+    limit: Floats
+    may_start: Bools
+    net_least: float
+    net_most: float
+    leave: float
+    gap: int
+
+
+def holds(ahead: Ahead, start: int, net: float) -> bool:
+    """Whether `net` [mm] on day `start` and plain use of the chances after it hold the limit.
+
+    Plain use is water at every chance with room, or only where waiting for the next chance would
+    pass the limit. A field past its limit at `start` may recover within the horizon. Days before
+    `start` do not count.
     """
-    if not may_start.any():
-        return True
-    return any(
-        _holds(depletion_now, change, limit, may_start, net_least, net_most, gap, eager)
-        for eager in ("always", "never", "first")
-    )
+    return any(_holds(ahead, start, net, eager) for eager in (False, True))
 
 
-def _holds(
-    depletion: float,
-    change: Floats,
-    limit: Floats,
-    may_start: Bools,
-    net_least: float,
-    net_most: float,
-    gap: int,
-    eager: str,
-) -> bool:
-    first = int(np.argmax(may_start))
-    next_start, applied = first, False
-    recovering = False
-    for day in range(change.size):
-        if day == first:
-            recovering = depletion > limit[day]
-        if may_start[day] and day >= next_start:
-            wanted = eager == "always" or (eager == "first" and not applied)
-            roomy = wanted and depletion >= net_least
-            if roomy or _passes(depletion, change, limit, may_start, day):
-                net = min(net_most, max(depletion, net_least))
-                depletion = max(depletion - net, min(0.0, depletion))
-                next_start, applied = day + gap, True
-        depletion = max(depletion + float(change[day]), min(0.0, depletion))
-        if day >= first and depletion > limit[day]:
-            if not recovering:
-                return False
-        else:
+def _holds(ahead: Ahead, start: int, net: float, eager: bool) -> bool:
+    depletion = float(ahead.opening[start])
+    recovering = depletion > ahead.limit[start]
+    depletion = _after(depletion, net)
+    next_start = start + ahead.gap
+    for day in range(start, ahead.change.size):
+        if day >= next_start and ahead.may_start[day]:
+            room = depletion - ahead.leave
+            if (eager and room >= ahead.net_least) or _passes(ahead, depletion, day):
+                net = min(ahead.net_most, max(room, ahead.net_least))
+                depletion = _after(depletion, net)
+                next_start = day + ahead.gap
+        depletion = max(depletion + float(ahead.change[day]), min(0.0, depletion))
+        if depletion <= ahead.limit[day] or np.isnan(ahead.limit[day]):
             recovering = False
+        elif not recovering:
+            return False
     return not recovering
 
 
-def _passes(depletion: float, change: Floats, limit: Floats, may_start: Bools, day: int) -> bool:
+def _after(depletion: float, net: float) -> float:
+    """Depletion after an application; what passes field capacity drains."""
+    return max(depletion - net, min(0.0, depletion))
+
+
+def _passes(ahead: Ahead, depletion: float, day: int) -> bool:
     """Whether waiting from `day` to the next chance passes the limit."""
-    for later in range(day, change.size):
-        if later > day and may_start[later]:
+    for later in range(day, ahead.change.size):
+        if later > day and ahead.may_start[later]:
             return False
-        depletion += float(change[later])
-        if depletion > limit[later]:
+        depletion += float(ahead.change[later])
+        if depletion > ahead.limit[later]:
             return True
     return False
