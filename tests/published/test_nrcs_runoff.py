@@ -15,12 +15,13 @@ def test_condition_table(row: handbook.WetnessRow) -> None:
     assert float(wet_curve_number(row.cn_average)) == row.cn_wet
 
 
-def test_between_the_rows_the_formula_conversions_agree() -> None:
+def test_the_formula_conversions_follow_the_table() -> None:
     """CN1 = 4.2 CN / (10 - 0.058 CN), CN3 = 23 CN / (10 + 0.13 CN), NEH (from memory): they follow
-    the table within 1.5 except near 70."""
-    cn = np.array([35.0, 45.0, 55.0, 85.0, 95.0])
-    assert np.abs(dry_curve_number(cn) - 4.2 * cn / (10.0 - 0.058 * cn)).max() < 2.6
-    assert np.abs(wet_curve_number(cn) - 23.0 * cn / (10.0 + 0.13 * cn)).max() < 1.6
+    the printed rows within 1.5, but for dry soil at 70 (49.5 against 51)."""
+    rows = [row for row in handbook.wetness_rows() if row.cn_average not in (70.0, 100.0)]
+    cn = np.array([row.cn_average for row in rows])
+    assert np.abs(dry_curve_number(cn) - 4.2 * cn / (10.0 - 0.058 * cn)).max() < 1.5
+    assert np.abs(wet_curve_number(cn) - 23.0 * cn / (10.0 + 0.13 * cn)).max() < 1.5
 
 
 def test_runoff_equation_in_inches() -> None:
