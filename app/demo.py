@@ -62,14 +62,14 @@ def fill(db: Database, today: date = TODAY) -> None:
         bar.advance(task)
         for entry in files:
             bar.update(task, description=f"Intake: {entry['file']}")
-            take_file(db, basin, entry, today)
+            take_file(db, basin, entry)
             bar.advance(task)
         bar.update(task, description="Ledgers and the morning's advice")
         bring_up_to_date(db, today)
         bar.advance(task)
 
 
-def take_file(db: Database, basin: Path, entry: dict[str, object], today: date) -> None:
+def take_file(db: Database, basin: Path, entry: dict[str, object]) -> None:
     """Take one station file in, with the answers the list gives to what the file leaves open."""
     name = str(entry["file"])
     with (basin / name).open("rb") as source:
@@ -79,4 +79,4 @@ def take_file(db: Database, basin: Path, entry: dict[str, object], today: date) 
         seen = take_in.preview_of(db, number)
         assert isinstance(seen.mapping, Mapping)
         take_in.remap(db, number, answer(seen.mapping, answers), WHO)
-    take_in.apply(db, number, WHO, today)
+    take_in.apply(db, number, WHO, None)

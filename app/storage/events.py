@@ -52,12 +52,12 @@ def head_of(session: Session, event: Event) -> Event:
     return event
 
 
-def by_origin(session: Session, prefix: str) -> list[Event]:
-    """Events whose origin is `prefix` or one of its later versions `prefix~2`, oldest first."""
-    return list(
-        session.scalars(
-            select(Event)
-            .where((Event.origin == prefix) | Event.origin.startswith(f"{prefix}~"))
-            .order_by(Event.id)
-        )
-    )
+def events_by_origin(session: Session, prefix: str) -> dict[str, list[Event]]:
+    """Events whose origin begins with `prefix`, by origin without its version, oldest first."""
+    found: dict[str, list[Event]] = {}
+    for event in session.scalars(
+        select(Event).where(Event.origin.startswith(prefix)).order_by(Event.id)
+    ):
+        assert event.origin is not None
+        found.setdefault(event.origin.split("~")[0], []).append(event)
+    return found

@@ -1,6 +1,6 @@
 """Statements for ledgers: the blocks with all they rest on, and the ledger rows."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from datetime import date
 from typing import Any, NamedTuple
 
@@ -121,7 +121,7 @@ def last_ledger_days(session: Session) -> dict[int, date]:
 
 
 def replace_ledger_days(
-    session: Session, since: dict[int, date], rows: Iterable[dict[str, Any]]
+    session: Session, since: Mapping[int, date], rows: Iterable[dict[str, Any]]
 ) -> int:
     """Put ledger rows in place of each block's rows from its day of `since` on."""
     by_day: dict[date, list[int]] = {}

@@ -21,7 +21,6 @@ NUMBERS = (
     "wind_2m",
     "rain",
     "rn",
-    "rn_uncertainty",
     "ra",
     "eto",
 )

@@ -17,53 +17,47 @@ from sqlalchemy.orm import Session
 
 from app import __version__
 from app.science.advice.decide import Advice, Outlook, decide
-from app.science.ledger import BlockLedger, block_ledgers
 from app.storage.ledgers import depletion_before
 from app.storage.series import last_days
 from app.storage.tables import Advice as AdviceRow
 from app.storage.tables import Source, Station
 from app.workflows import agronomy
-from app.workflows.assemble import Subject, assemble
-from app.workflows.recompute import depletion_range
+from app.workflows.assemble import Subject
+from app.workflows.recompute import Computed
 
 STALE_DAYS = 2
 """An input older than this makes an advice unsure (working value)."""
 
 
-def advise(session: Session, on: date, blocks: Sequence[int]) -> int:
-    """Issue advice of the morning of `on` for blocks with a crop; returns new numbers issued.
+def advise(session: Session, on: date, computed: Sequence[Computed]) -> int:
+    """Issue advice of the morning of `on` for seasons that go on; returns new numbers issued.
 
-    Ledgers must be up to date through the day before.
+    Their ledgers must have been written through the day before.
     """
-    subjects = [
-        subject
-        for subject in assemble(session, blocks, on - timedelta(days=1), since=on)
-        if subject.past < subject.plan.days
-    ]
+    growing = [one for one in computed if one.subject.past < one.subject.plan.days]
+    numbers = [one.subject.block.block_id for one in growing]
     there = {
         row.block_id: row
         for row in session.scalars(
             select(AdviceRow).where(
                 AdviceRow.issued_on == on,
                 AdviceRow.stands.is_(True),
-                AdviceRow.block_id.in_([subject.block.block_id for subject in subjects]),
+                AdviceRow.block_id.in_(numbers),
             )
         )
     }
     ages = _ages(session, on)
     yesterday, before = on - timedelta(days=1), on - timedelta(days=2)
-    numbers = [subject.block.block_id for subject in subjects]
     closing = depletion_before(session, numbers, [yesterday, before])
-    ledgers = block_ledgers([s.plan for s in subjects], [s.weather for s in subjects])
     issued = 0
-    for subject, ledger in zip(subjects, ledgers, strict=True):
-        block = subject.block.block_id
+    for one in growing:
+        subject, block = one.subject, one.subject.block.block_id
         stale = ages.get(subject.block.field_id, [])
         inputs = inputs_hash(subject, stale)
         standing = there.get(block)
         if standing is not None and standing.inputs_hash == inputs:
             continue
-        row = _row(subject, ledger, on, stale)
+        row = _row(one, on, stale)
         row.inputs_hash = inputs
         today, yesterday_mm = closing.get((block, yesterday)), closing.get((block, before))
         if today is not None and yesterday_mm is not None:
@@ -109,21 +103,15 @@ def inputs_hash(subject: Subject, stale: Any) -> str:
             digest.update(
                 value.tobytes() if isinstance(value, np.ndarray) else repr(value).encode()
             )
-    digest.update(subject.rn_share.tobytes())
     words = [subject.block.system, subject.block.field, subject.season.details, subject.past]
     digest.update(json.dumps([words, stale], sort_keys=True, default=str).encode())
     digest.update(repr(subject.last_irrigation).encode())
     return digest.hexdigest()
 
 
-def _row(
-    subject: Subject,
-    ledger: BlockLedger,
-    on: date,
-    stale: list[tuple[str, int, date | None]],
-) -> AdviceRow:
-    past = subject.past
-    p10, p90 = depletion_range(subject)
+def _row(computed: Computed, on: date, stale: list[tuple[str, int, date | None]]) -> AdviceRow:
+    subject, ledger = computed.subject, computed.ledger
+    past, p10, p90 = subject.past, computed.p10, computed.p90
     days = ledger.date[past:]
     outlook = Outlook(
         date=days,

@@ -1,6 +1,6 @@
 """Gather what a ledger rests on: for each block and season, a plan and its weather."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from datetime import date, timedelta
 from itertools import pairwise
@@ -36,8 +36,6 @@ HISTORY = 60
 USUAL_RUNG = 9
 TODAY = timedelta(days=1)
 """Ledgers close yesterday; water logged for today is already counted in the outlook."""
-AHEAD_SHARE = 0.27
-"""Standard uncertainty of a day's energy by the usual for the date (working value)."""
 
 
 @dataclass(frozen=True)
@@ -52,7 +50,6 @@ class Subject:
     crop: CropSeason
     plan: BlockPlan
     weather: BlockWeather
-    rn_share: Floats
     past: int
     """How many of the plan's days are past; the rest is the outlook."""
     last_irrigation: date | None
@@ -72,22 +69,20 @@ class FieldWeather:
     rh_min: Floats
     rung: NDArray[np.int8]
     rn: Floats
-    rn_share: Floats
     rain_measured: NDArray[np.bool_]
 
 
-def assemble(
-    session: Session, blocks: Sequence[int], through: date, since: date | None = None
-) -> list[Subject]:
-    """Subjects of blocks for every season that has days from `since` (None: any) to `through`.
+def assemble(session: Session, since: Mapping[int, date], through: date) -> list[Subject]:
+    """Subjects of blocks for every season that has days from the block's day of `since` on.
 
-    A season whose stations have no reference ET yet has no subject.
+    Ledgers run to `through`. A season whose stations have no reference ET yet has no subject.
     """
+    blocks = sorted(since)
     block_rows = {row.block_id: row for row in read_blocks(session, blocks)}
     chosen = [
         (row, crop)
         for row, crop in seasons_of(session, blocks)
-        if _start(row) <= through and (since is None or agronomy.as_date(crop.last_day) >= since)
+        if _start(row) <= through and agronomy.as_date(crop.last_day) >= since[row.block_id]
     ]
     if not chosen:
         return []
@@ -189,7 +184,6 @@ class _Weather:
             self.first,
             eto,
             rn,
-            np.divide(self._pick(energy, "rn_uncertainty"), rn),
             rung,
             ra,
             self._pick(station["rain"], "rain"),
@@ -219,7 +213,6 @@ def _completed(
     first: date,
     eto: Floats,
     rn: Floats,
-    rn_share: Floats,
     rung: NDArray[np.int8],
     ra: Floats,
     rain: Floats,
@@ -232,7 +225,6 @@ def _completed(
     energy, _ = fill_gaps(rn, ra[:days])
     known = np.flatnonzero(~np.isnan(filled))
     rung = np.where(was_filled, USUAL_RUNG, rung).astype(np.int8)
-    share = np.where(was_filled | ~np.isfinite(rn_share), AHEAD_SHARE, rn_share)
     ahead = ra[days:]
     return FieldWeather(
         first=first,
@@ -243,7 +235,6 @@ def _completed(
         rh_min=_steady(rh_min, 45.0),
         rung=np.r_[rung, np.full(HORIZON, USUAL_RUNG, np.int8)],
         rn=np.r_[energy, usual_ahead(energy, ra[:days], ahead)],
-        rn_share=np.r_[share, np.full(HORIZON, AHEAD_SHARE)],
         rain_measured=np.r_[~np.isnan(rain), np.zeros(HORIZON, np.bool_)],
     )
 
@@ -328,7 +319,6 @@ def _subject(
             rung=weather.rung[here],
             rn=weather.rn[here],
         ),
-        rn_share=weather.rn_share[here],
         past=min(days, (through - start).days + 1),
         last_irrigation=last_irrigation,
         rain_measured=measured,

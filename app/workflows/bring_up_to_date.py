@@ -1,5 +1,6 @@
 """The morning's work, and the work after any change: days, ledgers, advice, in one transaction."""
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from datetime import date, timedelta
 
@@ -10,7 +11,7 @@ from app.storage.database import Database
 from app.storage.tables import Advice, Block
 from app.workflows.advise import advise
 from app.workflows.assemble import assemble
-from app.workflows.recompute import due_ledgers, recompute_ledgers, recompute_stations
+from app.workflows.recompute import compute, due_ledgers, recompute_stations, write_ledgers
 
 BLOCKS_AT_A_TIME = 256
 
@@ -36,26 +37,22 @@ def up_to_date(session: Session, today: date) -> UpToDate:
     through = today - timedelta(days=1)
     days = recompute_stations(session)
     due = due_ledgers(session, through)
-    ledger_days = 0
-    for some in _batches(sorted(due)):
-        since = {block: due[block] for block in some}
-        subjects = assemble(session, some, through, since=min(since.values()))
-        ledger_days += recompute_ledgers(session, subjects, since)
-    advices = 0
-    for some in _batches(_to_advise(session, today, set(due))):
-        advices += advise(session, today, some)
+    ledger_days = advices = 0
+    since = dict.fromkeys(_unadvised(session, today), today) | due
+    for some in batched(sorted(since), BLOCKS_AT_A_TIME):
+        computed = compute(assemble(session, {block: since[block] for block in some}, through))
+        written = {block: due[block] for block in some if block in due}
+        ledger_days += write_ledgers(session, computed, written)
+        advices += advise(session, today, computed)
     return UpToDate(days, len(due), ledger_days, advices)
 
 
-def _to_advise(session: Session, today: date, touched: set[int]) -> list[int]:
-    """Blocks just recomputed, and those without advice this morning."""
-    advised = set(session.scalars(select(Advice.block_id).where(Advice.issued_on == today)))
-    every = set(session.scalars(select(Block.id)))
-    return sorted(touched | (every - advised))
+def _unadvised(session: Session, today: date) -> list[int]:
+    """Blocks without advice this morning."""
+    advised = select(Advice.block_id).where(Advice.issued_on == today)
+    return list(session.scalars(select(Block.id).where(Block.id.not_in(advised))))
 
 
-def _batches(blocks: list[int]) -> list[list[int]]:
-    return [
-        blocks[start : start + BLOCKS_AT_A_TIME]
-        for start in range(0, len(blocks), BLOCKS_AT_A_TIME)
-    ]
+def batched(blocks: list[int], size: int) -> Iterator[list[int]]:
+    """The list in parts of at most `size`."""
+    return (blocks[start : start + size] for start in range(0, len(blocks), size))

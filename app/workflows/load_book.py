@@ -21,7 +21,7 @@ from app.book.schema import (
     SeasonPart,
 )
 from app.storage import book as rows
-from app.storage.events import VOID, by_origin, head_of
+from app.storage.events import VOID, events_by_origin, head_of
 from app.storage.tables import (
     Block,
     Event,
@@ -36,6 +36,8 @@ from app.storage.tables import (
 from app.workflows import agronomy
 
 VARIABLES = ("energy", "temperature", "wind", "rain")
+ORIGIN = "book:"
+"""What the origin of an event begins with that a book brought."""
 WHOLE = "whole"
 """Key of the one block of a field without blocks."""
 
@@ -286,6 +288,8 @@ def _events(
         *(("rain", part) for part in book.rain),
     ]
     now = datetime.now(UTC)
+    said = events_by_origin(session, ORIGIN)
+    dirty: dict[int, date] = {}
     for kind, part in entries:
         named = _named(blocks, part)
         area = sum(block.area_ha for block in named)
@@ -294,7 +298,6 @@ def _events(
                 ordinals.get((kind, block.id, part.day), 0) + 1
             )
             amount, unit = _amount(part, block.area_ha / area)
-            origin = f"book:{part.field}/{block.key}/{kind}/{part.day}/{nth}"
             event = Event(
                 block_id=block.id,
                 kind=kind,
@@ -307,7 +310,13 @@ def _events(
                 who=who,
                 entered=now,
             )
-            loaded.count("events", _put_event(session, event, origin))
+            origin = f"{ORIGIN}{part.field}/{block.key}/{kind}/{part.day}/{nth}"
+            outcome = _put_event(session, event, origin, said.get(origin, []))
+            loaded.count("events", outcome)
+            if outcome != "same":
+                dirty[block.id] = min(part.day, dirty.get(block.id, part.day))
+    for number, day in dirty.items():
+        rows.dirty_blocks(session, [number], day)
 
 
 def _amount(part: IrrigationPart | RainPart, share: float) -> tuple[float, str]:
@@ -322,22 +331,19 @@ def _amount(part: IrrigationPart | RainPart, share: float) -> tuple[float, str]:
     return part.volume_m3 * share, "volume_m3"
 
 
-def _put_event(session: Session, event: Event, origin: str) -> str:
+def _put_event(session: Session, event: Event, origin: str, versions: list[Event]) -> str:
     """Add the event unless the book said the same before; a changed entry supersedes."""
-    versions = by_origin(session, origin)
     if not versions:
-        event.origin, outcome = origin, "added"
-    else:
-        last = versions[-1]
-        compared = ("amount", "unit", "purpose", "confirmation", "note")
-        if all(getattr(last, name) == getattr(event, name) for name in compared):
-            return "same"
-        head = head_of(session, last)
-        if head.kind == VOID:
-            return "same"
-        event.origin, event.supersedes = f"{origin}~{len(versions) + 1}", head.id
-        outcome = "changed"
+        event.origin = origin
+        session.add(event)
+        return "added"
+    last = versions[-1]
+    compared = ("amount", "unit", "purpose", "confirmation", "note")
+    if all(getattr(last, name) == getattr(event, name) for name in compared):
+        return "same"
+    head = head_of(session, last)
+    if head.kind == VOID:
+        return "same"
+    event.origin, event.supersedes = f"{origin}~{len(versions) + 1}", head.id
     session.add(event)
-    session.flush()
-    rows.dirty_blocks(session, [event.block_id], event.day)
-    return outcome
+    return "changed"

@@ -6,7 +6,8 @@ the date and are recomputed when the readings arrive.
 """
 
 import zlib
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator, Mapping
+from dataclasses import dataclass
 from datetime import date, timedelta
 from typing import Any
 
@@ -15,6 +16,7 @@ from sqlalchemy import select, update
 from sqlalchemy.orm import Session
 
 from app.intake import DayNote, aggregate, fold, unpack
+from app.science import Floats
 from app.science.energy.station_day import DailyWeather, StationDays, station_days
 from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletion
 from app.storage import book
@@ -147,38 +149,49 @@ def due_ledgers(session: Session, through: date) -> dict[int, date]:
     return due
 
 
-def recompute_ledgers(session: Session, subjects: list[Subject], since: dict[int, date]) -> int:
-    """Write the ledger rows of subjects from each block's day of `since` on; returns rows."""
-    plans = [subject.plan for subject in subjects]
-    ledgers = block_ledgers(plans, [subject.weather for subject in subjects])
+@dataclass(frozen=True)
+class Computed:
+    """A subject with its ledger and the p10 and p90 of its depletion, outlook included."""
+
+    subject: Subject
+    ledger: BlockLedger
+    p10: Floats
+    p90: Floats
+
+
+def compute(subjects: list[Subject]) -> list[Computed]:
+    """The ledgers of subjects and their ranges."""
+    ledgers = block_ledgers(
+        [subject.plan for subject in subjects], [subject.weather for subject in subjects]
+    )
+    return [
+        Computed(subject, ledger, *_range(subject))
+        for subject, ledger in zip(subjects, ledgers, strict=True)
+    ]
+
+
+def _range(subject: Subject) -> tuple[Floats, Floats]:
+    """The seed is of the block and its season, so that the same inputs give the same bytes and a
+    new day does not stir the days before."""
+    name = f"{subject.block.field_key}/{subject.block.block_key}/{subject.season.planting}"
+    seed = zlib.crc32(name.encode())
+    return ensemble_depletion(subject.plan, subject.weather, seed=seed, members=MEMBERS)
+
+
+def write_ledgers(session: Session, computed: Iterable[Computed], since: Mapping[int, date]) -> int:
+    """Write ledger rows from each block's day of `since` on; returns how many."""
     rows: list[dict[str, Any]] = []
-    for subject, ledger in zip(subjects, ledgers, strict=True):
-        p10, p90 = depletion_range(subject)
-        rows.extend(_ledger_rows(subject, ledger, p10, p90, since[subject.block.block_id]))
+    for one in computed:
+        first = since.get(one.subject.block.block_id)
+        if first is not None:
+            rows.extend(_ledger_rows(one, first))
     written = replace_ledger_days(session, since, rows)
     clear_dirty(session, sorted(since))
     return written
 
 
-def depletion_range(subject: Subject) -> tuple[Any, Any]:
-    """p10 and p90 of the depletion of a subject's days, the outlook's among them.
-
-    The seed is of the block and its season, so that the same inputs give the same bytes and a new
-    day does not stir the days before.
-    """
-    name = f"{subject.block.field_key}/{subject.block.block_key}/{subject.season.planting}"
-    return ensemble_depletion(
-        subject.plan,
-        subject.weather,
-        seed=zlib.crc32(name.encode()),
-        members=MEMBERS,
-        rn_share=subject.rn_share,
-    )
-
-
-def _ledger_rows(
-    subject: Subject, ledger: BlockLedger, p10: Any, p90: Any, since: date
-) -> Iterator[dict[str, Any]]:
+def _ledger_rows(computed: Computed, since: date) -> Iterator[dict[str, Any]]:
+    subject, ledger = computed.subject, computed.ledger
     columns: dict[str, list[Any]] = {}
     for name in LEDGER_COLUMNS:
         values = getattr(ledger, name)
@@ -186,7 +199,8 @@ def _ledger_rows(
             columns[name] = values.tolist()
         else:
             columns[name] = _numbers(values)
-    columns["depletion_p10_mm"], columns["depletion_p90_mm"] = _numbers(p10), _numbers(p90)
+    columns["depletion_p10_mm"] = _numbers(computed.p10)
+    columns["depletion_p90_mm"] = _numbers(computed.p90)
     for place in range(subject.past):
         day = agronomy.as_date(ledger.date[place])
         if day >= since:

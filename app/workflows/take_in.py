@@ -142,9 +142,13 @@ def discard(db: Database, intake_id: int, who: str) -> None:
 
 
 def apply(
-    db: Database, intake_id: int, who: str, today: date, progress: Progress | None = None
+    db: Database, intake_id: int, who: str, today: date | None, progress: Progress | None = None
 ) -> Applied:
-    """Take a previewed file in, whole; raises TakeInError, and then nothing is changed."""
+    """Take a previewed file in, whole; raises TakeInError, and then nothing is changed.
+
+    Ledgers and advice of `today` follow in the same transaction; with None they are left marked
+    as dirty, for whoever takes many files in and brings all up to date at the end.
+    """
     with db.write() as session:
         intake = _open(session, intake_id)
         station = intake.station
@@ -423,7 +427,7 @@ def _on(instants: Any, rows: Rows, name: str) -> Any:
 
 
 def _land(
-    session: Session, station: Station, intake: Intake, changed: list[date], today: date
+    session: Session, station: Station, intake: Intake, changed: list[date], today: date | None
 ) -> Applied:
     """Mark what a change of readings touches and bring it up to date.
 
@@ -432,7 +436,7 @@ def _land(
     blocks = 0
     if changed:
         book.dirty_station(session, station.id, changed[0] - timedelta(days=1))
-        blocks = up_to_date(session, today).blocks
+        blocks = up_to_date(session, today).blocks if today is not None else 0
     return Applied(False, intake.rows, intake.first_day, len(changed), blocks)
 
 
