@@ -1,0 +1,155 @@
+"""Intake: upload, mapping, preview, apply, undo, history."""
+
+from typing import Annotated
+
+from fastapi import APIRouter, Form, HTTPException, Query, Request, Response, UploadFile
+from fastapi.responses import RedirectResponse
+from starlette.concurrency import run_in_threadpool
+
+from app import wording
+from app.intake import IntakeError
+from app.storage import pages as store
+from app.storage import pages_station as store_station
+from app.storage.database import Database
+from app.web import intake_view as view
+from app.web.access import AsViewer
+from app.web.needs import AsDatabase, AsToday
+from app.web.render import page
+from app.workflows import take_in
+from app.workflows.take_in import TakeInError
+
+router = APIRouter()
+
+
+@router.get("/intake")
+def intakes(
+    request: Request, db: AsDatabase, station: Annotated[str, Query(max_length=80)] = ""
+) -> Response:
+    """Upload a file; what was uploaded before."""
+    return _start(request, db, station)
+
+
+def _start(request: Request, db: Database, station: str = "", error: str = "") -> Response:
+    with db.read() as session:
+        stations = store.stations(session)
+        history = store_station.intakes(session)
+    return page(
+        request,
+        "pages/intake.html",
+        422 if error else 200,
+        stations=stations,
+        chosen=station,
+        history=history,
+        states=wording.INTAKE_STATES,
+        error=error,
+    )
+
+
+@router.post("/intake")
+def upload(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    file: UploadFile | str = "",
+    station: Annotated[str, Form(max_length=80)] = "",
+) -> Response:
+    """Keep a file and preview it; nothing is taken in yet."""
+    if isinstance(file, str) or not file.filename:
+        return _start(request, db, station, "Choose a file first.")
+    try:
+        number = take_in.receive(db, station, file.filename, file.file, viewer.who)
+    except (TakeInError, IntakeError) as error:
+        return _start(request, db, station, str(error))
+    return RedirectResponse(f"/intake/{number}", status_code=303)
+
+
+@router.get("/intake/{intake_id}")
+def intake(request: Request, db: AsDatabase, intake_id: int) -> Response:
+    """One file: its columns, questions, problems, and what it would change."""
+    return _show(request, db, intake_id)
+
+
+def _show(request: Request, db: Database, intake_id: int, error: str = "") -> Response:
+    try:
+        preview = take_in.preview_of(db, intake_id)
+    except TakeInError as missing:
+        raise HTTPException(404, str(missing)) from None
+    lead, rest = view.headline(preview)
+    mapping = preview.mapping
+    return page(
+        request,
+        "pages/intake_file.html",
+        422 if error else 200,
+        p=preview,
+        lead=lead,
+        rest=rest,
+        effects=view.effects(preview),
+        open=preview.state == "previewed",
+        ready=preview.state == "previewed"
+        and not preview.message
+        and not any(question["blocking"] for question in preview.questions),
+        columns=view.columns(preview),
+        quantities=view.quantity_choices(),
+        orders=view.ORDERS,
+        row_times=view.ROW_TIMES,
+        delimiters=view.DELIMITERS,
+        steps=view.step_choices(mapping.interval_s if mapping else None),
+        terms={name: term for name, term in view.quantity_choices()},
+        problems=[(view.lines_of(item), item) for item in preview.problems],
+        severities=wording.SEVERITIES,
+        states=wording.INTAKE_STATES,
+        error=error,
+    )
+
+
+@router.post("/intake/{intake_id}/mapping")
+async def remap(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: int) -> Response:
+    """Preview again with corrected columns."""
+    form = await request.form(max_fields=5000)
+    values = {name: str(value) for name, value in form.multi_items()}
+
+    def work() -> Response:
+        try:
+            preview = take_in.preview_of(db, intake_id)
+            if preview.mapping is None:
+                return _show(request, db, intake_id, "This file has no columns to be corrected.")
+            take_in.remap(db, intake_id, view.corrected(preview.mapping, values), viewer.who)
+        except (TakeInError, IntakeError) as error:
+            return _show(request, db, intake_id, str(error))
+        return RedirectResponse(f"/intake/{intake_id}#preview", status_code=303)
+
+    return await run_in_threadpool(work)
+
+
+@router.post("/intake/{intake_id}/apply")
+def apply(
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int
+) -> Response:
+    """Take the file in, whole."""
+    try:
+        take_in.apply(db, intake_id, viewer.who, today)
+    except (TakeInError, IntakeError) as error:
+        return _show(request, db, intake_id, str(error))
+    return RedirectResponse(f"/intake/{intake_id}", status_code=303)
+
+
+@router.post("/intake/{intake_id}/undo")
+def undo(
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int
+) -> Response:
+    """Take the file out again."""
+    try:
+        take_in.undo(db, intake_id, viewer.who, today)
+    except (TakeInError, IntakeError) as error:
+        return _show(request, db, intake_id, str(error))
+    return RedirectResponse(f"/intake/{intake_id}", status_code=303)
+
+
+@router.post("/intake/{intake_id}/discard")
+def discard(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: int) -> Response:
+    """Put a previewed file away."""
+    try:
+        take_in.discard(db, intake_id, viewer.who)
+    except (TakeInError, IntakeError) as error:
+        return _show(request, db, intake_id, str(error))
+    return RedirectResponse("/intake", status_code=303)
