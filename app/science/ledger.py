@@ -1,6 +1,7 @@
 """From plans and weather to ledgers: the root-zone water balance of many blocks at once."""
 
 from collections.abc import Sequence
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,6 +24,9 @@ __all__ = [
 
 # Up to this many blocks plain floats are quicker than arrays (measured).
 SCALAR_BLOCKS = 3
+# Blocks stacked at a time, so that memory stays bounded.
+CHUNK = 4096
+WORDS = np.array(["late", "due", "soon", "wet", "easy"], dtype=object)
 # Days of the day's own ET to the limit, for the standing at a past day's close.
 DUE_DAYS, SOON_DAYS = 2, 5
 
@@ -37,15 +41,24 @@ def block_ledgers(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -
     """
     if len(plans) != len(weather):
         raise ValueError(f"{len(plans)} plans, but weather for {len(weather)}; give one each")
-    if not plans:
-        return []
+    ledgers: list[BlockLedger] = []
+    for first in range(0, len(plans), CHUNK):
+        part = slice(first, first + CHUNK)
+        ledgers += _together(plans[part], weather[part])
+    return ledgers
+
+
+def _together(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> list[BlockLedger]:
     stack = stack_plans(plans, weather)
     terms = stack.terms()
     run = balance_scalar if len(plans) <= SCALAR_BLOCKS else balance
-    columns = {
+    columns: dict[str, Any] = {
         name: np.ascontiguousarray(values.T)
         for name, values in _columns(stack, terms, run(terms)).items()
     }
+    columns["standing"] = close_standing(
+        columns["depletion_mm"], columns["limit_mm"], columns["etc_potential_mm"]
+    )
     return [
         _ledger(plan, sky, float(terms.depletion[b]), {k: v[b] for k, v in columns.items()})
         for b, (plan, sky) in enumerate(zip(plans, weather, strict=True))
@@ -98,7 +111,7 @@ def _limit(stack: Stack, taw: Floats, raw: Floats) -> Floats:
 
 
 def _ledger(
-    plan: BlockPlan, sky: BlockWeather, opening: float, columns: dict[str, Floats]
+    plan: BlockPlan, sky: BlockWeather, opening: float, columns: dict[str, Any]
 ) -> BlockLedger:
     days = plan.days
     own = {name: values[:days] for name, values in columns.items()}
@@ -114,7 +127,6 @@ def _ledger(
         application_loss_mm=gross - own["irrigation_net_mm"],
         depletion_p10_mm=np.full(days, np.nan),
         depletion_p90_mm=np.full(days, np.nan),
-        standing=close_standing(own["depletion_mm"], own["limit_mm"], own["etc_potential_mm"]),
         **own,
     )
 
@@ -122,19 +134,16 @@ def _ledger(
 def close_standing(depletion: Floats, limit: Floats, etc: Floats) -> NDArray[np.object_]:
     """Standing at each day's close, its own unstressed ET repeated and every day a chance.
 
-    depletion, limit, etc (days,) [mm]. Returns late, due, soon, wet or easy, in this order of
+    depletion, limit, etc [mm], one shape. Returns late, due, soon, wet or easy, in this order of
     precedence; NaN gives easy.
     """
-    choices = [
-        (depletion > limit, "late"),
-        (depletion + DUE_DAYS * etc > limit, "due"),
-        (depletion + SOON_DAYS * etc > limit, "soon"),
-        (depletion <= 0.0, "wet"),
+    holds = [
+        depletion > limit,
+        depletion + DUE_DAYS * etc > limit,
+        depletion + SOON_DAYS * etc > limit,
+        depletion <= 0.0,
     ]
-    standing = np.full(depletion.shape, "easy", dtype=object)
-    for holds, word in reversed(choices):
-        standing[holds] = word
-    return standing
+    return np.asarray(WORDS[np.select(holds, range(4), default=4)])
 
 
 def closure_error(ledger: BlockLedger) -> float:

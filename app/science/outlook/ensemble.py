@@ -1,12 +1,16 @@
 """The range of a ledger's depletion: the same balance under many plausible inputs."""
 
+from dataclasses import replace
+
 import numpy as np
 
 from app.science import Floats
 from app.science.energy.ladder import RUNGS, rn_uncertainty
 from app.science.soil.balance import Blocks, Days, Terms, balance
 from app.science.soil.block import BlockPlan, BlockWeather
+from app.science.soil.root_zone import P_ETC, P_LEAST, P_MOST, P_SLOPE
 from app.science.soil.stack import stack_plans
+from app.science.soil.terms import Supplies
 
 # Standard deviations of the season-long factors, and of rain on a wet day (working values).
 KC_SHARE, TAW_SHARE, EFFICIENCY_SHARE = 0.10, 0.10, 0.08
@@ -47,7 +51,8 @@ def ensemble_depletion(
     season = _centred(draw.standard_normal((5, members)))
     opening = np.concatenate(([0.5], draw.random(members)))
     daily = _centred(draw.standard_normal((plan.days, 2, members)))
-    base = stack_plans([plan], [weather]).terms()
+    stack = stack_plans([plan], [weather])
+    base = stack.terms()
     kc = _factor(KC_SHARE * season[0])
     taw = _factor(TAW_SHARE * season[1])
     efficiency = _efficiency(plan, _factor(EFFICIENCY_SHARE * season[2]))
@@ -58,10 +63,10 @@ def ensemble_depletion(
     if rain_members is not None:
         told = _with_median(rain_members, weather.rain)
         rain = np.where(np.isnan(told), rain, told)
-    terms = _members(base, kc * energy, taw, efficiency, rain)
+    terms = _members(base, stack.supplies, kc * energy, taw, efficiency, rain)
     if initial_unknown:
-        raw = np.clip(base.blocks.p_base[0] - 0.2, 0.1, 0.8) * base.days.taw[0, 0] * taw
-        terms = _opened(terms, opening * raw)
+        p = np.clip(base.blocks.p_base[0] - P_SLOPE * P_ETC, P_LEAST, P_MOST)
+        terms = replace(terms, depletion=opening * p * terms.days.taw[0])
     depletion = balance(terms).depletion
     low, high = np.percentile(depletion, [LOW, HIGH], axis=1)
     return np.minimum(low, depletion[:, 0]), np.maximum(high, depletion[:, 0])
@@ -121,15 +126,21 @@ def _rain(rain: Floats, distance_km: float, season: Floats, daily: Floats) -> Fl
     return np.where(rain[:, None] > 0.0, np.maximum(field, 0.0), 0.0)
 
 
-def _members(base: Terms, demand: Floats, taw: Floats, efficiency: Floats, rain: Floats) -> Terms:
+def _members(
+    base: Terms,
+    supplies: Supplies,
+    demand: Floats,
+    taw: Floats,
+    efficiency: Floats,
+    rain: Floats,
+) -> Terms:
     """The one block's terms, once for each member."""
     day, shape = base.days, rain.shape
     roots = base.blocks.roots[0]
-    irrigation = day.wet - day.rain * roots  # and capillary rise, which is nothing or small
     concentrated = day.surface - day.rain
     days = Days(
         rain=rain,
-        wet=rain * roots + irrigation * efficiency,
+        wet=rain * roots + supplies.irrigation * efficiency + supplies.capillary_rise,
         surface=rain + concentrated * efficiency,
         transpiration=day.transpiration * demand,
         evaporation=day.evaporation * demand,
@@ -151,8 +162,3 @@ def _members(base: Terms, demand: Floats, taw: Floats, efficiency: Floats, rain:
         has_slow_drainage=base.has_slow_drainage,
         has_correction=base.has_correction,
     )
-
-
-def _opened(terms: Terms, depletion: Floats) -> Terms:
-    values = {name: getattr(terms, name) for name in vars(terms)}
-    return Terms(**{**values, "depletion": depletion})

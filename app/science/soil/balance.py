@@ -22,6 +22,9 @@ from app.science.soil.runoff import ABSTRACTION
 # Blocks worked on at a time, so that a day's arrays stay in the processor's cache.
 CHUNK = 4096
 
+# What a branch that no block uses gives; the arrays hold zeros already.
+UNUSED = 0.0
+
 
 class Blocks(NamedTuple):
     """What stays the same all season, each (blocks,)."""
@@ -117,7 +120,7 @@ def _day(
     subsoil = subsoil - growth
     depletion = depletion + growth
     # Water comes in.
-    runoff: Any = 0.0
+    runoff: Any = UNUSED
     wet, surface = day.wet, day.surface
     if terms.has_runoff:
         dryness = lo(hi((layer - block.wet_at) / block.wet_span, 0.0), 1.0)
@@ -128,7 +131,7 @@ def _day(
         surface = surface - runoff
     depletion = depletion - wet
     layer = hi(layer - surface, 0.0)
-    percolation: Any = 0.0
+    percolation: Any = UNUSED
     if terms.drain_before_et:
         drained = hi(depletion, 0.0)
         percolation = drained - depletion
@@ -162,7 +165,7 @@ def _day(
             depletion = drained
     subsoil = hi(subsoil - percolation, 0.0)
     # A reading corrects the close, within what the soil can hold.
-    correction: Any = 0.0
+    correction: Any = UNUSED
     if terms.has_correction:
         wettest = -(day.saturation * (block.drainage_days > 0.0))
         driest = hi(depletion, taw)
@@ -196,6 +199,7 @@ def balance(terms: Terms) -> Balance:
         part = slice(first, min(first + CHUNK, blocks))
         block = Blocks(*(values[part] for values in terms.blocks))
         columns = [values[:, part] for values in terms.days]
+        rows = [column[:, part] for column in out]
         state = (
             terms.depletion[part],
             terms.subsoil[part],
@@ -203,10 +207,11 @@ def balance(terms: Terms) -> Balance:
             np.zeros(part.stop - part.start),
         )
         for i in range(days):
-            day = Days(*(values[i] for values in columns))
+            day = Days(*[values[i] for values in columns])
             state, result = _day(np.minimum, np.maximum, terms, block, day, state)
-            for row, values in zip(out, result, strict=True):
-                row[i, part] = values
+            for row, values in zip(rows, result, strict=True):
+                if values is not UNUSED:
+                    row[i] = values
     return Balance(**dict(zip(COLUMNS, out, strict=True)))
 
 
