@@ -38,7 +38,8 @@ def civil_to_utc(local: Instants, name: str) -> Civil:
     """UTC of civil local seconds, in file order; `local` and the result have shape (rows,).
 
     Where the clock was put back, the hour that comes twice is told apart by the order of the
-    rows: the second round begins when the clock does not run on. A file newest first is understood.
+    rows: the second round begins when the clock does not run on, or where only it continues the
+    usual step. A file newest first is understood.
     """
     if local.size == 0:
         return Civil(local, np.zeros(0, bool), np.zeros(0, bool))
@@ -98,8 +99,10 @@ def _resolve(
     # The clock face of the change itself, before it is put forward, is that instant: no gap.
     no_such_hour = gap & (local > early[coming])
     twice = between & put_back
+    steps = np.diff(local)
+    step = int(np.median(steps[steps > 0])) if np.any(steps > 0) else 0
     for row in np.flatnonzero(twice):
-        first = local[row] - before[coming[row]]
-        ran_on = row == 0 or utc[row - 1] < first
-        utc[row] = first if ran_on else local[row] - after[coming[row]]
+        first, second = local[row] - before[coming[row]], local[row] - after[coming[row]]
+        last = utc[row - 1] if row else first - step
+        utc[row] = first if last < first and second - last != step else second
     return utc, no_such_hour, twice

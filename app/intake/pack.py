@@ -89,11 +89,12 @@ def _code_column(
     absent = np.isnan(values)
     kinds = np.full(starts.size, _AS_FLOAT, np.int8)
     coded = np.full(values.size, _ABSENT, np.int32)
-    minus_zero = np.signbit(values) & (values == 0.0)
+    codable = (np.abs(values) < _LARGEST) & ~(np.signbit(values) & (values == 0.0))
+    candidates = np.where(codable, values, 0.0)
     for decimals in range(_DECIMALS):
         scale = 10.0**decimals
-        whole = np.rint(values * scale)
-        fits = ((whole / scale == values) & (np.abs(whole) < _LARGEST) & ~minus_zero) | absent
+        whole = np.rint(candidates * scale)
+        fits = (codable & (whole / scale == values) & (np.abs(whole) < _LARGEST)) | absent
         exact = np.logical_and.reduceat(fits, starts) & (kinds == _AS_FLOAT)
         kinds[exact] = decimals
         rows = np.repeat(exact, sizes) & ~absent

@@ -5,7 +5,7 @@ from typing import BinaryIO
 
 import numpy as np
 
-from app.intake.cells import DELIMITERS, split_line
+from app.intake.cells import DELIMITERS, kind_of, split_line
 from app.intake.chunk import Chunk, Plan, parse, plan_of
 from app.intake.civil import civil_to_utc
 from app.intake.dates import NOT_A_DATE, OK, WHY, Times, read_times
@@ -179,6 +179,7 @@ def _is_cut(before: bytes, last: bytes, plan: Plan) -> bool:
         return False
     if fields[-1] == "":
         return all(ends)
+    ends = [end for end in ends if kind_of(end) == "number"]
     decimals = {len(end.rpartition(plan.decimal)[2]) if plan.decimal in end else 0 for end in ends}
     if len(decimals) != 1 or decimals == {0}:
         return False

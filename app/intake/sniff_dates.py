@@ -48,6 +48,7 @@ _BOUNDS = {
     "hour": (0, 24), "minute": (0, 59), "hhmm": (0, 2400), "second": (0, 59),
 }  # fmt: skip
 _TEXT_ROLES = ("instant", "date", "time")
+_FEW_ODD = 0.9  # of the cells must be as expected; the rest may be junk
 CLOCK_ROLES = ("instant", "time", "hhmm", "hour", "serial", "epoch")
 
 
@@ -137,20 +138,20 @@ def _named_role(name: str, cells: list[str]) -> TimeRole | None:
         if not rule.match(name):
             continue
         low, high = _BOUNDS[role]
-        if numbers.min() < low or numbers.max() > high:
+        if np.mean((numbers >= low) & (numbers <= high)) < _FEW_ODD:
             continue
-        if role == "hhmm" and numbers.max() <= 24:
+        if role == "hhmm" and np.mean(numbers <= 24) >= _FEW_ODD:
             role = "hour"
         return role
     return None
 
 
 def _numbers(cells: list[str]) -> Floats | None:
-    given = [cell.replace(",", ".") for cell in cells if kind_of(cell) != "missing"]
-    try:
-        return np.array([float(cell) for cell in given] or [np.nan])
-    except ValueError:
-        return None
+    """Figures of a column; None when more than a few cells are none."""
+    given = [cell for cell in cells if kind_of(cell) != "missing"]
+    values = np.array([_number(cell) for cell in given if kind_of(cell) == "number"])
+    values = values[np.isfinite(values)]
+    return values if values.size and values.size >= _FEW_ODD * len(given) else None
 
 
 def _from_named_parts(columns: list[list[str]], words: list[str]) -> tuple[TimeLayout, str] | None:
@@ -182,11 +183,12 @@ def _from_one_number(columns: list[list[str]], words: list[str]) -> tuple[TimeLa
     for i in [*named, *([0] if 0 not in named else [])]:
         cells = columns[i][:200]
         values = _numbers(cells) if cells else None
-        if values is None or not np.isfinite(values).all():
+        if values is None:
             continue
         low, high = float(values.min()), float(values.max())
-        if all(_RUN_ON.fullmatch(cell) for cell in cells):
-            role: TimeRole = "date" if len(cells[0]) == 8 else "instant"
+        running_on = [cell for cell in cells if _RUN_ON.fullmatch(cell)]
+        if len(running_on) >= _FEW_ODD * len(cells):
+            role: TimeRole = "date" if len(running_on[0]) == 8 else "instant"
             return _layout((i, role)), "figures run on as year, month, day"
         rising = np.count_nonzero(np.diff(values) > 0) >= 0.8 * max(values.size - 1, 0)
         if not rising or (i not in named and values.size < 5):
@@ -207,7 +209,7 @@ def _from_unnamed_parts(table: Table, columns: list[list[str]]) -> tuple[TimeLay
             values = _numbers(columns[i]) if columns[i] else None
             low, high = _BOUNDS[role]
             fitting &= values is not None and bool(
-                np.all((values >= low) & (values <= high) & (values % 1 == 0))
+                np.mean((values >= low) & (values <= high) & (values % 1 == 0)) >= _FEW_ODD
             )
         if not fitting:
             continue
@@ -240,9 +242,8 @@ def _number(cell: str) -> float:
 
 
 def usual_step(times: Instants) -> tuple[int, float]:
-    """Most common step between rows [s] and its share of all steps; (0, 0) with one row."""
-    steps = np.abs(np.diff(times))
-    steps = steps[steps > 0]
+    """Most common step between instants [s] and its share of all; (0, 0) with one instant."""
+    steps = np.diff(np.unique(times))
     if steps.size == 0:
         return 0, 0.0
     step, count = Counter(steps.tolist()).most_common(1)[0]

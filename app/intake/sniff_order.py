@@ -98,8 +98,9 @@ def _by_steps(table: Table, layout: TimeLayout, orders: tuple[DateOrder, ...]) -
     even: dict[DateOrder, float] = {}
     for order in orders:
         times = sample_times(table, layout.model_copy(update={"order": order}))
-        step, share = usual_step(times)
-        even[order] = share * times.size * (1.0 if 0 < step <= 86400 else 0.5)
+        step, _ = usual_step(times)
+        following = np.count_nonzero(np.diff(times) == step) / max(times.size - 1, 1)
+        even[order] = following * times.size * (1.0 if 0 < step <= 86400 else 0.5)
     suggested = max(orders, key=lambda order: even[order])
     why = "no date in the file has a figure above 12 that would tell day from month"
     if sorted(even.values())[-1] > 1.2 * sorted([0.0, *even.values()])[-2]:
