@@ -2,8 +2,8 @@
 
 from fastapi import APIRouter
 
-from app.web.pages import enter, fields, intake, rounds, stations
+from app.web.pages import enter, fields, intake, methods, rounds, stations
 
 router = APIRouter(include_in_schema=False)
-for part in (enter, rounds, fields, stations, intake):
+for part in (enter, rounds, fields, stations, intake, methods):
     router.include_router(part.router)
