@@ -1,8 +1,37 @@
-"""The JSON API, version 1."""
+"""The JSON API, version 1: the same things as the pages."""
 
-from fastapi import APIRouter
+from typing import Any
 
+from fastapi import APIRouter, Depends, Response
+
+from app.web.api import events, fields, intakes, stations
+from app.web.api.schemas import Problem
 from app.wording import CAUTION, CAUTION_TITLE
 
 DESCRIPTION = f"{CAUTION_TITLE} {CAUTION}"
-router = APIRouter(prefix="/api/v1")
+PROBLEMS: dict[int | str, dict[str, Any]] = {
+    status: {
+        "model": Problem,
+        "description": says,
+        "content": {"application/problem+json": {}},
+    }
+    for status, says in {
+        401: "Nobody has entered (demo mode).",
+        403: "Not open to this viewer, or sent from another site.",
+        404: "There is no such thing, or it is not the viewer's.",
+        422: "Something has to be put right first.",
+    }.items()
+}
+
+
+def caution(answer: Response) -> None:
+    """The caution travels with every answer."""
+    answer.headers["Rillbook-Caution"] = DESCRIPTION.encode("ascii", "ignore").decode()
+
+
+PARTS = (fields.router, events.router, stations.router, intakes.router)
+"""Each carries the whole path of its routes, so that the table of access can name them."""
+
+router = APIRouter(responses=PROBLEMS, dependencies=[Depends(caution)])
+for part in PARTS:
+    router.include_router(part)

@@ -1,0 +1,142 @@
+"""Rounds, fields, ledgers and advice."""
+
+from datetime import date
+from typing import Annotated, Any
+
+from fastapi import APIRouter, Query
+
+from app import wording
+from app.storage import pages as store
+from app.storage import pages_field as store_field
+from app.storage.pages import RoundsRow
+from app.web.access import AsViewer
+from app.web.api.schemas import AdviceOut, FieldOut, LedgerOut, RoundsField, RoundsOut
+from app.web.managed import managed, one_a_field
+from app.web.needs import AsDatabase, AsToday
+from app.web.pages.fields import choose, own_blocks
+from app.web.rounds_view import urgency
+
+router = APIRouter(prefix="/api/v1")
+ADVICE = (
+    "number", "standing", "unsure", "day", "net_mm", "gross_mm", "hours", "volume_m3",
+    "limit_day", "reason", "depletion_mm", "depletion_p10_mm", "depletion_p90_mm", "limit_mm",
+    "taw_mm", "change_mm", "rung", "data_until",
+)  # fmt: skip
+
+
+def advice_of(row: RoundsRow) -> dict[str, Any] | None:
+    """The advice of a row, None without one."""
+    return {name: getattr(row, name) for name in ADVICE} if row.number is not None else None
+
+
+@router.get("/rounds", tags=["rounds"])
+def rounds(db: AsDatabase, viewer: AsViewer, today: AsToday) -> RoundsOut:
+    """Every field with its advice of the morning, most urgent first."""
+    with db.read() as session:
+        morning = store.last_morning(session, today)
+        rows = [row for row, _ in one_a_field(store.rounds_rows(session, morning, viewer.farm))]
+    return RoundsOut(
+        today=today,
+        morning=morning,
+        caution=wording.CAUTION,
+        fields=[
+            RoundsField(
+                key=row.field_key,
+                name=row.field_name,
+                farm=row.farm_key,
+                area_ha=row.area_ha,
+                block=row.block_key,
+                crop=row.crop,
+                planting=row.planting,
+                advice=advice_of(row),
+            )
+            for row in sorted(rows, key=urgency)
+        ],
+    )
+
+
+@router.get("/fields", tags=["fields"])
+def fields(db: AsDatabase, viewer: AsViewer, today: AsToday) -> list[FieldOut]:
+    """Every field of the book."""
+    with db.read() as session:
+        rows = store.rounds_rows(session, None, viewer.farm)
+        sources = store.current(store.sources(session, today, viewer.farm))
+    return [_field(rows, sources, key) for key in dict.fromkeys(row.field_key for row in rows)]
+
+
+@router.get("/fields/{key}", tags=["fields"])
+def field(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str) -> FieldOut:
+    """One field of the book."""
+    own_blocks(db, viewer, key)
+    with db.read() as session:
+        rows = store.rounds_rows(session, None, viewer.farm, key)
+        sources = store.current(store.sources(session, today, viewer.farm))
+    return _field(rows, sources, key)
+
+
+def _field(
+    rows: list[RoundsRow], sources: dict[tuple[int, str], store.SourceRow], key: str
+) -> FieldOut:
+    blocks = [row for row in rows if row.field_key == key]
+    first = blocks[0]
+    return FieldOut(
+        key=key,
+        name=first.field_name,
+        farm=first.farm_key,
+        area_ha=first.area_ha,
+        managed_by=first.managed_by,
+        blocks=[
+            {"key": row.block_key, "name": row.block_name, "system": row.system_name}
+            for row in blocks
+        ],
+        sources={
+            variable: source.station_key
+            for (number, variable), source in sources.items()
+            if number == first.field_id
+        },
+    )
+
+
+@router.get("/fields/{key}/ledger", tags=["fields"])
+def ledger(
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: str,
+    block: str | None = None,
+    first: Annotated[date | None, Query(description="first day")] = None,
+    last: Annotated[date | None, Query(description="last day")] = None,
+) -> LedgerOut:
+    """The daily root-zone water balance of a block, every term."""
+    blocks = own_blocks(db, viewer, key)
+    with db.read() as session:
+        if block is None:
+            morning = store.last_morning(session, today)
+            block = managed(store.rounds_rows(session, morning, viewer.farm, key)).block_key
+        chosen = choose(blocks, block)
+        days = store_field.ledger_days(session, chosen.id, first, last)
+    hidden = ("block_id", "season_id")
+    return LedgerOut(
+        field=key,
+        block=chosen.key,
+        caution=wording.CAUTION,
+        days=[{name: day[name] for name in day if name not in hidden} for day in days],
+    )
+
+
+@router.get("/fields/{key}/advice", tags=["fields"])
+def advice(
+    db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, block: str | None = None
+) -> list[AdviceOut]:
+    """The advice that stands for each block (or one), with its outlook."""
+    blocks = own_blocks(db, viewer, key)
+    chosen = blocks if block is None else [choose(blocks, block)]
+    with db.read() as session:
+        found = [store_field.last_advice(session, item.id, today) for item in chosen]
+    return [
+        AdviceOut.model_validate(
+            {**row, "says": wording.reason(row["reason"], row["figures"], row["day"], today)}
+        )
+        for row in found
+        if row is not None
+    ]
