@@ -2,6 +2,7 @@
 
 import json
 import os
+import socket
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
@@ -96,6 +97,8 @@ def demo(
     """Fill a throw-away database with the demo basin and serve it."""
     from app.demo import run_demo
 
+    if serve_it:
+        _must_be_free(port)
     run_demo(port, serve_it)
 
 
@@ -108,9 +111,21 @@ def serve(
 
     from app.main import create_app
 
+    _must_be_free(port)
     with _database() as (db, settings, _):
         print(f"Rillbook answers on http://127.0.0.1:{port} (this machine only; no accounts yet).")
         uvicorn.run(create_app(settings, db), host="127.0.0.1", port=port, log_level="warning")
+
+
+def _must_be_free(port: int) -> None:
+    with socket.socket() as probe:
+        probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        try:
+            probe.bind(("127.0.0.1", port))
+        except (OSError, OverflowError):
+            raise InputError(
+                f"port {port} on 127.0.0.1 cannot be had; choose another with --port"
+            ) from None
 
 
 @app.command()

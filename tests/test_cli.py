@@ -4,6 +4,7 @@ import csv
 import io
 import json
 import os
+import socket
 import subprocess
 import sys
 from datetime import timedelta
@@ -140,6 +141,15 @@ def test_what_a_file_leaves_open_is_asked_and_answered_by_a_mapping(shell: Shell
     applied = shell.json("intake", "bench", str(path), "--mapping", str(folder / "mapping.json"))
     assert applied["rows"] == 10
     assert applied["first_day"] == "2026-05-01"
+
+
+def test_a_port_that_is_taken_is_told_before_anything_is_filled(shell: Shell) -> None:
+    with socket.socket() as taken:
+        taken.bind(("127.0.0.1", 0))
+        taken.listen()
+        port = taken.getsockname()[1]
+        assert f"port {port}" in shell.run("demo", "--port", str(port), code=1).stderr
+        assert f"port {port}" in shell.run("serve", "--port", str(port), code=1).stderr
 
 
 def test_wrong_settings_say_how_to_mend_them(tmp_path: Path) -> None:
