@@ -5,6 +5,7 @@ command line sees to that) is advisor and admin in one. In demo mode three ways 
 sign-in, set a cookie; a grower's cookie carries the one farm that every page and answer keeps to.
 """
 
+import re
 from dataclasses import dataclass
 from typing import Annotated, Literal
 
@@ -13,6 +14,7 @@ from fastapi.responses import RedirectResponse
 
 Role = Literal["advisor", "grower", "admin"]
 COOKIE = "rillbook_way_in"
+KEY = re.compile(r"[a-z0-9-]{1,80}")
 SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
 
 ANYBODY: frozenset[str] = frozenset({"nobody", "advisor", "grower", "admin"})
@@ -96,7 +98,7 @@ def viewer_of(request: Request) -> Viewer:
     role, _, farm = request.cookies.get(COOKIE, "").partition(".")
     if role in STAFF and not farm:
         return Viewer(role)
-    if role == "grower" and farm:
+    if role == "grower" and KEY.fullmatch(farm):
         return Viewer("grower", farm)
     return Viewer("nobody")
 

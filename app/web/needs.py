@@ -4,7 +4,8 @@ import math
 from datetime import date
 from typing import Annotated
 
-from fastapi import Depends, Request
+from fastapi import Depends, Path, Request
+from pydantic import AfterValidator
 
 from app.storage.database import Database
 from app.web.problems import RefusedError
@@ -27,6 +28,18 @@ def get_today(request: Request) -> date:
 
 
 AsToday = Annotated[date, Depends(get_today)]
+
+AsKey = Annotated[str, Path(max_length=80, pattern="^[a-z0-9-]+$")]
+AsNumber = Annotated[int, Path(ge=1, le=2**31 - 1)]
+AsDay = Annotated[date, Path(ge=date(1900, 1, 1), le=date(2200, 1, 1))]
+
+
+def without_nul(text: str) -> str:
+    """A text without the one character that no database takes."""
+    return text.replace("\0", "")
+
+
+Clean = Annotated[str, AfterValidator(without_nul)]
 
 
 def read_number(text: str, field: str) -> float:

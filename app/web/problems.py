@@ -97,10 +97,14 @@ def _validation(request: Request, error: Exception) -> Response:
         }
         for item in error.errors()
     ]
+    nowhere = f"Nothing is kept at {request.url.path[:120]}."
+    in_path = any(item["loc"][0] == "path" for item in error.errors())
     if is_api(request):
+        if in_path:
+            return problem(404, nowhere, found)
         return problem(422, f"{LOST_NOTHING} See each of `errors`.", found)
-    if request.method == "GET" and request.scope.get("path_params"):
-        return error_page(request, 404, f"Nothing is kept at {request.url.path[:120]}.")
+    if in_path:
+        return error_page(request, 404, nowhere)
     lines = [f"{item['field']} is {item['value']!r}: {item['remedy']}." for item in found]
     return error_page(request, 422, LOST_NOTHING, lines)
 

@@ -7,6 +7,7 @@ from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from app.web.access import SAFE
 from app.web.problems import refusal
+from app.wording import CAUTION, CAUTION_TITLE
 
 HOSTS = frozenset({"127.0.0.1", "localhost", "[::1]"})
 POLICY = "; ".join(
@@ -21,6 +22,7 @@ POLICY = "; ".join(
         "frame-ancestors 'none'",
     )
 )
+CAUTION_HEADER = f"{CAUTION_TITLE} {CAUTION}".replace("’", "'")
 HEADERS = {
     "Content-Security-Policy": POLICY,
     "X-Content-Type-Options": "nosniff",
@@ -67,6 +69,8 @@ class Safety:
                 for name, value in HEADERS.items():
                     headers.setdefault(name, value)
                 headers.setdefault("Cache-Control", "no-store")
+                if scope["path"].startswith("/api/"):
+                    headers["Rillbook-Caution"] = CAUTION_HEADER
             await send(message)
 
         headers = Headers(scope=scope)

@@ -2,7 +2,7 @@
 
 from typing import Any
 
-from fastapi import APIRouter, Depends, Response
+from fastapi import APIRouter
 
 from app.web.api import events, fields, intakes, stations
 from app.web.api.schemas import Problem
@@ -24,14 +24,9 @@ PROBLEMS: dict[int | str, dict[str, Any]] = {
 }
 
 
-def caution(answer: Response) -> None:
-    """The caution travels with every answer."""
-    answer.headers["Rillbook-Caution"] = DESCRIPTION.encode("ascii", "ignore").decode()
-
-
 PARTS = (fields.router, events.router, stations.router, intakes.router)
 """Each carries the whole path of its routes, so that the table of access can name them."""
 
-router = APIRouter(responses=PROBLEMS, dependencies=[Depends(caution)])
+router = APIRouter(responses=PROBLEMS)
 for part in PARTS:
     router.include_router(part)

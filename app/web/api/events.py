@@ -8,7 +8,7 @@ from fastapi import APIRouter, Query, Response
 from app.storage import pages as store
 from app.web.access import AsViewer
 from app.web.api.schemas import EventChange, EventIn, EventOut, Logged
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsKey, AsNumber, AsToday, Clean
 from app.web.pages.fields import own_blocks, own_event
 from app.web.problems import RefusedError
 
@@ -20,7 +20,7 @@ def events(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     since: Annotated[date | None, Query(description="a year back when not given")] = None,
 ) -> list[EventOut]:
     """The entries that stand, newest day first."""
@@ -38,7 +38,7 @@ def _plain(row: store.EventRow) -> dict[str, Any]:
 
 
 @router.post("/fields/{key}/events", status_code=201)
-def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, event: EventIn) -> Logged:
+def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, event: EventIn) -> Logged:
     """Log an irrigation, or rain of the field's own gauge (`rain_mm`)."""
     from app.workflows.log_event import EventError, log_irrigation, log_rain
 
@@ -60,7 +60,12 @@ def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, event: Event
 
 @router.put("/fields/{key}/events/{event_id}")
 def correct(
-    db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, event_id: int, event: EventChange
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: AsKey,
+    event_id: AsNumber,
+    event: EventChange,
 ) -> Logged:
     """Put a corrected entry in place of one; the old one stays in the history."""
     from app.workflows.log_event import EventError, correct_event
@@ -81,9 +86,9 @@ def delete(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
-    event_id: int,
-    token: Annotated[str, Query(min_length=4, max_length=80)],
+    key: AsKey,
+    event_id: AsNumber,
+    token: Annotated[Clean, Query(min_length=4, max_length=80)],
 ) -> Response:
     """Delete an entry: it no longer counts, and stays in the history."""
     from app.workflows.log_event import EventError, void_event

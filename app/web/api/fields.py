@@ -12,7 +12,7 @@ from app.storage.pages import RoundsRow
 from app.web.access import AsViewer
 from app.web.api.schemas import AdviceOut, FieldOut, LedgerOut, RoundsField, RoundsOut
 from app.web.managed import managed, one_a_field
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.pages.fields import choose, own_blocks
 from app.web.rounds_view import urgency
 
@@ -65,7 +65,7 @@ def fields(db: AsDatabase, viewer: AsViewer, today: AsToday) -> list[FieldOut]:
 
 
 @router.get("/fields/{key}", tags=["fields"])
-def field(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str) -> FieldOut:
+def field(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey) -> FieldOut:
     """One field of the book."""
     own_blocks(db, viewer, key)
     with db.read() as session:
@@ -102,7 +102,7 @@ def ledger(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     block: str | None = None,
     first: Annotated[date | None, Query(description="first day")] = None,
     last: Annotated[date | None, Query(description="last day")] = None,
@@ -126,7 +126,7 @@ def ledger(
 
 @router.get("/fields/{key}/advice", tags=["fields"])
 def advice(
-    db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, block: str | None = None
+    db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, block: str | None = None
 ) -> list[AdviceOut]:
     """The advice that stands for each block (or one), with its outlook."""
     blocks = own_blocks(db, viewer, key)

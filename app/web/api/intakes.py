@@ -10,7 +10,7 @@ from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web.access import AsViewer
 from app.web.api.schemas import AppliedOut, IntakeOut, PreviewOut
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsNumber, AsToday, Clean, without_nul
 from app.web.problems import RefusedError
 from app.workflows import take_in
 from app.workflows.take_in import TakeInError
@@ -19,7 +19,7 @@ router = APIRouter(prefix="/api/v1", tags=["intakes"])
 
 
 @router.get("/intakes")
-def intakes(db: AsDatabase, station: str | None = None) -> list[IntakeOut]:
+def intakes(db: AsDatabase, station: Clean | None = None) -> list[IntakeOut]:
     """The last uploaded files, newest first."""
     with db.read() as session:
         rows = store_station.intakes(session, station=station)
@@ -43,19 +43,21 @@ def intakes(db: AsDatabase, station: str | None = None) -> list[IntakeOut]:
 def upload(
     db: AsDatabase,
     viewer: AsViewer,
-    station: Annotated[str, Form(max_length=80)],
+    station: Annotated[Clean, Form(max_length=80)],
     file: Annotated[UploadFile, File()],
 ) -> PreviewOut:
     """Keep a file and preview it; nothing is taken in yet."""
     try:
-        number = take_in.receive(db, station, file.filename or "unnamed", file.file, viewer.who)
+        number = take_in.receive(
+            db, station, without_nul(file.filename or "unnamed"), file.file, viewer.who
+        )
     except (TakeInError, IntakeError) as error:
         raise RefusedError(str(error), "station", station, "Name a station of the book.") from None
     return _preview(db, number)
 
 
 @router.get("/intakes/{intake_id}")
-def intake(db: AsDatabase, intake_id: int) -> PreviewOut:
+def intake(db: AsDatabase, intake_id: AsNumber) -> PreviewOut:
     """What a file would bring, or brought."""
     return _preview(db, intake_id)
 
@@ -80,7 +82,7 @@ def _preview(db: Database, number: int) -> PreviewOut:
 
 
 @router.put("/intakes/{intake_id}/mapping")
-def remap(db: AsDatabase, viewer: AsViewer, intake_id: int, mapping: Mapping) -> PreviewOut:
+def remap(db: AsDatabase, viewer: AsViewer, intake_id: AsNumber, mapping: Mapping) -> PreviewOut:
     """Preview again with a corrected mapping."""
     _preview(db, intake_id)
     try:
@@ -91,7 +93,7 @@ def remap(db: AsDatabase, viewer: AsViewer, intake_id: int, mapping: Mapping) ->
 
 
 @router.post("/intakes/{intake_id}/apply")
-def apply(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int) -> AppliedOut:
+def apply(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber) -> AppliedOut:
     """Take a previewed file in, whole or not at all."""
     _preview(db, intake_id)
     try:
@@ -102,7 +104,7 @@ def apply(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int) -> A
 
 
 @router.post("/intakes/{intake_id}/undo")
-def undo(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int) -> AppliedOut:
+def undo(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber) -> AppliedOut:
     """Take an applied file out again: its days are exactly what they were without it."""
     _preview(db, intake_id)
     try:
@@ -113,7 +115,7 @@ def undo(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int) -> Ap
 
 
 @router.delete("/intakes/{intake_id}", status_code=204)
-def discard(db: AsDatabase, viewer: AsViewer, intake_id: int) -> Response:
+def discard(db: AsDatabase, viewer: AsViewer, intake_id: AsNumber) -> Response:
     """Put a previewed file away."""
     _preview(db, intake_id)
     try:

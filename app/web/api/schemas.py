@@ -5,6 +5,8 @@ from typing import Annotated, Any, Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
+from app.web.needs import Clean
+
 Number = float | None
 UnitName = Literal["hours", "gross_mm", "net_mm", "volume_m3", "rain_mm"]
 
@@ -103,11 +105,11 @@ class EventIn(Given):
     day: date
     amount: float = Field(ge=0)
     unit: UnitName = "hours"
-    block: str | None = None
-    purpose: str = "crop"
-    confirmation: str = "reported"
-    note: Annotated[str, Field(max_length=400)] | None = None
-    token: Annotated[str, Field(min_length=4, max_length=80)]
+    block: Clean | None = None
+    purpose: Clean = "crop"
+    confirmation: Clean = "reported"
+    note: Annotated[Clean, Field(max_length=400)] | None = None
+    token: Annotated[Clean, Field(min_length=4, max_length=80)]
 
 
 class EventChange(Given):
@@ -123,8 +125,8 @@ class EventChange(Given):
     day: date
     amount: float = Field(ge=0)
     unit: UnitName
-    note: Annotated[str, Field(max_length=400)] | None = None
-    token: Annotated[str, Field(min_length=4, max_length=80)]
+    note: Annotated[Clean, Field(max_length=400)] | None = None
+    token: Annotated[Clean, Field(min_length=4, max_length=80)]
 
 
 class EventOut(BaseModel):

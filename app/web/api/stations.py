@@ -12,7 +12,7 @@ from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web.access import AsViewer
 from app.web.api.schemas import StationDaysOut, StationOut
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.pages.stations import own_station, own_stations
 from app.web.trouble import troubles
 
@@ -26,7 +26,7 @@ def stations(db: AsDatabase, viewer: AsViewer, today: AsToday) -> list[StationOu
 
 
 @router.get("/stations/{key}")
-def station(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str) -> StationOut:
+def station(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey) -> StationOut:
     """One station."""
     return _worded(db, [own_station(db, viewer, today, key)], today)[0]
 
@@ -55,7 +55,7 @@ def days(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     first: Annotated[date | None, Query(description="30 days back when not given")] = None,
     last: Annotated[date | None, Query(description="yesterday when not given")] = None,
 ) -> StationDaysOut:

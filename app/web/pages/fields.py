@@ -16,13 +16,13 @@ from app.web import field_view as view
 from app.web.access import AsViewer, Viewer
 from app.web.managed import managed
 from app.web.measured import compare
-from app.web.needs import AsDatabase, AsToday, read_day, read_number
+from app.web.needs import AsDatabase, AsDay, AsKey, AsNumber, AsToday, Clean, read_day, read_number
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.working_view import working
 
 router = APIRouter()
-Text = Annotated[str, Form(max_length=400)]
+Text = Annotated[Clean, Form(max_length=400)]
 NO_FIELD = "There is no such field, or it is not on your farm."
 
 
@@ -32,7 +32,7 @@ def field(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     block: str = "",
     season: Annotated[str, Query(max_length=10)] = "",
 ) -> Response:
@@ -148,7 +148,7 @@ def log(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     day: Text = "",
     amount: Text = "",
     unit: Text = "hours",
@@ -183,8 +183,8 @@ def correct(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
-    event_id: int,
+    key: AsKey,
+    event_id: AsNumber,
     day: Text = "",
     amount: Text = "",
     unit: Text = "hours",
@@ -210,8 +210,8 @@ def delete(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
-    event_id: int,
+    key: AsKey,
+    event_id: AsNumber,
     token: Text = "",
 ) -> Response:
     """Delete an entry: it no longer counts, and stays in the history."""
@@ -245,8 +245,8 @@ def days_working(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
-    day: date,
+    key: AsKey,
+    day: AsDay,
     block: str = "",
 ) -> Response:
     """Every term of one ledger day: its equation, its inputs, where they came from."""
@@ -299,7 +299,7 @@ def days_working(
 
 
 @router.get("/fields/{key}/ledger.csv")
-def ledger_file(db: AsDatabase, viewer: AsViewer, key: str, block: str = "") -> Response:
+def ledger_file(db: AsDatabase, viewer: AsViewer, key: AsKey, block: str = "") -> Response:
     """The ledger as CSV, the caution in its header."""
     from app.workflows.export import ledger_csv
 

@@ -13,7 +13,7 @@ from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web import intake_view as view
 from app.web.access import AsViewer
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsNumber, AsToday, Clean, without_nul
 from app.web.render import page
 from app.workflows import take_in
 from app.workflows.take_in import TakeInError
@@ -51,20 +51,20 @@ def upload(
     db: AsDatabase,
     viewer: AsViewer,
     file: UploadFile | str = "",
-    station: Annotated[str, Form(max_length=80)] = "",
+    station: Annotated[Clean, Form(max_length=80)] = "",
 ) -> Response:
     """Keep a file and preview it; nothing is taken in yet."""
     if isinstance(file, str) or not file.filename:
         return _start(request, db, station, "Choose a file first.")
     try:
-        number = take_in.receive(db, station, file.filename, file.file, viewer.who)
+        number = take_in.receive(db, station, without_nul(file.filename), file.file, viewer.who)
     except (TakeInError, IntakeError) as error:
         return _start(request, db, station, str(error))
     return RedirectResponse(f"/intake/{number}", status_code=303)
 
 
 @router.get("/intake/{intake_id}")
-def intake(request: Request, db: AsDatabase, intake_id: int) -> Response:
+def intake(request: Request, db: AsDatabase, intake_id: AsNumber) -> Response:
     """One file: its columns, questions, problems, and what it would change."""
     return _show(request, db, intake_id)
 
@@ -103,7 +103,9 @@ def _show(request: Request, db: Database, intake_id: int, error: str = "") -> Re
 
 
 @router.post("/intake/{intake_id}/mapping")
-async def remap(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: int) -> Response:
+async def remap(
+    request: Request, db: AsDatabase, viewer: AsViewer, intake_id: AsNumber
+) -> Response:
     """Preview again with corrected columns."""
     form = await request.form(max_fields=5000)
     values = {name: str(value) for name, value in form.multi_items()}
@@ -123,7 +125,7 @@ async def remap(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: i
 
 @router.post("/intake/{intake_id}/apply")
 def apply(
-    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber
 ) -> Response:
     """Take the file in, whole."""
     try:
@@ -135,7 +137,7 @@ def apply(
 
 @router.post("/intake/{intake_id}/undo")
 def undo(
-    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: int
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber
 ) -> Response:
     """Take the file out again."""
     try:
@@ -146,7 +148,7 @@ def undo(
 
 
 @router.post("/intake/{intake_id}/discard")
-def discard(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: int) -> Response:
+def discard(request: Request, db: AsDatabase, viewer: AsViewer, intake_id: AsNumber) -> Response:
     """Put a previewed file away."""
     try:
         take_in.discard(db, intake_id, viewer.who)

@@ -15,7 +15,7 @@ from app.web import station_view as view
 from app.web.access import AsViewer, Viewer
 from app.web.charts import energy_chart
 from app.web.measured import by_month, compare
-from app.web.needs import AsDatabase, AsToday
+from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
 from app.web.pages.fields import csv_answer
 from app.web.render import page
 from app.web.trouble import troubles
@@ -82,7 +82,7 @@ def station(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
-    key: str,
+    key: AsKey,
     span: Annotated[str, Query(max_length=10)] = "month",
 ) -> Response:
     """One station: days, rungs and why no better one, measured against modelled, gaps, flags."""
@@ -133,7 +133,7 @@ def station(
 
 @router.get("/stations/{key}/days/{day}")
 def station_day(
-    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, key: str, day: date
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, day: AsDay
 ) -> Response:
     """One day of a station, down to its readings, each with its file and line."""
     found = own_station(db, viewer, today, key)
@@ -164,7 +164,7 @@ def station_day(
 
 
 @router.get("/stations/{key}/days.csv")
-def days_file(db: AsDatabase, viewer: AsViewer, today: AsToday, key: str) -> Response:
+def days_file(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey) -> Response:
     """A station's days as CSV, the caution in its header."""
     from app.workflows.export import station_days_csv
 
