@@ -1,4 +1,5 @@
-"""The rows of the handbook's tables; every row carries its source."""
+"""The rows of the handbook's tables; every row carries its source and its confidence: "checked"
+against the text, or "memory"."""
 
 from dataclasses import dataclass, field
 from typing import Any
@@ -36,6 +37,7 @@ class CropRow:
     stage_late_days: int | None = _within(0, 400)
     stage_note: str
     stage_source: str
+    stage_confidence: str
     kc_ini: float = _within(0.05, 1.5)
     kc_mid: float = _within(0.05, 1.5)
     kc_mid_low: float = _within(0.05, 1.5)
@@ -45,23 +47,29 @@ class CropRow:
     kc_end_high: float = _within(0.05, 1.5)
     height_max_m: float = _within(0.05, 25.0)
     kc_source: str
+    kc_confidence: str
     kcb_ini: float | None = _within(0.05, 1.5)
     kcb_mid: float | None = _within(0.05, 1.5)
     kcb_end: float | None = _within(0.05, 1.5)
     kcb_source: str
+    kcb_confidence: str
     root_depth_low_m: float = _within(0.1, 4.0)
     root_depth_high_m: float = _within(0.1, 4.0)
     depletion_fraction: float = _within(0.05, 0.95, "depletion_fraction_p")
     root_source: str
+    root_confidence: str
     ece_threshold_ds_m: float | None = _within(0.0, 12.0)
     salinity_slope_pct_per_ds_m: float | None = _within(0.0, 40.0)
     salinity_rating: str
     salinity_source: str
+    salinity_confidence: str
     ky_seasonal: float | None = _within(0.1, 2.0)
     ky_source: str
+    ky_confidence: str
     gdd_base_c: float | None = _within(-5.0, 20.0)
     gdd_upper_c: float | None = _within(20.0, 45.0)
     gdd_source: str
+    gdd_confidence: str
     notes: str
 
     @property
@@ -134,6 +142,7 @@ class StageRow:
     region: str
     note: str
     source: str
+    confidence: str
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -146,6 +155,7 @@ class SoilRow:
     theta_wp_mid_m3m3: float | None = _within(0.01, 0.5)
     rew_mid_mm: float | None = _within(1.0, 15.0)
     table19_source: str
+    table19_confidence: str
     sand_rep_pct: float = _within(0.0, 100.0)
     clay_rep_pct: float = _within(0.0, 100.0)
     sr_theta_wp_m3m3: float = _within(0.01, 0.5)
@@ -153,6 +163,7 @@ class SoilRow:
     sr_theta_sat_m3m3: float = _within(0.3, 0.7)
     sr_ksat_mm_h: float = _within(0.1, 500.0)
     sr_source: str
+    sr_confidence: str
 
     @property
     def field_capacity(self) -> float:
@@ -183,6 +194,11 @@ class SoilRow:
         """Where the water contents come from."""
         return self.table19_source or self.sr_source
 
+    @property
+    def confidence(self) -> str:
+        """How the source was seen."""
+        return self.table19_confidence or self.sr_confidence
+
 
 @dataclass(frozen=True, kw_only=True)
 class WettingRow:
@@ -195,6 +211,7 @@ class WettingRow:
     fw_mid: float = _within(0.01, 1.0)
     note: str
     source: str
+    confidence: str
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -210,6 +227,7 @@ class EfficiencyRow:
     average_pct: float = _within(20.0, 100.0)
     meaning: str
     source: str
+    confidence: str
 
     @property
     def efficiency(self) -> float:
@@ -228,6 +246,7 @@ class ConveyanceRow:
     earthen_clay_pct: float = _within(20.0, 100.0)
     lined_pct: float = _within(20.0, 100.0)
     source: str
+    confidence: str
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -242,6 +261,7 @@ class RunoffRow:
     cn_c: float = _within(1.0, 100.0)
     cn_d: float = _within(1.0, 100.0)
     source: str
+    confidence: str
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -252,3 +272,4 @@ class WetnessRow:
     cn_dry: float = _within(0.0, 100.0, "cn_arc1_dry")
     cn_wet: float = _within(0.0, 100.0, "cn_arc3_wet")
     source: str
+    confidence: str

@@ -41,6 +41,7 @@ def test_every_table_loads_with_a_source_in_every_row() -> None:
         *handbook.wetness_rows(),
     ]
     assert all(row.source for row in others)
+    assert all(row.confidence.startswith(("checked", "memory")) for row in others)
 
 
 def _staged() -> list[CropRow]:
@@ -157,17 +158,17 @@ def test_rows_are_frozen() -> None:
 @pytest.mark.parametrize(
     ("line", "told"),
     [
-        ("a,A,0.5,1,two,,s", "bad.csv, line 3, column fw_mid: 'two' is not a number"),
-        ("a,A,0.5,1,,,s", "bad.csv, line 3, column fw_mid: blank, but a number is needed"),
-        ("a,A,0.5,1,7,,s", "bad.csv, line 3, column fw_mid: 7 is not within 0.01 to 1"),
+        ("a,A,0.5,1,two,,s,memory", "bad.csv, line 3, column fw_mid: 'two' is not a number"),
+        ("a,A,0.5,1,,,s,memory", "bad.csv, line 3, column fw_mid: blank, but a number is needed"),
+        ("a,A,0.5,1,7,,s,memory", "bad.csv, line 3, column fw_mid: 7 is not within 0.01 to 1"),
         ("a,A,0.5,1,0.7,", "bad.csv, line 3, column source: the column is missing"),
     ],
 )
 def test_a_wrong_cell_is_refused_with_file_line_and_column(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, line: str, told: str
 ) -> None:
-    head = "method_id,wetting_event,fw_min,fw_max,fw_mid,note,source"
-    good = "b,B,0.5,1,0.7,,s"
+    head = "method_id,wetting_event,fw_min,fw_max,fw_mid,note,source,confidence"
+    good = "b,B,0.5,1,0.7,,s,checked"
     (tmp_path / "bad.csv").write_text(f"{head}\n{good}\n{line}\n", encoding="utf-8")
     monkeypatch.setattr(reader, "FOLDER", tmp_path)
     with pytest.raises(handbook.TableError, match=re.escape(told)):
@@ -178,7 +179,9 @@ def test_a_key_that_appears_twice_is_refused(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     head = ",".join(column.name for column in fields(WettingRow))
-    (tmp_path / "twice.csv").write_text(f"{head}\n" + "b,B,0.5,1,0.7,,s\n" * 2, encoding="utf-8")
+    (tmp_path / "twice.csv").write_text(
+        f"{head}\n" + "b,B,0.5,1,0.7,,s,checked\n" * 2, encoding="utf-8"
+    )
     monkeypatch.setattr(reader, "FOLDER", tmp_path)
     rows = reader.read_rows("twice.csv", WettingRow)
     with pytest.raises(handbook.TableError, match="method_id 'b' appears twice"):

@@ -89,7 +89,8 @@ def decide(
     the horizon from that day on; a field that cannot be held starts at once. The depth
     refills the opening depletion within the system's least and most. A depth below the least is
     raised to it, even where it passes field capacity: the chance is the last one, and waiting
-    would pass the limit. Only allowed days are ever advised.
+    would pass the limit. Room for rain and refill_to give way where they would leave no water at
+    all. Only allowed days are ever advised.
     Standing, in this order: late (past the limit), due (passes it by the close of the second
     chance if the first is skipped), soon (within three days after), wet (at or above field
     capacity), easy. Returns an `Advice`; reasons in `app.science.advice.reasons`.
@@ -104,18 +105,27 @@ def decide(
     passed = first_passed(outlook.depletion, outlook.limit)
     late = bool(depletion_now > outlook.limit[0])
 
+    def wanted(day: int) -> float:
+        return _wanted(float(ahead.opening[day]), refill_to_mm, rain_room_mm)
+
     def depth(day: int) -> float:
-        wanted = float(ahead.opening[day]) - refill_to_mm - rain_room_mm
-        return min(max(wanted, ahead.net_least), ahead.net_most)
+        return min(max(wanted(day), ahead.net_least), ahead.net_most)
 
     day, reason = _choose(ahead, passed, late, system.cover_days, depth)
     net = 0.0 if day is None else depth(day)
+    if net <= 0.0:  # a full root zone and no least depth: nothing to give
+        day = None
     gross = net * per_net
     figures: dict[str, float | str] = {
         "horizon_days": float(outlook.date.size),
         "depletion_mm": float(depletion_now),
         "limit_mm": float(outlook.limit[0]),
+        "cover_days": float(system.cover_days),
+        "most_net_mm": ahead.net_most,
+        "interval_days": float(ahead.gap),
+        "etc_mm": float(np.nansum(outlook.etc)),
         **_limit_figures(outlook, passed),
+        **_chance_figures(outlook, ahead, passed),
     }
     if day is not None:
         opening = float(ahead.opening[day])
@@ -124,13 +134,8 @@ def decide(
             "refill_to_mm": refill_to_mm,
             "rain_room_mm": rain_room_mm,
             "efficiency": system.efficiency,
-            "bound": _bound(opening - refill_to_mm - rain_room_mm, ahead, system, intake_mm),
+            "bound": _bound(wanted(day), ahead, system, intake_mm),
             "past_field_capacity_mm": max(net - max(opening, 0.0), 0.0),
-            "cover_days": float(system.cover_days),
-            "most_net_mm": ahead.net_most,
-            "interval_days": float(ahead.gap),
-            "etc_mm": float(np.nansum(outlook.etc)),
-            **_chance_figures(outlook, ahead, passed),
         }
     return Advice(
         standing=_standing(depletion_now, late, passed, ahead.may_start),
@@ -236,7 +241,7 @@ def _choose(
     in_time = [s for s in starts if s <= passed - (cover_days - 1)]
     tried = in_time or starts[:1]
     last = tried[-1]
-    roomy = [s for s in tried if s == last or ahead.opening[s] >= ahead.net_least]
+    roomy = [s for s in tried if s == last or 0.0 < depth(s) <= ahead.opening[s]]
     held = [s for s in roomy if holds(ahead, s, depth(s))]
     if not held:
         return roomy[0], Reason.FALLING_BEHIND
@@ -248,6 +253,15 @@ def _choose(
         return held[-1], Reason.EARLY_TO_KEEP_UP
     covering = any(last < s <= passed for s in starts)
     return last, Reason.COVERING if covering else Reason.LAST_CHANCE
+
+
+def _wanted(opening: float, refill_to_mm: float, rain_room_mm: float) -> float:
+    """Net depth [mm] the root zone asks for; room for rain, then the refill target, give way where
+    they would leave nothing although the limit calls for water."""
+    for kept in (refill_to_mm + rain_room_mm, refill_to_mm):
+        if opening > kept:
+            return opening - kept
+    return opening
 
 
 def _bound(wanted: float, ahead: Ahead, system: ApplicationSystem, intake_mm: float | None) -> str:
@@ -263,6 +277,8 @@ def _bound(wanted: float, ahead: Ahead, system: ApplicationSystem, intake_mm: fl
 
 def _chance_figures(outlook: Outlook, ahead: Ahead, passed: int | None) -> dict[str, float | str]:
     starts = np.flatnonzero(ahead.may_start)
+    if not starts.size:
+        return {"chances_before": 0.0}
     in_time = starts[starts <= passed] if passed is not None else starts
     last = in_time[-1] if in_time.size else starts[0]
     return {

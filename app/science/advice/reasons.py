@@ -6,15 +6,16 @@ from enum import StrEnum
 class Reason(StrEnum):
     """Reason of an advice; wording belongs elsewhere.
 
-    Figures (mm unless said). Every advice: horizon_days, depletion_mm (now), limit_mm (today's).
+    Figures (mm unless said). Every advice: horizon_days, depletion_mm (now), limit_mm (today's),
+    cover_days, most_net_mm (of one application), interval_days (from start to start), etc_mm (sum
+    over the horizon), chances_before (chances up to the limit day). With any chance: first_chance
+    and last_chance (ISO dates; the last at or before the limit day).
     Without a limit day: last_depletion_mm, last_limit_mm (the horizon's last close). With one:
     limit_day (ISO date), limit_day_depletion_mm (its projected close), limit_day_limit_mm.
     With an advised day also: opening_mm (depletion at the opening of that day), refill_to_mm,
     rain_room_mm, efficiency (0-1), bound (what set the depth instead of the depletion: "", least,
     most, hours, intake), past_field_capacity_mm (net that cannot be held: above 0 only where
-    `least` exceeds the room), cover_days, most_net_mm (of one application), interval_days (from
-    start to start), etc_mm (sum over the horizon), chances_before (chances up to the limit day),
-    first_chance and last_chance (ISO dates; the last at or before the limit day).
+    `least` exceeds the room).
 
     LIMIT_NOT_REACHED: no close within the horizon passes the limit; no water.
     BACK_WITHIN: past the limit now, but every close of the horizon is within it (rain); no water.

@@ -210,6 +210,18 @@ def test_leaching_raises_gross_above_a_tenth() -> None:
     assert advise(40.0, roomy, leaching_requirement=0.1).gross_mm == pytest.approx(58.0 / 0.8)
 
 
+def test_room_for_rain_and_refill_give_way_rather_than_leave_nothing() -> None:
+    roomy = replace(SYSTEM, least_mm=0.0, most_mm=200.0)
+    assert advise(40.0, roomy, rain_room_mm=80.0, refill_to_mm=5.0).net_mm == pytest.approx(53.0)
+    assert advise(40.0, roomy, refill_to_mm=90.0).net_mm == pytest.approx(58.0)
+
+
+def test_a_full_root_zone_that_one_day_empties_gets_no_water_but_a_word() -> None:
+    advice = advise(0.0, replace(SYSTEM, least_mm=0.0), daily=9.0, limit=5.0)
+    assert advice.falling_behind
+    assert advice.day is None or advice.net_mm > 0.0
+
+
 def test_unsure_by_age_or_by_range() -> None:
     assert not advise(40.0, input_age_days=2).unsure
     assert advise(40.0, input_age_days=3).unsure
@@ -283,6 +295,7 @@ def test_what_every_advice_keeps(
     if advice.day is None:
         assert advice.net_mm == advice.gross_mm == advice.hours == advice.volume_m3 == 0.0
         return
+    assert advice.net_mm > 0.0
     start = int((advice.day - TODAY).astype(int))
     covered = ahead.allowed[start : start + system.cover_days]
     assert covered.all()
