@@ -161,7 +161,7 @@ def in_standing(row: RoundsRow, standing: str) -> bool:
 
 def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> Row:
     """A row in words."""
-    ran = "; ".join(event_words(event, facts.today) for event in facts.events.get(row.field_id, ()))
+    ran = "; ".join(event_words(event, facts.today) for event in facts.events.get(row.block_id, ()))
     plain = Row(
         row.field_key,
         row.field_name,
