@@ -62,11 +62,10 @@ SI = {"degC", "%", "kPa", "m/s", "W/m2", "mm", "h"}
 @pytest.mark.parametrize("unit", PINT)
 def test_conversion_agrees_with_pint(unit: str) -> None:
     one, canonical, quantity = PINT[unit]
+    whole, share, _ = one.partition("/100")
     for value in (0.0, 1.0, 37.5, 290.0):
-        expected = REGISTRY.Quantity(
-            value, REGISTRY.parse_units(one) if "/100" not in one else "inch"
-        )
-        magnitude = expected.to(canonical).magnitude / (100 if "/100" in one else 1)
+        expected = REGISTRY.Quantity(value, REGISTRY.parse_units(whole))
+        magnitude = expected.to(canonical).magnitude / (100 if share else 1)
         assert to_si(value, unit, quantity, HOUR) == pytest.approx(magnitude, rel=2e-6, abs=1e-9)
 
 

@@ -79,7 +79,7 @@ def _from_grid(grid: Grid, wanted: Instants) -> tuple[dict[str, Figure], list[Da
     found = _figures(grid)
     at = np.searchsorted(grid.day, wanted)
     picked = {
-        name: Figure(figure.values[at], [figure.reason[i] for i in at])
+        name: Figure(figure.values[at], [_reason(grid, name, figure, i) for i in at])
         for name, figure in found.items()
     }
     notes = []
@@ -92,6 +92,17 @@ def _from_grid(grid: Grid, wanted: Instants) -> tuple[dict[str, Figure], list[Da
             day = _EPOCH + dt.timedelta(days=int(grid.day[i]))
             notes.append(DayNote(day, quantity, what, float(count[i]), reason))  # type: ignore[arg-type]
     return picked, notes
+
+
+def _reason(grid: Grid, field: str, figure: Figure, day: int) -> str:
+    """Why a figure is missing, with what was set aside of its quantity that day."""
+    reason = figure.reason[day]
+    if reason:
+        quantity = _DAILY_FIELDS[field]
+        for (what, of, check), count in grid.tally.items():
+            if what == "set_aside" and quantity.startswith(of) and count[day] > 0:
+                reason += f"; {count[day]:.0f} set aside ({check})"
+    return reason
 
 
 def _figures(grid: Grid) -> dict[str, Figure]:

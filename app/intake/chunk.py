@@ -84,7 +84,7 @@ def _typed(data: bytes, first_line: int, rows: int, plan: Plan, report: Report) 
     """All rows at once; None when any row or cell is not as it should be."""
     blanks = plan.delimiter == "blanks"
     mark = DELIMITERS[plan.delimiter]
-    if b"\x00" in data or (not blanks and data.count(mark.encode()) != rows * (plan.width - 1)):
+    if b"\x00" in data or (not blanks and _occurrences(data, mark) != rows * (plan.width - 1)):
         return None
     types: dict[Hashable, str] = dict.fromkeys(range(plan.width), "S1")
     types.update(dict.fromkeys(plan.texts, f"S{_WIDEST_DATE}"))
@@ -101,9 +101,8 @@ def _typed(data: bytes, first_line: int, rows: int, plan: Plan, report: Report) 
             na_values=missing,
             keep_default_na=False,
             skip_blank_lines=False,
-            skipinitialspace=True,
+            skipinitialspace=not blanks and mark.encode() + b" " in data,
             encoding_errors="replace",
-            low_memory=False,
         )
     except (ValueError, OverflowError, pd.errors.ParserError):
         return None
@@ -123,6 +122,10 @@ def _typed(data: bytes, first_line: int, rows: int, plan: Plan, report: Report) 
         )
     line = np.arange(first_line, first_line + rows, dtype=np.int32)
     return Chunk(line, columns)
+
+
+def _occurrences(data: bytes, mark: str) -> int:
+    return int(np.count_nonzero(np.frombuffer(data, np.uint8) == ord(mark)))
 
 
 def _short_rows(last: NDArray[np.generic]) -> bool:

@@ -90,9 +90,11 @@ class _Judged:
 
     def need(self, share: Floats, least: float, of: str) -> None:
         for day in np.flatnonzero((share < least - _HAIR) & self._good):
-            found = round(100 * float(share[day]))
+            found = 100 * float(share[day])
             self._reason[day] = (
-                "no readings" if found == 0 else f"only {found} % {of}, {least * 100:.0f} % needed"
+                "no readings"
+                if found == 0
+                else f"only {found:.3g} % {of}, {100 * least:.3g} % needed"
             )
         self._good &= share >= least - _HAIR
 
