@@ -26,6 +26,10 @@ REASONS = {
         "Passes its limit {limit_day:on}; covering the field takes {cover_days:days}, "
         "so it starts {day:on}."
     ),
+    "early_to_keep_up": (
+        "Waiting for the last chance before the limit, {limit_day:near}, the system could not "
+        "hold it afterwards; so it starts {day:on}."
+    ),
     "past_limit": "Past its limit: {depletion_mm:mm} of {limit_mm:mm}.",
     "no_chance_in_time": (
         "Passes its limit {limit_day:on}; the first chance, {first_chance:near}, "
