@@ -10,6 +10,7 @@ from datetime import date
 from itertools import pairwise
 from pathlib import Path
 from typing import Annotated, Any, Literal, Self
+from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
 
@@ -45,6 +46,17 @@ class StationPart(Part):
     reference_surface: bool = Field(False, description="clipped, watered grass under the sensors")
     arid: bool = False
     coastal: bool = False
+
+    @model_validator(mode="after")
+    def _zone_is_known(self) -> Self:
+        if self.time_zone is not None:
+            try:
+                ZoneInfo(self.time_zone)
+            except (ZoneInfoNotFoundError, ValueError):
+                raise ValueError(
+                    f"time_zone {self.time_zone!r} is no IANA zone such as 'America/Boise'"
+                ) from None
+        return self
 
 
 class LayerPart(Part):

@@ -204,7 +204,12 @@ def _rounded(values: Any) -> list[float | None]:
 
 
 def _plain(figures: dict[str, Any]) -> dict[str, Any]:
+    """Figures as JSON holds them: no number stands for a NaN."""
     return {
-        name: value if isinstance(value, str | int | float) else str(value)
+        name: None
+        if value != value
+        else value
+        if isinstance(value, str | int | float)
+        else str(value)
         for name, value in figures.items()
     }

@@ -53,7 +53,6 @@ class Subject:
     past: int
     """How many of the plan's days are past; the rest is the outlook."""
     last_irrigation: date | None
-    rain_measured: NDArray[np.bool_]
 
 
 @dataclass(frozen=True)
@@ -69,7 +68,6 @@ class FieldWeather:
     rh_min: Floats
     rung: NDArray[np.int8]
     rn: Floats
-    rain_measured: NDArray[np.bool_]
 
 
 def assemble(session: Session, since: Mapping[int, date], through: date) -> list[Subject]:
@@ -235,7 +233,6 @@ def _completed(
         rh_min=_steady(rh_min, 45.0),
         rung=np.r_[rung, np.full(HORIZON, USUAL_RUNG, np.int8)],
         rn=np.r_[energy, usual_ahead(energy, ra[:days], ahead)],
-        rain_measured=np.r_[~np.isnan(rain), np.zeros(HORIZON, np.bool_)],
     )
 
 
@@ -268,7 +265,6 @@ def _subject(
     here = slice((start - weather.first).days, (start - weather.first).days + days)
     gross, net = np.zeros(days), np.zeros(days)
     wetted, rain = np.full(days, np.nan), weather.rain[here].copy()
-    measured = weather.rain_measured[here].copy()
     gauge: dict[int, float] = {}
     fraction = agronomy.wetted_fraction(block.system)
     last_irrigation: date | None = None
@@ -290,7 +286,7 @@ def _subject(
         net[place] += n
         wetted[place] = fraction
     for place, amount in gauge.items():
-        rain[place], measured[place] = amount, True
+        rain[place] = amount
     details = season.details
     return Subject(
         block=block,
@@ -321,5 +317,4 @@ def _subject(
         ),
         past=min(days, (through - start).days + 1),
         last_irrigation=last_irrigation,
-        rain_measured=measured,
     )

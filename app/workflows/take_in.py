@@ -105,33 +105,33 @@ def receive(
     when there is no such station.
     """
     sha256, pieces = intakes.compress(source)
-    with db.write() as session:
+    with db.read() as session:
         station = _station(session, station_key)
+        seen = _look(session, station, source, mapping, progress)
+    with db.write() as session:
         intake = Intake(
             station_id=station.id,
             file_name=PurePath(file_name.replace("\\", "/")).name[:200] or "unnamed",
             sha256=sha256,
-            mapping={},
             who=who,
             at=datetime.now(UTC),
             state="previewed",
-            rows=0,
-            summary={},
         )
-        session.add(intake)
-        session.flush()
+        _keep(session, intake, seen)
         intakes.keep_file(session, intake.id, pieces)
-        _preview(session, intake, station, source, mapping, progress)
         return intake.id
 
 
 def remap(db: Database, intake_id: int, mapping: Mapping, who: str) -> None:
     """Preview again with a corrected mapping; raises TakeInError."""
-    with db.write() as session:
+    with db.read() as session:
         intake = _open(session, intake_id)
         with intakes.open_file(session, intake_id) as source:
-            _preview(session, intake, intake.station, source, mapping, None)
+            seen = _look(session, intake.station, source, mapping, None)
+    with db.write() as session:
+        intake = _open(session, intake_id)
         intake.who = who
+        _keep(session, intake, seen)
 
 
 def discard(db: Database, intake_id: int, who: str) -> None:
@@ -149,17 +149,21 @@ def apply(
     Ledgers and advice of `today` follow in the same transaction; with None they are left marked
     as dirty, for whoever takes many files in and brings all up to date at the end.
     """
+    with db.read() as session:
+        intake = _open(session, intake_id)
+        mapping, clock = intake.mapping, _clock(intake.station)
+        if not mapping:
+            raise TakeInError(intake.summary.get("message") or "This file cannot be read.")
+        try:
+            with intakes.open_file(session, intake_id) as source:
+                reading = read(source, Mapping.model_validate(mapping), clock, progress)
+        except IntakeError as error:
+            raise TakeInError(str(error)) from None
     with db.write() as session:
         intake = _open(session, intake_id)
         station = intake.station
-        if not intake.mapping:
-            raise TakeInError(intake.summary.get("message") or "This file cannot be read.")
-        clock = _clock(station)
-        try:
-            with intakes.open_file(session, intake_id) as source:
-                reading = read(source, Mapping.model_validate(intake.mapping), clock, progress)
-        except IntakeError as error:
-            raise TakeInError(str(error)) from None
+        if intake.mapping != mapping:
+            raise TakeInError("Somebody changed how this file is read; look at it again.")
         changed = _compare(session, station, reading.rows, clock).days
         intake.who, intake.applied_at = who, datetime.now(UTC)
         if not changed:
@@ -277,31 +281,57 @@ def _clock(station: Station) -> Clock:
     return Clock(station.details["utc_offset_h"], station.details["time_zone"])
 
 
-def _preview(
+@dataclass(frozen=True)
+class _Look:
+    """What a look at a file found: the parts of a preview."""
+
+    mapping: dict[str, Any]
+    summary: dict[str, Any]
+    rows: int
+    first_day: date | None
+    last_day: date | None
+    problems: tuple[Problem, ...]
+
+
+def _look(
     session: Session,
-    intake: Intake,
     station: Station,
-    source: BinaryIO | Any,
+    source: BinaryIO,
     mapping: Mapping | None,
     progress: Progress | None,
-) -> None:
-    """Sniff and read a file; keep what it would bring in the intake's summary."""
+) -> _Look:
+    """Sniff a file and, where nothing is left open, read it and compare; stores nothing."""
     clock = _clock(station)
     summary: dict[str, Any] = {"message": ""}
-    intake.rows, intake.first_day, intake.last_day = 0, None, None
-    problems: list[Problem] = []
+    used: dict[str, Any] = {}
     try:
         sniffed = _sniff(session, station, source, clock, mapping)
-        intake.mapping = sniffed.mapping.model_dump(mode="json")
+        used = sniffed.mapping.model_dump(mode="json")
         summary |= _seen(sniffed)
-        if not any(question.blocking for question in sniffed.questions):
-            reading = read(source, sniffed.mapping, clock, progress)
-            problems = list(reading.problems)
-            summary |= _brings(session, intake, station, reading, clock)
+        if any(question.blocking for question in sniffed.questions):
+            return _Look(used, summary, 0, None, None, ())
+        reading = read(source, sniffed.mapping, clock, progress)
     except IntakeError as error:
-        summary["message"] = str(error)
-    intake.summary = summary
-    intakes.replace_problems(session, intake.id, (_problem_row(item) for item in problems))
+        return _Look(used, {**summary, "message": str(error)}, 0, None, None, ())
+    rows = reading.rows
+    days = station_day(rows.instant, rows.interval_s, clock)
+    return _Look(
+        used,
+        summary | _brings(session, station, reading, clock),
+        len(rows),
+        _date(days.min()) if len(rows) else None,
+        _date(days.max()) if len(rows) else None,
+        reading.problems,
+    )
+
+
+def _keep(session: Session, intake: Intake, look: _Look) -> None:
+    """Keep what a look at the file found in place of an earlier one."""
+    intake.mapping, intake.summary = look.mapping, look.summary
+    intake.rows, intake.first_day, intake.last_day = look.rows, look.first_day, look.last_day
+    session.add(intake)
+    session.flush()
+    intakes.replace_problems(session, intake.id, (_problem_row(item) for item in look.problems))
 
 
 def _sniff(
@@ -337,15 +367,8 @@ def _seen(sniffed: Sniffed) -> dict[str, Any]:
     }
 
 
-def _brings(
-    session: Session, intake: Intake, station: Station, reading: Reading, clock: Clock
-) -> dict[str, Any]:
-    rows = reading.rows
-    if len(rows):
-        days = station_day(rows.instant, rows.interval_s, clock)
-        intake.first_day, intake.last_day = _date(days.min()), _date(days.max())
-    intake.rows = len(rows)
-    compared = _compare(session, station, rows, clock)
+def _brings(session: Session, station: Station, reading: Reading, clock: Clock) -> dict[str, Any]:
+    compared = _compare(session, station, reading.rows, clock)
     return {
         "rows_refused": reading.counts.rows_refused,
         "rows_same": compared.same,
