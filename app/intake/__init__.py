@@ -30,8 +30,9 @@ from app.intake.model import (
     TimeLayout,
 )
 from app.intake.pack import pack, station_day, unpack
+from app.intake.questions import answer, unanswered
 from app.intake.read import read
-from app.intake.sniff import answer, sniff
+from app.intake.sniff import sniff
 
 __all__ = [
     "Choice",
@@ -56,5 +57,6 @@ __all__ = [
     "read",
     "sniff",
     "station_day",
+    "unanswered",
     "unpack",
 ]

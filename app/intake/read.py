@@ -20,8 +20,8 @@ from app.intake.model import (
     Progress,
     Reading,
 )
+from app.intake.questions import unanswered
 from app.intake.report import Report
-from app.intake.sniff import unanswered
 from app.intake.sniff_dates import has_clock
 from app.intake.text import Block, blocks, read_head, refuse_what_is_no_text
 from app.intake.tidy import tidy
@@ -86,6 +86,7 @@ def _gather(
         instant, lines = instant[kept], lines[kept]
         columns = {name: column[kept] for name, column in columns.items()}
     rows = tidy(instant, lines, columns, mapping.interval_s or _DAY, report)
+    report.add_missing(rows, {c.quantity: c.name for c in mapping.columns if c.quantity})
     return Reading(rows, report.problems(), report.counts)
 
 

@@ -6,9 +6,10 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
-from app.intake.model import Counts, Ints, Problem
+from app.intake.model import Counts, Ints, Problem, Rows
 
 MOST_LISTED = 1000
+MOST_MISSING = 20
 Severity = Literal["refused", "warning", "asked"]
 
 
@@ -54,6 +55,37 @@ class Report:
                     severity,
                     end - start + 1,
                     last if last != first else None,
+                )
+            )
+
+    def add_missing(self, rows: Rows, names: dict[str, str]) -> None:
+        """The longest runs of two or more rows without a value, by the file's column name."""
+        runs: list[tuple[int, int, int, str]] = []
+        for quantity, column in rows.values.items():
+            absent = np.flatnonzero(np.isnan(column))
+            if absent.size == 0 or absent.size == len(rows):
+                continue
+            starts = np.flatnonzero(np.r_[True, np.diff(absent) != 1])
+            ends = np.r_[starts[1:], absent.size] - 1
+            starts, ends = starts[ends > starts], ends[ends > starts]
+            longest = np.argsort(starts - ends, kind="stable")[:MOST_MISSING]
+            runs += [
+                (int(absent[ends[i]] - absent[starts[i]] + 1), int(absent[starts[i]]),
+                 int(absent[ends[i]]), names[quantity])
+                for i in longest
+            ]  # fmt: skip
+        for count, first, last, name in sorted(runs, reverse=True)[:MOST_MISSING]:
+            lines = sorted((int(rows.line[first]), int(rows.line[last])))
+            self._problems.append(
+                Problem(
+                    lines[0],
+                    name,
+                    "",
+                    f"no value in {count} rows",
+                    "Nothing to do: up to 2 h are bridged, beyond that the day says what it lacks.",
+                    "warning",
+                    count,
+                    lines[1],
                 )
             )
 

@@ -5,10 +5,8 @@ from typing import BinaryIO
 import numpy as np
 
 from app.intake.cells import MISSING, kind_of
-from app.intake.civil import zone
 from app.intake.errors import IntakeError
 from app.intake.model import (
-    Choice,
     Clock,
     ColumnMap,
     Mapping,
@@ -17,7 +15,13 @@ from app.intake.model import (
     Sniffed,
     TimeLayout,
 )
-from app.intake.sniff_columns import ColumnGuess, guess_columns, unit_question
+from app.intake.questions import (
+    interval_question,
+    order_question,
+    row_time_question,
+    unanswered,
+)
+from app.intake.sniff_columns import ColumnGuess, find_codes, guess_columns
 from app.intake.sniff_dates import (
     When,
     find_when,
@@ -31,8 +35,6 @@ from app.intake.sniff_table import Table, find_table
 from app.intake.text import encoding_of, read_head, refuse_what_is_no_text, sample_lines
 
 _DAY = 86400
-_LEAVE_OUT = "leave out"
-_STEPS = (60, 300, 600, 900, 1800, 3600, 10800, 86400)
 
 
 def sniff(source: BinaryIO, clock: Clock, remembered: Mapping | None = None) -> Sniffed:
@@ -60,42 +62,6 @@ def sniff(source: BinaryIO, clock: Clock, remembered: Mapping | None = None) -> 
     return _fresh(source, encoding, table, when, clock)
 
 
-def answer(mapping: Mapping, answers: dict[str, str]) -> Mapping:
-    """The mapping with questions answered: question field -> chosen value.
-
-    Raises IntakeError for a field no question has, or a value that does not fit it.
-    """
-    data = mapping.model_dump()
-    for field, value in answers.items():
-        parts = field.split(".")
-        if field == "time.order":
-            data["time"]["order"] = value
-        elif field in ("row_time", "time_zone") or field == "interval_s":
-            data[field] = value
-        elif parts[0] == "columns" and len(parts) == 3:
-            _answer_column(data["columns"], parts[1], parts[2], value)
-        else:
-            raise IntakeError(f"There is no question {field!r} about this file.")
-    try:
-        answered = Mapping.model_validate(data)
-    except ValueError as error:
-        given = ", ".join(f"{field} = {value}" for field, value in answers.items())
-        raise IntakeError(f"This answer cannot be used: {given}. {error}") from error
-    if answered.time_zone not in ("station", "UTC"):
-        zone(answered.time_zone)
-    return answered
-
-
-def _answer_column(columns: list[dict[str, object]], position: str, key: str, value: str) -> None:
-    column = next((c for c in columns if str(c["position"]) == position), None)
-    if column is None or key not in ColumnMap.model_fields:
-        raise IntakeError(f"There is no question about column {position} {key!r} in this file.")
-    if value == _LEAVE_OUT:
-        column.update(quantity=None, needs_body=False, body_position=None)
-    else:
-        column[key] = value
-
-
 def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clock) -> Sniffed:
     questions: list[Question] = []
     notes = [f"dates: {when.why}"]
@@ -106,9 +72,9 @@ def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clo
         suggested = layout.model_copy(update={"order": order.suggested})
         notes.append(f"order of the date: {order.why}")
         if order.settled is None:
-            questions.append(
-                _order_question(order.choices, order.suggested, order.why, table, when)
-            )
+            position = next(c.position for c in layout.columns if c.role in ("instant", "date"))
+            first = table.rows[0][position] if table.rows else None
+            questions.append(order_question(order.choices, order.suggested, order.why, first))
     else:
         layout = layout.model_copy(update={"order": "ymd"})
     interval, step_note = _interval(table, suggested or layout)
@@ -116,7 +82,7 @@ def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clo
     row_time, row_question = _row_time(table, suggested or layout, when, interval)
     questions += row_question
     if interval is None:
-        questions.append(_interval_question(step_note))
+        questions.append(interval_question(step_note))
     zone_name = "UTC" if when.utc else "station"
     notes.append(
         "clock: the name of the time column says UTC"
@@ -127,6 +93,8 @@ def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clo
     guesses = guess_columns(table, taken, interval or 3600)
     for guess in guesses:
         questions += guess.questions
+    codes, code_note = find_codes(table)
+    notes += code_note
     mapping = Mapping(
         encoding=encoding,
         delimiter=table.delimiter,
@@ -137,7 +105,7 @@ def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clo
         row_time=row_time,
         time_zone=zone_name,
         interval_s=interval,
-        missing=list(MISSING),
+        missing=[*MISSING, *codes],
         columns=[guess.column for guess in guesses],
         signature=table.signature,
     )
@@ -170,34 +138,6 @@ def _remembered(remembered: Mapping, table: Table, encoding: str, when: When) ->
 
 def _says_when(mapping: Mapping, column: ColumnMap) -> bool:
     return any(part.position == column.position for part in mapping.time.columns)
-
-
-def unanswered(mapping: Mapping) -> list[Question]:
-    """Blocking questions a mapping still leaves open; `read` refuses while there is one."""
-    questions: list[Question] = []
-    texts = any(column.role in ("instant", "date") for column in mapping.time.columns)
-    if texts and mapping.time.order is None:
-        why = "the order of day and month has not been settled"
-        questions.append(_order_question(("dmy", "mdy", "ymd"), None, why, None, None))
-    if mapping.interval_s is None:
-        questions.append(_interval_question("the step between the rows is not known"))
-    if mapping.row_time is None:
-        questions.append(_row_time_question("it has not been said"))
-    for column in mapping.columns:
-        if column.quantity is None:
-            continue
-        if column.unit is None:
-            questions.append(unit_question(column, "the unit has not been settled"))
-        elif column.needs_body and column.body_position is None:
-            questions.append(
-                Question(
-                    f"columns.{column.position}.body_position",
-                    f"Which column has the body temperature for {column.name!r}?",
-                    (Choice(_LEAVE_OUT, "none: leave the column out"),),
-                    "its longwave lacks the term of the instrument's own temperature",
-                )
-            )
-    return questions
 
 
 def _sniffed(
@@ -255,7 +195,7 @@ def _row_time(
     midnight = clocks.size > 0 and bool(np.all(clocks == 0))
     if interval == _DAY and midnight and not _writes_24(table, layout):
         why = "one row a day, always at 00:00, may mean the day that begins or the one that ended"
-        return None, [_row_time_question(why)]
+        return None, [row_time_question(why)]
     return "end", []
 
 
@@ -265,58 +205,4 @@ def _writes_24(table: Table, layout: TimeLayout) -> bool:
     ]
     return any(
         "24:00" in row[i] or row[i] in ("2400", "24") for row in table.rows[:200] for i in positions
-    )
-
-
-def _row_time_question(why: str) -> Question:
-    return Question(
-        "row_time",
-        "Which day does a row at 00:00 stand for?",
-        (
-            Choice("start", "the day written in the row"),
-            Choice("end", "the day before, which ended at that midnight"),
-        ),
-        why,
-        "start",
-    )
-
-
-def _interval_question(why: str) -> Question:
-    choices = tuple(
-        Choice(
-            str(s), "1 day" if s == _DAY else f"{s // 3600} h" if s >= 3600 else f"{s // 60} min"
-        )
-        for s in _STEPS
-    )
-    return Question("interval_s", "How much time does one row cover?", choices, why)
-
-
-def _duration(seconds: int) -> str:
-    if seconds == _DAY:
-        return "1 day"
-    return f"{seconds // 3600} h" if seconds >= 3600 else f"{seconds // 60} min"
-
-
-def _order_question(
-    orders: tuple[str, ...],
-    suggested: str | None,
-    why: str,
-    table: Table | None,
-    when: When | None,
-) -> Question:
-    shown = ""
-    if table is not None and when is not None and table.rows:
-        position = next(c.position for c in when.layout.columns if c.role in ("instant", "date"))
-        shown = f" (the first is {table.rows[0][position]})"
-    labels = {
-        "dmy": "day, month, year",
-        "mdy": "month, day, year",
-        "ymd": "year, month, day",
-    }
-    return Question(
-        "time.order",
-        f"In which order are the dates written{shown}?",
-        tuple(Choice(order, labels[order]) for order in orders),
-        why,
-        suggested,
     )

@@ -14,6 +14,8 @@ from app.units import UNITS, to_si, units_for
 _DAILY = 86400
 _SUMS_FROM = 1800  # loggers that sum energy do so over half an hour or more (common practice)
 _ENOUGH = 12  # values from which a column's spread says anything
+_ODD_CODES = ("-99", "-99.0", "-99.9", "-99.99", "-88.8")
+_CODE_SEEN = 2  # times in the sample
 _LEAVE_OUT = "leave out"
 
 # What a column of each quantity usually looks like: low and high of (1st percentile, median, 99th
@@ -106,6 +108,26 @@ def column_values(table: Table, position: int) -> Floats:
     numbers = [float(c.replace(",", ".")) for c in cells if kind_of(c) == "number"]
     values = np.array(numbers, np.float64)
     return values[np.isfinite(values)]
+
+
+def find_codes(table: Table) -> tuple[list[str], list[str]]:
+    """Figures such as -99 that stand for missing here: repeated, and far below all others."""
+    codes: list[str] = []
+    notes = []
+    for i in range(table.width):
+        cells = [row[i].replace(",", ".") for row in table.rows[:4000]]
+        for code in _ODD_CODES:
+            if code in codes or cells.count(code) < _CODE_SEEN:
+                continue
+            others = [float(c) for c in cells if kind_of(c) == "number" and float(c) > float(code)]
+            below = any(kind_of(c) == "number" and float(c) < float(code) for c in cells)
+            if others and not below and min(others) > float(code) / 2:
+                codes.append(code)
+                notes.append(
+                    f"{code} is taken as missing: {table.names[i]!r} has it {cells.count(code)} "
+                    f"times, and its next value is {min(others):g}"
+                )
+    return codes, notes
 
 
 def unit_question(column: ColumnMap, why: str, suggested: str | None = None) -> Question:

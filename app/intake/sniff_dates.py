@@ -48,6 +48,7 @@ _BOUNDS = {
     "hour": (0, 24), "minute": (0, 59), "hhmm": (0, 2400), "second": (0, 59),
 }  # fmt: skip
 _TEXT_ROLES = ("instant", "date", "time")
+_SHAKES_S = 20  # a logger's clock may stamp a row this much early or late
 _FEW_ODD = 0.9  # of the cells must be as expected; the rest may be junk
 CLOCK_ROLES = ("instant", "time", "hhmm", "hour", "serial", "epoch")
 
@@ -247,6 +248,12 @@ def usual_step(times: Instants) -> tuple[int, float]:
     if steps.size == 0:
         return 0, 0.0
     step, count = Counter(steps.tolist()).most_common(1)[0]
+    middle = int(np.median(steps))
+    if count < 0.5 * steps.size and middle >= 60:  # a clock that shakes by seconds
+        minute = round(middle / 60) * 60
+        near = np.abs(steps - minute) <= _SHAKES_S
+        if np.mean(near) > 0.5:
+            return minute, float(np.mean(near))
     return int(step), count / steps.size
 
 
