@@ -148,7 +148,7 @@ def corrected(mapping: Mapping, form: Dict[str, str]) -> Mapping:
         for name, value in form.items()
         if name.startswith("q.") and value
     }
-    return answer(changed, answers) if answers else changed
+    return answer(changed, {"time_zone": changed.time_zone, **answers})
 
 
 def _whole(text: str, name: str) -> int:

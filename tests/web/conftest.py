@@ -1,7 +1,9 @@
 """The real app over a real database, in this process; no network."""
 
 import asyncio
+import sqlite3
 from collections.abc import Callable, Iterator
+from datetime import date
 from pathlib import Path
 from typing import Any
 
@@ -12,14 +14,15 @@ from app.main import create_app
 from app.settings import Settings
 from app.storage.database import Database
 from tests.web.factory import TODAY, fill
+from tests.workflows import basin
 
 
 class Browser:
     """Sends requests to the app as a page of its own would, and keeps the cookie."""
 
-    def __init__(self, db: Database, demo: bool = False) -> None:
+    def __init__(self, db: Database, demo: bool = False, today: date = TODAY) -> None:
         self.db = db
-        self.app = create_app(Settings(database=db.url, today=TODAY, demo=demo), db)
+        self.app = create_app(Settings(database=db.url, today=today, demo=demo), db)
         self.cookies = httpx.Cookies()
 
     def request(self, method: str, path: str, **more: Any) -> httpx.Response:
@@ -61,6 +64,30 @@ def filled_db(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Database]:
     db.migrate()
     fill(db)
     yield db
+    db.close()
+
+
+@pytest.fixture(scope="module")
+def basin_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """A database file of the workflows' small basin, filled by the real workflows."""
+    path = tmp_path_factory.mktemp("basin") / "basin.sqlite"
+    db = Database(f"sqlite:///{path}")
+    db.migrate()
+    basin.fill(db)
+    db.close()
+    return path
+
+
+@pytest.fixture
+def live(basin_file: Path, tmp_path: Path) -> Iterator[Browser]:
+    """The admin's browser on a copy of the basin, to be changed at will."""
+    copy = tmp_path / "copy.sqlite"
+    with sqlite3.connect(basin_file) as source, sqlite3.connect(copy) as target:
+        source.backup(target)
+    source.close()
+    target.close()
+    db = Database(f"sqlite:///{copy}")
+    yield Browser(db, today=basin.TODAY)
     db.close()
 
 
