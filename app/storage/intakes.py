@@ -32,7 +32,7 @@ def compress(source: BinaryIO) -> tuple[str, list[bytes]]:
     source.seek(0)
     while piece := source.read(PIECE):
         digest.update(piece)
-        pieces.append(zlib.compress(piece, 6))
+        pieces.append(zlib.compress(piece, 3))
     return digest.hexdigest(), pieces
 
 

@@ -11,6 +11,7 @@ from pathlib import PurePath
 from typing import Any, BinaryIO
 
 import numpy as np
+from numpy.typing import NDArray
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
@@ -30,7 +31,7 @@ from app.intake import (
     station_day,
     unpack,
 )
-from app.intake.model import Progress
+from app.intake.model import Floats, Instants, Progress
 from app.storage import book, intakes
 from app.storage.database import Database
 from app.storage.series import applied_packs
@@ -38,6 +39,8 @@ from app.storage.tables import Intake, IntakeProblem, Station
 from app.workflows.bring_up_to_date import up_to_date
 
 PROBLEMS_SHOWN = 200
+LONGEST = 1 << 20
+"""More than the seconds of any interval."""
 
 
 class TakeInError(InputError):
@@ -200,7 +203,7 @@ def undo(db: Database, intake_id: int, who: str, today: date) -> Applied:
         intake.state = "undone"
         session.flush()
         after = _stored(session, intake.station, intake.first_day, intake.last_day)
-        changed = _changed_days(before, after, clock)
+        changed = _days_of(_moved(before, after), clock)
         intake.summary = {**intake.summary, "undone_by": who, "undone_at": str(datetime.now(UTC))}
         return _land(session, intake.station, intake, changed, today)
 
@@ -408,12 +411,11 @@ def _compare(session: Session, station: Station, rows: Rows, clock: Clock) -> _C
     stored = _stored(session, station, _date(days.min()), _date(days.max()))
     if not len(stored):
         return _Compared(0, 0, [_date(day) for day in np.unique(days)])
-    after = fold([stored, rows])
-    changed = _changed_days(stored, after, clock)
-    there = np.isin(rows.instant, stored.instant)
-    moved = _changed_instants(stored, after)
-    differing = int(np.isin(rows.instant[there], moved).sum())
-    return _Compared(int(there.sum()) - differing, differing, changed)
+    moved = _moved(stored, fold([stored, rows]))
+    mine = _identity(rows)
+    there = _holds(_identity(stored), mine)
+    differing = int((there & _holds(moved, mine)).sum())
+    return _Compared(int(there.sum()) - differing, differing, _days_of(moved, clock))
 
 
 def _stored(session: Session, station: Station, first: date | None, last: date | None) -> Rows:
@@ -422,31 +424,46 @@ def _stored(session: Session, station: Station, first: date | None, last: date |
     return fold([unpack(blob) for blob in applied_packs(session, station.id, first, last)])
 
 
-def _changed_instants(before: Rows, after: Rows) -> Any:
-    """Instants whose values differ between two folds of the same station."""
-    union = np.union1d(before.instant, after.instant)
-    differs = np.isin(union, before.instant) != np.isin(union, after.instant)
+def _identity(rows: Rows) -> Instants:
+    """Instant and interval of each row as one number, sorted as rows are."""
+    return rows.instant * LONGEST + rows.interval_s
+
+
+def _holds(sorted_: Instants, wanted: Instants) -> NDArray[np.bool_]:
+    """Whether each wanted number is among the sorted ones."""
+    if not sorted_.size:
+        return np.zeros(wanted.size, np.bool_)
+    place = np.minimum(np.searchsorted(sorted_, wanted), sorted_.size - 1)
+    found: NDArray[np.bool_] = sorted_[place] == wanted
+    return found
+
+
+def _moved(before: Rows, after: Rows) -> Instants:
+    """Identities of the rows that differ between two folds of one station."""
+    a, b = _identity(before), _identity(after)
+    union = a if np.array_equal(a, b) else np.union1d(a, b)
+    places = np.searchsorted(union, a), np.searchsorted(union, b)
+    differs = ~(_holds(a, union) & _holds(b, union))
     for name in sorted(set(before.values) | set(after.values)):
-        a, b = _on(union, before, name), _on(union, after, name)
-        differs |= ~((a == b) | (np.isnan(a) & np.isnan(b)))
+        x, y = (
+            _spread(rows.values.get(name), place, union.size)
+            for rows, place in zip((before, after), places, strict=True)
+        )
+        differs |= ~((x == y) | (np.isnan(x) & np.isnan(y)))
     return union[differs]
 
 
-def _changed_days(before: Rows, after: Rows, clock: Clock) -> list[date]:
-    """Station days that differ between two folds."""
-    moved = _changed_instants(before, after)
-    days: set[date] = set()
-    for rows in (before, after):
-        of_rows = station_day(rows.instant, rows.interval_s, clock)
-        days.update(_date(day) for day in np.unique(of_rows[np.isin(rows.instant, moved)]))
-    return sorted(days)
+def _spread(values: Floats | None, place: NDArray[np.intp], size: int) -> Floats:
+    spread = np.full(size, np.nan)
+    if values is not None:
+        spread[place] = values
+    return spread
 
 
-def _on(instants: Any, rows: Rows, name: str) -> Any:
-    values = np.full(instants.size, np.nan)
-    if name in rows.values:
-        values[np.searchsorted(instants, rows.instant)] = rows.values[name]
-    return values
+def _days_of(identities: Instants, clock: Clock) -> list[date]:
+    """The station days of rows."""
+    instants, intervals = np.divmod(identities, LONGEST)
+    return [_date(day) for day in np.unique(station_day(instants, intervals, clock))]
 
 
 def _land(
