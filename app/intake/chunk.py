@@ -1,6 +1,7 @@
 """One block of lines to typed columns: typed at once, and only where that fails cell by cell."""
 
 import io
+import re
 from collections.abc import Hashable
 from dataclasses import dataclass
 from typing import Any
@@ -184,10 +185,8 @@ def _figures(
 ) -> Floats:
     texts = pd.Series(list(cells), dtype=object)
     absent = texts.isin(plan.missing[position]).to_numpy()
-    plain = texts.str.replace(",", ".", regex=False) if plan.decimal == "," else texts
-    values = np.array(
-        pd.to_numeric(plain.where(~absent, None), errors="coerce").to_numpy(np.float64, copy=True)
-    )
+    plain = _with_points(texts, plan.decimal).where(~absent, None)
+    values = np.array(pd.to_numeric(plain, errors="coerce").to_numpy(np.float64, copy=True))
     junk = ~absent & ~np.isfinite(values)
     values[junk] = np.nan
     _blank_codes(values, plan.missing[position])
@@ -206,6 +205,24 @@ def _figures(
         "refused",
     )
     return values
+
+
+def _with_points(texts: pd.Series, decimal: str) -> pd.Series:
+    """Decimal points for commas; thousands are closed up only where both marks make them plain.
+
+    A mark that is not the file's decimal mark is left in a form that is no number: 1.500 in a file
+    of decimal commas may be 1500 or 1.5.
+    """
+    group = "." if decimal == "," else ","
+    odd = texts.str.contains(group, regex=False)
+    if odd.any():
+        inner, point = re.escape(group), re.escape(decimal)
+        thousands = texts.str.fullmatch(rf"[-+]?\d{{1,3}}(?:{inner}\d{{3}})+{point}\d+")
+        closed = texts.str.replace(group, "", regex=False)
+        texts = texts.where(
+            ~odd, closed.where(thousands, texts.str.replace(group, "~", regex=False))
+        )
+    return texts.str.replace(",", ".", regex=False) if decimal == "," else texts
 
 
 def _blank_codes(values: Floats, missing: tuple[str, ...]) -> None:

@@ -167,8 +167,7 @@ def _date_places(
         month = _MONTHS.get(shape[slice(*b)][:3].lower())
         if month is None:
             return None
-        year_first = a in long or (not long and order == "ymd")
-        return {"y": a, "m": month, "d": c} if year_first else {"y": c, "m": month, "d": a}
+        return {"y": a, "m": month, "d": c} if a in long else {"y": c, "m": month, "d": a}
     if a in long or (not long and order == "ymd"):
         return {"y": a, "m": b, "d": c}
     if order == "mdy":

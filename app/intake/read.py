@@ -233,7 +233,7 @@ def _si(
         report.add_lines(
             chunk.line[good][wrong],
             column.name,
-            np.char.mod("%g", raw[wrong]),
+            np.char.mod("%.10g", raw[wrong]),
             f"impossible {limits.term}: outside {limits.low:g} to {limits.high:g} {limits.unit}",
             "The value is left out. If many are, check the unit chosen for the column.",
             "refused",
@@ -261,7 +261,7 @@ def _instants(
     station = round(clock.utc_offset_h * 3600)
     interval = mapping.interval_s or _DAY
     kept = np.ones(local.size, bool)
-    if not has_clock(mapping.time):
+    if not has_clock(mapping.time) and interval == _DAY:
         return local - station + interval, kept
     if mapping.time_zone == "station":
         instant = local - station

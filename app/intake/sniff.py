@@ -9,6 +9,7 @@ from app.intake.errors import IntakeError
 from app.intake.model import (
     Clock,
     ColumnMap,
+    Instants,
     Mapping,
     Question,
     RowTime,
@@ -166,7 +167,7 @@ def _sniffed(
 def _interval(table: Table, layout: TimeLayout) -> tuple[int | None, str]:
     times = sample_times(table, layout)
     step, share = usual_step(times)
-    if not has_clock(layout):
+    if not _shows_clock(layout, times):
         if step > _DAY and share > 0.5 and times.size > 3:
             raise IntakeError(
                 f"The rows are {step // _DAY} days apart. Daily or finer readings are needed; sums "
@@ -187,16 +188,20 @@ def _interval(table: Table, layout: TimeLayout) -> tuple[int | None, str]:
 def _row_time(
     table: Table, layout: TimeLayout, when: When, interval: int | None
 ) -> tuple[RowTime | None, list[Question]]:
-    if not has_clock(layout):
+    clocks = sample_times(table, layout)
+    if when.starts or not _shows_clock(layout, clocks):
         return "start", []
-    if when.starts:
-        return "start", []
-    clocks = sample_times(table, layout) % _DAY
+    clocks = clocks % _DAY
     midnight = clocks.size > 0 and bool(np.all(clocks == 0))
     if interval == _DAY and midnight and not _writes_24(table, layout):
         why = "one row a day, always at 00:00, may mean the day that begins or the one that ended"
         return None, [row_time_question(why)]
     return "end", []
+
+
+def _shows_clock(layout: TimeLayout, times: Instants) -> bool:
+    """Whether rows state a clock time, in a column of its own or as a fraction of the day."""
+    return has_clock(layout) or bool(np.any(times % _DAY != 0))
 
 
 def _writes_24(table: Table, layout: TimeLayout) -> bool:

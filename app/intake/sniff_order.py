@@ -103,6 +103,8 @@ def _by_steps(table: Table, layout: TimeLayout, orders: tuple[DateOrder, ...]) -
         even[order] = following * times.size * (1.0 if 0 < step <= 86400 else 0.5)
     suggested = max(orders, key=lambda order: even[order])
     why = "no date in the file has a figure above 12 that would tell day from month"
+    if "ymd" in orders:
+        why = "the years have two figures, and more than one order fits every date of the file"
     if sorted(even.values())[-1] > 1.2 * sorted([0.0, *even.values()])[-2]:
         first = {"dmy": "the day", "mdy": "the month", "ymd": "the year"}[suggested]
         why += f"; the rows follow each other evenly if {first} comes first"

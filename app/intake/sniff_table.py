@@ -47,6 +47,7 @@ def find_table(lines: list[str], more: list[str]) -> Table:
     delimiter, width = _delimiter(filled[-_LOOKED_AT:])
     usual = _usual_kinds(filled[-_LOOKED_AT:], delimiter, width)
     first = _first_data_line(lines, delimiter, width, usual)
+    first -= _odd_rows_above(lines, first, delimiter, width)
     rows = [
         tuple(fields)
         for line in [*lines[first:], *more]
@@ -85,7 +86,7 @@ def _usual_kinds(lines: list[str], delimiter: str, width: int) -> list[str]:
     usual = []
     for column in zip(*rows, strict=True):
         kinds = Counter(kind for cell in column if (kind := kind_of(cell)) != "missing")
-        usual.append(kinds.most_common(1)[0][0] if kinds else "missing")
+        usual.append(max(kinds, key=lambda kind: (kinds[kind], kind != "text"), default="missing"))
     return usual
 
 
@@ -109,6 +110,19 @@ def _first_data_line(lines: list[str], delimiter: str, width: int, usual: list[s
         "No row of figures was found below the first lines. Check that the file is the table of "
         "readings."
     )
+
+
+def _odd_rows_above(lines: list[str], first: int, delimiter: str, width: int) -> int:
+    """Rows right above the first good one that are data all the same: to be read and reported."""
+    count = 0
+    while count < first:
+        fields = split_line(lines[first - count - 1], delimiter)
+        kinds = [kind for field in fields if (kind := kind_of(field)) != "missing"]
+        known = sum(kind != "text" for kind in kinds)
+        if len(fields) <= width / 2 or known <= 0.6 * len(kinds):
+            break
+        count += 1
+    return count
 
 
 @dataclass(frozen=True)
@@ -142,6 +156,9 @@ def _header(lines: list[str], first: int, delimiter: str, width: int) -> _Header
             units = fields
         else:
             names, names_line = fields, at + 1
+            above = _fit(lines[at - 1], delimiter, width) if at else None
+            if above and _share([text for text in above if text], _is_kind) >= 0.6:
+                kinds = above
             break
     if not names:
         _refuse_split_decimals(counts, delimiter, width)
