@@ -70,7 +70,7 @@ def _date(text: str) -> date:
     try:
         return date.fromisoformat(text)
     except ValueError:
-        raise typer.BadParameter(f"{text!r} is no date; write it as 2026-07-14") from None
+        raise InputError(f"--on is {text!r}; write a date as 2026-07-14") from None
 
 
 def _say(outcome: dict[str, Any], as_json: bool, text: str) -> None:

@@ -77,7 +77,12 @@ def test_the_main_job_by_command(shell: Shell) -> None:
     assert len(days) == 122
     assert float(days[0]["tmax"]) == pytest.approx(9.0, abs=6)
     advice = rows(shell.run("export", "advice", "--on", str(basin.TODAY)).stdout)
-    assert [row["field"] for row in advice] == ["Long Piece", "Two Halves", "Two Halves"]
+    assert [(row["field"], row["block"]) for row in advice] == [
+        ("Long Piece", ""),
+        ("Two Halves", "Upper"),
+        ("Two Halves", "Lower"),
+    ]
+    assert "block" not in ledger[0]
 
 
 def rows(text: str) -> list[dict[str, str]]:
@@ -109,6 +114,7 @@ def test_the_schema_is_a_json_schema_of_a_book(shell: Shell) -> None:
         (["load", "none.json"], "cannot be read"),
         (["intake", "bench", "none.csv"], "none.csv"),
         (["export", "ledger", "--field", "none"], "no field 'none'"),
+        (["advise", "--on", "14.7.2026"], "write a date as 2026-07-14"),
         (["export", "station-days", "--station", "none"], "no station 'none'"),
     ],
 )

@@ -4,10 +4,10 @@ from collections.abc import Iterator
 from datetime import date
 from typing import Any
 
-from sqlalchemy import func, select
+from sqlalchemy import case, func, select
 from sqlalchemy.orm import Session
 
-from app.storage.tables import Advice, Block, Farm, Field, LedgerDay, Station, StationDay
+from app.storage.tables import WHOLE, Advice, Block, Farm, Field, LedgerDay, Station, StationDay
 
 LEDGER_COLUMNS = tuple(
     column.name
@@ -80,9 +80,10 @@ def station_rows(session: Session, station_key: str) -> Iterator[tuple[Any, ...]
 def advice_rows(session: Session, on: date) -> Iterator[tuple[Any, ...]]:
     """Farm, field, block and the advice that stands for a morning, by farm and field."""
     columns = [getattr(Advice, name) for name in ADVICE_COLUMNS]
+    named = case((Block.key == WHOLE, ""), else_=Block.name)
     yield from _streamed(
         session,
-        select(Farm.name, Field.name, Block.name, *columns)
+        select(Farm.name, Field.name, named, *columns)
         .join(Block, Block.id == Advice.block_id)
         .join(Field, Field.id == Block.field_id)
         .join(Farm, Farm.id == Field.farm_id)

@@ -26,6 +26,9 @@ from sqlalchemy import (
 from sqlalchemy.engine import Dialect
 from sqlalchemy.orm import DeclarativeBase, Mapped, mapped_column, relationship
 
+WHOLE = "whole"
+"""Key of the one block of a field without blocks."""
+
 
 class Instant(TypeDecorator[datetime]):
     """An instant, stored in UTC and given back with its offset; naive datetimes are refused."""

@@ -29,6 +29,7 @@ def ledger_csv(db: Database, field_key: str, block_key: str | None = None) -> It
     with db.read() as session:
         blocks = exports.blocks_of(session, field_key)
     chosen = [number for number, key in blocks if block_key in (None, key)]
+    lead = 0 if len(blocks) > 1 else 1  # a field that is one whole does not speak of blocks
     if not chosen:
         part = f" with a block {block_key!r}" if block_key else ""
         raise ExportError(f"There is no field {field_key!r}{part}.")
@@ -37,8 +38,8 @@ def ledger_csv(db: Database, field_key: str, block_key: str | None = None) -> It
         with db.read() as session:
             yield from _csv(
                 f"Ledger of {field_key}; mm of water, MJ m-2 a day, m of root depth",
-                ("block", "date", *exports.LEDGER_COLUMNS),
-                exports.ledger_rows(session, chosen),
+                ("block", "date", *exports.LEDGER_COLUMNS)[lead:],
+                (row[lead:] for row in exports.ledger_rows(session, chosen)),
             )
 
     return rows()

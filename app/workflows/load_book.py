@@ -23,6 +23,7 @@ from app.book.schema import (
 from app.storage import book as rows
 from app.storage.events import VOID, events_by_origin, head_of
 from app.storage.tables import (
+    WHOLE,
     Block,
     Event,
     Farm,
@@ -38,8 +39,6 @@ from app.workflows import agronomy
 VARIABLES = ("energy", "temperature", "wind", "rain")
 ORIGIN = "book:"
 """What the origin of an event begins with that a book brought."""
-WHOLE = "whole"
-"""Key of the one block of a field without blocks."""
 
 
 @dataclass
