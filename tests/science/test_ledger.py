@@ -20,6 +20,7 @@ from app.science.ledger import (
 )
 from app.science.soil.profile import Layer, Profile
 from tests.science.random_blocks import random_blocks
+from tests.science.soil.fields import field, weather
 
 COLUMNS = [column.name for column in fields(BlockLedger)]
 
@@ -64,6 +65,8 @@ def assert_within_the_soil(plan: BlockPlan, ledger: BlockLedger) -> None:
         assert (layer <= profile.tew + tiny).all()
     assert ((ledger.ks >= 0.0) & (ledger.ks <= 1.0)).all()
     assert (ledger.et_actual_mm <= ledger.etc_potential_mm + tiny).all()
+    evaporation = np.nan_to_num(ledger.ke) * np.maximum(ledger.eto_mm, 0.0)
+    assert (evaporation <= ledger.et_actual_mm + tiny).all()
     assert (ledger.deep_percolation_mm >= 0.0).all()
     assert (np.diff(ledger.root_depth_m) >= -tiny).all()
 
@@ -230,6 +233,54 @@ def test_the_range_is_the_same_for_the_same_seed_and_holds_the_ledger() -> None:
         assert (low <= ledger.depletion_mm).all()
         assert (high >= ledger.depletion_mm).all()
         assert (high <= ledger.taw_mm * 1.6).all()
+
+
+# p90 - p10 of a normal distribution, in standard deviations.
+P10_TO_P90 = 2.563
+
+
+def spread(plan: BlockPlan, sky: BlockWeather, day: int) -> float:
+    """Width of the range on `day`, from members enough to know it within about 4 %."""
+    low, high = ensemble_depletion(plan, sky, seed=9, members=4000, rn_share=np.zeros(plan.days))
+    return float(high[day] - low[day])
+
+
+def test_each_season_long_factor_has_its_own_width() -> None:
+    """The working values: Kc 10 %, TAW 10 %, efficiency 8 %, rain 15 % and 1 mm."""
+    et_only = field(10, coefficients="single")
+    assert spread(et_only, weather(10), 9) == pytest.approx(P10_TO_P90 * 0.10 * 50.0, rel=0.06)
+    empty = field(1, coefficients="single", depletion_fraction=1.0)
+    taw = float(empty.profile.taw(1.2))
+    assert spread(empty, weather(1, eto=0.0), 0) == pytest.approx(P10_TO_P90 * 0.1 * taw, rel=0.06)
+    watered = field(1, coefficients="single", net={0: 40.0})
+    watered = replace(watered, initial_depletion_mm=60.0, irrigation_gross=np.array([80.0]))
+    expected = P10_TO_P90 * 0.08 * 40.0
+    assert spread(watered, weather(1, eto=0.0), 0) == pytest.approx(expected, rel=0.06)
+    rained = replace(field(1, coefficients="single"), initial_depletion_mm=60.0)
+    expected = P10_TO_P90 * np.hypot(0.15 * 20.0, 1.0)
+    wet = weather(1, eto=0.0, rain={0: 20.0})
+    assert spread(rained, wet, 0) == pytest.approx(expected, rel=0.06)
+
+
+def test_the_energys_uncertainty_is_half_persistent() -> None:
+    """Rung 5, Rn 12 MJ: 12 %; over 20 days 0.12 sqrt(1/2 + 1/40) is left of it."""
+    plan, sky = field(25, coefficients="single"), weather(25, eto=4.0)
+    sky = replace(sky, rung=np.full(25, 5, dtype=np.int8))
+    low, high = ensemble_depletion(plan, sky, seed=9, members=4000, rn_share=np.ones(25))
+    share = np.hypot(0.10, 0.12 * np.sqrt(0.5 + 0.5 / 20.0))
+    assert high[19] - low[19] == pytest.approx(P10_TO_P90 * share * 80.0, rel=0.08)
+
+
+def test_net_water_never_exceeds_what_was_applied() -> None:
+    """Gross equal to net leaves no room for a better efficiency: p10 is the ledger itself."""
+    plan = replace(
+        field(1, coefficients="single", net={0: 40.0}),
+        initial_depletion_mm=60.0,
+        irrigation_gross=np.array([40.0]),
+    )
+    low, high = ensemble_depletion(plan, weather(1, eto=0.0), seed=2)
+    assert low[0] == pytest.approx(20.0)
+    assert high[0] > 21.0
 
 
 def test_the_range_widens_with_a_poorer_rung_and_an_unknown_opening() -> None:

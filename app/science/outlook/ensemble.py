@@ -49,7 +49,7 @@ def ensemble_depletion(
     """
     draw = np.random.Generator(np.random.PCG64(seed))
     season = _centred(draw.standard_normal((5, members)))
-    opening = np.concatenate(([0.5], draw.random(members)))
+    anywhere = np.concatenate(([0.5], draw.random(members)))
     daily = _centred(draw.standard_normal((plan.days, 2, members)))
     stack = stack_plans([plan], [weather])
     base = stack.terms()
@@ -63,10 +63,11 @@ def ensemble_depletion(
     if rain_members is not None:
         told = _with_median(rain_members, weather.rain)
         rain = np.where(np.isnan(told), rain, told)
-    terms = _members(base, stack.supplies, kc * energy, taw, efficiency, rain)
+    opening = base.depletion * (taw if plan.initial_depletion_mm is None else np.ones_like(taw))
+    terms = _members(base, stack.supplies, opening, kc * energy, taw, efficiency, rain)
     if initial_unknown:
         p = np.clip(base.blocks.p_base[0] - P_SLOPE * P_ETC, P_LEAST, P_MOST)
-        terms = replace(terms, depletion=opening * p * terms.days.taw[0])
+        terms = replace(terms, depletion=anywhere * p * terms.days.taw[0])
     depletion = balance(terms).depletion
     low, high = np.percentile(depletion, [LOW, HIGH], axis=1)
     return np.minimum(low, depletion[:, 0]), np.maximum(high, depletion[:, 0])
@@ -129,6 +130,7 @@ def _rain(rain: Floats, distance_km: float, season: Floats, daily: Floats) -> Fl
 def _members(
     base: Terms,
     supplies: Supplies,
+    opening: Floats,
     demand: Floats,
     taw: Floats,
     efficiency: Floats,
@@ -155,7 +157,7 @@ def _members(
     return Terms(
         blocks=Blocks(*(np.broadcast_to(values, columns) for values in base.blocks)),
         days=days,
-        depletion=np.minimum(base.depletion[0], days.taw[0]),
+        depletion=np.minimum(opening, days.taw[0]),
         subsoil=base.subsoil[0] * taw,
         layer=np.broadcast_to(base.layer, columns),
         has_runoff=base.has_runoff,

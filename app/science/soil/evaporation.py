@@ -108,9 +108,8 @@ def wetted_fraction_series(
     Returns fw and a 0/1 array. Source: FAO-56 chapter 7, table 20.
     """
     irrigated = ~np.isnan(irrigation_fw)
-    rained = ~irrigated & (rain >= WETTING_RAIN_MM)
     days = np.arange(rain.shape[0]).reshape((-1,) + (1,) * (rain.ndim - 1))
-    last = np.maximum.accumulate(np.where(irrigated | rained, days, -1), axis=0)
+    last = np.maximum.accumulate(np.where(irrigated | (rain >= WETTING_RAIN_MM), days, -1), axis=0)
     event = np.where(irrigated, irrigation_fw, 1.0)
     known = last >= 0
     index = np.maximum(last, 0)

@@ -9,6 +9,7 @@ from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
 from app.science.advice.decide import Advice, Outlook, decide, first_passed
+from app.science.advice.keeping_up import daily_change
 from app.science.advice.reasons import Reason
 from app.science.advice.system import ApplicationSystem
 
@@ -174,6 +175,23 @@ def test_a_late_field_that_can_recover_is_not_falling_behind() -> None:
     daily = ApplicationSystem(efficiency=1.0, rate_mm_h=5.0, least_mm=2.0, most_mm=12.0)
     assert not advise(66.0, daily).falling_behind
     assert advise(66.0, replace(daily, most_mm=6.0)).falling_behind
+    assert not advise(66.0, replace(daily, most_mm=9.0)).falling_behind  # back after two days
+
+
+def test_the_interval_counts_in_keeping_up() -> None:
+    """24 mm net each time against 6 mm a day: every fourth day is enough, every fifth is not."""
+    turn = ApplicationSystem(efficiency=1.0, rate_mm_h=5.0, least_mm=2.0, most_mm=24.0)
+    daily, now = [6.0] * 28, 45.0
+    ahead = outlook(now, daily)
+    assert not decide(ahead, now, replace(turn, interval_days=4), 1.0).falling_behind
+    assert decide(ahead, now, replace(turn, interval_days=5), 1.0).falling_behind
+
+
+def test_stress_past_the_limit_does_not_pass_for_low_demand() -> None:
+    """A projection that dries out slowly, because it is stressed, still asks for its full ET."""
+    limit, etc = np.full(4, 60.0), np.full(4, 6.0)
+    change = daily_change(58.0, np.array([64.0, 67.0, 69.0, 60.0]), limit, etc)
+    np.testing.assert_allclose(change, [6.0, 6.0, 6.0, -9.0])
 
 
 def test_hours_bound_the_depth() -> None:

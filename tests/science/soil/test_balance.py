@@ -63,6 +63,42 @@ def test_runoff_follows_the_wetness_of_the_evaporation_layer() -> None:
     assert np.isnan(ledger.evaporation_layer_depletion_mm[0])
 
 
+def test_rain_that_runs_off_wets_neither_roots_nor_surface() -> None:
+    plan = field(1, curve_number=100.0, layer_mm=22.0, depletion_fraction=0.5)
+    ledger = block_ledgers([plan], [weather(1, eto=0.0, rain={0: 20.0})])[0]
+    assert ledger.runoff_mm[0] == pytest.approx(20.0)
+    assert ledger.evaporation_layer_depletion_mm[0] == 22.0
+    assert ledger.depletion_mm[0] == pytest.approx(0.5 * ledger.taw_mm[0])
+
+
+def test_irrigation_of_a_part_wets_that_part_deeper() -> None:
+    """FAO-56 eq 77: I / fw on the wetted fraction of the evaporation layer."""
+    plan = field(1, net={0: 5.0}, fw=0.5, layer_mm=18.0)
+    ledger = block_ledgers([plan], [weather(1, eto=0.0)])[0]
+    assert ledger.evaporation_layer_depletion_mm[0] == pytest.approx(18.0 - 5.0 / 0.5)
+
+
+def test_p_moves_with_the_whole_unstressed_et() -> None:
+    """FAO-56 table 22, note 2: p = 0.5 + 0.04 (5 - ETc), ETc with its evaporation."""
+    plan = field(6, k=0.7, net={0: 10.0})
+    ledger = block_ledgers([plan], [weather(6, eto=6.0)])[0]
+    assert ledger.ke[0] > 0.3
+    p = 0.5 + 0.04 * (5.0 - ledger.etc_potential_mm)
+    np.testing.assert_allclose(ledger.raw_mm, p * ledger.taw_mm)
+
+
+def test_the_limit_is_mad_of_taw_else_raw_and_all_of_taw_without_a_crop() -> None:
+    days = 240  # the season ends with day 235
+    by_mad = block_ledgers([field(days, mad=0.4, perennial=False)], [weather(days)])[0]
+    by_raw = block_ledgers([field(days, perennial=False)], [weather(days)])[0]
+    np.testing.assert_allclose(by_mad.limit_mm[:235], 0.4 * by_mad.taw_mm[:235])
+    np.testing.assert_array_equal(by_raw.limit_mm[:235], by_raw.raw_mm[:235])
+    for ledger in (by_mad, by_raw):
+        np.testing.assert_array_equal(ledger.limit_mm[235:], ledger.taw_mm[235:])
+    tree = block_ledgers([field(days, mad=0.4)], [weather(days)])[0]
+    np.testing.assert_allclose(tree.limit_mm, 0.4 * tree.taw_mm)
+
+
 def test_rain_outside_the_wetted_roots_is_told_apart() -> None:
     plan = field(2, roots=0.4, net={0: 6.0})
     ledger = block_ledgers([plan], [weather(2, rain={1: 10.0})])[0]
