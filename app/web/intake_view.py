@@ -131,11 +131,13 @@ def corrected(mapping: Mapping, form: Dict[str, str]) -> Mapping:
                 if "needs_body" in column:
                     column["needs_body"] = False
             column["quantity"], column["unit"] = quantity, unit if quantity else None
-            if quantity and unit and unit not in {u.name for u in units_for(quantity)}:
+            fitting = units_for(quantity) if quantity in QUANTITIES else ()
+            if quantity and fitting and unit and unit not in {known.name for known in fitting}:
+                label = UNITS[unit].label if unit in UNITS else unit
                 raise IntakeError(
                     f"Column {column['name']!r}: {wording.word(wording.QUANTITIES, quantity)} "
-                    f"cannot be in {UNITS[unit].label if unit in UNITS else unit!r}; "
-                    f"choose one of {', '.join(u.label for u in units_for(quantity))}."
+                    f"cannot be in {label}; choose one of "
+                    f"{', '.join(known.label for known in fitting)}."
                 )
     try:
         changed = Mapping.model_validate(data)
