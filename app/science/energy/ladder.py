@@ -1,11 +1,11 @@
 """The ladder: a day's net radiation of the reference surface by the best rung that can be had."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from app.science import Floats
+from app.science import Bools, Floats
 from app.science.constants import GRASS_EMISSIVITY
 from app.science.energy.day_checks import CHECKS, CheckedDays
 from app.science.energy.longwave import (
@@ -15,9 +15,12 @@ from app.science.energy.longwave import (
 )
 from app.science.energy.records import DailyWeather, Site
 from app.science.energy.shortwave import net_shortwave
+from app.science.energy.taught import Taught, taught_net_radiation, why_not_taught
+from app.science.energy.usual import Usual
 from app.science.quantities import QUANTITIES
 
 LEAST_UNCERTAINTY = 0.5  # MJ m-2 d-1, standard uncertainty of a day at best, working value
+TEACHER_SHARE = 0.10  # of net radiation, rung 4 taught by another station, working value
 
 
 @dataclass(frozen=True)
@@ -26,7 +29,7 @@ class Rung:
 
     `number` 1 (best) to 9; `name`; `needs` fields of DailyWeather; `share` standard uncertainty as
     a share of net radiation (working values); `reference_only` needs a reference surface under the
-    sensor; `absent` reason code of a rung nobody serves yet.
+    sensor; `absent` reason code where nothing was handed in that the rung could rest on.
     """
 
     number: int
@@ -48,18 +51,22 @@ LADDER = (
     ),
     Rung(2, "measured sky", ("shortwave_down", "longwave_down", *_EXTREMES), 0.05),
     Rung(3, "single net sensor", ("net_radiation",), 0.08, reference_only=True),
-    Rung(4, "taught model", (), 0.08, absent="no_fit"),
+    Rung(4, "taught model", ("shortwave_down", *_EXTREMES), 0.08, absent="no_fit"),
     Rung(5, "model from solar", ("shortwave_down", *_EXTREMES), 0.12),
-    Rung(6, "solar from neighbours", (), 0.14, absent="no_neighbours"),
+    Rung(6, "solar from neighbours", _EXTREMES, 0.14, absent="no_neighbours"),
     Rung(7, "sunshine hours", ("sunshine", *_EXTREMES), 0.14),
     Rung(8, "temperature range", _EXTREMES, 0.22),
-    Rung(9, "usual for the date", (), 0.27, absent="outlook"),  # filled by the outlook, not here
+    Rung(9, "usual for the date", (), 0.27, absent="outlook"),
 )
 RUNGS = {rung.number: rung for rung in LADDER}
 
 _PLAIN = {
     "surface": "the ground under the sensor is not declared a reference surface",
     "no_fit": "no fit of measured on modelled longwave is at hand",
+    "few_days": "too few measured days to teach the model",
+    "no_spread": "the measured days are too much alike to teach the model",
+    "no_gain": "teaching did not help on days the model had not seen",
+    "outside_taught": "the day lies outside the range that was taught",
     "no_neighbours": "no neighbouring station's solar radiation is at hand",
     "undefined": "the equation has no value for this day",
 }
@@ -76,14 +83,18 @@ def rung_share(rung: NDArray[np.int8]) -> Floats:
     return np.asarray(shares[rung])
 
 
-def rn_uncertainty(rung: NDArray[np.int8], rn: Floats) -> Floats:
+def rn_uncertainty(
+    rung: NDArray[np.int8], rn: Floats, from_teacher: Bools | bool = False
+) -> Floats:
     """Standard uncertainty of a day's net radiation.
 
-    Arguments: `rung` (days,); `rn` (days,) [MJ m-2 d-1]. Returns MJ m-2 d-1, the larger of the
-    rung's share and 0.5; NaN where there is no rung. Source: working values of the methods page.
+    Arguments: `rung` (days,); `rn` (days,) [MJ m-2 d-1]; `from_teacher` where another station
+    taught rung 4. Returns MJ m-2 d-1, the larger of the rung's share and 0.5; NaN where there is
+    no rung. Source: working values of the methods page.
     """
     least = np.where(rung > 0, LEAST_UNCERTAINTY, np.nan)
-    return np.maximum(rung_share(rung) * np.abs(rn), least)
+    share = np.where((rung == 4) & from_teacher, TEACHER_SHARE, rung_share(rung))
+    return np.asarray(np.maximum(share * np.abs(rn), least))
 
 
 def measured_sky(weather: DailyWeather) -> Floats:
@@ -110,30 +121,63 @@ def modelled(weather: DailyWeather, vapour_pressure: Floats, rs: Floats, rso: Fl
     )
 
 
+@dataclass(frozen=True)
+class Shortwave:
+    """Rs of each day by source and Rso, (days,) [MJ m-2 d-1], for rungs without a pyranometer."""
+
+    neighbours: Floats
+    sunshine: Floats
+    temperature: Floats
+    clear_sky: Floats
+
+
 def candidates(
     site: Site,
     weather: DailyWeather,
     vapour_pressure: Floats,
-    rs_sunshine: Floats,
-    rs_temperature: Floats,
-    rso: Floats,
+    shortwave: Shortwave,
+    taught: Taught | None = None,
+    usual: Usual | None = None,
 ) -> dict[int, Floats]:
-    """Net radiation by every rung this module serves; NaN where a rung cannot serve.
+    """Net radiation by every rung; NaN where a rung cannot serve.
 
-    Arguments: `site`; `weather` with what failed set to NaN; the others (days,) [kPa,
-    MJ m-2 d-1]. Returns rung number to (days,) [MJ m-2 d-1].
+    Arguments: `site`; `weather` with what failed set to NaN; `vapour_pressure` (days,) [kPa];
+    `shortwave`; `taught` and `usual` where there are any. Returns rung number to (days,)
+    [MJ m-2 d-1].
     """
     none = np.full(weather.date.shape, np.nan)
+    rso = shortwave.clear_sky
     components = weather.shortwave_down - weather.shortwave_up
     components = components + weather.longwave_down - weather.longwave_up
+    model = modelled(weather, vapour_pressure, weather.shortwave_down, rso)
     return {
         1: components if site.reference_surface else none,
         2: measured_sky(weather),
         3: weather.net_radiation if site.reference_surface else none,
-        5: modelled(weather, vapour_pressure, weather.shortwave_down, rso),
-        7: modelled(weather, vapour_pressure, rs_sunshine, rso),
-        8: modelled(weather, vapour_pressure, rs_temperature, rso),
+        4: taught_net_radiation(taught, weather.shortwave_down, model) if taught else none,
+        5: model,
+        6: modelled(weather, vapour_pressure, shortwave.neighbours, rso),
+        7: modelled(weather, vapour_pressure, shortwave.sunshine, rso),
+        8: modelled(weather, vapour_pressure, shortwave.temperature, rso),
+        9: usual_net_radiation(weather, vapour_pressure, usual, rso) if usual else none,
     }
+
+
+def usual_net_radiation(
+    weather: DailyWeather, vapour_pressure: Floats, usual: Usual, rso: Floats
+) -> Floats:
+    """Net radiation by the usual for the date (rung 9): what was measured, else what is usual.
+
+    Arguments: `weather`, `vapour_pressure` [kPa], `usual`, `rso` [MJ m-2 d-1], all (days,).
+    Returns MJ m-2 d-1. NaN gives NaN. Source: the methods page, ladder; ASCE-EWRI eq 15-18.
+    """
+    warm = replace(
+        weather,
+        tmax=np.where(np.isnan(weather.tmax), usual.tmax, weather.tmax),
+        tmin=np.where(np.isnan(weather.tmin), usual.tmin, weather.tmin),
+    )
+    ea = np.where(np.isnan(vapour_pressure), usual.vapour_pressure, vapour_pressure)
+    return modelled(warm, ea, usual.ratio * rso, rso)
 
 
 def best_rung(
@@ -152,11 +196,17 @@ def best_rung(
     return best, rung
 
 
-def why_not(site: Site, checked: CheckedDays, rung: NDArray[np.int8]) -> NDArray[np.object_]:
+def why_not(
+    site: Site,
+    checked: CheckedDays,
+    rung: NDArray[np.int8],
+    taught: Taught | None = None,
+) -> NDArray[np.object_]:
     """Why no higher rung served, as codes: `1:surface 2:missing:longwave_down 5:failed:<check>`.
 
-    Arguments: `site`; `checked` (days,); `rung` (days,) the rung that served, 0 none. Returns
-    text (days,), empty for rung 1; `explain_rung` reads it back.
+    Arguments: `site`; `checked` (days,); `rung` (days,) the rung that served, 0 none; `taught`
+    (days,) where there is a fit. Returns text (days,), empty for rung 1; `explain_rung` reads it
+    back.
     """
     quantities = sorted({need for r in LADDER for need in r.needs})
     checks = list(CHECKS)
@@ -171,21 +221,26 @@ def why_not(site: Site, checked: CheckedDays, rung: NDArray[np.int8]) -> NDArray
             state = np.where(where, 2 + checks.index(check), state)
         states.append(state)
         packed = packed * (2 + len(checks)) + state
+    fits, fit = [""], np.zeros(rung.shape, dtype=np.int64)
+    if taught is not None:
+        names, fit = np.unique(why_not_taught(taught).astype(str), return_inverse=True)
+        fits = names.tolist()
+    packed = packed * len(fits) + fit
     _, first, which = np.unique(packed, return_index=True, return_inverse=True)
     texts = np.empty(first.size, dtype=np.object_)
     for i, day in enumerate(first):
         of_day = {q: int(s[day]) for q, s in zip(quantities, states, strict=True)}
-        texts[i] = _reasons(site, int(rung[day]), of_day, checks)
+        texts[i] = _reasons(site, int(rung[day]), of_day, checks, fits[fit[day]])
     return np.asarray(texts[which], dtype=np.object_)
 
 
-def _reasons(site: Site, served: int, states: dict[str, int], checks: list[str]) -> str:
+def _reasons(site: Site, served: int, states: dict[str, int], checks: list[str], fit: str) -> str:
     higher = [r for r in LADDER if r.number < (served or 9)]
-    return " ".join(f"{r.number}:{_reason(site, r, states, checks)}" for r in higher)
+    return " ".join(f"{r.number}:{_reason(site, r, states, checks, fit)}" for r in higher)
 
 
-def _reason(site: Site, rung: Rung, states: dict[str, int], checks: list[str]) -> str:
-    if rung.absent:
+def _reason(site: Site, rung: Rung, states: dict[str, int], checks: list[str], fit: str) -> str:
+    if rung.absent and not (rung.number == 4 and fit):
         return rung.absent
     if rung.reference_only and not site.reference_surface:
         return "surface"
@@ -193,7 +248,9 @@ def _reason(site: Site, rung: Rung, states: dict[str, int], checks: list[str]) -
     if missing:
         return "missing:" + ",".join(missing)
     failed = {checks[states[need] - 2]: None for need in rung.needs if states[need] >= 2}
-    return "failed:" + ",".join(failed) if failed else "undefined"
+    if failed:
+        return "failed:" + ",".join(failed)
+    return fit if rung.number == 4 else "undefined"
 
 
 _QUANTITY_OF = {

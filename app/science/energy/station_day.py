@@ -2,7 +2,7 @@
 
 import numpy as np
 
-from app.science import Floats
+from app.science import Bools, Floats
 from app.science.constants import WIND_FLOOR
 from app.science.energy.day_checks import check_days, tokens
 from app.science.energy.humidity import (
@@ -11,6 +11,7 @@ from app.science.energy.humidity import (
     saturation_vapour_pressure,
 )
 from app.science.energy.ladder import (
+    Shortwave,
     best_rung,
     candidates,
     explain_rung,
@@ -26,6 +27,8 @@ from app.science.energy.shortwave import (
     shortwave_from_temperature_range,
 )
 from app.science.energy.sun import day_length, day_of_year, extraterrestrial_daily
+from app.science.energy.taught import Taught
+from app.science.energy.usual import Usual
 from app.science.energy.wind import WIND_SHARE, best_wind
 
 __all__ = [
@@ -38,14 +41,25 @@ __all__ = [
 ]
 
 MEASURED_RUNGS = (1, 2, 3)
+GUESSED_SHARE = HUMIDITY_SHARE[-1]  # of ea, where not even Tmin was measured
 
 
-def station_days(site: Site, weather: DailyWeather) -> StationDays:
+def station_days(
+    site: Site,
+    weather: DailyWeather,
+    *,
+    taught: Taught | None = None,
+    neighbour_ratio: Floats | None = None,
+    usual: Usual | None = None,
+    rn_widening: Floats | float = 0.0,
+) -> StationDays:
     """Net radiation by the best rung, reference ET and their uncertainty for each day.
 
-    Arguments: `site`; `weather` (days,), NaN where not measured. Returns StationDays (days,), NaN
-    and rung 0 where not even temperatures were measured. Values that fail a hard check are not
-    used; the checks that bit stand in `flags`.
+    Arguments: `site`; `weather` (days,), NaN where not measured; what further rungs rest on, all
+    (days,): `taught` (rung 4), `neighbour_ratio` Rs/Rso [-] (rung 6), `usual` (rung 9);
+    `rn_widening` standard uncertainty that replaced hours add [MJ m-2 d-1]. Returns StationDays
+    (days,), NaN and rung 0 where no rung serves. Values that fail a hard check are not used; the
+    checks that bit stand in `flags`. On a rung 9 day ETo rests on the usual for what is missing.
     Source: the methods page, sections on checks, ladder and reference ET; ASCE-EWRI eq 1.
     """
     j = day_of_year(weather.date)
@@ -70,16 +84,27 @@ def station_days(site: Site, weather: DailyWeather) -> StationDays:
         ra, good.sunshine, day_length(site.latitude_deg, j), angstrom
     )
     rs_temperature = shortwave_from_temperature_range(ra, good.tmax, good.tmin, rso, site.coastal)
-    by_rung = candidates(site, good, ea, rs_sunshine, rs_temperature, rso)
+    none = np.full(weather.date.shape, np.nan)
+    rs_neighbours = none if neighbour_ratio is None else neighbour_ratio * rso
+    shortwave = Shortwave(rs_neighbours, rs_sunshine, rs_temperature, rso)
+    by_rung = candidates(site, good, ea, shortwave, taught, usual)
     rn, rung = best_rung(by_rung)
-    rn_error = rn_uncertainty(rung, rn)
-    eto, etr = eto_from_parts(good.tmax, good.tmin, ea, rn, u2, site.elevation_m)
+    rn_error = rn_uncertainty(rung, rn, False if taught is None else taught.teacher)
+    rn_error = np.hypot(rn_error, rn_widening)
+    humidity_error = HUMIDITY_SHARE[humidity_rung] * ea
+    parts = (good.tmax, good.tmin, ea)
+    if usual is not None:
+        humidity_error = np.where(
+            np.isnan(ea), GUESSED_SHARE * usual.vapour_pressure, humidity_error
+        )
+        parts = _with_usual(rung == 9, parts, usual)
+    eto, etr = eto_from_parts(*parts, rn, u2, site.elevation_m)
     flags = np.empty(weather.date.shape, dtype=np.object_)
     flags[:] = tokens(checked.findings, weather.date.size)
     return StationDays(
         date=weather.date,
         rung=rung,
-        why_not=why_not(site, checked, rung),
+        why_not=why_not(site, checked, rung, taught),
         rn=rn,
         rn_uncertainty=rn_error,
         rn_measured=best_rung(by_rung, MEASURED_RUNGS)[0],
@@ -88,20 +113,24 @@ def station_days(site: Site, weather: DailyWeather) -> StationDays:
         humidity_rung=humidity_rung,
         wind_2m=u2,
         wind_rung=wind_rung,
-        rs=_first_known(good.shortwave_down, rs_sunshine, rs_temperature),
+        rs=_first_known(
+            good.shortwave_down,
+            rs_neighbours,
+            rs_sunshine,
+            rs_temperature,
+            none if usual is None else usual.ratio * rso,
+        ),
         rso=rso,
         ra=ra,
         eto=eto,
         etr=etr,
         eto_uncertainty=eto_uncertainty(
-            good.tmax,
-            good.tmin,
-            ea,
+            *parts,
             rn,
             u2,
             site.elevation_m,
             rn_error=rn_error,
-            vapour_pressure_error=HUMIDITY_SHARE[humidity_rung] * ea,
+            vapour_pressure_error=humidity_error,
             wind_error=WIND_SHARE[wind_rung] * np.maximum(u2, WIND_FLOOR),
         ),
         rh_min_used=_lowest_humidity(good, ea),
@@ -110,6 +139,18 @@ def station_days(site: Site, weather: DailyWeather) -> StationDays:
         rain=good.rain,
         flags=flags,
     )
+
+
+def _with_usual(
+    where: Bools, parts: tuple[Floats, Floats, Floats], usual: Usual
+) -> tuple[Floats, Floats, Floats]:
+    """Tmax, Tmin and ea with what is missing on a rung 9 day taken from the usual for the date."""
+    fill = (usual.tmax, usual.tmin, usual.vapour_pressure)
+    tmax, tmin, ea = (
+        np.where(where & np.isnan(own), filler, own)
+        for own, filler in zip(parts, fill, strict=True)
+    )
+    return tmax, tmin, ea
 
 
 def _first_known(*sources: Floats) -> Floats:
