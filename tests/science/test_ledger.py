@@ -257,8 +257,8 @@ def test_each_season_long_factor_has_its_own_width() -> None:
     expected = P10_TO_P90 * 0.08 * 40.0
     assert spread(watered, weather(1, eto=0.0), 0) == pytest.approx(expected, rel=0.06)
     rained = replace(field(1, coefficients="single"), initial_depletion_mm=60.0)
-    expected = P10_TO_P90 * np.hypot(0.15 * 20.0, 1.0)
-    wet = weather(1, eto=0.0, rain={0: 20.0})
+    expected = P10_TO_P90 * np.hypot(0.15 * 8.0, 1.0)
+    wet = weather(1, eto=0.0, rain={0: 8.0})
     assert spread(rained, wet, 0) == pytest.approx(expected, rel=0.06)
 
 
