@@ -6,7 +6,7 @@ from typing import BinaryIO
 import numpy as np
 
 from app.intake.cells import DELIMITERS, kind_of, split_line
-from app.intake.chunk import Chunk, Plan, parse, plan_of
+from app.intake.chunk import parse
 from app.intake.civil import civil_to_utc
 from app.intake.dates import NOT_A_DATE, OK, WHY, Times, read_times
 from app.intake.errors import IntakeError
@@ -20,6 +20,7 @@ from app.intake.model import (
     Progress,
     Reading,
 )
+from app.intake.plan import Chunk, Plan, plan_of
 from app.intake.questions import unanswered
 from app.intake.report import Report
 from app.intake.sniff_dates import has_clock

@@ -97,7 +97,7 @@ def test_thousands_in_a_file_of_decimal_commas(cell: str, value: float | None) -
     reading = take(data)
     if value is None:  # impossible, or not to be told from a decimal point
         assert np.isnan(reading.rows.values["shortwave_down"][-1])
-        assert reading.problems[0].value.startswith(cell[:4])
+        assert reading.problems[0].value in (cell, "12345678")
     else:
         assert reading.rows.values["shortwave_down"][-1] == pytest.approx(value * 1000 / 86400)
 
