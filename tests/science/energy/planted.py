@@ -1,0 +1,38 @@
+"""The public records laid out by day and row, for the tests that plant faults in them."""
+
+from dataclasses import replace
+from functools import cache
+
+import numpy as np
+
+from app.science.energy.day_rows import DayRows, day_rows
+from app.science.energy.humidity import saturation_vapour_pressure
+from tests.science.energy.records import ALAMOSA, PAYERNE, payerne_rows, surfrad_rows
+
+Grid = dict[str, np.ndarray]
+
+
+@cache
+def payerne_grid() -> tuple[DayRows, Grid]:
+    """29 whole local days, 2 to 30 June 2016, (29, 96), with `vapour_pressure` by row."""
+    record = payerne_rows()
+    first = int(np.flatnonzero((record.middle + 3600) % 86400 == 450)[0])
+    kept = slice(first, first + 29 * 96)
+    rows = day_rows(PAYERNE, np.datetime64("2016-06-02") + np.arange(29), 96)
+    np.testing.assert_array_equal(rows.middle.reshape(-1), record.middle[kept])
+    return rows, with_vapour({n: v[kept].reshape(29, 96) for n, v in record.values.items()})
+
+
+@cache
+def surfrad_grid() -> tuple[DayRows, Grid]:
+    """The one day by UTC, whose daylight is a whole local day's, (1, 1440)."""
+    record = surfrad_rows()
+    site = replace(ALAMOSA, utc_offset_h=0.0)
+    rows = day_rows(site, np.array(["2016-01-01"], dtype="datetime64[D]"), 1440)
+    np.testing.assert_array_equal(rows.middle.reshape(-1), record.middle)
+    return rows, with_vapour({n: v.reshape(1, 1440) for n, v in record.values.items()})
+
+
+def with_vapour(grid: Grid) -> Grid:
+    moist = np.minimum(grid["relative_humidity"], 100.0) / 100.0
+    return grid | {"vapour_pressure": saturation_vapour_pressure(grid["air_temperature"]) * moist}
