@@ -153,12 +153,14 @@ def _dates(every: Sequence[date], count: int, x: object, today: date | None) -> 
     assert callable(x)
     gap = max(7 * round(count / 35), 7) if count > 20 else max(count // 4, 1)
     anchor = today or every[0]
-    found = []
+    found: list[Mark] = []
     for place in range(-60, 60):
         day = anchor + timedelta(days=place * gap)
         if every[0] <= day <= every[-1]:
             where = x(day)
             side = "mid" if LEFT + 30 < where < WIDTH - 40 else "end" if where > LEFT + 30 else ""
+            if side == "end" and found and where - found[-1].x < 110:
+                continue
             morning = wording.plain_day(day + timedelta(days=1))
             found.append(Mark(where, HEIGHT - 8, 0.0, morning, side))
     return tuple(found)

@@ -99,7 +99,7 @@ def facts(
             found.append((label, f"{wording.depth(float(figures[name]))} mm"))
     found += [
         ("application efficiency", wording.share(system.get("efficiency"))),
-        ("rate, gross", f"{wording.number(system.get('rate_mm_h'), 1)} mm/h"),
+        ("rate, gross", f"{wording.number(system.get('rate_mm_h'), 2)} mm/h"),
         ("area", f"{wording.number(block.area_ha, 1)} ha"),
         ("energy of the last day", wording.rung(advice["rung"])),
     ]

@@ -71,7 +71,7 @@ def _energy(row: Row, sources: Mapping[str, SourceRow], days: Mapping[int, Row])
             number(row["rn_mj_m2"], 2),
             "MJ m⁻² d⁻¹",
             how,
-            RN.get(row["rung"], "Methods 4"),
+            RN.get(row["rung"], "Methods 3"),
             link,
         )
     )
@@ -178,7 +178,7 @@ def _water(
     if row["rain_outside_roots_mm"]:
         terms.append(
             Term("rain outside the roots", number(row["rain_outside_roots_mm"], 1), "mm",
-                 "(1 − wetted root fraction) × rain", "Methods 7")
+                 "(1 − wetted root fraction) × rain", "Methods 6")
         )  # fmt: skip
     for event in events:
         if event.kind != "rain":
@@ -193,12 +193,12 @@ def _water(
         share = wording.share(block.system.get("efficiency"))
         terms += [
             Term("irrigation, gross", number(row["irrigation_gross_mm"], 1), "mm",
-                 f"hours × {number(block.system.get('rate_mm_h'), 1)} mm/h, or the depth or "
-                 "volume as entered", "Methods 7"),
+                 f"hours × {number(block.system.get('rate_mm_h'), 2)} mm/h, or the depth or "
+                 "volume as entered", "Methods 6"),
             Term("lost in application", number(row["application_loss_mm"], 1), "mm",
-                 f"gross − net, efficiency {share}", "Methods 7"),
+                 f"gross − net, efficiency {share}", "Methods 6"),
             Term("irrigation, net", number(row["irrigation_net_mm"], 1), "mm",
-                 f"gross × {share}", "Methods 7"),
+                 f"gross × {share}", "Methods 6"),
         ]  # fmt: skip
     if row["capillary_rise_mm"]:
         terms.append(
@@ -220,7 +220,7 @@ def _root_zone(row: Row, block: BlockRow, season: SeasonRow | None) -> list[Term
              "p TAW, p = p table + 0.04 (5 − ETc)", "FAO-56 eq 83, Table 22"),
         Term("limit", number(row["limit_mm"], 1), "mm", limit, "the season’s setting"),
         Term("taken over by new roots", number(row["root_growth_depletion_mm"], 2), "mm",
-             "depletion of the layer the roots grew into", "Methods 7"),
+             "depletion of the layer the roots grew into", "Methods 6"),
     ]  # fmt: skip
 
 
@@ -246,14 +246,14 @@ def _close(row: Row, before: Row | None) -> list[Term]:
         Term("deep percolation", number(row["deep_percolation_mm"], 2), "mm",
              "what the root zone cannot hold", "FAO-56 eq 88"),
         Term("correction by a reading", number(row["correction_mm"], 2), "mm",
-             "none" if not row["correction_mm"] else "the reading of the day", "Methods 8"),
+             "none" if not row["correction_mm"] else "the reading of the day", "Methods 6"),
         Term("depletion at the close", number(row["depletion_mm"], 2), "mm", figures,
-             "FAO-56 eq 85; Methods 7"),
+             "FAO-56 eq 85; Methods 6"),
         Term("its range, eight years in ten",
              f"{number(row['depletion_p10_mm'], 1)} to {number(row['depletion_p90_mm'], 1)}", "mm",
-             "200 members of the same balance", "Methods 10, working values"),
+             "200 members of the same balance", "Methods 7, working values"),
         Term("store below the roots, depletion", number(row["subsoil_depletion_mm"], 2), "mm",
-             "takes the percolation, gives to new roots", "Methods 7"),
+             "takes the percolation, gives to new roots", "Methods 6"),
         Term("evaporation layer, depletion", number(row["evaporation_layer_depletion_mm"], 2),
              "mm", "of the uppermost soil", "FAO-56 eq 77"),
     ]  # fmt: skip
