@@ -73,4 +73,5 @@ def working_values() -> list[tuple[str, str, str]]:
         ("soon: days after due", f"{decide.SOON_DAYS}", "advice"),
         ("unsure: an input older than", f"{decide.STALE_DAYS} days", "advice"),
         ("unsure: early and late limit dates apart", f"over {decide.WIDE_DAYS} days", "advice"),
+        ("unsure: the early one within", f"{decide.NEAR_DAYS} days", "advice"),
     ]

@@ -77,7 +77,11 @@ def crop_season(details: dict[str, Any], planting: date) -> CropSeason:
     row = handbook.crop(details["crop"])
     dual = details["coefficients"] == "dual"
     names = ("kcb_ini", "kcb_mid", "kcb_end") if dual else ("kc_ini", "kc_mid", "kc_end")
-    k_ini, k_mid, k_end = (_over(details[name], getattr(row, name)) for name in names)
+    given = [details[name] for name in names]
+    if None in given:
+        published = row.coefficients(details["coefficients"])
+        given = [p if g is None else g for g, p in zip(given, published, strict=True)]
+    k_ini, k_mid, k_end = given
     return CropSeason(
         planting=np.datetime64(planting, "D"),
         stage_days=_stages(details, row),
@@ -97,10 +101,8 @@ def crop_season(details: dict[str, Any], planting: date) -> CropSeason:
     )
 
 
-def _over(given: float | None, published: float | None) -> float:
-    value = given if given is not None else published
-    assert value is not None
-    return value
+def _over(given: float | None, published: float) -> float:
+    return published if given is None else given
 
 
 def _stages(details: dict[str, Any], row: Any) -> tuple[int, int, int, int]:

@@ -52,6 +52,8 @@ class Subject:
     weather: BlockWeather
     past: int
     """How many of the plan's days are past; the rest is the outlook."""
+    opening_unknown: bool
+    """A ledger that starts after planting without a reading: anywhere in 0-100 % of RAW."""
     last_irrigation: date | None
 
 
@@ -316,5 +318,10 @@ def _subject(
             rn=weather.rn[here],
         ),
         past=min(days, (through - start).days + 1),
+        opening_unknown=(
+            start > season.planting
+            and details["initial_depletion_mm"] is None
+            and details["initial_depletion_fraction"] is None
+        ),
         last_irrigation=last_irrigation,
     )

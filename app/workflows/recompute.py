@@ -175,7 +175,13 @@ def _range(subject: Subject) -> tuple[Floats, Floats]:
     new day does not stir the days before."""
     name = f"{subject.block.field_key}/{subject.block.block_key}/{subject.season.planting}"
     seed = zlib.crc32(name.encode())
-    return ensemble_depletion(subject.plan, subject.weather, seed=seed, members=MEMBERS)
+    return ensemble_depletion(
+        subject.plan,
+        subject.weather,
+        seed=seed,
+        members=MEMBERS,
+        initial_unknown=subject.opening_unknown,
+    )
 
 
 def write_ledgers(session: Session, computed: Iterable[Computed], since: Mapping[int, date]) -> int:

@@ -14,7 +14,7 @@ from app.science.advice.system import ApplicationSystem
 M3_PER_MM_HA = 10.0
 # "soon" reaches this many days beyond "due"; inputs older than, or limit dates further apart
 # than, these days make an advice unsure (working values).
-SOON_DAYS, STALE_DAYS, WIDE_DAYS = 3, 2, 4
+SOON_DAYS, STALE_DAYS, WIDE_DAYS, NEAR_DAYS = 3, 2, 4, 2
 # Leaching requirements up to this one are met by ordinary losses (NEH 623, from memory).
 LEACHING_COUNTS = 0.1
 
@@ -302,11 +302,14 @@ def _limit_figures(outlook: Outlook, passed: int | None) -> dict[str, float | st
 
 
 def _wide(outlook: Outlook) -> bool:
-    """Whether the limit dates of p90 (dry) and p10 (wet) lie more than four days apart; a date
+    """Whether the limit dates of p90 (dry) and p10 (wet) lie more than four days apart, the dry
+    one today or tomorrow: a range as wide further off changes nothing that is decided now. A date
     beyond the horizon counts as the day after it."""
     if outlook.p10 is None or outlook.p90 is None:
         return False
     dry = first_passed(outlook.p90, outlook.limit)
     wet = first_passed(outlook.p10, outlook.limit)
     beyond = outlook.date.size
-    return (beyond if wet is None else wet) - (beyond if dry is None else dry) > WIDE_DAYS
+    if dry is None or dry >= NEAR_DAYS:
+        return False
+    return (beyond if wet is None else wet) - dry > WIDE_DAYS

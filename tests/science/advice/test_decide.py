@@ -245,9 +245,11 @@ def test_unsure_by_age_or_by_range() -> None:
     assert advise(40.0, input_age_days=3).unsure
     base = outlook(40.0)
     near = replace(base, p10=base.depletion - 20.0, p90=base.depletion + 2.0)
-    far = replace(base, p10=base.depletion - 26.0, p90=base.depletion + 7.0)
+    far = replace(base, p10=base.depletion - 26.0, p90=base.depletion + 13.0)
+    later = replace(base, p10=base.depletion - 32.0, p90=base.depletion + 1.0)
     assert not decide(near, 40.0, SYSTEM, 1.0).unsure
     assert decide(far, 40.0, SYSTEM, 1.0).unsure
+    assert not decide(later, 40.0, SYSTEM, 1.0).unsure  # as wide, but nothing hangs on it yet
     assert decide(far, 40.0, SYSTEM, 1.0).standing == decide(near, 40.0, SYSTEM, 1.0).standing
 
 
