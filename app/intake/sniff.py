@@ -66,12 +66,13 @@ def sniff(source: BinaryIO, clock: Clock, remembered: Mapping | None = None) -> 
 def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clock) -> Sniffed:
     questions: list[Question] = []
     notes = [f"dates: {when.why}"]
-    layout, suggested = when.layout, None
+    layout, suggested, when_why = when.layout, None, when.why
     if order_matters(table, layout):
         order = find_order(source, encoding, table, layout)
         layout = layout.model_copy(update={"order": order.settled})
         suggested = layout.model_copy(update={"order": order.suggested})
         notes.append(f"order of the date: {order.why}")
+        when_why += f"; {order.why}"
         if order.settled is None:
             position = next(c.position for c in layout.columns if c.role in ("instant", "date"))
             first = table.rows[0][position] if table.rows else None
@@ -91,7 +92,7 @@ def _fresh(source: BinaryIO, encoding: str, table: Table, when: When, clock: Clo
         else f"clock: the station's standard time (UTC{clock.utc_offset_h:+g} h)"
     )
     taken = {column.position for column in layout.columns}
-    guesses = guess_columns(table, taken, interval or 3600)
+    guesses = guess_columns(table, taken, interval or 3600, when_why)
     for guess in guesses:
         questions += guess.questions
     codes, code_note = find_codes(table)

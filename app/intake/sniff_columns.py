@@ -79,13 +79,15 @@ class ColumnGuess:
     questions: tuple[Question, ...] = ()
 
 
-def guess_columns(table: Table, taken: set[int], interval_s: int) -> list[ColumnGuess]:
-    """A guess for every column but those that say when (`taken` positions)."""
+def guess_columns(
+    table: Table, taken: set[int], interval_s: int, when_why: str
+) -> list[ColumnGuess]:
+    """A guess for every column; those at the positions `taken` say when, for `when_why`."""
     guesses: list[ColumnGuess] = []
     used: dict[str, str] = {}
     for i, name in enumerate(table.names):
         if i in taken:
-            guesses.append(ColumnGuess(ColumnMap(position=i, name=name), "says when"))
+            guesses.append(ColumnGuess(ColumnMap(position=i, name=name), when_why))
             continue
         says = read_name(name, table.units[i], table.kinds[i])
         empty = ColumnMap(position=i, name=name, unit=says.unit)

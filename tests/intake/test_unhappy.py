@@ -89,7 +89,7 @@ def test_one_date_far_down_settles_day_and_month() -> None:
     assert len(data) > 2_000_000
     found = look(data)
     assert found.mapping.time.order == "dmy"
-    assert any("line 103682 (13/02/2025)" in note for note in found.notes)
+    assert "line 103682 (13/02/2025) settles day before month" in found.why[0]
 
 
 def test_dates_that_only_month_first_allows() -> None:
