@@ -4,6 +4,9 @@
   for (const select of document.querySelectorAll("form.sieve select"))
     select.addEventListener("change", () => select.form.requestSubmit());
 
+  for (const sheet of document.querySelectorAll(".sheet"))
+    if (sheet.scrollWidth > sheet.clientWidth) sheet.tabIndex = 0;
+
   const form = document.getElementById("log");
   if (!form) return;
   const hours = (input) => { input.inputMode = "decimal"; input.autocomplete = "off"; };

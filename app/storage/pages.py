@@ -4,7 +4,7 @@ from collections.abc import Sequence
 from datetime import date, timedelta
 from typing import Any, NamedTuple
 
-from sqlalchemy import and_, exists, func, select
+from sqlalchemy import Text, and_, cast, exists, func, select
 from sqlalchemy.orm import Session, aliased
 
 from app.storage.tables import (
@@ -22,7 +22,10 @@ from app.storage.tables import (
 
 
 class RoundsRow(NamedTuple):
-    """One block with the advice of the morning; the advice's columns are None without one."""
+    """One block with the advice of the morning; the advice's columns are None without one.
+
+    `stage_days` and `figures` are JSON text, for most rows are never asked for them.
+    """
 
     field_id: int
     field_key: str
@@ -37,7 +40,7 @@ class RoundsRow(NamedTuple):
     system_name: str
     crop: str | None
     planting: date | None
-    stage_days: list[int] | None
+    stage_days: str | None
     number: int | None
     issued_on: date | None
     standing: str | None
@@ -49,7 +52,7 @@ class RoundsRow(NamedTuple):
     volume_m3: float
     limit_day: date | None
     reason: str
-    figures: dict[str, Any]
+    figures: str
     depletion_mm: float
     depletion_p10_mm: float
     depletion_p90_mm: float
@@ -72,7 +75,7 @@ ADVICE_COLUMNS = (
     Advice.volume_m3,
     Advice.limit_day,
     Advice.reason,
-    Advice.figures,
+    cast(Advice.figures, Text),
     Advice.depletion_mm,
     Advice.depletion_p10_mm,
     Advice.depletion_p90_mm,
@@ -108,7 +111,7 @@ def rounds_rows(
             IrrigationSystem.name,
             Season.crop,
             Season.planting,
-            Season.details["stage_days"],
+            Season.details["stage_days"].as_string(),
             *ADVICE_COLUMNS,
         )
         .join(Farm, Farm.id == Field.farm_id)

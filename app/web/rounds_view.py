@@ -1,8 +1,10 @@
 """What the Rounds show: rows already worded, sifted and put in order."""
 
+import json
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from datetime import date, timedelta
+from functools import cache
 from typing import Any, NamedTuple
 from urllib.parse import urlencode
 
@@ -167,7 +169,7 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
         row.field_key,
         row.field_name,
         row.farm_name,
-        season_words(row.crop, row.planting, row.stage_days, facts.today),
+        season_words(row.crop, row.planting, stage_days_of(row.stage_days), facts.today),
         ran,
         error,
         typed,
@@ -189,11 +191,18 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
         gross=wording.depth(row.gross_mm) if watering else "",
         net=wording.depth(row.net_mm) if watering else "",
         hours=wording.number(row.hours, 1) if watering else "",
-        why=wording.reason(row.reason, row.figures, row.day, facts.today),
+        why=wording.reason(row.reason, json.loads(row.figures), row.day, facts.today),
         change="" if row.change_mm is None else f"{wording.signed(row.change_mm)} mm; ",
         rung=wording.rung(row.rung),
         age="" if row.unsure.startswith("stale") else age(row.data_until, facts.today),
     )
+
+
+@cache
+def stage_days_of(text: str | None) -> tuple[int, ...] | None:
+    """The season's own stage lengths from their JSON text; None where it has none."""
+    found = json.loads(text) if text else None
+    return tuple(found) if found else None
 
 
 def when(day: date | None, today: date) -> str:

@@ -4,6 +4,7 @@ import string
 import warnings
 from collections.abc import Mapping
 from datetime import date
+from functools import cache
 from typing import Any
 
 from app.wording.codes import UnwordedCode
@@ -54,25 +55,29 @@ BOUNDS = {
 NOT_HELD = "{past_field_capacity_mm:mm} of it the root zone cannot hold."
 
 
-class _Figures(string.Formatter):
-    """Puts figures into a sentence: `{net_mm:mm}`, `{limit_day:on}`, `{cover_days:days}`."""
+@cache
+def _pieces(template: str) -> tuple[tuple[str, str, str], ...]:
+    """A template taken apart: text before, name of the figure, how it is said."""
+    parts = string.Formatter().parse(template)
+    return tuple((text, name or "", spec or "") for text, name, spec, _ in parts)
 
-    def __init__(self, today: date) -> None:
-        self.today = today
 
-    def format_field(self, value: Any, format_spec: str) -> str:
-        if format_spec in ("near", "on"):
-            day = date.fromisoformat(str(value))
-            said = near_day(day, self.today)
-            nearby = (day - self.today).days in NEAR
-            return said if format_spec == "near" or nearby else f"on {said}"
-        return FIGURES[format_spec](float(value))
+def _said(value: Any, spec: str, today: date) -> str:
+    """A figure as its template wants it said: `net_mm:mm`, `limit_day:on`, `cover_days:days`."""
+    if spec not in ("near", "on"):
+        return FIGURES[spec](float(value))
+    day = date.fromisoformat(str(value))
+    said = near_day(day, today)
+    return said if spec == "near" or (day - today).days in NEAR else f"on {said}"
 
 
 def sentence(template: str, figures: Mapping[str, Any], today: date) -> str:
     """A sentence of a table with its figures; the first letter is made large."""
-    text = _Figures(today).vformat(template, (), figures)
-    return text[:1].upper() + text[1:]
+    said = "".join(
+        text + (_said(figures[name], spec, today) if name else "")
+        for text, name, spec in _pieces(template)
+    )
+    return said[:1].upper() + said[1:]
 
 
 def reason(code: str, figures: Mapping[str, Any], day: date | None, today: date) -> str:
