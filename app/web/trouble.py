@@ -1,6 +1,6 @@
 """Stations with trouble: silent, fallen to a lower rung, or with checks that failed."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date, timedelta
 
@@ -74,8 +74,8 @@ def raised(days: Sequence[RecentDay], today: date) -> str:
 def troubles(
     stations: Iterable[StationRow],
     recent: Sequence[RecentDay],
-    last: dict[int, date],
-    fields: dict[int, int],
+    last: Mapping[int, date],
+    fields: Mapping[int, int],
     today: date,
 ) -> list[Trouble]:
     """Every station with trouble, silent ones first."""

@@ -66,6 +66,7 @@ def test_a_grower_sees_the_own_farm_only(demo: Browser) -> None:
     assert OWN in rounds
     assert f'"{FOREIGN}"' not in rounds
     assert "Tern Creek" not in rounds
+    assert "Bench" not in rounds
     assert "/intake" not in rounds
     assert demo.get(f"/fields/{OWN}").status_code == 200
     for path in (

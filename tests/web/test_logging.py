@@ -164,6 +164,8 @@ def test_bad_entries_of_the_field_page_are_refused_in_words(live: Browser) -> No
         answer = live.post("/fields/long-piece/events", data={"token": "abcd", **form})
         assert answer.status_code == 422, form
         assert says in answer.text, form
+        if form["amount"] and "note" not in form:
+            assert 'value="5" required' in answer.text, form
 
 
 def test_the_morning_can_be_worked_out_by_hand(live: Browser) -> None:

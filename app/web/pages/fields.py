@@ -49,8 +49,9 @@ def show(
     block_key: str = "",
     whole: bool = False,
     error: str = "",
+    typed: dict[str, str] | None = None,
 ) -> Response:
-    """The Field page, with an error over its forms if there is one."""
+    """The Field page; with an error over its forms, and what was typed still in them."""
     blocks = own_blocks(db, viewer, key)
     with db.read() as session:
         morning = store.last_morning(session, today)
@@ -114,6 +115,8 @@ def show(
         season_facts=view.season_facts(season),
         token=secrets.token_urlsafe(12),
         error=error,
+        typed={"day": str(today - timedelta(days=1)), "amount": "", "unit": "hours", "note": ""}
+        | (typed or {}),
     )
 
 
@@ -173,7 +176,8 @@ def log(
                 purpose, confirmation, note.strip() or None,
             )  # fmt: skip
     except (EventError, RefusedError) as error:
-        return show(request, db, viewer, today, key, block, error=said(error))
+        typed = {"day": day, "amount": amount, "unit": unit, "note": note}
+        return show(request, db, viewer, today, key, error=said(error), typed=typed)
     return back(key, block)
 
 

@@ -1,7 +1,7 @@
 """Rounds: the morning page, and logging irrigations in its rows."""
 
 import secrets
-from collections import defaultdict
+from collections import Counter, defaultdict
 from datetime import date, timedelta
 from typing import Annotated
 from urllib.parse import urlencode
@@ -19,7 +19,7 @@ from app.web.managed import one_a_field
 from app.web.needs import AsDatabase, AsToday, read_day, read_number
 from app.web.problems import RefusedError
 from app.web.render import page
-from app.web.trouble import Trouble, troubles
+from app.web.trouble import troubles
 
 router = APIRouter()
 EVENTS_SHOWN_DAYS = 4
@@ -152,6 +152,9 @@ def _show(
     common = {"rows": worded, "token": secrets.token_urlsafe(12), "said": said}
     if only is not None:
         return page(request, "parts/rounds_rows.html", status, **common)
+    fields = Counter(source.station_id for source in facts.energy.values())
+    # a grower sees the stations that feed the farm, and no other
+    shown = [item for item in stations if viewer.farm is None or item.id in fields]
     return page(
         request,
         "pages/rounds.html",
@@ -165,13 +168,13 @@ def _show(
         more=view.parts(sieve, found),
         counts=view.counts(rows),
         asked=view.asked_for(rows, today),
-        troubles=_troubles(stations, recent, last, facts, rows, today, viewer),
+        troubles=troubles(shown, recent, last, fields, today),
         sieve=sieve,
         sieve_query=sieve.query(),
         sorts=[(name, label) for name, (label, _) in view.SORTS.items()],
         farms=sorted({(row.farm_key, row.farm_name) for row in rows}, key=lambda f: f[1]),
         crops=view.crops_of(rows),
-        stations=[(station.key, station.name) for station in stations],
+        stations=[(station.key, station.name) for station in shown],
         standings=[*view.ORDER, "unsure", "none"],
     )
 
@@ -182,22 +185,3 @@ def _said(done: list[str] | None, logged: str, errors: int) -> str:
     if errors:
         said += f"Not logged for {wording.counted(errors, 'field', 'fields')}: see its row."
     return said.strip()
-
-
-def _troubles(
-    stations: list[store.StationRow],
-    recent: list[store.RecentDay],
-    last: dict[int, date],
-    facts: view.Facts,
-    rows: list[store.RoundsRow],
-    today: date,
-    viewer: Viewer,
-) -> list[Trouble]:
-    """The strip: every station, or for a grower those that feed the farm."""
-    fields: dict[int, int] = defaultdict(int)
-    for row in rows:
-        source = facts.energy.get(row.field_id)
-        if source is not None:
-            fields[source.station_id] += 1
-    shown = [s for s in stations if viewer.farm is None or s.id in fields]
-    return troubles(shown, recent, last, fields, today)
