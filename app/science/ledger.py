@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.science import Floats
-from app.science.outlook.ensemble import ensemble_depletion
+from app.science.outlook.ensemble import ensemble_depletion, ensemble_depletions
 from app.science.soil.balance import Balance, Terms, balance, balance_scalar
 from app.science.soil.block import BlockLedger, BlockPlan, BlockWeather
 from app.science.soil.stack import Stack, stack_plans
@@ -19,6 +19,7 @@ __all__ = [
     "block_ledgers",
     "closure_error",
     "ensemble_depletion",
+    "ensemble_depletions",
 ]
 
 
@@ -60,7 +61,7 @@ def _together(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> li
         columns["depletion_mm"], columns["limit_mm"], columns["etc_potential_mm"]
     )
     return [
-        _ledger(plan, sky, float(terms.depletion[b]), {k: v[b] for k, v in columns.items()})
+        _ledger(plan, sky, float(terms.opening.depletion[b]), {k: v[b] for k, v in columns.items()})
         for b, (plan, sky) in enumerate(zip(plans, weather, strict=True))
     ]
 

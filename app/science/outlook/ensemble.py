@@ -1,16 +1,21 @@
-"""The range of a ledger's depletion: the same balance under many plausible inputs."""
+"""The range of a ledger's depletion: the same balance under many plausible inputs.
 
-from dataclasses import replace
+Members of many blocks lie side by side, (blocks, members), and go through one day loop: each
+day's terms are made from the blocks' own when that day comes, so that only the closing depletions
+and the draws are held for all days.
+"""
+
+from collections.abc import Sequence
+from typing import TypeVar
 
 import numpy as np
 
-from app.science import Floats
+from app.science import Bools, Floats
 from app.science.energy.ladder import RUNGS, rn_uncertainty
-from app.science.soil.balance import Blocks, Days, Terms, balance
+from app.science.soil.balance import Blocks, Days, State, Terms, balance_day
 from app.science.soil.block import BlockPlan, BlockWeather
 from app.science.soil.root_zone import P_ETC, P_LEAST, P_MOST, P_SLOPE
-from app.science.soil.stack import stack_plans
-from app.science.soil.terms import Supplies
+from app.science.soil.stack import Stack, stack_plans
 
 # Standard deviations of the season-long factors, and of rain on a wet day (working values).
 KC_SHARE, TAW_SHARE, EFFICIENCY_SHARE = 0.10, 0.10, 0.08
@@ -23,6 +28,11 @@ RN_SHARE = 0.7
 # No factor falls below this.
 LEAST_FACTOR = 0.2
 LOW, HIGH = 10.0, 90.0
+# Columns (blocks x members) of one day loop, so that its arrays stay in the processor's cache.
+COLUMNS = 8192
+
+Range = tuple[Floats, Floats]
+One = TypeVar("One")
 
 
 def ensemble_depletion(
@@ -36,7 +46,7 @@ def ensemble_depletion(
     initial_unknown: bool = False,
     eto_members: Floats | None = None,
     rain_members: Floats | None = None,
-) -> tuple[Floats, Floats]:
+) -> Range:
     """10th and 90th percentile [mm] of each day's closing depletion, each (days,).
 
     plan and weather as for a ledger. seed: whole number made from block and date; the same inputs
@@ -47,53 +57,184 @@ def ensemble_depletion(
     (past years for the days ahead). Widened where needed to hold the ledger's own depletion.
     Raises ValueError as `block_ledgers` does. Source: working values of the methods page.
     """
-    draw = np.random.Generator(np.random.PCG64(seed))
-    season = _centred(draw.standard_normal((5, members)))
-    anywhere = np.concatenate(([0.5], draw.random(members)))
-    daily = _centred(draw.standard_normal((plan.days, 2, members)))
-    stack = stack_plans([plan], [weather])
-    base = stack.terms()
-    kc = _factor(KC_SHARE * season[0])
-    taw = _factor(TAW_SHARE * season[1])
-    efficiency = _efficiency(plan, _factor(EFFICIENCY_SHARE * season[2]))
-    energy = _energy(weather, rn_share, season[4], daily[:, 0]) * _replaced(
-        eto_members, weather.eto
-    )
-    rain = _rain(weather.rain, rain_distance_km, season[3], daily[:, 1])
-    if rain_members is not None:
-        told = _with_median(rain_members, weather.rain)
-        rain = np.where(np.isnan(told), rain, told)
-    opening = base.depletion * (taw if plan.initial_depletion_mm is None else np.ones_like(taw))
-    terms = _members(base, stack.supplies, opening, kc * energy, taw, efficiency, rain)
-    if initial_unknown:
-        p = np.clip(base.blocks.p_base[0] - P_SLOPE * P_ETC, P_LEAST, P_MOST)
-        terms = replace(terms, depletion=anywhere * p * terms.days.taw[0])
-    depletion = balance(terms).depletion
-    low, high = np.percentile(depletion, [LOW, HIGH], axis=1)
-    return np.minimum(low, depletion[:, 0]), np.maximum(high, depletion[:, 0])
+    return ensemble_depletions(
+        [plan],
+        [weather],
+        [seed],
+        members,
+        [rn_share],
+        rain_distance_km=[rain_distance_km],
+        initial_unknown=[initial_unknown],
+        eto_members=[eto_members],
+        rain_members=[rain_members],
+    )[0]
 
 
-def _centred(draws: Floats) -> Floats:
-    """The draws with a member 0 in front that departs from nothing: the ledger itself."""
-    return np.concatenate((np.zeros((*draws.shape[:-1], 1)), draws), axis=-1)
+def ensemble_depletions(
+    plans: Sequence[BlockPlan],
+    weather: Sequence[BlockWeather],
+    seeds: Sequence[int],
+    members: int = 200,
+    rn_share: Sequence[Floats | None] | None = None,
+    *,
+    rain_distance_km: Sequence[float] | None = None,
+    initial_unknown: Sequence[bool] | None = None,
+    eto_members: Sequence[Floats | None] | None = None,
+    rain_members: Sequence[Floats | None] | None = None,
+) -> list[Range]:
+    """`ensemble_depletion` of many blocks at once, in order, bit for bit the same as one by one.
+
+    Every argument holds one entry a plan; None takes the default for all. Raises ValueError for
+    differing numbers of entries.
+    """
+    count = len(plans)
+    shares = _each(rn_share, None, count, "rn_share")
+    distances = _each(rain_distance_km, 0.0, count, "rain_distance_km")
+    unknown = _each(initial_unknown, False, count, "initial_unknown")
+    etos = _each(eto_members, None, count, "eto_members")
+    rains = _each(rain_members, None, count, "rain_members")
+    _each(weather, None, count, "weather")
+    _each(seeds, 0, count, "seeds")
+    ranges: list[Range] = []
+    step = max(1, COLUMNS // (members + 1))
+    for first in range(0, count, step):
+        part = slice(first, first + step)
+        group = _Group(plans[part], weather[part], members)
+        for b, seed in enumerate(seeds[part]):
+            i = first + b
+            group.draw(b, seed, shares[i], distances[i], etos[i], rains[i])
+        ranges += group.ranges(np.array(unknown[part], dtype=np.bool_))
+    return ranges
 
 
-def _with_median(sequences: Floats, own: Floats) -> Floats:
-    return np.concatenate((own[:, None], sequences), axis=1)
+def _each(values: Sequence[One] | None, default: One, count: int, name: str) -> Sequence[One]:
+    if values is None:
+        return [default] * count
+    if len(values) != count:
+        raise ValueError(f"{name} has {len(values)} entries for {count} plans; give one each")
+    return values
+
+
+class _Group:
+    """Blocks run together: their stack, and what tells the members apart.
+
+    Season-long factors (blocks, members); factor on demand and rain by day (days, blocks,
+    members). Member 0 departs from nothing: it is the ledger itself.
+    """
+
+    def __init__(
+        self, plans: Sequence[BlockPlan], weather: Sequence[BlockWeather], members: int
+    ) -> None:
+        self.plans, self.weather, self.members = plans, weather, members
+        self.stack: Stack = stack_plans(plans, weather)
+        self.base: Terms = self.stack.terms()
+        days, blocks = self.base.days.rain.shape
+        self.taw = np.ones((blocks, members + 1))
+        self.efficiency = np.ones((blocks, members + 1))
+        self.most = np.ones((days, blocks, 1))
+        self.anywhere = np.full((blocks, members + 1), 0.5)
+        self.demand = np.ones((days, blocks, members + 1))
+        self.rain = np.zeros((days, blocks, members + 1))
+
+    def draw(
+        self,
+        b: int,
+        seed: int,
+        rn_share: Floats | None,
+        rain_distance_km: float,
+        eto_members: Floats | None,
+        rain_members: Floats | None,
+    ) -> None:
+        """Draw the members of block `b`."""
+        plan, sky, members = self.plans[b], self.weather[b], self.members
+        lots = np.random.Generator(np.random.PCG64(seed))
+        season = np.zeros((5, members + 1))
+        season[:, 1:] = lots.standard_normal((5, members))
+        self.anywhere[b, 1:] = lots.random(members)
+        daily = np.zeros((plan.days, 2, members + 1))
+        daily[:, :, 1:] = lots.standard_normal((plan.days, 2, members))
+        self.taw[b] = _factor(TAW_SHARE * season[1])
+        self.efficiency[b] = _factor(EFFICIENCY_SHARE * season[2])
+        self.most[: plan.days, b, 0] = _most_efficient(plan)
+        energy = _energy(sky, rn_share, season[4], daily[:, 0])
+        if eto_members is not None:
+            energy *= _ratio(eto_members, sky.eto)
+        np.multiply(_factor(KC_SHARE * season[0]), energy, out=self.demand[: plan.days, b])
+        rain = self.rain[: plan.days, b]
+        wet = sky.rain > 0.0
+        rain[wet] = _rain(sky.rain[wet], rain_distance_km, season[3], daily[wet, 1])
+        if rain_members is not None:
+            told = np.concatenate((sky.rain[:, None], rain_members), axis=1)
+            np.copyto(rain, told, where=~np.isnan(told))
+
+    def ranges(self, unknown: Bools) -> list[Range]:
+        """Each block's 10th and 90th percentile, by as many members as were drawn; `unknown`
+        (blocks,): openings that lie anywhere in 0-100 % of RAW."""
+        depletion = self._run(unknown)
+        own = depletion[:, :, 0].copy()
+        low, high = _percentiles(depletion)
+        low, high = np.minimum(low, own), np.maximum(high, own)
+        return [
+            (low[: plan.days, b].copy(), high[: plan.days, b].copy())
+            for b, plan in enumerate(self.plans)
+        ]
+
+    def _run(self, unknown: Bools) -> Floats:
+        """Closing depletions (days, blocks, members); they take the place of the demand drawn."""
+        block = Blocks(*(values[:, None] for values in self.base.blocks))
+        columns = [values[:, :, None] for values in self.base.days]
+        state = self._opening(unknown)
+        for i, closing in enumerate(self.demand):
+            own = Days(*[values[i] for values in columns])
+            day = self._day(i, own, block.roots)
+            state, _ = balance_day(np.minimum, np.maximum, self.base, block, day, state)
+            closing[:] = state.depletion
+        return self.demand
+
+    def _opening(self, unknown: Bools) -> State:
+        base = self.base
+        told = np.array([plan.initial_depletion_mm is not None for plan in self.plans])
+        own = base.opening.depletion[:, None] * np.where(told[:, None], 1.0, self.taw)
+        most = base.days.taw[0][:, None] * self.taw
+        p = np.clip(base.blocks.p_base - P_SLOPE * P_ETC, P_LEAST, P_MOST)
+        anywhere = self.anywhere * p[:, None] * most
+        return State(
+            depletion=np.where(unknown[:, None], anywhere, np.minimum(own, most)),
+            subsoil=base.opening.subsoil[:, None] * self.taw,
+            layer=np.broadcast_to(base.opening.layer[:, None], self.taw.shape),
+            draining=np.broadcast_to(base.opening.draining[:, None], self.taw.shape),
+        )
+
+    def _day(self, i: int, own: Days, roots: Floats) -> Days:
+        """Terms of day `i`, (blocks, members) or (blocks, 1), from the blocks' own (blocks, 1)."""
+        irrigation = self.stack.supplies.irrigation[i][:, None]
+        rise = self.stack.supplies.capillary_rise[i][:, None]
+        rain, demand = self.rain[i], self.demand[i]
+        concentrated, wet = own.surface - own.rain, irrigation
+        if irrigation.any():
+            efficiency = np.minimum(self.efficiency, self.most[i])
+            concentrated, wet = concentrated * efficiency, irrigation * efficiency
+        return own._replace(
+            rain=rain,
+            wet=rain * roots + wet + rise,
+            surface=rain + concentrated,
+            transpiration=own.transpiration * demand,
+            evaporation=own.evaporation * demand,
+            evaporation_most=own.evaporation_most * demand,
+            taw=own.taw * self.taw,
+            saturation=own.saturation * self.taw,
+        )
 
 
 def _factor(departure: Floats) -> Floats:
     return np.maximum(1.0 + departure, LEAST_FACTOR)
 
 
-def _replaced(sequences: Floats | None, eto: Floats) -> Floats:
+def _ratio(sequences: Floats, eto: Floats) -> Floats:
     """Factor that turns the plan's ETo into each member's sequence; 1 where there is none."""
-    if sequences is None:
-        return np.ones((eto.size, 1))
-    told = _with_median(sequences, eto)
-    ratio = np.divide(
-        told, eto[:, None], out=np.ones(told.shape), where=(eto > 0.0)[:, None] & ~np.isnan(told)
-    )
+    told = np.concatenate((eto[:, None], sequences), axis=1)
+    known = (eto > 0.0)[:, None] & ~np.isnan(told)
+    ratio = np.divide(told, eto[:, None], out=np.ones(told.shape), where=known)
     return np.maximum(ratio, 0.0)
 
 
@@ -102,65 +243,36 @@ def _energy(
 ) -> Floats:
     """Factor of radiation on ETo (days, members): variance by rung, half persistent, half daily;
     days without a rung count as the usual for the date."""
-    usual = RUNGS[9].share
     known = (weather.rung > 0) & (np.abs(weather.rn) > 0.0)
-    spread = np.full(weather.eto.shape, usual)
+    spread = np.full(weather.eto.shape, RUNGS[9].share)
     rn = np.abs(weather.rn[known])
     spread[known] = np.minimum(rn_uncertainty(weather.rung[known], rn) / rn, 1.0)
     share = np.full(weather.eto.shape, RN_SHARE) if rn_share is None else rn_share
     return _factor((spread * share)[:, None] * (season + daily) / np.sqrt(2.0))
 
 
-def _efficiency(plan: BlockPlan, factor: Floats) -> Floats:
-    """Factor on net irrigation (days, members), never above what was applied gross."""
-    net = np.asarray(plan.irrigation_net, dtype=np.float64)
-    gross = np.maximum(np.asarray(plan.irrigation_gross, dtype=np.float64), net)
-    most = np.divide(gross, net, out=np.ones(net.shape), where=net > 0.0)
-    return np.minimum(factor, most[:, None])
-
-
 def _rain(rain: Floats, distance_km: float, season: Floats, daily: Floats) -> Floats:
-    """Field rain (days, members) [mm] from the station's: a season-long factor and a daily error
-    on wet days; dry days stay dry."""
+    """Field rain (wet days, members) [mm] from the station's: a season-long factor and a daily
+    error; dry days stay dry."""
     wider = 1.0 + max(distance_km, 0.0) / RAIN_DOUBLED_KM
     field = rain[:, None] * _factor(RAIN_SHARE * wider * season) + RAIN_MM * wider * daily
-    return np.where(rain[:, None] > 0.0, np.maximum(field, 0.0), 0.0)
+    return np.maximum(field, 0.0)
 
 
-def _members(
-    base: Terms,
-    supplies: Supplies,
-    opening: Floats,
-    demand: Floats,
-    taw: Floats,
-    efficiency: Floats,
-    rain: Floats,
-) -> Terms:
-    """The one block's terms, once for each member."""
-    day, shape = base.days, rain.shape
-    roots = base.blocks.roots[0]
-    concentrated = day.surface - day.rain
-    days = Days(
-        rain=rain,
-        wet=rain * roots + supplies.irrigation * efficiency + supplies.capillary_rise,
-        surface=rain + concentrated * efficiency,
-        transpiration=day.transpiration * demand,
-        evaporation=day.evaporation * demand,
-        evaporation_most=day.evaporation_most * demand,
-        exposed=np.broadcast_to(day.exposed, shape),
-        taw=day.taw * taw,
-        new_roots=np.broadcast_to(day.new_roots, shape),
-        saturation=day.saturation * taw,
-        correction=np.broadcast_to(day.correction, shape),
+def _most_efficient(plan: BlockPlan) -> Floats:
+    """Largest factor on net irrigation (days,): never above what was applied gross."""
+    net = np.asarray(plan.irrigation_net, dtype=np.float64)
+    gross = np.maximum(np.asarray(plan.irrigation_gross, dtype=np.float64), net)
+    return np.divide(gross, net, out=np.ones(net.shape), where=net > 0.0)
+
+
+def _percentiles(values: Floats) -> Range:
+    """10th and 90th percentile over the last axis, linear between ranks; sorts `values`."""
+    values.sort(axis=-1)
+    places = [share / 100.0 * (values.shape[-1] - 1) for share in (LOW, HIGH)]
+    low, high = (
+        values[..., int(place)]
+        + (place - int(place)) * (values[..., int(np.ceil(place))] - values[..., int(place)])
+        for place in places
     )
-    columns = shape[1:]
-    return Terms(
-        blocks=Blocks(*(np.broadcast_to(values, columns) for values in base.blocks)),
-        days=days,
-        depletion=np.minimum(opening, days.taw[0]),
-        subsoil=base.subsoil[0] * taw,
-        layer=np.broadcast_to(base.layer, columns),
-        has_runoff=base.has_runoff,
-        has_slow_drainage=base.has_slow_drainage,
-        has_correction=base.has_correction,
-    )
+    return low, high

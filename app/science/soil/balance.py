@@ -1,6 +1,6 @@
 """The daily root-zone water balance: the only day loop of the project.
 
-`_day` is the balance of one day, written once. `balance` runs it over arrays of blocks,
+`balance_day` is the balance of one day, written once. `balance` runs it over arrays of blocks,
 `balance_scalar` over plain floats for one block; both give the same bits. All that does not
 depend on the state of the soil is computed beforehand (`app.science.soil.terms`).
 
@@ -57,20 +57,31 @@ class Days(NamedTuple):
     correction: Any  # [mm], positive wets
 
 
+class State(NamedTuple):
+    """What a day hands to the next, each (blocks,) or plain numbers.
+
+    A balance run on from a saved state gives the same bits as one run whole.
+    """
+
+    depletion: Any  # of the root zone [mm]
+    subsoil: Any  # depletion of the subsoil store [mm]
+    layer: Any  # depletion of the evaporation layer [mm]
+    draining: Any  # days in a row above field capacity
+
+
 @dataclass(frozen=True, kw_only=True)
 class Terms:
-    """Everything the day loop needs: blocks, days, opening states and which branches are used.
+    """Everything the day loop needs: blocks, days, the state they open with and which branches
+    are used.
 
-    depletion, subsoil, layer (blocks,): opening depletions of root zone, subsoil store and
-    evaporation layer [mm]. has_runoff, has_slow_drainage, has_correction: False skips a branch
-    no block uses. drain_before_et: the order of FAO-56 Example 38 as printed.
+    opening (blocks,): the state before the first day. has_runoff, has_slow_drainage,
+    has_correction: False skips a branch no block uses. drain_before_et: the order of FAO-56
+    Example 38 as printed.
     """
 
     blocks: Blocks
     days: Days
-    depletion: Floats
-    subsoil: Floats
-    layer: Floats
+    opening: State
     has_runoff: bool = False
     has_slow_drainage: bool = False
     has_correction: bool = False
@@ -80,12 +91,13 @@ class Terms:
 @dataclass(frozen=True, kw_only=True)
 class Balance:
     """Each (days, blocks): end of day depletions [mm] of root zone, subsoil store and evaporation
-    layer; evaporation and transpiration [mm]; Ks [-]; RAW [mm]; deep percolation, depletion taken
-    over by new roots, runoff, correction applied [mm]."""
+    layer; days in a row above field capacity; evaporation and transpiration [mm]; Ks [-]; RAW
+    [mm]; deep percolation, depletion taken over by new roots, runoff, correction applied [mm]."""
 
     depletion: Floats
     subsoil: Floats
     layer: Floats
+    draining: Floats
     evaporation: Floats
     transpiration: Floats
     ks: Floats
@@ -99,18 +111,17 @@ class Balance:
 COLUMNS = tuple(column.name for column in fields(Balance))
 
 
-def _day(
+def balance_day(
     lo: Callable[[Any, Any], Any],
     hi: Callable[[Any, Any], Any],
     terms: Terms,
     block: Blocks,
     day: Days,
-    state: tuple[Any, Any, Any, Any],
-) -> tuple[tuple[Any, Any, Any, Any], tuple[Any, ...]]:
-    """One day of the balance; returns the new state and the day's columns.
+    state: State,
+) -> tuple[State, tuple[Any, ...]]:
+    """One day of the balance; returns the new state and the day's columns, those of `Balance`.
 
-    lo, hi: smaller and larger of two (of floats or of arrays). state: root zone, subsoil and
-    evaporation layer depletion [mm], days in a row above field capacity. Source: FAO-56 eq 71,
+    lo, hi: smaller and larger of two (of floats or of arrays). Source: FAO-56 eq 71,
     74, 77 to 80, 84, 85, 88; NEH 630 chapter 10.
     """
     depletion, subsoil, layer, run = state
@@ -172,10 +183,9 @@ def _day(
         corrected = hi(lo(depletion - day.correction, driest), lo(depletion, wettest))
         correction = depletion - corrected
         depletion = corrected
+    state = State(depletion, subsoil, layer, run)
     columns = (
-        depletion,
-        subsoil,
-        layer,
+        *state,
         evaporation,
         transpiration,
         ks,
@@ -185,7 +195,7 @@ def _day(
         runoff,
         correction,
     )
-    return (depletion, subsoil, layer, run), columns
+    return state, columns
 
 
 def balance(terms: Terms) -> Balance:
@@ -200,15 +210,10 @@ def balance(terms: Terms) -> Balance:
         block = Blocks(*(values[part] for values in terms.blocks))
         columns = [values[:, part] for values in terms.days]
         rows = [column[:, part] for column in out]
-        state = (
-            terms.depletion[part],
-            terms.subsoil[part],
-            terms.layer[part],
-            np.zeros(part.stop - part.start),
-        )
+        state = State(*(values[part] for values in terms.opening))
         for i in range(days):
             day = Days(*[values[i] for values in columns])
-            state, result = _day(np.minimum, np.maximum, terms, block, day, state)
+            state, result = balance_day(np.minimum, np.maximum, terms, block, day, state)
             for row, values in zip(rows, result, strict=True):
                 if values is not UNUSED:
                     row[i] = values
@@ -221,15 +226,10 @@ def balance_scalar(terms: Terms) -> Balance:
     out = np.zeros((len(COLUMNS), days, blocks))
     for b in range(blocks):
         block = Blocks(*(float(values[b]) for values in terms.blocks))
-        state: tuple[Any, Any, Any, Any] = (
-            float(terms.depletion[b]),
-            float(terms.subsoil[b]),
-            float(terms.layer[b]),
-            0.0,
-        )
+        state = State(*(float(values[b]) for values in terms.opening))
         rows = []
         for values in zip(*(column[:, b].tolist() for column in terms.days), strict=True):
-            state, result = _day(min, max, terms, block, Days(*values), state)
+            state, result = balance_day(min, max, terms, block, Days(*values), state)
             rows.append(result)
         out[:, :, b] = np.array(rows, dtype=np.float64).reshape(days, len(COLUMNS)).T
     return Balance(**dict(zip(COLUMNS, out, strict=True)))

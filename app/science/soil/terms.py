@@ -9,7 +9,7 @@ from app.science import Bools, Floats
 from app.science.crop.curve import Curve
 from app.science.crop.season import CropSeason
 from app.science.soil import evaporation
-from app.science.soil.balance import Blocks, Days, Terms
+from app.science.soil.balance import Blocks, Days, State, Terms
 from app.science.soil.profile import Profile
 from app.science.soil.root_zone import P_ETC, P_SLOPE
 from app.science.soil.runoff import dry_curve_number, wet_curve_number, wetness_bounds
@@ -105,9 +105,12 @@ def make_terms(
     return Terms(
         blocks=blocks,
         days=_days(dual, curve, supplies, openings, taw, saturation, reachable),
-        depletion=np.clip(depletion, -saturation[0] * (slow > 0.0), taw[0]),
-        subsoil=np.clip(openings.subsoil_fraction, 0.0, 1.0) * (reachable - taw[0]),
-        layer=np.clip(openings.layer_mm, 0.0, blocks.tew),
+        opening=State(
+            depletion=np.clip(depletion, -saturation[0] * (slow > 0.0), taw[0]),
+            subsoil=np.clip(openings.subsoil_fraction, 0.0, 1.0) * (reachable - taw[0]),
+            layer=np.clip(openings.layer_mm, 0.0, blocks.tew),
+            draining=np.zeros(slow.shape),
+        ),
         has_runoff=any(profile.curve_number is not None for profile in profiles),
         has_slow_drainage=bool((slow > 0.0).any()),
         has_correction=bool((supplies.correction != 0.0).any()),

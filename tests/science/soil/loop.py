@@ -4,7 +4,7 @@ from typing import Any
 
 import numpy as np
 
-from app.science.soil.balance import Blocks, Days, Terms
+from app.science.soil.balance import Blocks, Days, State, Terms
 
 
 def one_block(
@@ -43,8 +43,6 @@ def one_block(
                 for name, values in columns.items()
             }
         ),
-        depletion=np.array([depletion]),
-        subsoil=np.zeros(1),
-        layer=np.array([layer]),
+        opening=State(np.array([depletion]), np.zeros(1), np.array([layer]), np.zeros(1)),
         drain_before_et=drain_before_et,
     )
