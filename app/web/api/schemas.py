@@ -21,18 +21,21 @@ class AdviceOut(BaseModel):
     """One recommendation as issued."""
 
     number: int = Field(examples=[1482])
-    issued_on: date
+    issued_on: date = Field(examples=["2026-07-14"])
     stands: bool
     standing: str = Field(examples=["due"])
     unsure: str = Field(description="codes of why the mark stands, or empty")
     day: date | None = Field(description="when to water; null for no water")
-    net_mm: float
-    gross_mm: float
-    hours: float
-    volume_m3: float
+    net_mm: float = Field(examples=[42.0])
+    gross_mm: float = Field(examples=[52.5])
+    hours: float = Field(examples=[7.3])
+    volume_m3: float = Field(examples=[6510.0])
     limit_day: date | None
     reason: str = Field(description="code", examples=["last_chance"])
-    says: str = Field(description="the reason in words")
+    says: str = Field(
+        description="the reason in words",
+        examples=["Passes its limit on Thursday; tomorrow is the last chance before."],
+    )
     figures: dict[str, Any]
     depletion_mm: float
     depletion_p10_mm: float
@@ -51,9 +54,9 @@ class RoundsField(BaseModel):
     """A field and its advice of the morning."""
 
     key: str = Field(examples=["long-piece"])
-    name: str
-    farm: str
-    area_ha: float
+    name: str = Field(examples=["Long Piece"])
+    farm: str = Field(examples=["hollin"])
+    area_ha: float = Field(examples=[12.4])
     block: str = Field(description="the block the field goes by")
     crop: str | None
     planting: date | None
@@ -65,7 +68,7 @@ class RoundsField(BaseModel):
 class RoundsOut(BaseModel):
     """The morning: every field, most urgent first."""
 
-    today: date
+    today: date = Field(examples=["2026-07-14"])
     morning: date | None = Field(description="the morning the advice is of")
     caution: str
     fields: list[RoundsField]
@@ -74,12 +77,14 @@ class RoundsOut(BaseModel):
 class FieldOut(BaseModel):
     """A field of the book."""
 
-    key: str
-    name: str
-    farm: str
-    area_ha: float
-    managed_by: str
-    blocks: list[dict[str, Any]]
+    key: str = Field(examples=["long-piece"])
+    name: str = Field(examples=["Long Piece"])
+    farm: str = Field(examples=["hollin"])
+    area_ha: float = Field(examples=[12.4])
+    managed_by: str = Field(examples=["driest"])
+    blocks: list[dict[str, Any]] = Field(
+        examples=[[{"key": "all", "name": "Long Piece", "system": "Pivot"}]]
+    )
     sources: dict[str, str] = Field(description="variable to the key of the station in force")
 
 

@@ -23,6 +23,7 @@ from app.web.working_view import working
 
 router = APIRouter()
 Text = Annotated[Clean, Form(max_length=400)]
+ENTRIES_SHOWN = 30
 NO_FIELD = "There is no such field, or it is not on your farm."
 
 
@@ -35,9 +36,12 @@ def field(
     key: AsKey,
     block: str = "",
     season: Annotated[str, Query(max_length=10)] = "",
+    entries: Annotated[str, Query(max_length=10)] = "",
 ) -> Response:
     """One field: what to do, why, and the whole ledger behind it."""
-    return show(request, db, viewer, today, key, block, season == "whole")
+    return show(
+        request, db, viewer, today, key, block, season == "whole", every_entry=entries == "all"
+    )
 
 
 def show(
@@ -50,6 +54,7 @@ def show(
     whole: bool = False,
     error: str = "",
     typed: dict[str, str] | None = None,
+    every_entry: bool = False,
 ) -> Response:
     """The Field page; with an error over its forms, and what was typed still in them."""
     blocks = own_blocks(db, viewer, key)
@@ -65,7 +70,7 @@ def show(
         events = store.events_since(
             session,
             season.planting - timedelta(days=60) if season else today - timedelta(days=365),
-            [item.id for item in blocks],
+            [chosen.id],
         )
         sources = store.current(store.sources(session, today, viewer.farm))
         stations = store.stations(session)
@@ -101,7 +106,8 @@ def show(
         ledger=list(reversed(ledger if whole else ledger[-view.LEDGER_DAYS :])),
         whole=whole,
         past=past,
-        events=events,
+        events=events if every_entry else events[:ENTRIES_SHOWN],
+        earlier=0 if every_entry else max(len(events) - ENTRIES_SHOWN, 0),
         units=wording.UNITS,
         unit_choices=wording.UNIT_CHOICES,
         log_units=[*wording.UNIT_CHOICES.items(), ("rain_mm", wording.OWN_GAUGE)],
