@@ -66,7 +66,7 @@ def _sort_lines(data: bytes, first_line: int, plan: Plan, report: Report) -> _Li
         elif (
             b'"' not in text
             and b"\x00" not in text
-            and (len(text.split()) if blanks else text.count(mark) + 1) == plan.width
+            and (_among_blanks(text) if blanks else text.count(mark) + 1) == plan.width
         ):
             found.plain.append(text)
             found.plain_line.append(at)
@@ -83,22 +83,29 @@ def _sort_lines(data: bytes, first_line: int, plan: Plan, report: Report) -> _Li
     return found
 
 
+def _among_blanks(text: bytes) -> int:
+    return sum(map(bool, text.replace(b"\t", b" ").split(b" ")))
+
+
 def _as_texts(lines: list[bytes], plan: Plan) -> dict[int, Cells]:
     """Fields of plain lines, by column, as texts."""
     wanted = (*plan.texts, *plan.numbers)
     if not lines:
         return {i: np.zeros(0, object) for i in wanted}
-    frame = pd.read_csv(
-        io.BytesIO(b"\n".join(lines) + b"\n"),
-        header=None,
-        names=list(range(plan.width)),
-        sep=r"\s+" if plan.delimiter == "blanks" else DELIMITERS[plan.delimiter],
-        dtype=object,
-        na_filter=False,
-        skip_blank_lines=False,
-        quoting=csv.QUOTE_NONE,
-        encoding_errors="replace",
-    )
+    try:
+        frame = pd.read_csv(
+            io.BytesIO(b"\n".join(lines) + b"\n"),
+            header=None,
+            names=list(range(plan.width)),
+            sep=r"\s+" if plan.delimiter == "blanks" else DELIMITERS[plan.delimiter],
+            dtype=object,
+            na_filter=False,
+            skip_blank_lines=False,
+            quoting=csv.QUOTE_NONE,
+            encoding_errors="replace",
+        )
+    except pd.errors.ParserError:
+        frame = pd.DataFrame()
     if len(frame) == len(lines) and isinstance(frame.index, pd.RangeIndex):
         return {i: frame[i].to_numpy() for i in wanted}
     rows = [split_line(text.decode("utf-8", errors="replace"), plan.delimiter) for text in lines]

@@ -29,7 +29,7 @@ _TIME = re.compile(
 def split_line(line: str, delimiter: str) -> list[str]:
     """Fields of one line, blanks and quotes around them taken off."""
     if delimiter == "blanks":
-        return line.split()
+        return [field for field in line.replace("\t", " ").split(" ") if field]
     mark = DELIMITERS[delimiter]
     if '"' not in line:
         return [field.strip() for field in line.split(mark)]

@@ -144,3 +144,33 @@ def _check(data: bytes) -> bool:
     for name, values in back.values.items():
         np.testing.assert_array_equal(values, rows.values[name])
     return len(rows) > 0
+
+
+@pytest.mark.parametrize("name", ["iso_comma.csv", "bar_three_header_lines.txt",
+                                  "semicolon_spanish_latin1.txt", "aligned_columns.txt"])  # fmt: skip
+def test_rows_not_touched_are_read_unchanged(name: str) -> None:
+    """Bytes are spoilt in a few data lines; every other line must give what it gave before."""
+    whole = (DATA / name).read_bytes()
+    mapping = sniff(io.BytesIO(whole), CLOCK).mapping
+    before = read(io.BytesIO(whole), mapping, CLOCK).rows
+    spoils = (b'"', b"junk", b",", b";", b"\x00", b"", b"|", b"-", b"\xff", b"  ", b"9.9.9")
+    for run in range(60):
+        rng = np.random.default_rng([SEED, 7, run])
+        lines = whole.split(b"\n")
+        touched = rng.choice(
+            np.arange(mapping.first_data_line - 1, len(lines) - 1), 5, replace=False
+        )
+        for at in touched:
+            raw = lines[at]
+            a, b = sorted(rng.integers(0, len(raw), 2).tolist())
+            lines[at] = raw[:a] + spoils[int(rng.integers(0, len(spoils)))] + raw[min(b, a + 6) :]
+        after = read(io.BytesIO(b"\n".join(lines)), mapping, CLOCK).rows
+        kept = ~np.isin(before.line, touched + 1)
+        at = np.searchsorted(after.instant, before.instant[kept])
+        np.testing.assert_array_equal(after.instant[at], before.instant[kept])
+        same_line = after.line[at] == before.line[kept]  # else a spoilt date landed on this one
+        assert np.count_nonzero(~same_line) <= len(touched)
+        for quantity, values in before.values.items():
+            np.testing.assert_array_equal(
+                after.values[quantity][at][same_line], values[kept][same_line]
+            )
