@@ -1,6 +1,7 @@
 """From plans and weather to ledgers: the root-zone water balance of many blocks at once."""
 
 from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -8,7 +9,7 @@ from numpy.typing import NDArray
 
 from app.science import Floats
 from app.science.outlook.ensemble import ensemble_depletion, ensemble_depletions
-from app.science.soil.balance import Balance, Terms, balance, balance_scalar
+from app.science.soil.balance import Balance, State, Terms, balance, balance_scalar
 from app.science.soil.block import BlockLedger, BlockPlan, BlockWeather
 from app.science.soil.stack import Stack, stack_plans
 
@@ -16,10 +17,13 @@ __all__ = [
     "BlockLedger",
     "BlockPlan",
     "BlockWeather",
+    "Restart",
+    "State",
     "block_ledgers",
     "closure_error",
     "ensemble_depletion",
     "ensemble_depletions",
+    "state_after",
 ]
 
 
@@ -32,26 +36,65 @@ WORDS = np.array(["late", "due", "soon", "wet", "easy"], dtype=object)
 DUE_DAYS, SOON_DAYS = 2, 5
 
 
-def block_ledgers(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> list[BlockLedger]:
+@dataclass(frozen=True, kw_only=True)
+class Restart:
+    """Where a ledger goes on: `since`, the first day to compute, and the state at the close of
+    the day before, in plain numbers (of `state_after`, or of stored ledger columns)."""
+
+    since: np.datetime64
+    state: State
+
+
+def state_after(ledger: BlockLedger, day: np.datetime64) -> State:
+    """State of `ledger` at the close of `day`; ValueError for a day it does not have."""
+    place = int((day - ledger.date[0]).astype(np.int64))
+    if not 0 <= place < ledger.date.size:
+        raise ValueError(f"the ledger runs from {ledger.date[0]} to {ledger.date[-1]}, not {day}")
+    return State(
+        depletion=float(ledger.depletion_mm[place]),
+        subsoil=float(ledger.subsoil_depletion_mm[place]),
+        layer=float(np.nan_to_num(ledger.evaporation_layer_depletion_mm[place])),
+        draining=float(ledger.draining_days[place]),
+    )
+
+
+def block_ledgers(
+    plans: Sequence[BlockPlan],
+    weather: Sequence[BlockWeather],
+    restarts: Sequence[Restart | None] | None = None,
+) -> list[BlockLedger]:
     """Ledgers of `plans` under `weather`, one each, in order.
 
     Plans may start and end on different days; each weather covers its plan's days. Blocks never
-    touch each other: neither order nor company changes a figure. Raises ValueError naming block,
-    column and date for lengths that differ, NaN, or negative depths.
+    touch each other: neither order nor company changes a figure. restarts: for each plan None, or
+    where its ledger goes on from a saved state; that ledger holds the days from there on, bit for
+    bit those of the ledger run whole. Raises ValueError naming block, column and date for lengths
+    that differ, NaN, or negative depths, and for a restart outside its plan's days.
     Source: FAO-56 chapters 6 to 8 and Annex 8.
     """
     if len(plans) != len(weather):
         raise ValueError(f"{len(plans)} plans, but weather for {len(weather)}; give one each")
+    starts = [None] * len(plans) if restarts is None else list(restarts)
+    if len(starts) != len(plans):
+        raise ValueError(f"{len(plans)} plans, but {len(starts)} restarts; give one each")
     ledgers: list[BlockLedger] = []
     for first in range(0, len(plans), CHUNK):
         part = slice(first, first + CHUNK)
-        ledgers += _together(plans[part], weather[part])
+        ledgers += _together(plans[part], weather[part], starts[part])
     return ledgers
 
 
-def _together(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> list[BlockLedger]:
+def _together(
+    plans: Sequence[BlockPlan],
+    weather: Sequence[BlockWeather],
+    restarts: Sequence[Restart | None],
+) -> list[BlockLedger]:
     stack = stack_plans(plans, weather)
     terms = stack.terms()
+    passed = [_passed(plan, restart) for plan, restart in zip(plans, restarts, strict=True)]
+    if any(passed):
+        stack, terms = stack.since(passed), terms.since(passed)
+    terms = _restarted(terms, restarts)
     run = balance_scalar if len(plans) <= SCALAR_BLOCKS else balance
     columns: dict[str, Any] = {
         name: np.ascontiguousarray(values.T)
@@ -61,9 +104,36 @@ def _together(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> li
         columns["depletion_mm"], columns["limit_mm"], columns["etc_potential_mm"]
     )
     return [
-        _ledger(plan, sky, float(terms.opening.depletion[b]), {k: v[b] for k, v in columns.items()})
+        _ledger(
+            plan,
+            sky,
+            passed[b],
+            float(terms.opening.depletion[b]),
+            {name: values[b] for name, values in columns.items()},
+        )
         for b, (plan, sky) in enumerate(zip(plans, weather, strict=True))
     ]
+
+
+def _passed(plan: BlockPlan, restart: Restart | None) -> int:
+    """Days of `plan` before its restart."""
+    if restart is None:
+        return 0
+    days = int((restart.since.astype("datetime64[D]") - plan.date[0]).astype(np.int64))
+    if not 0 <= days < plan.days:
+        raise ValueError(
+            f"a restart on {restart.since} lies outside its plan, {plan.date[0]} to {plan.date[-1]}"
+        )
+    return days
+
+
+def _restarted(terms: Terms, restarts: Sequence[Restart | None]) -> Terms:
+    opening = State(*(np.array(values, dtype=np.float64) for values in terms.opening))
+    for b, restart in enumerate(restarts):
+        if restart is not None:
+            for values, saved in zip(opening, restart.state, strict=True):
+                values[b] = saved
+    return replace(terms, opening=opening)
 
 
 def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
@@ -88,7 +158,7 @@ def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
         "rain_outside_roots_mm": infiltrated * (1.0 - terms.blocks.roots),
         "runoff_mm": result.runoff,
         "irrigation_net_mm": stack.supplies.irrigation,
-        "capillary_rise_mm": stack.supplies.capillary_rise,
+        "capillary_rise_mm": stack.supplies.capillary_rise + result.rise,
         "deep_percolation_mm": result.percolation,
         "root_growth_depletion_mm": result.growth,
         "correction_mm": result.correction,
@@ -99,6 +169,7 @@ def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
         "depletion_mm": result.depletion,
         "subsoil_depletion_mm": result.subsoil,
         "evaporation_layer_depletion_mm": np.where(dual, result.layer, np.nan),
+        "draining_days": result.draining,
     }
 
 
@@ -112,18 +183,19 @@ def _limit(stack: Stack, taw: Floats, raw: Floats) -> Floats:
 
 
 def _ledger(
-    plan: BlockPlan, sky: BlockWeather, opening: float, columns: dict[str, Any]
+    plan: BlockPlan, sky: BlockWeather, passed: int, opening: float, columns: dict[str, Any]
 ) -> BlockLedger:
-    days = plan.days
+    days = plan.days - passed
     own = {name: values[:days] for name, values in columns.items()}
     gross = np.asarray(plan.irrigation_gross, dtype=np.float64)
-    if gross.shape != (days,):
-        raise ValueError(f"irrigation_gross has shape {gross.shape}; the plan has {days} days")
+    if gross.shape != (plan.days,):
+        raise ValueError(f"irrigation_gross has shape {gross.shape}; the plan has {plan.days} days")
+    gross = gross[passed:]
     return BlockLedger(
         opening_depletion_mm=opening,
-        date=plan.date,
-        rung=np.asarray(sky.rung, dtype=np.int8),
-        rn_mj_m2=np.asarray(sky.rn, dtype=np.float64),
+        date=plan.date[passed:],
+        rung=np.asarray(sky.rung, dtype=np.int8)[passed:],
+        rn_mj_m2=np.asarray(sky.rn, dtype=np.float64)[passed:],
         irrigation_gross_mm=gross,
         application_loss_mm=gross - own["irrigation_net_mm"],
         depletion_p10_mm=np.full(days, np.nan),

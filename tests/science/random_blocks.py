@@ -4,6 +4,7 @@ import numpy as np
 
 from app.science.crop.season import CropSeason
 from app.science.ledger import BlockPlan, BlockWeather
+from app.science.soil.capillary import RisingSoil
 from app.science.soil.profile import Layer, Profile
 
 FIRST = np.datetime64("2024-02-25")  # so that a leap day falls in
@@ -59,9 +60,11 @@ def random_plan(rng: np.random.Generator, most_days: int = 150) -> BlockPlan:
     start = FIRST + np.timedelta64(int(rng.integers(0, 60)), "D")
     net = np.where(rng.random(days) < 0.12, rng.gamma(2.0, 15.0, days), 0.0)
     correction = np.where(rng.random(days) < 0.03, rng.normal(0.0, 30.0, days), 0.0)
+    profile = random_profile(rng)
+    table = bool(rng.random() < 0.2)
     return BlockPlan(
         season=random_season(rng, start),
-        profile=random_profile(rng),
+        profile=profile,
         start=start,
         days=days,
         irrigation_gross=net / rng.uniform(0.5, 1.0),
@@ -75,6 +78,19 @@ def random_plan(rng: np.random.Generator, most_days: int = 150) -> BlockPlan:
         initial_evaporation_depletion_mm=rng.uniform(0.0, 30.0),
         correction=correction if rng.random() < 0.5 else None,
         capillary_rise=rng.uniform(0.0, 2.0, days) if rng.random() < 0.2 else None,
+        salt_factor=rng.uniform(0.0, 1.0) if rng.random() < 0.2 else 1.0,
+        water_table_m=rng.uniform(0.1, 3.0, days) if table else None,
+        rising_soil=RisingSoil(
+            conductivity_mm_d=rng.uniform(1.0, 2000.0),
+            air_entry_m=rng.uniform(0.05, 1.0),
+            pore_index=rng.uniform(0.1, 0.7),
+        )
+        if table
+        else None,
+        subsoil_layer_depletion=tuple(float(x) for x in rng.random(len(profile.layers)))
+        if rng.random() < 0.3
+        else None,
+        same_day=str(rng.choice(["irrigation", "weighted"])),
     )
 
 

@@ -223,6 +223,7 @@ class _Group:
             evaporation_most=own.evaporation_most * demand,
             taw=own.taw * self.taw,
             saturation=own.saturation * self.taw,
+            below=own.below * self.taw,
         )
 
 

@@ -9,8 +9,8 @@ capillary rise come in; Kr and Ks from the depletions after that; evapotranspira
 neither layer goes below empty; drainage; correction by a reading.
 """
 
-from collections.abc import Callable
-from dataclasses import dataclass, fields
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, fields, replace
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -39,6 +39,7 @@ class Blocks(NamedTuple):
     cn_wet: Any  # curve number wet [-]
     cn_fall: Any  # curve number wet less dry [-]
     drainage_days: Any  # 0 for drainage on the day
+    salt: Any  # factor of salinity on transpiration, 1 for none [-]
 
 
 class Days(NamedTuple):
@@ -53,6 +54,8 @@ class Days(NamedTuple):
     exposed: Any  # few [-]
     taw: Any  # [mm]
     new_roots: Any  # share of the subsoil store that roots take over that day [-]
+    below: Any  # opening depletion of the subsoil below the day's roots [mm], inf if not by layer
+    rise: Any  # most that can rise from the water table [mm]
     saturation: Any  # water between field capacity and saturation [mm]
     correction: Any  # [mm], positive wets
 
@@ -75,8 +78,8 @@ class Terms:
     are used.
 
     opening (blocks,): the state before the first day. has_runoff, has_slow_drainage,
-    has_correction: False skips a branch no block uses. drain_before_et: the order of FAO-56
-    Example 38 as printed.
+    has_correction, has_layers (of the subsoil), has_table: False skips a branch no block uses.
+    drain_before_et: the order of FAO-56 Example 38 as printed.
     """
 
     blocks: Blocks
@@ -85,14 +88,29 @@ class Terms:
     has_runoff: bool = False
     has_slow_drainage: bool = False
     has_correction: bool = False
+    has_layers: bool = False
+    has_table: bool = False
     drain_before_et: bool = False
+
+    def since(self, passed: Sequence[int]) -> "Terms":
+        """The terms without each block's first `passed` days; the opening is left as it is."""
+        return replace(self, days=Days(*(without_first(values, passed) for values in self.days)))
+
+
+def without_first(values: Any, passed: Sequence[int]) -> Any:
+    """Columns (days, blocks) moved up by each block's `passed` days; the last day stands in where
+    a column has run out."""
+    most = values.shape[0] - 1
+    rows = np.arange(values.shape[0] - min(passed))[:, None] + np.array(passed)
+    return np.take_along_axis(values, np.minimum(rows, most), axis=0)
 
 
 @dataclass(frozen=True, kw_only=True)
 class Balance:
     """Each (days, blocks): end of day depletions [mm] of root zone, subsoil store and evaporation
     layer; days in a row above field capacity; evaporation and transpiration [mm]; Ks [-]; RAW
-    [mm]; deep percolation, depletion taken over by new roots, runoff, correction applied [mm]."""
+    [mm]; deep percolation, depletion taken over by new roots, runoff, rise from the water table,
+    correction applied [mm]."""
 
     depletion: Floats
     subsoil: Floats
@@ -105,6 +123,7 @@ class Balance:
     percolation: Floats
     growth: Floats
     runoff: Floats
+    rise: Floats
     correction: Floats
 
 
@@ -128,6 +147,8 @@ def balance_day(
     taw = day.taw
     # Roots grow and take over the depletion of the soil they enter.
     growth = subsoil * day.new_roots
+    if terms.has_layers:  # percolation fills a subsoil known by layer from its top
+        growth = growth + hi(subsoil - day.below, 0.0)
     subsoil = subsoil - growth
     depletion = depletion + growth
     # Water comes in.
@@ -141,6 +162,10 @@ def balance_day(
         wet = wet - runoff * block.roots
         surface = surface - runoff
     depletion = depletion - wet
+    rise: Any = UNUSED
+    if terms.has_table:
+        rise = lo(day.rise, hi(depletion, 0.0))
+        depletion = depletion - rise
     layer = hi(layer - surface, 0.0)
     percolation: Any = UNUSED
     if terms.drain_before_et:
@@ -156,7 +181,7 @@ def balance_day(
     p = block.p_base - block.p_slope * (day.transpiration + evaporation)
     raw = lo(hi(p, P_LEAST), P_MOST) * taw
     left = hi(taw - depletion, 0.0)
-    ks = lo(left / (taw - raw), 1.0)
+    ks = lo(left / (taw - raw), 1.0) * block.salt
     evaporation = lo(evaporation, left)
     transpiration = lo(ks * day.transpiration, left - evaporation)
     layer = layer + evaporation / day.exposed
@@ -171,6 +196,7 @@ def balance_day(
             held = lo(excess, day.saturation) * (1.0 - 1.0 / share)
             percolation = excess - held
             depletion = drained - held
+            run = run * (block.drainage_days > 0.0)
         else:
             percolation = excess
             depletion = drained
@@ -193,6 +219,7 @@ def balance_day(
         percolation,
         growth,
         runoff,
+        rise,
         correction,
     )
     return state, columns

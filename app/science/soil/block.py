@@ -8,6 +8,8 @@ from numpy.typing import NDArray
 from app.science import Days as Dates
 from app.science import Floats
 from app.science.crop.season import CropSeason, check_range
+from app.science.soil.capillary import RisingSoil
+from app.science.soil.evaporation import SAME_DAY
 from app.science.soil.profile import Profile
 
 
@@ -20,7 +22,15 @@ class BlockPlan:
     share of the area whose roots are wetted by irrigation; TAW and RAW times it.
     initial_depletion_mm, or None for initial_depletion_fraction of TAW; at most TAW.
     initial_subsoil_depletion_fraction 0-1, 0 is field capacity. correction (days,) [mm], positive
-    wets, and capillary_rise (days,) [mm]; None for zeros. Raises ValueError naming the field.
+    wets, and capillary_rise (days,) [mm]; None for zeros.
+
+    salt_factor 0-1: stress coefficient of salinity (`salinity_stress`), times that of water.
+    water_table_m (days,): depth of a water table below the surface [m], NaN where none is known,
+    with rising_soil, the soil above it. subsoil_layer_depletion: opening depletion 0-1 of TAW of
+    each layer of the profile, for roots that grow into them; it takes the place of
+    initial_subsoil_depletion_fraction. same_day: wetted fraction of a day with irrigation and
+    wetting rain: "irrigation", that of the irrigation, or "weighted", the mean of its fraction
+    and 1 by the depths of both. Raises ValueError naming the field.
     """
 
     season: CropSeason
@@ -38,6 +48,11 @@ class BlockPlan:
     initial_evaporation_depletion_mm: float = 0.0
     correction: Floats | None = None
     capillary_rise: Floats | None = None
+    salt_factor: float = 1.0
+    water_table_m: Floats | None = None
+    rising_soil: RisingSoil | None = None
+    subsoil_layer_depletion: tuple[float, ...] | None = None
+    same_day: str = "irrigation"
 
     def __post_init__(self) -> None:
         check_range("days", self.days, 1, 20000)
@@ -51,6 +66,19 @@ class BlockPlan:
         )
         if self.initial_depletion_mm is not None:
             check_range("initial_depletion_mm", self.initial_depletion_mm, -5000.0, 5000.0)
+        check_range("salt_factor", self.salt_factor, 0.0, 1.0)
+        if self.same_day not in SAME_DAY:
+            raise ValueError(f"same_day is {self.same_day!r}; choose {' or '.join(SAME_DAY)}")
+        if self.water_table_m is not None and self.rising_soil is None:
+            raise ValueError("water_table_m needs rising_soil, the soil above the water table")
+        if self.subsoil_layer_depletion is not None:
+            count, layers = len(self.subsoil_layer_depletion), len(self.profile.layers)
+            if count != layers:
+                raise ValueError(
+                    f"subsoil_layer_depletion has {count} values; the profile has {layers} layers"
+                )
+            for share in self.subsoil_layer_depletion:
+                check_range("subsoil_layer_depletion", share, 0.0, 1.0)
 
     @property
     def date(self) -> Dates:
@@ -78,7 +106,8 @@ class BlockLedger:
 
     NaN where a column has no meaning: kcb, ke and evaporation_layer_depletion_mm with single
     coefficients, depletion_p10_mm and depletion_p90_mm until the ensemble fills them.
-    opening_depletion_mm is the depletion before the first day. standing is that of the day's own
+    opening_depletion_mm is the depletion before the first day. draining_days: days in a row above
+    field capacity, of a soil that drains over days. standing is that of the day's own
     close, its ET repeated and every day taken as a chance.
     """
 
@@ -112,4 +141,5 @@ class BlockLedger:
     depletion_p90_mm: Floats
     subsoil_depletion_mm: Floats
     evaporation_layer_depletion_mm: Floats
+    draining_days: Floats
     standing: NDArray[np.object_]

@@ -12,6 +12,8 @@ WET_SURFACE_KC = 1.2
 LEAST_FRACTION, MOST_COVER, LEAST_SPAN = 0.01, 0.99, 0.01
 # FAO-56 chapter 7: rain above 3-4 mm wets the whole surface.
 WETTING_RAIN_MM = 3.0
+# How irrigation and wetting rain of one day share the surface.
+SAME_DAY = ("irrigation", "weighted")
 
 
 def total_evaporable_water(
@@ -116,3 +118,45 @@ def wetted_fraction_series(
     fw = np.where(known, np.take_along_axis(event, index, axis=0), opening)
     by_irrigation = known & np.take_along_axis(irrigated, index, axis=0)
     return np.clip(fw, LEAST_FRACTION, 1.0), by_irrigation.astype(np.float64)
+
+
+def weighted_fraction(depths: ArrayLike, fractions: ArrayLike) -> Floats:
+    """Wetted fraction of events together: the mean of their fractions by their depths.
+
+    depths [mm over the field] >= 0 and fractions 0-1, events along the first axis, any shape
+    after it; NaN for no event. NaN where nothing fell. Source: FAO-56 chapter 7, rain and
+    irrigation "in proportion to the infiltration from each" (from memory); the same rule is used
+    for several irrigations of one day (working value).
+    """
+    depth, part = np.broadcast_arrays(floats(depths), floats(fractions))
+    here = ~np.isnan(depth) & ~np.isnan(part)
+    water = np.where(here, depth, 0.0)
+    total, wetted = water[0] * 0.0, water[0] * 0.0
+    for one, share in zip(water, np.where(here, part, 0.0), strict=True):
+        total, wetted = total + one, wetted + one * share
+    return np.asarray(
+        np.divide(wetted, total, out=np.full(np.shape(total), np.nan), where=total > 0.0)
+    )
+
+
+def lines_fraction(fractions: ArrayLike) -> Floats:
+    """Wetted fraction of emitters or lines at different places run together: the sum of their
+    fractions (first axis), at most 1. NaN in, NaN out. Source: geometry."""
+    return np.asarray(np.minimum(np.sum(floats(fractions), axis=0), 1.0))
+
+
+def emitter_fraction(
+    emitters: ArrayLike, spacing_m: ArrayLike, width_m: ArrayLike, area_m2: ArrayLike
+) -> Floats:
+    """Fraction wetted by one straight line of emitters a plant row, 0.01-1.
+
+    emitters a plant; spacing_m between them [m]; width_m of the wetted strip [m]; area_m2 of a
+    plant [m2]. Emitters further apart than 0.8 of the width count as 0.8 of it (their circles no
+    longer meet). Shapes broadcast; NaN in, NaN out. Source: NEH 623 chapter 7, straight single
+    lateral: Np Se w / (Sp Sr) (from memory).
+    """
+    width = floats(width_m)
+    apart = np.minimum(floats(spacing_m), 0.8 * width)
+    return np.asarray(
+        np.clip(floats(emitters) * apart * width / floats(area_m2), LEAST_FRACTION, 1.0)
+    )

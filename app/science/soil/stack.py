@@ -1,18 +1,19 @@
 """Plans of different starts and lengths side by side, as arrays (days, blocks)."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
 from app.science import Floats
 from app.science.crop.curve import Curve, season_curves
-from app.science.soil.balance import Terms
+from app.science.soil.balance import Terms, without_first
 from app.science.soil.block import BlockPlan, BlockWeather
 from app.science.soil.terms import Openings, Supplies, make_terms
 
 # Weather of the days after a shorter plan's last: no demand, no water, a mild climate.
-PADDING = {"u2": 2.0, "rh_min": 45.0, "irrigation_fw": np.nan}
+PADDING = {"u2": 2.0, "rh_min": 45.0, "irrigation_fw": np.nan, "water_table_m": np.nan}
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -29,6 +30,16 @@ class Stack:
         seasons = [plan.season for plan in self.plans]
         profiles = [plan.profile for plan in self.plans]
         return make_terms(seasons, profiles, self.curve, self.supplies, self.openings)
+
+    def since(self, passed: Sequence[int]) -> "Stack":
+        """The stack without each plan's first `passed` days."""
+
+        def later(columns: Any) -> dict[str, Any]:
+            return {name: without_first(values, passed) for name, values in vars(columns).items()}
+
+        return replace(
+            self, curve=Curve(**later(self.curve)), supplies=Supplies(**later(self.supplies))
+        )
 
 
 def stack_plans(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> Stack:
@@ -59,6 +70,7 @@ def stack_plans(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> 
         irrigation_fw=stacked("irrigation_fw", lambda b: plans[b].irrigation_fw),
         capillary_rise=stacked("capillary_rise", lambda b: plans[b].capillary_rise),
         correction=stacked("correction", lambda b: plans[b].correction),
+        water_table=stacked("water_table_m", lambda b: plans[b].water_table_m),
         u2=stacked("u2", lambda b: weather[b].u2),
         rh_min=stacked("rh_min", lambda b: weather[b].rh_min),
     )
@@ -86,12 +98,18 @@ def _openings(plans: Sequence[BlockPlan]) -> Openings:
         layer_mm=column("initial_evaporation_depletion_mm"),
         roots=column("root_wetted_fraction"),
         under_canopy=np.array([plan.under_canopy for plan in plans]),
+        weighted=np.array([plan.same_day == "weighted" for plan in plans]),
+        salt=column("salt_factor"),
+        rising=[plan.rising_soil for plan in plans],
+        layer_shares=[plan.subsoil_layer_depletion for plan in plans],
     )
 
 
 def _check(plans: Sequence[BlockPlan], supplies: Supplies) -> None:
     depths = ("rain", "irrigation", "capillary_rise")
     for name, values in vars(supplies).items():
+        if name == "water_table":
+            continue
         if name == "irrigation_fw":
             wrong = (supplies.irrigation > 0.0) & np.isnan(values)
             why = "an irrigation without its wetted fraction"

@@ -10,6 +10,7 @@ from app.science.crop.curve import Curve
 from app.science.crop.season import CropSeason
 from app.science.soil import evaporation
 from app.science.soil.balance import Blocks, Days, State, Terms
+from app.science.soil.capillary import RisingSoil, rise_to_roots
 from app.science.soil.profile import Profile
 from app.science.soil.root_zone import P_ETC, P_SLOPE
 from app.science.soil.runoff import dry_curve_number, wet_curve_number, wetness_bounds
@@ -21,7 +22,8 @@ NO_RUNOFF = 1.0
 @dataclass(frozen=True, kw_only=True)
 class Supplies:
     """Water and energy of each day, each (days, blocks): eto, rain, irrigation (net),
-    capillary_rise, correction [mm]; irrigation_fw [-], NaN for no event; u2 [m s-1]; rh_min [%]."""
+    capillary_rise, correction [mm]; irrigation_fw [-], NaN for no event; water_table [m below the
+    surface], NaN for none; u2 [m s-1]; rh_min [%]."""
 
     eto: Floats
     rain: Floats
@@ -29,6 +31,7 @@ class Supplies:
     irrigation_fw: Floats
     capillary_rise: Floats
     correction: Floats
+    water_table: Floats
     u2: Floats
     rh_min: Floats
 
@@ -37,7 +40,9 @@ class Supplies:
 class Openings:
     """State before the first day, each (blocks,): depletion_mm, or NaN for depletion_fraction of
     TAW; subsoil_fraction of the subsoil's TAW; layer_mm; roots, wetted fraction of the root zone;
-    under_canopy bool."""
+    under_canopy and weighted (wetted fraction of irrigation and rain by their depths) bool; salt,
+    factor of salinity. rising (blocks), the soil above a water table or None; layer_shares
+    (blocks), opening depletion of each soil layer or None."""
 
     depletion_mm: Floats
     depletion_fraction: Floats
@@ -45,6 +50,10 @@ class Openings:
     layer_mm: Floats
     roots: Floats
     under_canopy: Bools
+    weighted: Bools
+    salt: Floats
+    rising: Sequence[RisingSoil | None]
+    layer_shares: Sequence[tuple[float, ...] | None]
 
 
 def soil_held(profiles: Sequence[Profile], depth: Floats) -> tuple[Floats, Floats]:
@@ -53,27 +62,48 @@ def soil_held(profiles: Sequence[Profile], depth: Floats) -> tuple[Floats, Float
     profiles: one a block; depth (days, blocks). Returns two such arrays; the same as
     `Profile.taw` and `Profile.saturation_excess`, over all blocks at once.
     """
-    count = max(len(profile.layers) for profile in profiles)
-    taw, saturation = np.zeros(depth.shape), np.zeros(depth.shape)
-    top = np.zeros(len(profiles))
-    for i in range(count):
-        bottom, available, above = np.array([_layer(profile, i) for profile in profiles]).T
+    available = [[x.field_capacity - x.wilting_point for x in p.layers] for p in profiles]
+    above = [[x.saturation - x.field_capacity for x in p.layers] for p in profiles]
+    return _held(profiles, depth, available), _held(profiles, depth, above)
+
+
+def subsoil_by_layer(
+    profiles: Sequence[Profile],
+    shares: Sequence[tuple[float, ...] | None],
+    depth: Floats,
+    deepest: Floats,
+) -> Floats:
+    """Opening depletion [mm] of the soil between `depth` and `deepest` [m].
+
+    shares: depletion 0-1 of TAW of each layer, or None (gives 0). depth (days, blocks), deepest
+    (1, blocks). Returns (days, blocks).
+    """
+    contents = [
+        [
+            share * (x.field_capacity - x.wilting_point)
+            for x, share in zip(p.layers, told or (0.0,) * len(p.layers), strict=True)
+        ]
+        for p, told in zip(profiles, shares, strict=True)
+    ]
+    held = _held(profiles, np.vstack([deepest, np.minimum(depth, deepest)]), contents)
+    return np.asarray(held[:1] - held[1:])
+
+
+def _held(profiles: Sequence[Profile], depth: Floats, contents: list[list[float]]) -> Floats:
+    """Water [mm] down to `depth` [m] of layers that hold `contents` [m3 m-3]."""
+    total, top = np.zeros(depth.shape), np.zeros(len(profiles))
+    for i in range(max(len(profile.layers) for profile in profiles)):
+        bottom = np.array([_bottom(profile, i) for profile in profiles])
+        content = np.array([held[i] if i < len(held) else 0.0 for held in contents])
         thick = np.minimum(np.maximum(depth - top, 0.0), np.maximum(bottom - top, 0.0))
-        taw += 1000.0 * available * thick
-        saturation += 1000.0 * above * thick
+        total += 1000.0 * content * thick
         top = bottom
-    return taw, saturation
+    return total
 
 
-def _layer(profile: Profile, i: int) -> tuple[float, float, float]:
-    """Bottom, available water and saturation excess of layer `i`; the last one has no bottom."""
-    last = len(profile.layers) - 1
-    layer = profile.layers[min(i, last)]
-    bottom = layer.bottom_m if i < last else 1e9
-    if i > last:
-        return bottom, 0.0, 0.0
-    available = layer.field_capacity - layer.wilting_point
-    return bottom, available, layer.saturation - layer.field_capacity
+def _bottom(profile: Profile, i: int) -> float:
+    """Bottom [m] of layer `i`; the last one has none."""
+    return profile.layers[i].bottom_m if i < len(profile.layers) - 1 else 1e9
 
 
 def make_terms(
@@ -98,30 +128,49 @@ def make_terms(
     reachable = np.maximum(soil_held(profiles, deepest)[0][0], taw[0]) * openings.roots
     taw *= openings.roots
     saturation *= openings.roots
+    layered = np.array([shares is not None for shares in openings.layer_shares])
+    below = openings.roots * subsoil_by_layer(
+        profiles, openings.layer_shares, curve.root_depth, np.maximum(deepest, curve.root_depth[0])
+    )
+    even = np.clip(openings.subsoil_fraction, 0.0, 1.0) * (reachable - taw[0])
     whole = np.where(np.isnan(openings.depletion_mm), openings.depletion_fraction * taw[0], 0.0)
     depletion = np.where(np.isnan(openings.depletion_mm), whole, openings.depletion_mm)
     slow = np.array([profile.drainage_days for profile in profiles], dtype=np.float64)
-    blocks = _blocks(seasons, profiles, openings.roots, slow, p_slope, dual)
+    blocks = _blocks(seasons, profiles, openings, slow, p_slope, dual)
+    days = _days(dual, curve, supplies, openings, taw, saturation)
     return Terms(
         blocks=blocks,
-        days=_days(dual, curve, supplies, openings, taw, saturation, reachable),
+        days=days._replace(
+            new_roots=np.where(layered, 0.0, _new_roots(taw, reachable)),
+            below=np.where(layered, below, np.inf),
+        ),
         opening=State(
             depletion=np.clip(depletion, -saturation[0] * (slow > 0.0), taw[0]),
-            subsoil=np.clip(openings.subsoil_fraction, 0.0, 1.0) * (reachable - taw[0]),
+            subsoil=np.where(layered, below[0], even),
             layer=np.clip(openings.layer_mm, 0.0, blocks.tew),
             draining=np.zeros(slow.shape),
         ),
         has_runoff=any(profile.curve_number is not None for profile in profiles),
         has_slow_drainage=bool((slow > 0.0).any()),
         has_correction=bool((supplies.correction != 0.0).any()),
+        has_layers=bool(layered.any()),
+        has_table=bool((days.rise > 0.0).any()),
         drain_before_et=drain_before_et,
     )
+
+
+def _new_roots(taw: Floats, reachable: Floats) -> Floats:
+    """Share of the subsoil that each day's new roots enter."""
+    before = np.vstack([taw[:1], taw[:-1]])
+    below = reachable - before
+    share = np.divide(taw - before, below, out=np.zeros(taw.shape), where=below > 1e-9)
+    return np.clip(share, 0.0, 1.0)
 
 
 def _blocks(
     seasons: Sequence[CropSeason],
     profiles: Sequence[Profile],
-    roots: Floats,
+    openings: Openings,
     slow: Floats,
     p_slope: float,
     dual: Bools,
@@ -140,12 +189,13 @@ def _blocks(
         drying=tew - rew,
         p_base=table_p + p_slope * P_ETC,
         p_slope=np.full(tew.shape, p_slope),
-        roots=roots,
+        roots=openings.roots,
         wet_at=wet_at,
         wet_span=dry_at - wet_at,
         cn_wet=cn_wet,
         cn_fall=cn_wet - cn_dry,
         drainage_days=slow,
+        salt=openings.salt,
     )
 
 
@@ -156,19 +206,15 @@ def _days(
     openings: Openings,
     taw: Floats,
     saturation: Floats,
-    reachable: Floats,
 ) -> Days:
     k, eto = curve.coefficient, np.maximum(supplies.eto, 0.0)  # dew is no demand
     kc_max = evaporation.kc_max(k, supplies.u2, supplies.rh_min, curve.height)
     cover = evaporation.cover_fraction(k, kc_max, curve.height, curve.kc_min)
-    fw, by_irrigation = evaporation.wetted_fraction_series(supplies.rain, supplies.irrigation_fw)
+    event = _events(supplies, openings.weighted)
+    fw, by_irrigation = evaporation.wetted_fraction_series(supplies.rain, event)
     shaded = openings.under_canopy & (by_irrigation > 0.0)
     sunlit = np.where(shaded, evaporation.under_canopy(fw, cover), fw)
     exposed = np.where(dual, evaporation.exposed_wetted_fraction(cover, sunlit), 1.0)
-    # New roots take over the share of the subsoil they enter.
-    before = np.vstack([taw[:1], taw[:-1]])
-    below = reachable - before
-    new_roots = np.divide(taw - before, below, out=np.zeros(taw.shape), where=below > 1e-9)
     return Days(
         rain=supplies.rain,
         wet=supplies.rain * openings.roots + supplies.irrigation + supplies.capillary_rise,
@@ -178,7 +224,32 @@ def _days(
         evaporation_most=exposed * kc_max * eto,
         exposed=exposed,
         taw=taw,
-        new_roots=np.clip(new_roots, 0.0, 1.0),
+        new_roots=np.zeros(taw.shape),
+        below=np.zeros(taw.shape),
+        rise=_rise(openings.rising, supplies.water_table, curve.root_depth, k * eto),
         saturation=saturation,
         correction=supplies.correction,
     )
+
+
+def _events(supplies: Supplies, weighted: Bools) -> Floats:
+    """Wetted fraction of each day's irrigation, NaN for none; where blocks say so, weighted with
+    the day's wetting rain."""
+    own = supplies.irrigation_fw
+    both = weighted & ~np.isnan(own) & (supplies.rain >= evaporation.WETTING_RAIN_MM)
+    if not both.any():
+        return own
+    depths = np.stack([supplies.irrigation, supplies.rain])
+    mean = evaporation.weighted_fraction(depths, np.stack([own, np.ones(own.shape)]))
+    return np.where(both, mean, own)
+
+
+def _rise(
+    soils: Sequence[RisingSoil | None], table: Floats, root_depth: Floats, demand: Floats
+) -> Floats:
+    """Most that can rise from the water table [mm], (days, blocks)."""
+    rise = np.zeros(table.shape)
+    for b, soil in enumerate(soils):
+        if soil is not None:
+            rise[:, b] = rise_to_roots(soil, table[:, b], root_depth[:, b], demand[:, b])
+    return rise

@@ -22,7 +22,9 @@ def one_block(
 
     By default: no water, no demand, a root zone too large to matter, few 1.
     """
-    columns = dict.fromkeys(Days._fields, 0.0) | {"taw": 1e6, "exposed": 1.0} | daily
+    columns = (
+        dict.fromkeys(Days._fields, 0.0) | {"taw": 1e6, "exposed": 1.0, "below": np.inf} | daily
+    )
     blocks = Blocks(
         tew=tew,
         drying=tew - rew,
@@ -34,6 +36,7 @@ def one_block(
         cn_wet=1.0,
         cn_fall=0.0,
         drainage_days=0.0,
+        salt=1.0,
     )
     return Terms(
         blocks=Blocks(*(np.array([value]) for value in blocks)),
