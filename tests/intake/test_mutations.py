@@ -146,8 +146,15 @@ def _check(data: bytes) -> bool:
     return len(rows) > 0
 
 
-@pytest.mark.parametrize("name", ["iso_comma.csv", "bar_three_header_lines.txt",
-                                  "semicolon_spanish_latin1.txt", "aligned_columns.txt"])  # fmt: skip
+@pytest.mark.parametrize(
+    "name",
+    [
+        "iso_comma.csv",
+        "bar_three_header_lines.txt",
+        "semicolon_spanish_latin1.txt",
+        "aligned_columns.txt",
+    ],
+)
 def test_rows_not_touched_are_read_unchanged(name: str) -> None:
     """Bytes are spoilt in a few data lines; every other line must give what it gave before."""
     whole = (DATA / name).read_bytes()
