@@ -5,6 +5,9 @@ from itertools import groupby
 
 from app.storage.pages import RoundsRow
 
+ORDER = {"late": 0, "due": 1, "soon": 2, "easy": 3, "wet": 4}
+"""Standings, most urgent first."""
+
 
 def dryness(row: RoundsRow) -> float:
     """Depletion as a share of the limit; a block without advice is the least dry."""
@@ -25,10 +28,15 @@ def managed(blocks: Sequence[RoundsRow]) -> RoundsRow:
     return by_dryness[place]
 
 
-def one_a_field(rows: Sequence[RoundsRow]) -> list[tuple[RoundsRow, int]]:
-    """The managed block of each field and how many blocks the field has; rows come by field."""
+def one_a_field(rows: Sequence[RoundsRow]) -> list[tuple[RoundsRow, list[RoundsRow]]]:
+    """The managed block of each field, and its blocks that are more urgent; rows come by field."""
     found = []
     for _, group in groupby(rows, key=lambda row: row.field_id):
         blocks = list(group)
-        found.append((managed(blocks), len(blocks)))
+        chosen = managed(blocks)
+        found.append((chosen, [row for row in blocks if _urgent(row) < _urgent(chosen)]))
     return found
+
+
+def _urgent(row: RoundsRow) -> int:
+    return ORDER.get(row.standing or "", len(ORDER))

@@ -11,8 +11,8 @@ from urllib.parse import urlencode
 from app import wording
 from app.storage.pages import EventRow, RoundsRow, SourceRow
 from app.web.crops import crop_name, season_words
+from app.web.managed import ORDER
 
-ORDER = {"late": 0, "due": 1, "soon": 2, "easy": 3, "wet": 4}
 NOT_STANDING = 9
 ROWS_ON_A_PAGE = 250
 """More come in parts: a page stays below 200 kB even where every field needs words."""
@@ -50,6 +50,7 @@ class Row(NamedTuple):
     typed: str
     standing: str = "none"
     unsure: str = ""
+    others: str = ""
     bar: Bar | None = None
     depletion: str = ""
     span: str = ""
@@ -90,6 +91,8 @@ class Facts:
     stations: Mapping[str, str]
     energy: Mapping[int, SourceRow] = field(default_factory=dict)
     events: Mapping[int, Sequence[EventRow]] = field(default_factory=dict)
+    ahead: Mapping[int, Sequence[RoundsRow]] = field(default_factory=dict)
+    """For each field its blocks that are more urgent than the one it goes by."""
 
 
 SORTS: dict[str, tuple[str, Callable[[RoundsRow], Any]]] = {
@@ -164,7 +167,8 @@ def in_standing(row: RoundsRow, standing: str) -> bool:
 
 def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> Row:
     """A row in words."""
-    ran = "; ".join(event_words(event, facts.today) for event in facts.events.get(row.block_id, ()))
+    last = facts.events.get(row.block_id, ())[:2]
+    ran = "; ".join(event_words(event, facts.today) for event in last)
     plain = Row(
         row.field_key,
         row.field_name,
@@ -180,6 +184,10 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
     return plain._replace(
         standing=row.standing or "none",
         unsure=" ".join(wording.unsure(row.unsure, facts.stations)),
+        others=" ".join(
+            f"{other.block_name} is {other.standing}."
+            for other in facts.ahead.get(row.field_id, ())
+        ),
         bar=bar(
             row.depletion_mm, row.limit_mm, row.taw_mm, row.depletion_p10_mm, row.depletion_p90_mm
         ),

@@ -8,7 +8,7 @@ import pytest
 from app.storage.pages import RecentDay, RoundsRow, StationRow
 from app.web import charts, measured, trouble
 from app.web.crops import crop_name, published_stages, season_words, stage
-from app.web.managed import managed
+from app.web.managed import managed, one_a_field
 from app.web.rounds_view import Bar, bar
 from app.web.working_view import opening
 from tests.web.factory import TODAY
@@ -48,6 +48,14 @@ def test_a_field_goes_by_its_driest_median_or_named_block() -> None:
 def replace_number(blank: RoundsRow) -> RoundsRow:
     """The row of a block without advice."""
     return blank._replace(number=None)
+
+
+def test_a_more_urgent_block_is_not_hidden_behind_the_managed_one() -> None:
+    chosen = row("a", 10, 66, "a")._replace(field_id=1, standing="easy")
+    other = row("b", 60, 66, "a")._replace(field_id=1, standing="due")
+    assert one_a_field([chosen, other]) == [(chosen, [other])]
+    calm = other._replace(standing="wet")
+    assert one_a_field([chosen, calm]) == [(chosen, [])]
 
 
 def days(rungs: list[int], until: int = 1, flags: str = "") -> list[RecentDay]:

@@ -15,7 +15,7 @@ from app.storage import pages as store
 from app.storage.database import Database
 from app.web import rounds_view as view
 from app.web.access import AsViewer, Viewer
-from app.web.managed import one_a_field
+from app.web.managed import ORDER, one_a_field
 from app.web.needs import AsDatabase, AsToday, read_day, read_number
 from app.web.problems import RefusedError
 from app.web.render import page
@@ -117,7 +117,8 @@ def _show(
     errors, typed = errors or {}, typed or {}
     with db.read() as session:
         morning = store.last_morning(session, today)
-        rows = [row for row, _ in one_a_field(store.rounds_rows(session, morning, viewer.farm))]
+        pairs = one_a_field(store.rounds_rows(session, morning, viewer.farm))
+        rows = [row for row, _ in pairs]
         stations = store.stations(session)
         energy = store.current(store.sources(session, today, viewer.farm, "energy"))
         recent = store.recent_days(session, today)
@@ -131,6 +132,7 @@ def _show(
         stations={station.key: station.name for station in stations},
         energy={field: row for (field, _), row in energy.items()},
         events=by_block,
+        ahead={row.field_id: others for row, others in pairs if others},
     )
     sifted = view.sift(rows, sieve, facts)
     if only is not None:
@@ -175,7 +177,7 @@ def _show(
         farms=sorted({(row.farm_key, row.farm_name) for row in rows}, key=lambda f: f[1]),
         crops=view.crops_of(rows),
         stations=[(station.key, station.name) for station in shown],
-        standings=[*view.ORDER, "unsure", "none"],
+        standings=[*ORDER, "unsure", "none"],
     )
 
 
