@@ -10,6 +10,7 @@ from starlette.exceptions import HTTPException
 from starlette.types import Scope
 
 from app.web.access import NoWayInError
+from app.web.headers import HEADERS
 from app.web.render import page
 
 PROBLEM = "application/problem+json"
@@ -125,10 +126,12 @@ def _needs_way_in(request: Request, error: Exception) -> Response:
 
 
 def _unforeseen(request: Request, error: Exception) -> Response:
+    """The answer to an error of ours; it is made outside the other layers, so it brings its
+    headers itself. The error goes on to the server's log."""
     detail = "The program met an error it does not know; it stands in the server's log."
-    if is_api(request):
-        return problem(500, detail)
-    return error_page(request, 500, detail)
+    answer = problem(500, detail) if is_api(request) else error_page(request, 500, detail)
+    answer.headers.update(HEADERS)
+    return answer
 
 
 def _shown(value: Any) -> Any:

@@ -6,31 +6,10 @@ from starlette.datastructures import Headers, MutableHeaders
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from app.web.access import SAFE
+from app.web.headers import CAUTION_HEADER, HEADERS
 from app.web.problems import refusal
-from app.wording import CAUTION, CAUTION_TITLE
 
 HOSTS = frozenset({"127.0.0.1", "localhost", "[::1]"})
-POLICY = "; ".join(
-    (
-        "default-src 'none'",
-        "style-src 'self'",
-        "script-src 'self'",
-        "img-src 'self'",
-        "connect-src 'self'",
-        "form-action 'self'",
-        "base-uri 'none'",
-        "frame-ancestors 'none'",
-    )
-)
-CAUTION_HEADER = f"{CAUTION_TITLE} {CAUTION}".replace("’", "'")
-HEADERS = {
-    "Content-Security-Policy": POLICY,
-    "X-Content-Type-Options": "nosniff",
-    "Referrer-Policy": "same-origin",
-    "Cross-Origin-Opener-Policy": "same-origin",
-    "Cross-Origin-Resource-Policy": "same-origin",
-    "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
-}
 
 
 def host_name(host: str) -> str:

@@ -198,6 +198,10 @@ def test_an_error_of_ours_is_a_page_in_plain_words(
     assert answer.status_code == 500
     assert "Something went wrong on our side" in answer.text
     assert "secret detail" not in answer.text
+    assert "default-src 'none'" in answer.headers["content-security-policy"]
+    told = browse.get("/api/v1/rounds")
+    assert told.status_code == 500
+    assert told.json()["title"] == "Something went wrong on our side"
     assert CAUTION_TITLE in answer.text
 
 
