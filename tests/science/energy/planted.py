@@ -33,6 +33,13 @@ def surfrad_grid() -> tuple[DayRows, Grid]:
     return rows, with_vapour({n: v.reshape(1, 1440) for n, v in record.values.items()})
 
 
+@cache
+def surfrad_local() -> tuple[DayRows, Grid]:
+    """The same day by local time: the seven hours of the evening before follow the afternoon."""
+    rows = day_rows(ALAMOSA, np.array(["2016-01-01"], dtype="datetime64[D]"), 1440)
+    return rows, {name: np.roll(v, -420, axis=1) for name, v in surfrad_grid()[1].items()}
+
+
 def with_vapour(grid: Grid) -> Grid:
     moist = np.minimum(grid["relative_humidity"], 100.0) / 100.0
     return grid | {"vapour_pressure": saturation_vapour_pressure(grid["air_temperature"]) * moist}

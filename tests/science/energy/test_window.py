@@ -57,7 +57,7 @@ def test_sun_direction_against_pvlib(latitude: float, longitude: float) -> None:
 
 @pytest.mark.filterwarnings(SURFRAD_WARNING)
 def test_clean_records_raise_nothing() -> None:
-    """Payerne's three misty dawns are undecidable, never covered; the clear winter day is silent."""
+    """Three misty dawns are undecidable, never covered; the clear winter day is silent."""
     rows, grid = payerne_grid()
     told = judged(rows, grid)
     assert not told.covered.any()
