@@ -69,8 +69,18 @@ def replace_problems(session: Session, intake: int, problems: Iterable[dict[str,
         session.execute(insert(IntakeProblem), rows)
 
 
-def contribute(session: Session, rows: Sequence[dict[str, Any]]) -> None:
-    """Keep the packed days of an intake."""
+def contribute(session: Session, intake: Intake, packs: Iterable[tuple[date, int, bytes]]) -> None:
+    """Keep the packed days (day, rows, blob) of an intake."""
+    rows = [
+        {
+            "intake_id": intake.id,
+            "day": day,
+            "station_id": intake.station_id,
+            "rows": count,
+            "data": blob,
+        }
+        for day, count, blob in packs
+    ]
     if rows:
         session.execute(insert(Contribution), rows)
 
@@ -110,20 +120,6 @@ def fields_fed(session: Session, station: int) -> int:
             .select_from(Source)
             .join(Field, Field.id == Source.field_id)
             .where(Source.station_id == station)
-        )
-        or 0
-    )
-
-
-def later_applied(session: Session, intake: Intake, first: date, last: date) -> int:
-    """How many intakes applied after this one touch the same days of its station."""
-    return (
-        session.scalar(
-            select(func.count())
-            .select_from(Intake)
-            .where(Intake.station_id == intake.station_id, Intake.state == "applied")
-            .where(Intake.applied_order > (intake.applied_order or 0))
-            .where(Intake.first_day <= last, Intake.last_day >= first)
         )
         or 0
     )

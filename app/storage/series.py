@@ -75,19 +75,30 @@ def last_days(session: Session) -> dict[int, date]:
 
 
 def applied_packs(
-    session: Session, station: int, first: date, last: date | None = None
+    session: Session, station: int, first: date, last: date, leaving_out: int | None = None
 ) -> list[bytes]:
-    """Packed rows of a station's applied intakes from a day on, in the order they were applied."""
+    """Packed rows of a station's applied intakes over first..last, in the order of applying."""
     wanted = (
         select(Contribution.data)
         .join(Intake, Intake.id == Contribution.intake_id)
-        .where(Contribution.station_id == station, Contribution.day >= first)
+        .where(Contribution.station_id == station, Contribution.day.between(first, last))
         .where(Intake.state == "applied")
         .order_by(Intake.applied_order, Contribution.day)
     )
-    if last is not None:
-        wanted = wanted.where(Contribution.day <= last)
+    if leaving_out is not None:
+        wanted = wanted.where(Intake.id != leaving_out)
     return list(session.scalars(wanted))
+
+
+def days_with_rows(session: Session, station: int, since: date) -> tuple[date, date] | None:
+    """First and last day, from `since` on, that an applied intake brought rows for."""
+    first, last = session.execute(
+        select(func.min(Contribution.day), func.max(Contribution.day))
+        .join(Intake, Intake.id == Contribution.intake_id)
+        .where(Contribution.station_id == station, Contribution.day >= since)
+        .where(Intake.state == "applied")
+    ).one()
+    return None if first is None else (first, last)
 
 
 def replace_station_days(

@@ -15,8 +15,9 @@ import numpy as np
 from sqlalchemy import select, update
 from sqlalchemy.orm import Session
 
-from app.intake import DayNote, aggregate, fold, unpack
+from app.intake import DayNote, aggregate
 from app.science import Floats
+from app.science.energy.day_checks import REACH_DAYS
 from app.science.energy.station_day import DailyWeather, StationDays, station_days
 from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletion
 from app.storage import book
@@ -26,12 +27,16 @@ from app.storage.ledgers import (
     read_blocks,
     replace_ledger_days,
 )
-from app.storage.series import applied_packs, replace_station_days
+from app.storage.series import days_with_rows, replace_station_days
 from app.storage.tables import LedgerDay, Station
 from app.workflows import agronomy
 from app.workflows.assemble import Subject, seasons_of
+from app.workflows.compare import stored_rows
 
 MEMBERS = 200
+REACH = timedelta(days=max(1, REACH_DAYS))
+"""How far a change of readings is felt to either side: by checks, and by gaps over midnight."""
+DAYS_AT_A_TIME = timedelta(days=62)
 LEDGER_COLUMNS = tuple(
     column.name
     for column in LedgerDay.__table__.columns
@@ -76,10 +81,10 @@ def recompute_stations(session: Session) -> int:
         .with_for_update()
     ).all()
     for number, details, since in stations:
-        written += replace_station_days(
-            session, number, since, _days(session, number, details, since)
-        )
-        book.dirty_blocks(session, book.station_blocks(session, number), since)
+        first = max(since, book.BEGINNING + REACH) - REACH
+        rows = _days(session, number, details, first)
+        written += replace_station_days(session, number, first, rows)
+        book.dirty_blocks(session, book.station_blocks(session, number), first)
         session.execute(update(Station).where(Station.id == number).values(dirty_from=None))
     return written
 
@@ -87,20 +92,22 @@ def recompute_stations(session: Session) -> int:
 def _days(
     session: Session, station: int, details: dict[str, Any], since: date
 ) -> Iterator[dict[str, Any]]:
-    """Rows of station_day from `since` to the last day with readings."""
-    packs = applied_packs(session, station, since - timedelta(days=1))
-    rows = fold([unpack(blob) for blob in packs])
-    if not len(rows):
-        return
-    offset = round(details["utc_offset_h"] * 3600) - 1
-    ends = np.array([rows.instant[0], rows.instant[-1]]) + offset
-    earliest, last = ends.astype("datetime64[s]").astype("datetime64[D]")
-    first = max(np.datetime64(since, "D"), earliest)
-    if last < first:
+    """Rows of station_day from `since`, or the first readings after it, to the last readings."""
+    span = days_with_rows(session, station, since)
+    if span is None:
         return
     site = agronomy.site(details)
-    weather, notes = aggregate(rows, site, np.arange(first, last + 1))
-    yield from _station_rows(station, weather, station_days(site, weather), notes)
+    first, last = span
+    while first <= last:
+        until = min(first + DAYS_AT_A_TIME, last)
+        rows = stored_rows(session, station, first - 2 * REACH, until + 2 * REACH)
+        days = np.datetime64(first - REACH) + np.arange((until - first + 2 * REACH).days + 1)
+        weather, notes = aggregate(rows, site, days)
+        computed = station_days(site, weather)
+        for row in _station_rows(station, weather, computed, notes):
+            if first <= row["day"] <= until:
+                yield row
+        first = until + timedelta(days=1)
 
 
 def _station_rows(

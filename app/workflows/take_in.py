@@ -6,12 +6,10 @@ transaction together with all that follows from it.
 """
 
 from dataclasses import asdict, dataclass, field
-from datetime import UTC, date, datetime, timedelta
+from datetime import UTC, date, datetime
 from pathlib import PurePath
 from typing import Any, BinaryIO
 
-import numpy as np
-from numpy.typing import NDArray
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
@@ -22,25 +20,20 @@ from app.intake import (
     Mapping,
     Problem,
     Reading,
-    Rows,
     Sniffed,
-    fold,
     pack,
     read,
     sniff,
     station_day,
-    unpack,
 )
-from app.intake.model import Floats, Instants, Progress
+from app.intake.model import Progress
 from app.storage import book, intakes
 from app.storage.database import Database
-from app.storage.series import applied_packs
 from app.storage.tables import Intake, IntakeProblem, Station
 from app.workflows.bring_up_to_date import up_to_date
+from app.workflows.compare import as_day, changed_without, compare
 
 PROBLEMS_SHOWN = 200
-LONGEST = 1 << 20
-"""More than the seconds of any interval."""
 
 
 class TakeInError(InputError):
@@ -167,26 +160,16 @@ def apply(
         station = intake.station
         if intake.mapping != mapping:
             raise TakeInError("Somebody changed how this file is read; look at it again.")
-        changed = _compare(session, station, reading.rows, clock).days
+        changed = compare(session, station.id, reading.rows, clock).days
         intake.who, intake.applied_at = who, datetime.now(UTC)
         if not changed:
             intake.state = "same"
             return Applied(True, len(reading.rows), intake.first_day, 0, 0)
-        intakes.contribute(
-            session,
-            [
-                {
-                    "intake_id": intake.id,
-                    "day": part.day,
-                    "station_id": station.id,
-                    "rows": part.rows,
-                    "data": part.blob,
-                }
-                for part in pack(reading.rows, clock)
-            ],
-        )
+        packs = pack(reading.rows, clock)
+        intakes.contribute(session, intake, ((p.day, p.rows, p.blob) for p in packs))
         intake.state, intake.applied_order = "applied", intakes.next_order(session)
         intake.rows = len(reading.rows)
+        del reading, packs  # a large file's rows need not lie about while its days are recomputed
         intakes.remember(session, station.id, intake.mapping["signature"], intake.mapping)
         session.flush()
         return _land(session, station, intake, changed, today)
@@ -198,12 +181,9 @@ def undo(db: Database, intake_id: int, who: str, today: date) -> Applied:
         intake = session.get(Intake, intake_id, with_for_update=True)
         if intake is None or intake.state != "applied":
             raise TakeInError("Only a file that has been taken in can be undone.")
-        clock = _clock(intake.station)
-        before = _stored(session, intake.station, intake.first_day, intake.last_day)
+        changed = changed_without(session, intake, _clock(intake.station))
         intake.state = "undone"
         session.flush()
-        after = _stored(session, intake.station, intake.first_day, intake.last_day)
-        changed = _days_of(_moved(before, after), clock)
         intake.summary = {**intake.summary, "undone_by": who, "undone_at": str(datetime.now(UTC))}
         return _land(session, intake.station, intake, changed, today)
 
@@ -322,8 +302,8 @@ def _look(
         used,
         summary | _brings(session, station, reading, clock),
         len(rows),
-        _date(days.min()) if len(rows) else None,
-        _date(days.max()) if len(rows) else None,
+        as_day(days.min()) if len(rows) else None,
+        as_day(days.max()) if len(rows) else None,
         reading.problems,
     )
 
@@ -371,7 +351,7 @@ def _seen(sniffed: Sniffed) -> dict[str, Any]:
 
 
 def _brings(session: Session, station: Station, reading: Reading, clock: Clock) -> dict[str, Any]:
-    compared = _compare(session, station, reading.rows, clock)
+    compared = compare(session, station.id, reading.rows, clock)
     return {
         "rows_refused": reading.counts.rows_refused,
         "rows_same": compared.same,
@@ -396,89 +376,12 @@ def _problem_row(problem: Problem) -> dict[str, Any]:
     }
 
 
-@dataclass(frozen=True)
-class _Compared:
-    same: int
-    differing: int
-    days: list[date]
-
-
-def _compare(session: Session, station: Station, rows: Rows, clock: Clock) -> _Compared:
-    """Which stored days would change, how many rows are there the same, how many differ."""
-    if not len(rows):
-        return _Compared(0, 0, [])
-    days = station_day(rows.instant, rows.interval_s, clock)
-    stored = _stored(session, station, _date(days.min()), _date(days.max()))
-    if not len(stored):
-        return _Compared(0, 0, [_date(day) for day in np.unique(days)])
-    moved = _moved(stored, fold([stored, rows]))
-    mine = _identity(rows)
-    there = _holds(_identity(stored), mine)
-    differing = int((there & _holds(moved, mine)).sum())
-    return _Compared(int(there.sum()) - differing, differing, _days_of(moved, clock))
-
-
-def _stored(session: Session, station: Station, first: date | None, last: date | None) -> Rows:
-    if first is None or last is None:
-        return Rows.none()
-    return fold([unpack(blob) for blob in applied_packs(session, station.id, first, last)])
-
-
-def _identity(rows: Rows) -> Instants:
-    """Instant and interval of each row as one number, sorted as rows are."""
-    return rows.instant * LONGEST + rows.interval_s
-
-
-def _holds(sorted_: Instants, wanted: Instants) -> NDArray[np.bool_]:
-    """Whether each wanted number is among the sorted ones."""
-    if not sorted_.size:
-        return np.zeros(wanted.size, np.bool_)
-    place = np.minimum(np.searchsorted(sorted_, wanted), sorted_.size - 1)
-    found: NDArray[np.bool_] = sorted_[place] == wanted
-    return found
-
-
-def _moved(before: Rows, after: Rows) -> Instants:
-    """Identities of the rows that differ between two folds of one station."""
-    a, b = _identity(before), _identity(after)
-    union = a if np.array_equal(a, b) else np.union1d(a, b)
-    places = np.searchsorted(union, a), np.searchsorted(union, b)
-    differs = ~(_holds(a, union) & _holds(b, union))
-    for name in sorted(set(before.values) | set(after.values)):
-        x, y = (
-            _spread(rows.values.get(name), place, union.size)
-            for rows, place in zip((before, after), places, strict=True)
-        )
-        differs |= ~((x == y) | (np.isnan(x) & np.isnan(y)))
-    return union[differs]
-
-
-def _spread(values: Floats | None, place: NDArray[np.intp], size: int) -> Floats:
-    spread = np.full(size, np.nan)
-    if values is not None:
-        spread[place] = values
-    return spread
-
-
-def _days_of(identities: Instants, clock: Clock) -> list[date]:
-    """The station days of rows."""
-    instants, intervals = np.divmod(identities, LONGEST)
-    return [_date(day) for day in np.unique(station_day(instants, intervals, clock))]
-
-
 def _land(
     session: Session, station: Station, intake: Intake, changed: list[date], today: date | None
 ) -> Applied:
-    """Mark what a change of readings touches and bring it up to date.
-
-    A gap over midnight is filled from both sides, so the day before the first is touched too.
-    """
+    """Mark what a change of readings touches and bring it up to date."""
     blocks = 0
     if changed:
-        book.dirty_station(session, station.id, changed[0] - timedelta(days=1))
+        book.dirty_station(session, station.id, changed[0])
         blocks = up_to_date(session, today).blocks if today is not None else 0
     return Applied(False, intake.rows, intake.first_day, len(changed), blocks)
-
-
-def _date(day: Any) -> date:
-    return date(1970, 1, 1) + timedelta(days=int(day))

@@ -36,6 +36,8 @@ GRASS_ALBEDO_RANGE = (0.10, 0.35)  # -, FAO-56 p. 43: green cover 0.20-0.25; wid
 WINDOW_GAP = 15.0  # W m-2 under a black body that a clear sky never reaches, working value
 WINDOW_RATIO = 0.7  # Rs/Rso that proves an open sky over the day, working value
 WIND_STUCK_DAYS = 5  # days in a row with the very same mean, working value
+REACH_DAYS = WIND_STUCK_DAYS - 1  # how many days to either side a day's checks look
+
 NET_LOWEST = -10.0  # MJ m-2 d-1, working value
 NET_AGREES = (0.05, 1.0)  # share and MJ m-2 d-1, logger net against components, working value
 RH_DRY_AFTERNOON = 5.0  # %, from memory
