@@ -174,10 +174,15 @@ def _columns(stack: Stack, terms: Terms, result: Balance) -> dict[str, Floats]:
 
 
 def _limit(stack: Stack, taw: Floats, raw: Floats) -> Floats:
-    """Depletion not to be passed: MAD x TAW, RAW where no MAD is set; all of TAW where no crop
-    stands (off season of annuals), so that bare soil never calls for water."""
+    """Depletion not to be passed: MAD (of the stage) x TAW, RAW where no MAD is set; all of TAW
+    where no crop stands (off season of annuals), so that bare soil never calls for water."""
     seasons = [plan.season for plan in stack.plans]
-    mad = np.array([season.mad for season in seasons], dtype=np.float64)
+    by_stage = [
+        [season.mad, *(season.mad if m is None else m for m in season.mad_by_stage or (None,) * 4)]
+        for season in seasons
+    ]
+    allowed = np.array(by_stage, dtype=np.float64).T
+    mad = np.take_along_axis(allowed, stack.curve.stage.astype(np.int64), axis=0)
     standing = stack.curve.in_season | np.array([season.perennial for season in seasons])
     return np.where(standing, np.where(np.isnan(mad), raw, mad * taw), taw)
 

@@ -2,7 +2,11 @@
 
 import numpy as np
 
+from app.science.crop.degree_days import DegreeDays
+from app.science.crop.mulch import Mulch
 from app.science.crop.season import CropSeason
+from app.science.crop.seen import CoverSeen, StageSeen
+from app.science.crop.stand import Canopy
 from app.science.ledger import BlockPlan, BlockWeather
 from app.science.soil.capillary import RisingSoil
 from app.science.soil.profile import Layer, Profile
@@ -17,6 +21,16 @@ def random_season(rng: np.random.Generator, start: np.datetime64) -> CropSeason:
     stages[rng.integers(4)] += 1
     planting = start + np.timedelta64(int(rng.integers(-40, 30)), "D")
     end = planting + np.timedelta64(int(rng.integers(0, 160)), "D")
+
+    def days_on(count: int) -> list[np.datetime64]:
+        return sorted({planting + np.timedelta64(int(d), "D") for d in rng.integers(0, 120, count)})
+
+    stages_seen = [StageSeen(date=d, stage=int(rng.integers(1, 5))) for d in days_on(3)]
+    cover_seen = [
+        CoverSeen(date=d, cover=rng.random(), height_m=rng.uniform(0.05, 5.0)) for d in days_on(3)
+    ]
+    sums = rng.uniform(0.0, 500.0, 4)
+    shape = str(rng.choice(["even", "rows", "round"]))
     return CropSeason(
         planting=planting,
         stage_days=(int(stages[0]), int(stages[1]), int(stages[2]), int(stages[3])),
@@ -33,6 +47,34 @@ def random_season(rng: np.random.Generator, start: np.datetime64) -> CropSeason:
         perennial=bool(rng.random() < 0.2),
         climate_adjustment=str(rng.choice(["trailing", "stage_mean", "day", "none"])),
         end=end if rng.random() < 0.3 else None,
+        mad_by_stage=(0.3, None, 0.5, 0.8) if rng.random() < 0.2 else None,
+        degree_days=DegreeDays(
+            base_c=rng.uniform(0.0, 10.0),
+            upper_c=rng.uniform(25.0, 40.0),
+            method=str(rng.choice(["mean", "clipped", "sine"])),
+            stage_sums=(float(sums[0]), float(sums[1]), float(sums[2]), float(sums[3]) + 1.0),
+        )
+        if rng.random() < 0.2
+        else None,
+        stages_seen=tuple(stages_seen) if rng.random() < 0.3 else (),
+        cover_seen=tuple(cover_seen) if not single and rng.random() < 0.3 else (),
+        canopy=Canopy(
+            shape=shape,
+            width_m=2.0,
+            row_azimuth_deg=rng.uniform(0.0, 180.0),
+            latitude_deg=rng.uniform(-50.0, 50.0),
+            ground_cover_kcb=rng.uniform(0.2, 0.9) if rng.random() < 0.5 else None,
+            full=str(rng.choice(["height", "table"])),
+        ),
+        cuttings=tuple(days_on(4)) if rng.random() < 0.2 else (),
+        cycle_days=(5, 10, 10, 5) if rng.random() < 0.1 else None,
+        mulch=Mulch(
+            kind=str(rng.choice(["plastic", "organic"])),
+            cover=rng.random(),
+            reduction=rng.uniform(0.0, 0.3),
+        )
+        if rng.random() < 0.2
+        else None,
     )
 
 
@@ -95,7 +137,10 @@ def random_plan(rng: np.random.Generator, most_days: int = 150) -> BlockPlan:
 
 
 def random_weather(rng: np.random.Generator, days: int) -> BlockWeather:
+    tmin = rng.uniform(-5.0, 25.0, days)
     return BlockWeather(
+        tmin=tmin,
+        tmax=tmin + rng.uniform(0.0, 20.0, days),
         eto=np.maximum(rng.normal(5.0, 2.5, days), -0.2),
         rain=np.where(rng.random(days) < 0.2, rng.gamma(1.0, 15.0, days), 0.0),
         u2=rng.uniform(0.2, 8.0, days),

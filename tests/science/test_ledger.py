@@ -150,7 +150,8 @@ def test_a_restart_outside_its_plan_is_refused() -> None:
 
 
 def cut(weather: BlockWeather, days: int) -> BlockWeather:
-    return BlockWeather(**{name: values[:days] for name, values in vars(weather).items()})
+    columns = {k: v if v is None else v[:days] for k, v in vars(weather).items()}
+    return BlockWeather(**columns)
 
 
 def shortened(plan: BlockPlan, days: int) -> BlockPlan:

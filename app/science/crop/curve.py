@@ -1,24 +1,29 @@
 """The crop coefficient, root and height curves of a season, day by day."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from app.science import Bools, Days, Floats
-from app.science.crop.climate import LEAST_ADJUSTED, adjust
+from app.science.crop.climate import LEAST_ADJUSTED, adjust, climate_term
+from app.science.crop.position import Position, positions, ramp
 from app.science.crop.season import CropSeason
+from app.science.crop.stand import stand_kcb
 
 # Length of the trailing mean of wind and humidity (working value).
 TRAILING_DAYS = 30
+# FAO-56 eq 76: the most of the ground that counts as covered.
+MOST_COVER = 0.99
 
 
 @dataclass(frozen=True, kw_only=True)
 class Curve:
     """A season's curves, each (days,): coefficient (Kcb when dual, Kc when single) [-], kc_min of
-    the day [-], height [m], root_depth [m], in_season bool, and stage: 0 off season, 1 initial,
-    2 development, 3 mid, 4 late."""
+    the day [-], height [m], root_depth [m], in_season bool, stage: 0 off season, 1 initial,
+    2 development, 3 mid, 4 late; cover: fraction of ground covered as seen, NaN where it follows
+    from the coefficient."""
 
     coefficient: Floats
     kc_min: Floats
@@ -26,6 +31,7 @@ class Curve:
     root_depth: Floats
     in_season: Bools
     stage: NDArray[np.int8]
+    cover: Floats
 
 
 def stage_progress(day: ArrayLike, stage_days: tuple[int, int, int, int]) -> tuple[Floats, Floats]:
@@ -36,15 +42,9 @@ def stage_progress(day: ArrayLike, stage_days: tuple[int, int, int, int]) -> tup
     """
     day = np.asarray(day, dtype=np.float64)
     first, development, mid, late = stage_days
-    grown = _ramp(day, first, development)
-    aged = _ramp(day, first + development + mid, late)
+    grown = ramp(day, first, development)
+    aged = ramp(day, first + development + mid, late)
     return grown, aged
-
-
-def _ramp(day: Floats, before: float | Floats, length: float | Floats) -> Floats:
-    """0 up to `before`, 1 from `before + length` on, linear between; a step where length is 0."""
-    shortest = np.maximum(np.asarray(length, dtype=np.float64), 1e-9)
-    return np.asarray(np.clip((day - before) / shortest, 0.0, 1.0))
 
 
 def coefficient_on(
@@ -64,9 +64,24 @@ def coefficient_on(
     return np.asarray(ini + grown * (mid - ini) + aged * (end - mid))
 
 
-def season_curve(season: CropSeason, date: Days, wind_2m: Floats, rh_min: Floats) -> Curve:
+def season_curve(
+    season: CropSeason,
+    date: Days,
+    wind_2m: Floats,
+    rh_min: Floats,
+    *,
+    warmth: Floats | None = None,
+    warmth_before: float = 0.0,
+) -> Curve:
     """Curves of one season; arguments as in `season_curves` but each (days,)."""
-    curve = season_curves([season], date[:, None], wind_2m[:, None], rh_min[:, None])
+    curve = season_curves(
+        [season],
+        date[:, None],
+        wind_2m[:, None],
+        rh_min[:, None],
+        warmth=None if warmth is None else warmth[:, None],
+        warmth_before=[warmth_before],
+    )
     return Curve(**{name: values[:, 0] for name, values in vars(curve).items()})
 
 
@@ -76,36 +91,116 @@ def season_curves(
     wind_2m: Floats,
     rh_min: Floats,
     within: Bools | None = None,
+    *,
+    warmth: Floats | None = None,
+    warmth_before: Sequence[float] | None = None,
 ) -> Curve:
     """Curves of many seasons, each on its own consecutive days under the weather of those days.
 
     date (days, seasons) datetime64[D]; wind_2m [m s-1] and rh_min [%], same shape, NaN-free
     inside the season. within: False on days that only pad a shorter season's column, taken as off
-    season. Heights and roots follow the table's own curve, so that weather moves
-    neither. Off season (before planting, after the last day) the soil is bare: Kcb = Kc_min = 0
-    (Kc of the initial stage when single); perennials keep the initial coefficient; roots keep the
-    depth they reached. Returns (days, seasons) arrays.
-    Source: FAO-56 eq 66, 62, 65, 70, 8-1; chapter 11 (off season).
+    season. warmth and warmth_before: degree days, as in `positions`. Heights and roots follow the
+    table's own curve, so that weather moves neither; heights of forage fall with each cutting.
+    Off season (before planting, after the last day) the soil is bare: Kcb = Kc_min = 0 (Kc of the
+    initial stage when single); perennials keep the initial coefficient; roots keep the depth they
+    reached. Returns (days, seasons) arrays.
+    Source: FAO-56 eq 66, 62, 65, 70, 8-1, 98; chapter 10 (mulch), chapter 11 (off season).
     """
     table = _Table(seasons)
-    day = (date - table.planting).astype(np.float64) + 1.0
-    in_season = (day >= 1.0) & (day <= table.last)
-    if within is not None:
-        in_season &= within
-    grown, aged = _progress(day, table)
-    k_mid, k_end = _adjusted(table, day, in_season, wind_2m, rh_min)
-    k = table.k_ini + grown * (k_mid - table.k_ini) + aged * (k_end - k_mid)
+    place = positions(seasons, date, within, warmth, warmth_before)
+    in_season = place.in_season
+    wind, humid = _climate(table, place, wind_2m, rh_min, late=False)
+    k_mid = _moved(table, table.k_mid, wind, humid, np.where(table.dual, LEAST_ADJUSTED, 0.0))
+    k_end = _moved(
+        table, table.k_end, *_climate(table, place, wind_2m, rh_min, late=True), LEAST_ADJUSTED
+    )
+    k = table.k_ini + place.grown * (k_mid - table.k_ini) + place.aged * (k_end - k_mid)
     bare = np.where(table.dual & ~table.perennial, 0.0, table.k_ini)
     growing = in_season | table.perennial
-    roots = _roots_progress(np.minimum(day, table.last), table)
-    number = 1 + (day > table.ends[0]) + (day > table.ends[1]) + (day > table.ends[2])
+    coefficient = np.where(in_season, np.maximum(k, 0.0), bare)
+    height = _height(table, place.grown, in_season)
+    cover = np.full(coefficient.shape, np.nan)
+    for b, season in enumerate(seasons):
+        if season.cover_seen:
+            full = k_mid[:, b] if season.canopy.full == "table" else None
+            told = _by_cover(
+                season, date[:, b], coefficient[:, b], full, wind[:, b], humid[:, b], height[:, b]
+            )
+            here = in_season[:, b] & ~np.isnan(told[0])
+            for column, values in zip((coefficient, cover, height), told, strict=True):
+                column[:, b] = np.where(here, values, column[:, b])
+        if season.mulch is not None:
+            less = np.where(in_season[:, b], 1.0 - season.mulch.reduction, 1.0)
+            coefficient[:, b] *= less
     return Curve(
-        coefficient=np.where(in_season, np.maximum(k, 0.0), bare),
+        coefficient=coefficient,
         kc_min=np.where(growing, table.kc_min, 0.0),
-        height=_height(table, grown, in_season),
-        root_depth=table.root_min + (table.root_max - table.root_min) * roots,
+        height=height,
+        root_depth=table.root_min + (table.root_max - table.root_min) * place.roots,
         in_season=in_season,
-        stage=np.where(in_season, number, 0).astype(np.int8),
+        stage=np.where(in_season, place.stage, 0).astype(np.int8),
+        cover=cover,
+    )
+
+
+def _by_cover(
+    season: CropSeason,
+    date: Days,
+    curve: Floats,
+    full: Floats | None,
+    wind: Floats,
+    humid: Floats,
+    height: Floats,
+) -> tuple[Floats, Floats, Floats]:
+    """Kcb, cover and height [m] from cover seen, each (days,); NaN before the first seen.
+
+    full: Kcb at full cover, or None for that of the height; wind, humid: the season's climate.
+    """
+    seen = season.cover_seen
+    days = date.astype("datetime64[D]").astype(np.float64)
+    when = np.array([s.date.astype("datetime64[D]").astype(np.float64) for s in seen])
+    cover = np.interp(days, when, [s.cover for s in seen], left=np.nan)
+    tall = np.interp(days, when, [s.height_m for s in seen], left=np.nan)
+    last = int(np.clip(when[-1] - days[0], 0, days.size - 1))
+    moved = np.where(days > when[-1], curve / curve[last] if curve[last] > 0.0 else 1.0, 1.0)
+    cover = np.minimum(cover * moved, MOST_COVER)
+    tall = np.minimum(tall * np.maximum(moved, 1.0), np.maximum(tall, season.height_max_m))
+    calm = np.isnan(wind)
+    if full is None:
+        term = climate_term(wind, humid, tall)
+        full = np.minimum(1.0 + 0.1 * tall, 1.20) + np.where(calm, 0.0, term)
+    kcb = stand_kcb(season.canopy, cover, tall, _day_of_year(date), full, season.kc_min)
+    return kcb, cover, tall
+
+
+def _day_of_year(date: Days) -> Floats:
+    first = date.astype("datetime64[Y]").astype("datetime64[D]")
+    return np.asarray((date.astype("datetime64[D]") - first).astype(np.float64) + 1.0)
+
+
+def season_of_stand(season: CropSeason, cover: float, height_m: float) -> CropSeason:
+    """The season with Kcb mid and end of a stand of `cover` 0-1 and `height_m` at mid-season.
+
+    Kcb mid by the season's canopy and the noon sun of the first day of mid-season, at the table's
+    climate (the season's climate adjustment comes on top); Kcb end keeps its share of Kcb mid;
+    live ground cover is the least of both and of the initial coefficient. Raises ValueError with
+    single coefficients. Source: FAO-56 chapter 9; `stand_kcb`.
+    """
+    if season.coefficients != "dual":
+        raise ValueError("a stand's cover tells Kcb, not Kc: choose dual coefficients")
+    canopy = season.canopy
+    mid = season.planting + np.timedelta64(sum(season.stage_days[:2]), "D")
+    full = season.k_mid if canopy.full == "table" else min(1.0 + 0.1 * height_m, 1.20)
+    day = _day_of_year(np.array([mid], dtype="datetime64[D]"))
+    kcb = float(stand_kcb(canopy, cover, height_m, day, full, season.kc_min)[0])
+    ground = canopy.ground_cover_kcb or 0.0
+    end = kcb * season.k_end / season.k_mid if season.k_mid > 0.0 else kcb
+    return replace(
+        season,
+        k_ini=max(season.k_ini, ground),
+        k_mid=kcb,
+        k_end=max(end, ground),
+        height_max_m=height_m,
     )
 
 
@@ -116,67 +211,54 @@ class _Table:
         def column(name: str) -> Floats:
             return np.array([getattr(season, name) for season in seasons], dtype=np.float64)
 
-        self.planting = np.array([s.planting for s in seasons], dtype="datetime64[D]")
-        last_day = np.array([s.last_day for s in seasons], dtype="datetime64[D]")
-        self.last = (last_day - self.planting).astype(np.float64) + 1.0
-        self.lengths = np.array([s.stage_days for s in seasons], dtype=np.float64).T
-        self.ends = np.cumsum(self.lengths, axis=0)
         self.dual = np.array([s.coefficients == "dual" for s in seasons])
         self.perennial = np.array([s.perennial for s in seasons])
         self.climate = np.array([s.climate_adjustment for s in seasons])
         self.k_ini, self.k_mid, self.k_end = column("k_ini"), column("k_mid"), column("k_end")
         self.kc_min, self.height = column("kc_min"), column("height_max_m")
+        self.forage = np.array([s.forage for s in seasons])
         self.root_max = column("root_max_m")
         self.root_min = np.where(self.perennial, self.root_max, column("root_min_m"))
 
 
-def _progress(day: Floats, table: _Table) -> tuple[Floats, Floats]:
-    grown = _ramp(day, table.ends[0], table.lengths[1])
-    return grown, _ramp(day, table.ends[2], table.lengths[3])
-
-
-def _roots_progress(day: Floats, table: _Table) -> Floats:
-    """Share of root growth done: with the basal curve (FAO-56 eq 8-1) when dual; from planting to
-    the first day of mid-season when single."""
-    dual = _ramp(day, table.ends[0], table.lengths[1])
-    single = np.clip((day - 1.0) / np.maximum(table.ends[1], 1.0), 0.0, 1.0)
-    return np.where(table.dual, dual, single)
-
-
 def _height(table: _Table, grown: Floats, in_season: Bools) -> Floats:
     """Height [m]: its maximum times Kcb / Kcb mid by the table, never shrinking (FAO-56 Annex 8);
-    perennials always at the maximum; bare soil 0."""
+    perennials always at the maximum, forage with its cycles; bare soil 0."""
     k = table.k_ini + grown * (table.k_mid - table.k_ini)
     share = np.clip(k / np.maximum(table.k_mid, 1e-6), 0.0, 1.0)
-    tall = np.where(table.perennial, table.height, table.height * share)
+    tall = np.where(table.perennial & ~table.forage, table.height, table.height * share)
     return np.where(in_season | table.perennial, tall, 0.0)
 
 
-def _adjusted(
-    table: _Table, day: Floats, in_season: Bools, wind: Floats, rh_min: Floats
+def _climate(
+    table: _Table, place: Position, wind: Floats, rh_min: Floats, *, late: bool
 ) -> tuple[Floats, Floats]:
-    """k_mid and k_end of each day by each season's climate adjustment."""
-    least_mid = np.where(table.dual, LEAST_ADJUSTED, 0.0)
-    k_mid = np.broadcast_to(table.k_mid, day.shape).copy()
-    k_end = np.broadcast_to(table.k_end, day.shape).copy()
+    """Wind and humidity by which each day's k_mid (or k_end, `late`) is moved, by each season's
+    climate adjustment; NaN for none."""
+    means = np.full((2, *wind.shape), np.nan)
     for choice in set(table.climate.tolist()) - {"none"}:
         those = np.flatnonzero(table.climate == choice)
-        inside = in_season[:, those]
-        u2, rh = (np.where(inside, x[:, those], np.nan) for x in (wind, rh_min))
-        ends, days = table.ends[:, those], day[:, those]
-        if choice == "stage_mean":
-            mid = (days > ends[1]) & (days <= ends[2])
-            late = (days > ends[2]) & (days <= ends[3])
-            for_mid = _mean_of(u2, mid), _mean_of(rh, mid)
-            for_end = _mean_of(u2, late), _mean_of(rh, late)
-        else:
-            daily = choice == "day"
-            for_mid = (u2, rh) if daily else (_trailing(u2, inside), _trailing(rh, inside))
-            for_end = for_mid
-        height = table.height[those]
-        k_mid[:, those] = adjust(table.k_mid[those], *for_mid, height, least=least_mid[those])
-        k_end[:, those] = adjust(table.k_end[those], *for_end, height)
-    return k_mid, k_end
+        inside = place.in_season[:, those]
+        stage = place.stage[:, those] == (4 if late else 3)
+        if late:
+            stage &= ~place.mature[:, those]
+        for mean, values in zip(means, (wind, rh_min), strict=True):
+            own = np.where(inside, values[:, those], np.nan)
+            if choice == "stage_mean":
+                own = _mean_of(own, stage)
+            elif choice == "trailing":
+                own = _trailing(own, inside)
+            mean[:, those] = own
+    return means[0], means[1]
+
+
+def _moved(
+    table: _Table, coefficient: Floats, wind: Floats, humid: Floats, least: ArrayLike
+) -> Floats:
+    """A coefficient (seasons,) moved by each day's climate (days, seasons)."""
+    chosen = table.climate != "none"
+    moved = adjust(coefficient, wind, humid, table.height, least=least)
+    return np.where(chosen, moved, coefficient)
 
 
 def _mean_of(values: Floats, stage: Bools) -> Floats:

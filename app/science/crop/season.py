@@ -1,17 +1,25 @@
 """One crop season as the water balance needs it."""
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
+from app.science.crop.degree_days import DegreeDays
+from app.science.crop.mulch import Mulch
+from app.science.crop.ranges import check_range
+from app.science.crop.seen import CoverSeen, StageSeen
+from app.science.crop.stand import Canopy
+
+__all__ = ["CLIMATE_ADJUSTMENTS", "COEFFICIENTS", "CropSeason", "bare_season", "check_range"]
+
 COEFFICIENTS = ("dual", "single")
 CLIMATE_ADJUSTMENTS = ("trailing", "stage_mean", "day", "none")
-
-
-def check_range(name: str, value: float, low: float, high: float) -> None:
-    """Refuse `value` outside `low`..`high` (or NaN) with a message that names the field."""
-    if not low <= value <= high:
-        raise ValueError(f"{name} is {value:g}; it must lie between {low:g} and {high:g}")
+# A season by degree days may take half as long again as its stages in days (working value).
+COOL_YEAR = 1.5
+# A forage stand without an end goes on for a year.
+FORAGE_DAYS = 365
+EVEN = Canopy()
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -22,10 +30,18 @@ class CropSeason:
     mid and late stages [d], 0 allowed but not all. coefficients: "dual" (k_* are basal, Kcb) or
     "single" (k_* are Kc). kc_min: Kc of dry bare soil, 0-0.5. height_max_m 0.01-30. root_min_m,
     root_max_m 0.02-10. depletion_fraction: p at ETc 5 mm/d, 0.01-0.95. mad: allowed depletion as
-    a fraction of TAW, or None for RAW. perennial: roots and height stay at their maximum.
-    climate_adjustment: trailing, stage_mean, day or none. end: last day (harvest, killing frost),
-    default the last day of the late stage.
-    Source: FAO-56 chapters 6 to 8. Raises ValueError naming the field.
+    a fraction of TAW, or None for RAW; mad_by_stage: the same for each of the four stages, each
+    over `mad`. perennial: roots and height stay at their maximum. climate_adjustment: trailing,
+    stage_mean, day or none. end: last day (harvest, killing frost), default the last day of the
+    late stage.
+
+    degree_days: stages by warmth; stage_days then only bound the season. stages_seen: each sets
+    the place in the stages from its day on; days before keep theirs. cover_seen: cover and height
+    seen, dual only: between two of them both are linear in time, after the last both follow the
+    season's own curve, and Kcb comes from them by `canopy`; before the first the curve holds.
+    cuttings: days of cutting of a forage; the day after one a cycle of cycle_days (default
+    stage_days) begins, and its end coefficient lasts until the next. mulch on the soil.
+    Source: FAO-56 chapters 6 to 10. Raises ValueError naming the field.
     """
 
     planting: np.datetime64
@@ -43,12 +59,20 @@ class CropSeason:
     perennial: bool = False
     climate_adjustment: str = "trailing"
     end: np.datetime64 | None = None
+    mad_by_stage: tuple[float | None, float | None, float | None, float | None] | None = None
+    degree_days: DegreeDays | None = None
+    stages_seen: tuple[StageSeen, ...] = ()
+    cover_seen: tuple[CoverSeen, ...] = ()
+    canopy: Canopy = EVEN
+    cuttings: tuple[np.datetime64, ...] = ()
+    cycle_days: tuple[int, int, int, int] | None = None
+    mulch: Mulch | None = None
 
     def __post_init__(self) -> None:
-        if len(self.stage_days) != 4 or min(self.stage_days) < 0 or sum(self.stage_days) < 1:
-            raise ValueError(
-                f"stage_days is {self.stage_days}; give four lengths in days, none negative"
-            )
+        for name in ("stage_days", "cycle_days"):
+            days = getattr(self, name)
+            if days is not None and (len(days) != 4 or min(days) < 0 or sum(days) < 1):
+                raise ValueError(f"{name} is {days}; give four lengths in days, none negative")
         if self.coefficients not in COEFFICIENTS:
             raise ValueError(f"coefficients is {self.coefficients!r}; choose dual or single")
         if self.climate_adjustment not in CLIMATE_ADJUSTMENTS:
@@ -63,16 +87,87 @@ class CropSeason:
         check_range("root_min_m", self.root_min_m, 0.02, 10.0)
         check_range("root_max_m", self.root_max_m, self.root_min_m, 10.0)
         check_range("depletion_fraction", self.depletion_fraction, 0.01, 0.95)
-        if self.mad is not None:
-            check_range("mad", self.mad, 0.01, 1.0)
+        for mad in (self.mad, *(self.mad_by_stage or ())):
+            if mad is not None:
+                check_range("mad", mad, 0.01, 1.0)
         if self.end is not None and self.end < self.planting:
             raise ValueError(f"end {self.end} is before planting {self.planting}")
+        self._check_seen()
+
+    def _check_seen(self) -> None:
+        if self.mad_by_stage is not None and len(self.mad_by_stage) != 4:
+            raise ValueError(f"mad_by_stage is {self.mad_by_stage}; give one for each of 4 stages")
+        for name, dates in (
+            ("stages_seen", [seen.date for seen in self.stages_seen]),
+            ("cover_seen", [seen.date for seen in self.cover_seen]),
+            ("cuttings", list(self.cuttings)),
+        ):
+            if any(b <= a for a, b in pairwise(dates)):
+                raise ValueError(f"{name} must be in order of their dates, one a day; got {dates}")
+            if name != "cover_seen" and dates and dates[0] < self.planting:
+                raise ValueError(f"{name} has {dates[0]}, before planting {self.planting}")
+        if self.cover_seen and self.coefficients != "dual":
+            raise ValueError("cover_seen needs dual coefficients: cover tells Kcb, not Kc")
+
+    @property
+    def plain(self) -> bool:
+        """Whether its stages go by days alone."""
+        return self.degree_days is None and not self.anchors
+
+    @property
+    def forage(self) -> bool:
+        """Whether it is cut and grows again."""
+        return bool(self.cuttings) or self.cycle_days is not None
+
+    @property
+    def anchors(self) -> list[tuple[np.datetime64, int, bool]]:
+        """First day, stage that begins, and whether by a cutting, of what sets the place in the
+        stages; in order of days, a stage seen after a cutting of the day before."""
+        one = np.timedelta64(1, "D")
+        cut = [(day.astype("datetime64[D]") + one, 1, True) for day in self.cuttings]
+        seen = [(s.date.astype("datetime64[D]"), s.stage, False) for s in self.stages_seen]
+        return sorted(cut + seen, key=lambda anchor: (anchor[0], not anchor[2]))
 
     @property
     def last_day(self) -> np.datetime64:
-        """Last day of the season: `end`, else the last day of the late stage."""
-        last: np.datetime64 = self.planting.astype("datetime64[D]")
-        last = last + np.timedelta64(sum(self.stage_days) - 1, "D")
+        """Last day of the season: `end`, else the last day of the late stage, counted from the
+        last stage seen; a year of forage; half as long again as stage_days by degree days."""
+        first: np.datetime64 = self.planting.astype("datetime64[D]")
+        days = sum(self.stage_days)
         if self.end is not None:
-            last = self.end.astype("datetime64[D]")
-        return last
+            end: np.datetime64 = self.end.astype("datetime64[D]")
+            return end
+        if self.forage:
+            return first + np.timedelta64(FORAGE_DAYS - 1, "D")
+        if self.degree_days is not None:
+            return first + np.timedelta64(int(COOL_YEAR * days) - 1, "D")
+        for since, stage, _ in self.anchors:
+            first, days = since, sum(self.stage_days[stage - 1 :])
+        return first + np.timedelta64(max(days, 1) - 1, "D")
+
+
+def bare_season(
+    first: np.datetime64, last: np.datetime64, *, root_depth_m: float = 0.3
+) -> CropSeason:
+    """Bare soil from `first` to `last`, between two crops: an ordinary season without a plant.
+
+    root_depth_m 0.02-10: depth of the soil that is accounted for [m]. Water leaves by evaporation
+    and drainage alone, and the limit is all of TAW, so that it never calls for water. Source:
+    FAO-56 chapter 11, bare soil.
+    """
+    days = int((last.astype("datetime64[D]") - first.astype("datetime64[D]")).astype(np.int64)) + 1
+    return CropSeason(
+        planting=first,
+        stage_days=(max(days, 1), 0, 0, 0),
+        k_ini=0.0,
+        k_mid=0.0,
+        k_end=0.0,
+        kc_min=0.0,
+        height_max_m=0.01,
+        root_min_m=root_depth_m,
+        root_max_m=root_depth_m,
+        depletion_fraction=0.5,
+        mad=1.0,
+        climate_adjustment="none",
+        end=last,
+    )

@@ -30,7 +30,9 @@ class BlockPlan:
     each layer of the profile, for roots that grow into them; it takes the place of
     initial_subsoil_depletion_fraction. same_day: wetted fraction of a day with irrigation and
     wetting rain: "irrigation", that of the irrigation, or "weighted", the mean of its fraction
-    and 1 by the depths of both. Raises ValueError naming the field.
+    and 1 by the depths of both. degree_days_before: sum before `start` of a season by degree
+    days, from planting, or from the last stage seen or cutting before `start`. Raises ValueError
+    naming the field.
     """
 
     season: CropSeason
@@ -53,6 +55,7 @@ class BlockPlan:
     rising_soil: RisingSoil | None = None
     subsoil_layer_depletion: tuple[float, ...] | None = None
     same_day: str = "irrigation"
+    degree_days_before: float = 0.0
 
     def __post_init__(self) -> None:
         check_range("days", self.days, 1, 20000)
@@ -66,6 +69,7 @@ class BlockPlan:
         )
         if self.initial_depletion_mm is not None:
             check_range("initial_depletion_mm", self.initial_depletion_mm, -5000.0, 5000.0)
+        check_range("degree_days_before", self.degree_days_before, 0.0, 20000.0)
         check_range("salt_factor", self.salt_factor, 0.0, 1.0)
         if self.same_day not in SAME_DAY:
             raise ValueError(f"same_day is {self.same_day!r}; choose {' or '.join(SAME_DAY)}")
@@ -90,7 +94,8 @@ class BlockPlan:
 @dataclass(frozen=True, kw_only=True)
 class BlockWeather:
     """Weather of a plan's days, NaN-free, each (days,): eto and rain [mm], u2 [m s-1], rh_min [%],
-    rung of the energy (int8), rn net radiation [MJ m-2 d-1] (may be NaN: it is only carried)."""
+    rung of the energy (int8), rn net radiation [MJ m-2 d-1] (may be NaN: it is only carried), and
+    tmax, tmin [degC], needed by seasons that go by degree days, else None."""
 
     eto: Floats
     rain: Floats
@@ -98,6 +103,8 @@ class BlockWeather:
     rh_min: Floats
     rung: NDArray[np.int8]
     rn: Floats
+    tmax: Floats | None = None
+    tmin: Floats | None = None
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -81,16 +81,49 @@ def stack_plans(plans: Sequence[BlockPlan], weather: Sequence[BlockWeather]) -> 
     seasons = [plan.season for plan in plans]
     return Stack(
         plans=plans,
-        curve=season_curves(seasons, date, supplies.u2, supplies.rh_min, within),
+        curve=season_curves(
+            seasons,
+            date,
+            supplies.u2,
+            supplies.rh_min,
+            within,
+            warmth=_warmth(plans, weather, days),
+            warmth_before=[plan.degree_days_before for plan in plans],
+        ),
         supplies=supplies,
         openings=_openings(plans),
     )
+
+
+def _warmth(
+    plans: Sequence[BlockPlan], weather: Sequence[BlockWeather], days: int
+) -> Floats | None:
+    """Degree days (days, blocks) of seasons that go by them; None where none does."""
+    if all(plan.season.degree_days is None for plan in plans):
+        return None
+    warmth = np.zeros((days, len(plans)))
+    for b, (plan, sky) in enumerate(zip(plans, weather, strict=True)):
+        how = plan.season.degree_days
+        if how is None:
+            continue
+        for name in ("tmax", "tmin"):
+            column = getattr(sky, name)
+            if np.shape(column) != (plan.days,) or np.isnan(column).any():
+                raise ValueError(
+                    f"{name} of block {b} is missing or has gaps; a season by degree days needs it "
+                    f"on each of its plan's {plan.days} days"
+                )
+        assert sky.tmax is not None
+        assert sky.tmin is not None
+        warmth[: plan.days, b] = how.daily(sky.tmax, sky.tmin)
+    return warmth
 
 
 def _openings(plans: Sequence[BlockPlan]) -> Openings:
     def column(name: str) -> Floats:
         return np.array([getattr(plan, name) for plan in plans], dtype=np.float64)
 
+    mulches = [plan.season.mulch for plan in plans]
     return Openings(
         depletion_mm=column("initial_depletion_mm"),
         depletion_fraction=column("initial_depletion_fraction"),
@@ -100,6 +133,8 @@ def _openings(plans: Sequence[BlockPlan]) -> Openings:
         under_canopy=np.array([plan.under_canopy for plan in plans]),
         weighted=np.array([plan.same_day == "weighted" for plan in plans]),
         salt=column("salt_factor"),
+        open_ground=np.array([m.open_ground if m else 1.0 for m in mulches]),
+        mulched=np.array([m.evaporation_factor if m else 1.0 for m in mulches]),
         rising=[plan.rising_soil for plan in plans],
         layer_shares=[plan.subsoil_layer_depletion for plan in plans],
     )

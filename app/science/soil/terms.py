@@ -41,7 +41,8 @@ class Openings:
     """State before the first day, each (blocks,): depletion_mm, or NaN for depletion_fraction of
     TAW; subsoil_fraction of the subsoil's TAW; layer_mm; roots, wetted fraction of the root zone;
     under_canopy and weighted (wetted fraction of irrigation and rain by their depths) bool; salt,
-    factor of salinity. rising (blocks), the soil above a water table or None; layer_shares
+    factor of salinity; open_ground, fraction not under plastic; mulched, factor of organic mulch
+    on evaporation. rising (blocks), the soil above a water table or None; layer_shares
     (blocks), opening depletion of each soil layer or None."""
 
     depletion_mm: Floats
@@ -52,6 +53,8 @@ class Openings:
     under_canopy: Bools
     weighted: Bools
     salt: Floats
+    open_ground: Floats
+    mulched: Floats
     rising: Sequence[RisingSoil | None]
     layer_shares: Sequence[tuple[float, ...] | None]
 
@@ -209,19 +212,22 @@ def _days(
 ) -> Days:
     k, eto = curve.coefficient, np.maximum(supplies.eto, 0.0)  # dew is no demand
     kc_max = evaporation.kc_max(k, supplies.u2, supplies.rh_min, curve.height)
-    cover = evaporation.cover_fraction(k, kc_max, curve.height, curve.kc_min)
+    reckoned = evaporation.cover_fraction(k, kc_max, curve.height, curve.kc_min)
+    cover = np.where(np.isnan(curve.cover), reckoned, curve.cover)
     event = _events(supplies, openings.weighted)
     fw, by_irrigation = evaporation.wetted_fraction_series(supplies.rain, event)
     shaded = openings.under_canopy & (by_irrigation > 0.0)
     sunlit = np.where(shaded, evaporation.under_canopy(fw, cover), fw)
+    sunlit = np.where(curve.in_season, np.minimum(sunlit, openings.open_ground), sunlit)
     exposed = np.where(dual, evaporation.exposed_wetted_fraction(cover, sunlit), 1.0)
+    damped = openings.mulched
     return Days(
         rain=supplies.rain,
         wet=supplies.rain * openings.roots + supplies.irrigation + supplies.capillary_rise,
         surface=supplies.rain + supplies.irrigation / fw,
         transpiration=k * eto,
-        evaporation=np.where(dual, (kc_max - k) * eto, 0.0),
-        evaporation_most=exposed * kc_max * eto,
+        evaporation=np.where(dual, (kc_max - k) * eto, 0.0) * damped,
+        evaporation_most=exposed * kc_max * eto * damped,
         exposed=exposed,
         taw=taw,
         new_roots=np.zeros(taw.shape),
