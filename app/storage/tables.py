@@ -1,6 +1,6 @@
 """Every table. Facts are kept, state is folded from them, the derived rows can be rebuilt.
 
-facts:    intake, intake_file, contribution, intake_problem, event, and the book
+facts:    intake, intake_file, contribution, intake_problem, span_mark, sensor_entry, event, book
 derived:  station_day, ledger_day (written only by recompute, from the first dirty day)
 frozen:   advice (never changed after issue)
 
@@ -284,6 +284,49 @@ class IntakeProblem(Base):
     remedy: Mapped[str] = mapped_column(Text)
     severity: Mapped[str]
     count: Mapped[int]
+
+
+# Judgement
+
+
+class SpanMark(Base):
+    """A person's word on a span of one quantity of a station: bad, good, or taken back (void).
+
+    Counts from after `first` to `last`, as the ends of intervals. Never edited, only superseded.
+    """
+
+    __tablename__ = "span_mark"
+    id: Mapped[int] = mapped_column(primary_key=True)
+    station_id: Mapped[int] = mapped_column(ForeignKey("station.id"), index=True)
+    quantity: Mapped[str]
+    first: Mapped[datetime]
+    last: Mapped[datetime]
+    verdict: Mapped[str]  # bad | good | void
+    why: Mapped[str] = mapped_column(Text)
+    who: Mapped[str]
+    entered: Mapped[datetime]
+    supersedes: Mapped[int | None] = mapped_column(ForeignKey("span_mark.id"), unique=True)
+    origin: Mapped[str] = mapped_column(unique=True)
+
+
+class SensorEntry(Base):
+    """A line of a station's sensor log; a calibration's factor holds from its day on.
+
+    kind: calibration, cleaning, levelling, moved, note, or void, which takes an entry back.
+    """
+
+    __tablename__ = "sensor_entry"
+    id: Mapped[int] = mapped_column(primary_key=True)
+    station_id: Mapped[int] = mapped_column(ForeignKey("station.id"), index=True)
+    quantity: Mapped[str | None]
+    day: Mapped[date]
+    kind: Mapped[str]
+    factor: Mapped[float | None]
+    note: Mapped[str] = mapped_column(Text)
+    who: Mapped[str]
+    entered: Mapped[datetime]
+    supersedes: Mapped[int | None] = mapped_column(ForeignKey("sensor_entry.id"), unique=True)
+    origin: Mapped[str] = mapped_column(unique=True)
 
 
 # Derived
