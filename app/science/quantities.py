@@ -49,6 +49,19 @@ _TABLE = (
 
 QUANTITIES: dict[str, Quantity] = {quantity.name: quantity for quantity in _TABLE}
 
+# What an energy balance station and a raw pyrgeometer record besides. Not in QUANTITIES until the
+# intake has names and words for them; then the two tables become one.
+BALANCE_QUANTITIES: dict[str, Quantity] = {
+    quantity.name: quantity
+    for quantity in (
+        Quantity("soil_heat_flux", "soil heat flux", "W/m2", "mean", -500.0, 500.0),
+        Quantity("sensible_heat", "sensible heat flux", "W/m2", "mean", -500.0, 1000.0),
+        Quantity("latent_heat", "latent heat flux", "W/m2", "mean", -500.0, 1200.0),
+        Quantity("wet_bulb", "wet bulb temperature", "degC", "mean", -50.0, 40.0),
+        Quantity("body_temperature", "pyrgeometer body temperature", "degC", "mean", -80.0, 80.0),
+    )
+}
+
 
 def outside(name: str, values: Floats) -> Bools:
     """Where values lie outside their quantity's plausible range; NaN does not.

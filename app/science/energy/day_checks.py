@@ -5,8 +5,8 @@ V2.0 (BSRN) for longwave against air temperature, upward shortwave and longwave 
 marked working value have no published source.
 """
 
-from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -104,18 +104,58 @@ class CheckedDays:
         return [(f.check, f.where) for f in self.findings if quantity in f.quantities]
 
 
-def check_days(site: Site, weather: DailyWeather, ra: Floats, rso: Floats) -> CheckedDays:
-    """Check every day, air first, then radiation against the air that passed.
-
-    Arguments: `site`; `weather` (days,); `ra`, `rso` (days,) [MJ m-2 d-1]. Returns CheckedDays. A
-    missing value never fails. Source: ASCE-EWRI Appendix D; FAO-56 Annex 5; BSRN.
+@dataclass(frozen=True)
+class Marks:
+    """What a person said of days, by field of DailyWeather, (days,) each: `bad` must not be used,
+    `good` is used whatever a check says (the check still shows).
     """
-    findings: list[Finding] = []
+
+    bad: Mapping[str, Bools] = field(default_factory=dict)
+    good: Mapping[str, Bools] = field(default_factory=dict)
+
+
+def check_days(
+    site: Site,
+    weather: DailyWeather,
+    ra: Floats,
+    rso: Floats,
+    watched: tuple[Finding, ...] = (),
+    marks: Marks | None = None,
+) -> CheckedDays:
+    """Check every day, what people and rows said first, then air, then radiation against the air.
+
+    Arguments: `site`; `weather` (days,); `ra`, `rso` (days,) [MJ m-2 d-1]; `watched` findings of
+    the days' rows (`watch.watch_rows`); `marks` of people. Returns CheckedDays. A missing value
+    never fails. Source: ASCE-EWRI Appendix D; FAO-56 Annex 5; BSRN.
+    """
+    said = Marks() if marks is None else marks
+    ones = np.ones(weather.date.shape)
+    findings = [Finding("marked_bad", bad, ones, (name,)) for name, bad in said.bad.items()]
+    findings += [part for f in watched for part in _unless_good(f, said.good)]
+    findings = [f for f in findings if f.where.any()]
+    weather = _set_aside(weather, findings)
     for stage in (_temperature, _humidity, _wind_and_rain, _shortwave, _longwave, _net):
-        found = [f for f in stage(site, weather, ra, rso) if f.where.any()]
+        bitten = (f for f in stage(site, weather, ra, rso) if f.where.any())
+        found = [part for f in bitten for part in _unless_good(f, said.good)]
         weather = _set_aside(weather, found)
         findings.extend(found)
     return CheckedDays(weather, tuple(findings))
+
+
+def _unless_good(finding: Finding, good: Mapping[str, Bools]) -> list[Finding]:
+    """The finding split so that it sets nothing aside that a person marked as good."""
+    if not any(name in good for name in finding.quantities):
+        return [finding]
+    never = np.zeros(finding.where.shape, dtype=np.bool_)
+    parts = [finding_on(finding, finding.where, ())]
+    for name in finding.quantities:
+        parts.append(finding_on(finding, finding.where & ~good.get(name, never), (name,)))
+    return parts
+
+
+def finding_on(finding: Finding, where: Bools, quantities: tuple[str, ...]) -> Finding:
+    """The same finding on other days (days,), setting aside other quantities."""
+    return Finding(finding.check, where, finding.figure, quantities)
 
 
 def _set_aside(weather: DailyWeather, findings: list[Finding]) -> DailyWeather:
@@ -251,5 +291,7 @@ def tokens(findings: tuple[Finding, ...], days: int) -> list[str]:
     texts: list[list[str]] = [[] for _ in range(days)]
     for finding in findings:
         for index in np.flatnonzero(finding.where):
-            texts[index].append(f"{finding.check}={finding.figure[index]:.3g}")
+            text = f"{finding.check}={finding.figure[index]:.3g}"
+            if text not in texts[index]:
+                texts[index].append(text)
     return [" ".join(parts) for parts in texts]

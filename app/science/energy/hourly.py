@@ -91,13 +91,21 @@ class HourlyDays:
     etr_sum: Floats
 
 
-def hourly_days(site: Site, weather: HourlyWeather, constants: Standard = ASCE) -> HourlyDays:
+def hourly_days(
+    site: Site,
+    weather: HourlyWeather,
+    constants: Standard = ASCE,
+    *,
+    day_rung: NDArray[np.int8] | None = None,
+    day_rn: Floats | None = None,
+) -> HourlyDays:
     """Net radiation and reference ET of each hour by the best rung that covers the whole day.
 
-    Arguments: `site`; `weather` (days, 24) in time order, NaN where not measured; `constants`.
-    Returns HourlyDays; an hour that lacks an input is NaN and its day has rung 0, whose other
-    hours are each by their own best rung. A sum below zero
-    counts as 0 (common practice, no source).
+    Arguments: `site`; `weather` (days, 24) in time order, NaN where not measured; `constants`;
+    `day_rung`, `day_rn` (days,) of the daily ladder [MJ m-2 d-1]: where the day's rung is better
+    than the hours' (a taught day), the hours are shifted alike so that they add up to it. Returns
+    HourlyDays; an hour that lacks an input is NaN and its day has rung 0, whose other hours are
+    each by their own best rung. A sum below zero counts as 0 (common practice, no source).
     Source: ASCE-EWRI eq 1, table 1, hourly net radiation eq 42-45; rungs of the methods page.
     """
     ra, sine = hourly_sun(site, weather.date)
@@ -111,6 +119,12 @@ def hourly_days(site: Site, weather: HourlyWeather, constants: Standard = ASCE) 
     }
     rn, rung_of_hour = best_rung(whole)
     rn = np.where(rung_of_hour > 0, rn, best_rung(by_rung)[0])  # hours of a day that is not whole
+    if day_rung is not None and day_rn is not None:
+        own = rung_of_hour[:, 0]
+        better = (own > 0) & (day_rung > 0) & (day_rung < own)
+        shift = np.where(better, day_rn - rn.sum(axis=1), 0.0) / HOURS
+        rn = rn + shift[:, None]
+        rung_of_hour = np.where(better[:, None], day_rung[:, None], rung_of_hour)
     u2 = np.maximum(wind_at_2m(weather.wind, site.wind_height_m), WIND_FLOOR)
     pressure = atmospheric_pressure(site.elevation_m)
     surfaces: tuple[Surface, ...] = ("short",) if constants.name == "FAO-56" else ("short", "tall")

@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from app.science import Bools, Floats
 from app.science.constants import GRASS_EMISSIVITY
-from app.science.energy.day_checks import CHECKS, CheckedDays
+from app.science.energy.day_checks import CheckedDays
 from app.science.energy.longwave import (
     black_body_daily,
     daily_ratio_or_polar_night,
@@ -17,6 +17,7 @@ from app.science.energy.records import DailyWeather, Site
 from app.science.energy.shortwave import net_shortwave
 from app.science.energy.taught import Taught, taught_net_radiation, why_not_taught
 from app.science.energy.usual import Usual
+from app.science.energy.watch import WORDS
 from app.science.quantities import QUANTITIES
 
 LEAST_UNCERTAINTY = 0.5  # MJ m-2 d-1, standard uncertainty of a day at best, working value
@@ -209,7 +210,7 @@ def why_not(
     back.
     """
     quantities = sorted({need for r in LADDER for need in r.needs})
-    checks = list(CHECKS)
+    checks = list(WORDS)
     # one state a quantity: 0 there, 1 missing, 2 + i set aside by check i; packed to find the
     # few distinct combinations, so that the text is made once for each
     packed = rung.astype(np.int64)
@@ -278,7 +279,7 @@ def explain_rung(code: str) -> list[tuple[int, str]]:
         if kind == "missing":
             text = "missing: " + ", ".join(_term(name) for name in names.split(","))
         elif kind == "failed":
-            text = "; ".join(CHECKS.get(name, name) for name in names.split(","))
+            text = "; ".join(WORDS.get(name, name) for name in names.split(","))
         elif kind in _PLAIN and number.isdigit():
             text = _PLAIN[kind]
         else:

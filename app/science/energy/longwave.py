@@ -9,6 +9,7 @@ from app.science.constants import (
     KELVIN,
     LOW_SUN,
     POLAR_NIGHT_CLOUD_RATIO,
+    STEFAN_BOLTZMANN_W,
     Standard,
 )
 
@@ -117,3 +118,14 @@ def daily_ratio_or_polar_night(shortwave: ArrayLike, clear_sky_shortwave: ArrayL
     dark = (np.asarray(clear_sky_shortwave) <= 0.0) & ~np.isnan(shortwave)
     ratio = clear_sky_ratio(shortwave, clear_sky_shortwave)
     return np.where(dark, POLAR_NIGHT_CLOUD_RATIO, ratio)
+
+
+def longwave_with_body(signal: ArrayLike, body_temperature: ArrayLike) -> Floats:
+    """Longwave of a pyrgeometer from its net signal and the temperature of its body.
+
+    Arguments, shapes that broadcast: `signal` voltage over sensitivity, the net exchange [W m-2,
+    usually below 0]; `body_temperature` [degC]. Returns longwave [W m-2]. NaN gives NaN.
+    Source: definition of the instrument, U/C + sigma Tb^4 (from memory).
+    """
+    body = STEFAN_BOLTZMANN_W * fourth_power_kelvin(body_temperature)
+    return np.asarray(floats(signal) + body)

@@ -4,7 +4,7 @@ import numpy as np
 
 from app.science import Bools, Floats
 from app.science.constants import WIND_FLOOR
-from app.science.energy.day_checks import check_days, tokens
+from app.science.energy.day_checks import Finding, Marks, check_days, tokens
 from app.science.energy.humidity import (
     HUMIDITY_SHARE,
     best_vapour_pressure,
@@ -52,21 +52,24 @@ def station_days(
     neighbour_ratio: Floats | None = None,
     usual: Usual | None = None,
     rn_widening: Floats | float = 0.0,
+    watched: tuple[Finding, ...] = (),
+    marks: Marks | None = None,
 ) -> StationDays:
     """Net radiation by the best rung, reference ET and their uncertainty for each day.
 
     Arguments: `site`; `weather` (days,), NaN where not measured; what further rungs rest on, all
     (days,): `taught` (rung 4), `neighbour_ratio` Rs/Rso [-] (rung 6), `usual` (rung 9);
-    `rn_widening` standard uncertainty that replaced hours add [MJ m-2 d-1]. Returns StationDays
-    (days,), NaN and rung 0 where no rung serves. Values that fail a hard check are not used; the
-    checks that bit stand in `flags`. On a rung 9 day ETo rests on the usual for what is missing.
+    `rn_widening` standard uncertainty that replaced hours add [MJ m-2 d-1]; `watched` findings of
+    the rows (`watch.watch_rows`); `marks` of people. Returns StationDays (days,), NaN and rung 0
+    where no rung serves. Values that fail a hard check are not used; the checks that bit stand in
+    `flags`. On a rung 9 day ETo rests on the usual for what is missing.
     Source: the methods page, sections on checks, ladder and reference ET; ASCE-EWRI eq 1.
     """
     j = day_of_year(weather.date)
     ra = extraterrestrial_daily(site.latitude_deg, j)
     angstrom = (site.angstrom_a, site.angstrom_b)
     rso = clear_sky(ra, site.elevation_m, angstrom)
-    checked = check_days(site, weather, ra, rso)
+    checked = check_days(site, weather, ra, rso, watched, marks)
     good = checked.weather
 
     ea, humidity_rung = best_vapour_pressure(

@@ -33,6 +33,15 @@ class Lessons:
     modelled: Floats
     measured: Floats
 
+    def then(self, later: "Lessons") -> "Lessons":
+        """These lessons and later ones; of a day that both hold, the later's (a recomputed day)."""
+        before = self.date < later.date[0] if later.date.size else np.ones(self.date.shape, bool)
+        return Lessons(
+            np.concatenate([self.date[before], later.date]),
+            np.concatenate([self.modelled[before], later.modelled]),
+            np.concatenate([self.measured[before], later.measured]),
+        )
+
 
 @dataclass(frozen=True)
 class Taught:

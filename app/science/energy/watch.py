@@ -29,12 +29,13 @@ ROW_FINDINGS = {
     "tilt": "degrees the pyranometer leans to the east (minus: west)",
     "level": "share by which clear days are off clear sky: level, dirt or calibration",
 }
-_WORDS = {**CHECKS, **ROW_FINDINGS}
+MARKED = {"marked_bad": "marked as not to be used"}
+WORDS = {**CHECKS, **ROW_FINDINGS, **MARKED}
 
 
 def finding_words(check: str) -> str:
-    """What a finding of days or rows says, in plain words; KeyError for an unknown one."""
-    return _WORDS[check]
+    """What a finding of days, rows or people says, in plain words; KeyError for an unknown one."""
+    return WORDS[check]
 
 
 @dataclass(frozen=True)
