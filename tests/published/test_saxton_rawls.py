@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from app import handbook
-from app.science.soil.texture import texture_water
+from app.science.soil.texture import gravel_volume, rising_soil, texture_layer, texture_water
 
 FILE = Path(handbook.__file__).with_name("soils.csv")
 
@@ -64,3 +64,40 @@ def test_outside_the_stated_use_is_refused(
 ) -> None:
     with pytest.raises(ValueError, match=told):
         texture_water(sand, clay, organic)
+
+
+@pytest.mark.parametrize("row", _rows(), ids=lambda row: row["texture_id"])
+def test_conductivity_at_field_capacity_by_the_pore_index(row: dict[str, str]) -> None:
+    """Equations 16, 17 and 18 together, from memory: K at 33 kPa along the retention curve is
+    Ks (FC / S)^(3 + 2 / lambda), and 33 and 1500 kPa lie on one power curve of slope lambda."""
+    water = texture_water(float(row["sand_rep_pct"]), float(row["clay_rep_pct"]))
+    slope = float(water.pore_index)
+    held = float(water.field_capacity) * (1500.0 / 33.0) ** -slope
+    assert held == pytest.approx(float(water.wilting_point))
+    drained = (float(water.field_capacity) / float(water.saturation)) ** (3.0 + 2.0 / slope)
+    assert 0.0 < drained < 0.1
+
+
+def test_air_entry_rises_from_sand_to_silt() -> None:
+    """Saxton & Rawls 2006, eq 4 (from memory): coarse soils let air in first; never below 0."""
+    entry = texture_water([92.0, 65.0, 40.0, 20.0], [3.0, 10.0, 20.0, 15.0]).air_entry
+    assert (entry >= 0.2).all()
+    assert (np.diff(entry[:3]) >= 0.0).all()
+    soil = rising_soil(40.0, 20.0)
+    assert soil.conductivity_mm_d == pytest.approx(24.0 * 15.5, rel=0.01)
+    assert soil.air_entry_m == pytest.approx(float(entry[2]) / 9.81)
+
+
+def test_gravel_takes_its_share_of_the_volume() -> None:
+    """Saxton & Rawls 2006, eq 19 and 20 (from memory). By hand: 30 % by weight in earth of 1.40
+    g cm-3: volumes 0.30 / 2.65 and 0.70 / 1.40, so that gravel fills 0.1132 / 0.6132 = 0.185."""
+    expected = (0.30 / 2.65) / (0.30 / 2.65 + 0.70 / 1.40)
+    assert float(gravel_volume(30.0, 1.40)) == pytest.approx(expected)
+    plain, stony = texture_layer(0.5, 40.0, 20.0), texture_layer(0.5, 40.0, 20.0, gravel=30.0)
+    water = texture_water(40.0, 20.0)
+    assert plain.field_capacity == float(water.field_capacity)
+    share = 1.0 - float(gravel_volume(30.0, water.bulk_density))
+    for name in ("field_capacity", "wilting_point", "saturation"):
+        assert getattr(stony, name) == pytest.approx(share * getattr(plain, name))
+    with pytest.raises(ValueError, match="gravel is 95 %"):
+        texture_layer(0.5, 40.0, 20.0, gravel=95.0)

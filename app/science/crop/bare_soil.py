@@ -1,9 +1,13 @@
 """Kc of the initial stage from how often, how much and how much of the soil is wetted."""
 
+from dataclasses import replace
+
 import numpy as np
 from numpy.typing import ArrayLike
 
 from app.science import Floats
+from app.science.crop.ranges import check_range
+from app.science.crop.season import CropSeason
 
 # FAO-56 Annex 7: potential soil evaporation over ETo, and the ceiling of Kc ini.
 BARE_SOIL_FACTOR = 1.15
@@ -82,3 +86,53 @@ def wetting_interval(initial_days: ArrayLike, wettings: ArrayLike) -> Floats:
     """
     days = np.asarray(initial_days, dtype=np.float64)
     return np.asarray(days / (np.asarray(wettings, dtype=np.float64) + 0.5))
+
+
+def kc_ini_own_soil(
+    interval: ArrayLike,
+    eto: ArrayLike,
+    tew: ArrayLike,
+    rew: ArrayLike,
+    depth: ArrayLike = np.inf,
+    fw: ArrayLike = 1.0,
+) -> Floats:
+    """Kc ini of the whole field for wettings of a known soil.
+
+    interval [d] > 0; eto [mm d-1] > 0; tew > rew >= 0 [mm] at 5 mm/d and more; depth of a wetting
+    over the field [mm]; fw wetted fraction 0.01-1; shapes broadcast. Below 5 mm/d TEW counts times
+    sqrt(ETo / 5), for Kc ini alone; no wetting gives more to evaporation than its depth where it
+    falls. NaN in, NaN out. Source: FAO-56 Annex 7, eq 7-1 to 7-6, eq 60 and 61; the bound by depth
+    is mass balance.
+    """
+    et, share = np.asarray(eto, dtype=np.float64), np.asarray(fw, dtype=np.float64)
+    cool = np.asarray(tew, dtype=np.float64) * np.sqrt(np.minimum(et, 5.0) / 5.0)
+    total = np.minimum(cool, infiltrated_depth(depth, share))
+    ready = np.minimum(np.asarray(rew, dtype=np.float64), total - 0.01)
+    return np.asarray(kc_ini(interval, et, total, np.maximum(ready, 0.0)) * share)
+
+
+def wettings(rain: Floats, irrigation: Floats, eto: Floats) -> tuple[int, float]:
+    """Number of wettings of a span of days and their mean depth [mm].
+
+    rain, irrigation, eto (days,) [mm], NaN-free. Water up to a fifth of the day's ETo is ignored;
+    wet days next to each other are one wetting. Depth 0 for none. Source: FAO-56 Annex 7 (days
+    next to each other) and chapter 8 (rain below 0.2 ETo).
+    """
+    water = rain + irrigation
+    wet = water > 0.2 * eto
+    first = wet & ~np.concatenate(([False], wet[:-1]))
+    count = int(first.sum())
+    return count, float(np.cumsum(np.where(wet, water, 0.0))[-1]) / count if count else 0.0
+
+
+def season_of_wetting(season: CropSeason, kc: float) -> CropSeason:
+    """The season with `kc` 0-1.2 as the single coefficient of its initial stage.
+
+    For a coefficient from how often the soil is wetted (`kc_ini_initial_stage`,
+    `kc_ini_own_soil`). Raises ValueError for a dual season, whose evaporation is reckoned daily.
+    Source: FAO-56 chapter 6, eq 59.
+    """
+    if season.coefficients != "single":
+        raise ValueError("Kc ini by wetting is for single coefficients; dual ones reckon it daily")
+    check_range("kc", kc, 0.0, 1.2)
+    return replace(season, k_ini=kc)
