@@ -1,6 +1,7 @@
 """From rows to station days (METHODS section 2)."""
 
 import datetime as dt
+from collections.abc import Mapping
 from dataclasses import replace
 from typing import Any
 
@@ -33,7 +34,10 @@ _DAILY_FIELDS = {  # field of DailyWeather -> quantity of a daily row
 
 
 def aggregate(
-    rows: Rows, site: Site, days: NDArray[np.datetime64]
+    rows: Rows,
+    site: Site,
+    days: NDArray[np.datetime64],
+    good: Mapping[str, NDArray[np.bool_]] | None = None,
 ) -> tuple[DailyWeather, list[DayNote]]:
     """Daily weather of `days` from rows (give a day more on either side, so gaps can close).
 
@@ -41,6 +45,7 @@ def aggregate(
     none, a daily row serves. Steps are taken apart, the finest first. Returns the weather, NaN
     where a variable is missing, and one note for whatever was missing, filled, set aside, counted
     as offset or clipped on a day ("missing" names a field of DailyWeather, the others a quantity).
+    `good` (rows,) by quantity: values that a person vouches for, which no row check sets aside.
     """
     wanted = np.asarray(days, "datetime64[D]").astype(np.int64)
     weather = DailyWeather.missing(np.asarray(days, "datetime64[D]"))
@@ -51,10 +56,12 @@ def aggregate(
     notes: list[DayNote] = []
     for step in np.unique(rows.interval_s).tolist():
         part = _of_step(rows, step)
+        here = rows.interval_s == step
+        trusted = {name: mask[here] for name, mask in (good or {}).items()}
         if step == SECONDS_A_DAY:
             found, part_notes = _daily(part, site, wanted)
         else:
-            grid = lay_out(part, site, np.unique(wanted))
+            grid = lay_out(part, site, np.unique(wanted), trusted)
             found, part_notes = _from_grid(grid, wanted)
         notes += part_notes
         for name, figure in found.items():

@@ -1,5 +1,6 @@
 """Rows of one step laid on a grid of days x intervals, and what is done there to single values."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -37,12 +38,14 @@ class Grid:
     tally: dict[tuple[str, str, str], Floats] = field(default_factory=dict)
 
 
-def lay_out(rows: Rows, site: Site, days: Instants) -> Grid:
+def lay_out(
+    rows: Rows, site: Site, days: Instants, good: Mapping[str, Bools] | None = None
+) -> Grid:
     """Rows of one common step (below a day) on the grid of `days` (sorted) and their neighbours.
 
     Values that fail a hard check are set aside, night offsets and small negative shortwave become
     zero, humidity above 100 % becomes 100, vapour pressure is formed row by row, and short gaps
-    are bridged.
+    are bridged. `good` (rows,) by quantity: values no check sets aside.
     """
     grid, place = _empty(rows, site, days)
     kept = place >= 0
@@ -52,6 +55,8 @@ def lay_out(rows: Rows, site: Site, days: Instants) -> Grid:
     n = grid.night.shape[1]
     for check, failed in row_checks(site, middle, values).items():
         quantity, _, name = check.partition("/")
+        if good and quantity in good:
+            failed &= ~good[quantity][kept]
         if failed.any():
             grid.tally["set_aside", quantity, name] = _per_day(grid, place[failed] // n)
             values[quantity][failed] = np.nan

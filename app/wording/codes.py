@@ -187,6 +187,7 @@ FLAGS = {
     "longwave_up_impossible": "upward longwave is outside the physically possible",
     "longwave_down_against_air": "downward longwave does not fit the air temperature",
     "longwave_up_against_air": "upward longwave does not fit the air temperature",
+    "marked_bad": "marked as not to be used",
     "longwave_pair_apart": "the two longwaves are too far apart",
     "window_covered": "the longwave window read like a black body under an open sky: covered",
     "net_impossible": "net radiation is more than the sun gives or less than a night takes",

@@ -15,12 +15,12 @@ import numpy as np
 from sqlalchemy import select, update
 from sqlalchemy.orm import Session
 
-from app.intake import DayNote, aggregate
+from app.intake import Clock, DayNote, aggregate
 from app.science import Floats
 from app.science.energy.day_checks import REACH_DAYS
 from app.science.energy.station_day import DailyWeather, StationDays, station_days
 from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletion
-from app.storage import book
+from app.storage import book, judgement
 from app.storage.ledgers import (
     clear_dirty,
     last_ledger_days,
@@ -32,6 +32,7 @@ from app.storage.tables import LedgerDay, Station
 from app.workflows import agronomy
 from app.workflows.assemble import Subject, seasons_of
 from app.workflows.compare import stored_rows
+from app.workflows.judged import judged
 
 MEMBERS = 200
 REACH = timedelta(days=max(1, REACH_DAYS))
@@ -96,15 +97,17 @@ def _days(
     span = days_with_rows(session, station, since)
     if span is None:
         return
-    site = agronomy.site(details)
+    site, clock = agronomy.site(details), Clock(details["utc_offset_h"], details["time_zone"])
+    marks, log = judgement.marks(session, station), judgement.sensor_log(session, station)
     first, last = span
     while first <= last:
         until = min(first + DAYS_AT_A_TIME, last)
-        rows = stored_rows(session, station, first - 2 * REACH, until + 2 * REACH)
+        stored = stored_rows(session, station, first - 2 * REACH, until + 2 * REACH)
+        one = judged(stored, marks, log, clock)
         days = np.datetime64(first - REACH) + np.arange((until - first + 2 * REACH).days + 1)
-        weather, notes = aggregate(rows, site, days)
+        weather, notes = aggregate(one.rows, site, days, one.good)
         computed = station_days(site, weather)
-        for row in _station_rows(station, weather, computed, notes):
+        for row in _station_rows(station, weather, computed, [*notes, *one.notes]):
             if first <= row["day"] <= until:
                 yield row
         first = until + timedelta(days=1)
