@@ -17,7 +17,9 @@ from app.handbook.rows import (
     StageRow,
     WetnessRow,
     WettingRow,
+    WorkingStageRow,
 )
+from app.handbook.usable import UsableCrop, usable_crop
 
 __all__ = [
     "ConveyanceRow",
@@ -29,8 +31,10 @@ __all__ = [
     "StageRow",
     "TableError",
     "UnknownEntryError",
+    "UsableCrop",
     "WetnessRow",
     "WettingRow",
+    "WorkingStageRow",
     "conveyances",
     "crop",
     "crops",
@@ -41,9 +45,11 @@ __all__ = [
     "soil_texture",
     "soil_textures",
     "stage_lengths",
+    "usable",
     "wetness_rows",
     "wetting",
     "wettings",
+    "working_stages",
 ]
 
 GROUPS = ("a", "b", "c", "d")
@@ -58,6 +64,19 @@ def crops() -> Mapping[str, CropRow]:
 def crop(crop_id: str) -> CropRow:
     """One crop; UnknownEntryError with near matches."""
     return entry(crops(), crop_id, "crop")
+
+
+@cache
+def working_stages() -> Mapping[str, WorkingStageRow]:
+    """Stage lengths that stand in for crops without a full printed row, by crop."""
+    return keyed(read_rows("stage_working.csv", WorkingStageRow), "crop_id", "stage_working.csv")
+
+
+def usable(crop_id: str, kind: str) -> UsableCrop:
+    """One crop with stage lengths and "dual" or "single" coefficients, printed or, where the
+    tables leave them blank, derived and marked as working values; UnknownEntryError with near
+    matches."""
+    return usable_crop(crop(crop_id), kind, working_stages().get(crop_id))
 
 
 @cache

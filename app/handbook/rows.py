@@ -146,6 +146,29 @@ class StageRow:
 
 
 @dataclass(frozen=True, kw_only=True)
+class WorkingStageRow:
+    """Stage lengths [d] that stand in where the table prints no full row; source says of what."""
+
+    crop_id: str
+    stage_ini_days: int = _within(0, 400)
+    stage_dev_days: int = _within(0, 400)
+    stage_mid_days: int = _within(0, 700)
+    stage_late_days: int = _within(0, 400)
+    source: str
+    confidence: str
+
+    @property
+    def stage_days(self) -> tuple[int, int, int, int]:
+        """The four lengths [d]."""
+        return (
+            self.stage_ini_days,
+            self.stage_dev_days,
+            self.stage_mid_days,
+            self.stage_late_days,
+        )
+
+
+@dataclass(frozen=True, kw_only=True)
 class SoilRow:
     """A texture class: Table 19 mids where it lists the class, else the texture equations."""
 

@@ -10,6 +10,7 @@ import pytest
 from app import handbook
 from app.handbook import reader
 from app.handbook.rows import CropRow, WettingRow
+from app.science.crop.basal import basal_from_single
 from app.science.crop.season import CropSeason
 from app.science.soil.profile import Layer, Profile
 from app.science.soil.runoff import AVERAGE, DRY, WET
@@ -85,6 +86,39 @@ def test_every_crop_makes_a_season_where_its_figures_are_published() -> None:
             )
             made += season.last_day > season.planting
     assert made == 119 + 116
+
+
+def test_every_crop_is_usable_by_name_and_says_what_is_not_printed() -> None:
+    """All 119, dual and single; blanks are filled for exactly the crops that have any."""
+    for crop_id, row in handbook.crops().items():
+        for kind in ("single", "dual"):
+            one = handbook.usable(crop_id, kind)
+            blank = row.stages is None or (kind == "dual" and row.kcb_ini is None)
+            assert one.working == blank, crop_id
+            assert min(one.stage_days) > 0
+            assert all(0.0 < k <= 1.3 for k in one.coefficients)
+            assert one.stages_source
+            assert one.coefficients_source
+            if not blank:
+                assert one.stage_days == row.stages
+                assert one.coefficients == row.coefficients(kind)
+    missing = {key for key, row in handbook.crops().items() if row.stages is None}
+    assert set(handbook.working_stages()) == missing
+    with pytest.raises(handbook.UnknownEntryError, match="no crop 'maiz'"):
+        handbook.usable("maiz", "dual")
+
+
+def test_basal_from_single_follows_table_18() -> None:
+    """FAO-56 Table 18 beside its own tables 12 and 17: maize (dense, dry end of grain) and the
+    cutting cycles of alfalfa, whose Kcb are printed."""
+    assert basal_from_single(0.3, 1.2, 0.6) == pytest.approx((0.15, 1.15, 0.55))
+    alfalfa = handbook.crop("alfalfa_hay_cycles")
+    derived = basal_from_single(*alfalfa.coefficients("single"), annual=False)
+    assert derived == pytest.approx(alfalfa.coefficients("dual"))
+    assert basal_from_single(0.5, 0.05, 0.0, dense=False, wet_end=True) == (0.15, 0.0, 0.0)
+    averaged = handbook.usable("alfalfa_hay_averaged", "dual")
+    assert averaged.coefficients == pytest.approx((0.30, 0.90, 0.85))
+    assert averaged.working
 
 
 def test_every_texture_makes_a_profile() -> None:

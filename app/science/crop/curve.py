@@ -109,11 +109,11 @@ def season_curves(
     table = _Table(seasons)
     place = positions(seasons, date, within, warmth, warmth_before)
     in_season = place.in_season
-    wind, humid = _climate(table, place, wind_2m, rh_min, late=False)
+    wind, humid = by_end = _climate(table, place, wind_2m, rh_min, late=False)
+    if (table.climate == "stage_mean").any():
+        by_end = _climate(table, place, wind_2m, rh_min, late=True)
     k_mid = _moved(table, table.k_mid, wind, humid, np.where(table.dual, LEAST_ADJUSTED, 0.0))
-    k_end = _moved(
-        table, table.k_end, *_climate(table, place, wind_2m, rh_min, late=True), LEAST_ADJUSTED
-    )
+    k_end = _moved(table, table.k_end, *by_end, LEAST_ADJUSTED)
     k = table.k_ini + place.grown * (k_mid - table.k_ini) + place.aged * (k_end - k_mid)
     bare = np.where(table.dual & ~table.perennial, 0.0, table.k_ini)
     growing = in_season | table.perennial
