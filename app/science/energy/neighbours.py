@@ -48,6 +48,20 @@ def neighbour_ratio(ratios: ArrayLike, weights: ArrayLike) -> tuple[Floats, NDAr
     return np.divide(summed, total, out=none, where=total > 0.0), used.sum(axis=0)
 
 
+def neighbour_mean(values: ArrayLike, weights: ArrayLike) -> Floats:
+    """Weighted mean of what neighbours measured on each day, as of wind at 2 m.
+
+    Arguments: `values` (neighbours, days) [any unit], NaN where not measured; `weights`
+    (neighbours,) of `neighbour_weights`. Returns (days,), NaN where no neighbour speaks.
+    """
+    known = floats(values)
+    share = np.where(np.isnan(known), 0.0, floats(weights)[:, None])
+    total = share.sum(axis=0)
+    summed = (share * np.nan_to_num(known)).sum(axis=0)
+    none = np.full(total.shape, np.nan)
+    return np.asarray(np.divide(summed, total, out=none, where=total > 0.0))
+
+
 def weighted_median(values: Floats, weights: Floats) -> Floats:
     """Weighted median over the first axis; weight 0 leaves a value out, NaN where all are out.
 

@@ -50,6 +50,7 @@ def station_days(
     *,
     taught: Taught | None = None,
     neighbour_ratio: Floats | None = None,
+    neighbour_wind: Floats | None = None,
     usual: Usual | None = None,
     rn_widening: Floats | float = 0.0,
     watched: tuple[Finding, ...] = (),
@@ -58,11 +59,12 @@ def station_days(
     """Net radiation by the best rung, reference ET and their uncertainty for each day.
 
     Arguments: `site`; `weather` (days,), NaN where not measured; what further rungs rest on, all
-    (days,): `taught` (rung 4), `neighbour_ratio` Rs/Rso [-] (rung 6), `usual` (rung 9);
-    `rn_widening` standard uncertainty that replaced hours add [MJ m-2 d-1]; `watched` findings of
-    the rows (`watch.watch_rows`); `marks` of people. Returns StationDays (days,), NaN and rung 0
-    where no rung serves. Values that fail a hard check are not used; the checks that bit stand in
-    `flags`. On a rung 9 day ETo rests on the usual for what is missing.
+    (days,): `taught` (rung 4), `neighbour_ratio` Rs/Rso [-] (rung 6), `neighbour_wind` at 2 m
+    [m s-1] (wind rung 2), `usual` (rung 9); `rn_widening` standard uncertainty that replaced hours
+    add [MJ m-2 d-1]; `watched` findings of the rows (`watch.watch_rows`); `marks` of people.
+    Returns StationDays (days,), NaN and rung 0 where no rung serves. Values that fail a hard check
+    are not used; the checks that bit stand in `flags`. On a rung 9 day ETo rests on the usual for
+    what is missing.
     Source: the methods page, sections on checks, ladder and reference ET; ASCE-EWRI eq 1.
     """
     j = day_of_year(weather.date)
@@ -82,7 +84,7 @@ def station_days(
         rh_mean=good.rh_mean,
         arid=site.arid,
     )
-    u2, wind_rung = best_wind(good.wind, site.wind_height_m)
+    u2, wind_rung = best_wind(good.wind, site.wind_height_m, neighbour_wind)
     rs_sunshine = shortwave_from_sunshine(
         ra, good.sunshine, day_length(site.latitude_deg, j), angstrom
     )

@@ -20,7 +20,7 @@ LEAST_SPREAD = 0.3  # MJ m-2 d-1, standard deviation of modelled Rnl that can ca
 SNOW_ALBEDO = 0.40  # -, above it there is snow (green cover 0.20-0.25, FAO-56 p. 43), working value
 SNOW_TMAX = 2.0  # degC, a colder day may lie under snow where albedo is not known, working value
 HUBER_K = 1.345  # scales, 95 % efficient on normal errors, from memory
-_STEPS, _SETTLED = 25, 1e-7  # of reweighting at most, and the change of slope that ends it
+_STEPS = 20  # of reweighting, always all: a day's fit must not hang on the days beside it
 
 
 @dataclass(frozen=True)
@@ -181,9 +181,7 @@ def huber_line(x: ArrayLike, y: ArrayLike, weight: ArrayLike) -> tuple[Floats, F
         scale = 1.4826 * _median(off, base > 0.0)
         limit = HUBER_K * np.maximum(scale, 1e-9)[..., None]
         current = base * np.minimum(1.0, limit / np.maximum(off, 1e-12))
-        before, (slope, intercept) = slope, _line(px, py, current)
-        if not (np.abs(slope - before) > _SETTLED).any():
-            break
+        slope, intercept = _line(px, py, current)
     return slope, intercept
 
 

@@ -1,8 +1,10 @@
 """A pyranometer's geometry from clear days: tilt or clock, and the clear-day level.
 
 A clear day is a smooth bell. Mornings against afternoons tell of a lean to the east or west, or of
-a clock that is off; the midpoint of sunrise and sunset moves with the clock and not with the lean,
-so it tells which. A lean to the south or north shows in the level alone (METHODS, checks).
+a clock that is off. The midpoint of sunrise and sunset tells which: it moves with the clock, minute
+by minute, and with a lean by less than two minutes a degree (measured on SURFRAD's clear day). So
+the clock is set by the midpoint first; the asymmetry that remains is a lean, of at least that
+size. A lean to the south or north shows in the level alone (METHODS, checks).
 """
 
 from dataclasses import dataclass
@@ -33,9 +35,9 @@ LEAST_DAYS = 3  # clear days that make a usual, working value
 @dataclass(frozen=True)
 class ClearShape:
     """What each day's shortwave curve says, all (days,): `clear` whether it was a clear day; then,
-    NaN elsewhere, `clock` minutes the record runs ahead of the sun, `tilt_east` [degrees, the side
-    that faces the sky leans east], `level` measured over beam and diffuse of clear moist air [-],
-    `simple_level` over the simple clear sky [-], `misfit` [-].
+    NaN elsewhere, `clock` minutes the record runs ahead of the sun, `tilt_east` [degrees to the
+    east at least, the clock set right], `level` measured over beam and diffuse of clear moist air
+    [-], `simple_level` over the simple clear sky [-], `misfit` [-].
     """
 
     clear: Bools
@@ -67,7 +69,7 @@ def clear_shape(
     clock, tilt, level, simple, misfit = (np.full(count, np.nan) for _ in range(5))
     for day in np.flatnonzero(smooth):
         clock[day] = _clock_minutes(middle[day], seen[day], up[day])
-        shift = clock[day] if abs(clock[day]) >= CLOCK_MINUTES else 0.0
+        shift = 0.0 if np.isnan(clock[day]) else clock[day]
         sun = sun_direction(
             site.latitude_deg, site.longitude_deg, middle[day] - round(shift * 60.0)
         )
@@ -184,16 +186,17 @@ def shape_faults(
     """What each clear day says is wrong, and the figure that says it.
 
     Arguments: `shape` (days,); `usual` of the same sensor where it is known. Returns codes (days,)
-    `clock` [minutes ahead], `tilt` [degrees east, off the usual where known], `level` [share off],
-    or empty, and the figures, NaN where empty. Only one a day, in that order: a clock that is off
-    also looks like a lean. Source: the methods page, checks (working values).
+    `tilt` [degrees east at least, off the usual where known], `clock` [minutes ahead], `level`
+    [share off], or empty, and the figures, NaN where empty. Only one a day, in that order, for a
+    lean moves the midpoint somewhat and the level as well.
+    Source: the methods page, checks (working values).
     """
     known = usual is not None
     lean = shape.tilt_east - (usual.tilt_east if usual else 0.0)
     level = _level_off(shape) if usual is None else shape.level / usual.level - 1.0
     faults = (
-        ("clock", np.abs(shape.clock) >= CLOCK_MINUTES, shape.clock),
         ("tilt", np.abs(lean) >= TILT_DEGREES[known], lean),
+        ("clock", np.abs(shape.clock) >= CLOCK_MINUTES, shape.clock),
         ("level", np.abs(level) >= LEVEL_SHARE[known], level),
     )
     codes = np.full(shape.clear.shape, "", dtype=np.object_)

@@ -26,7 +26,7 @@ ROW_FINDINGS = {
     "window_hours": "hours the longwave window was covered by frost, dew, snow or dust",
     "window_undecidable": "hours the longwave window read like a black body: fog, or covered",
     "clock": "minutes the logger's clock runs ahead of the sun",
-    "tilt": "degrees the pyranometer leans to the east (minus: west)",
+    "tilt": "degrees at least the pyranometer leans to the east (minus: west)",
     "level": "share by which clear days are off clear sky: level, dirt or calibration",
 }
 MARKED = {"marked_bad": "marked as not to be used"}

@@ -31,14 +31,22 @@ def wind_at_2m(wind: ArrayLike, height: ArrayLike) -> Floats:
     return floats(wind) * wind_height_factor(height)
 
 
-def best_wind(wind: ArrayLike, height: float) -> tuple[Floats, NDArray[np.int8]]:
-    """Wind at 2 m of each day: measured, else 2 m/s, and its rung.
+def best_wind(
+    wind: ArrayLike, height: float, neighbours: Floats | None = None
+) -> tuple[Floats, NDArray[np.int8]]:
+    """Wind at 2 m of each day: measured, else the neighbours', else 2 m/s, and its rung.
 
-    Arguments: `wind` (days,) [m s-1 at `height`], NaN where not measured; `height` [m]. Returns
-    u2 [m s-1] and the rung (1 measured, 3 assumed; 2 is kept for neighbours).
+    Arguments: `wind` (days,) [m s-1 at `height`], NaN where not measured; `height` [m];
+    `neighbours` (days,) interpolated at 2 m [m s-1]. Returns u2 [m s-1] and the rung (1 measured,
+    2 neighbours, 3 assumed).
     Source: FAO-56 chapter 3, missing wind speed data.
     """
     u2 = wind_at_2m(wind, height)
     missing = np.isnan(u2)
     rung = np.where(missing, np.int8(3), np.int8(1))
-    return np.where(missing, WIND_ASSUMED, u2), rung
+    assumed = np.full(u2.shape, WIND_ASSUMED)
+    if neighbours is not None:
+        near = ~np.isnan(neighbours)
+        rung = np.where(missing & near, np.int8(2), rung)
+        assumed = np.where(near, neighbours, assumed)
+    return np.where(missing, assumed, u2), rung

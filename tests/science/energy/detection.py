@@ -16,10 +16,10 @@ from app.science.energy.day_rows import DayRows
 from app.science.energy.longwave import fourth_power_kelvin
 from app.science.energy.records import Site
 from app.science.energy.soft_checks import soft_row_checks
-from app.science.energy.tilt import UsualShape, beam_and_diffuse
+from app.science.energy.tilt import UsualShape
 from app.science.energy.watch import watch_rows
 from app.science.energy.window import morning_ratio
-from tests.science.energy.planted import Grid, payerne_grid, surfrad_local
+from tests.science.energy.planted import Grid, leaning, payerne_grid, surfrad_local
 from tests.science.energy.records import ALAMOSA, PAYERNE
 
 Record = tuple[Site, DayRows, Grid]
@@ -41,10 +41,7 @@ def frost(site: Site, rows: DayRows, grid: Grid) -> Grid:
 
 def lean(east: float, south: float) -> Plant:
     def plant(site: Site, rows: DayRows, grid: Grid) -> Grid:
-        ea = float(grid["vapour_pressure"].mean())
-        beam, _ = beam_and_diffuse(rows.up, rows.beam / 1361.0, site.elevation_m, ea)
-        way = np.radians(east) * rows.east + np.radians(south) * rows.south
-        return grid | {"shortwave_down": np.maximum(grid["shortwave_down"] + beam * way, -4.0)}
+        return grid | {"shortwave_down": leaning(rows, grid, east, south)}
 
     return plant
 

@@ -4,10 +4,11 @@ from dataclasses import replace
 from functools import cache
 
 import numpy as np
+import pvlib
 
 from app.science.energy.day_rows import DayRows, day_rows
 from app.science.energy.humidity import saturation_vapour_pressure
-from tests.science.energy.records import ALAMOSA, PAYERNE, payerne_rows, surfrad_rows
+from tests.science.energy.records import ALAMOSA, FOLDER, PAYERNE, payerne_rows, surfrad_rows
 
 Grid = dict[str, np.ndarray]
 
@@ -37,7 +38,18 @@ def surfrad_grid() -> tuple[DayRows, Grid]:
 def surfrad_local() -> tuple[DayRows, Grid]:
     """The same day by local time: the seven hours of the evening before follow the afternoon."""
     rows = day_rows(ALAMOSA, np.array(["2016-01-01"], dtype="datetime64[D]"), 1440)
-    return rows, {name: np.roll(v, -420, axis=1) for name, v in surfrad_grid()[1].items()}
+    grid = {name: np.roll(v, -420, axis=1) for name, v in surfrad_grid()[1].items()}
+    table, _ = pvlib.iotools.read_surfrad(FOLDER / "surfrad-slv16001.dat")
+    direct = np.maximum(table["dni"].to_numpy(), 0.0)
+    return rows, grid | {"direct_normal": np.roll(direct, -420)[None, :]}
+
+
+def leaning(rows: DayRows, grid: Grid, east: float, south: float) -> np.ndarray:
+    """Shortwave of that day as a sensor leaning some degrees would have read it: the beam, measured
+    by the station's own tracker, falls on the leaning plane."""
+    way = np.radians(east) * rows.east + np.radians(south) * rows.south
+    lit = rows.up > 0.0
+    return np.maximum(grid["shortwave_down"] + grid["direct_normal"] * way * lit, -4.0)
 
 
 def with_vapour(grid: Grid) -> Grid:

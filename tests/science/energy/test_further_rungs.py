@@ -4,7 +4,7 @@ Figures of the taught model are checked on BSRN Payerne, June 2016; what we made
 regression.
 """
 
-from dataclasses import replace
+from dataclasses import fields, replace
 
 import numpy as np
 import pytest
@@ -13,12 +13,18 @@ from scipy import stats
 from app.science.energy.ladder import rn_uncertainty
 from app.science.energy.neighbours import (
     against_neighbours,
+    neighbour_mean,
     neighbour_ratio,
     neighbour_weights,
     weighted_median,
 )
 from app.science.energy.net_sensor import WindFactor, net_corrected_for_wind
-from app.science.energy.station_day import StationDays, explain_rung, station_days
+from app.science.energy.station_day import (
+    DailyWeather,
+    StationDays,
+    explain_rung,
+    station_days,
+)
 from app.science.energy.taught import Lessons, huber_line, lessons, taught_net_radiation, teach
 from app.science.energy.usual import Usual, usual_for_date, years_before
 from tests.science.energy.records import PAYERNE
@@ -94,6 +100,37 @@ def test_taught_serves_when_the_sky_sensor_is_gone() -> None:
     other = station_days(UTC, broken, taught=from_teacher)
     np.testing.assert_array_equal(other.rn, served.rn)
     assert (other.rn_uncertainty[by_fit] > served.rn_uncertainty[by_fit]).all()
+
+
+def lessons_of(weather: DailyWeather, days: StationDays) -> Lessons:
+    return lessons(
+        weather.date,
+        weather.shortwave_down,
+        weather.shortwave_up,
+        weather.tmax,
+        days.rn_measured,
+        days.rn_modelled,
+    )
+
+
+def test_from_a_dirty_day_on_the_same_as_from_the_start() -> None:
+    """Recomputing a record from some day on, the lessons before it rebuilt from what was stored,
+    gives the days that computing it whole gives."""
+    gone = np.arange(30) >= 22
+    longwave = np.where(gone, np.nan, WEATHER.longwave_down)
+    broken = replace(without(WEATHER, "net_radiation"), longwave_down=longwave)
+    first = station_days(UTC, broken)
+    whole = station_days(UTC, broken, taught=teach(broken.date, lessons_of(broken, first)))
+    assert (whole.rung == 4).sum() >= 5
+    for cut in (3, 21, 25, 29):
+        stored = DailyWeather(**{f.name: getattr(broken, f.name)[:cut] for f in fields(broken)})
+        fresh = DailyWeather(**{f.name: getattr(broken, f.name)[cut:] for f in fields(broken)})
+        before = lessons_of(stored, station_days(UTC, stored))
+        again = station_days(UTC, fresh)
+        known = before.then(lessons_of(fresh, again))
+        days = station_days(UTC, fresh, taught=teach(fresh.date, known))
+        np.testing.assert_array_equal(days.rn, whole.rn[cut:])
+        np.testing.assert_array_equal(days.why_not, whole.why_not[cut:])
 
 
 def made_lessons(n: int, slope: float, intercept: float, noise: float, seed: int = 3) -> Lessons:
@@ -261,6 +298,21 @@ def test_rung_6_serves() -> None:
         days.rn_uncertainty[known], np.maximum(0.14 * np.abs(days.rn[known]), 0.5)
     )
     assert "6:no_neighbours" in days.why_not[3]
+
+
+def test_wind_of_neighbours() -> None:
+    """Wind rung 2 between the station's own and the assumed 2 m/s, in value and uncertainty."""
+    near = neighbour_mean([[3.0, np.nan, np.nan], [1.0, 1.0, np.nan]], [3.0, 1.0])
+    np.testing.assert_allclose(near, [2.5, 1.0, np.nan])
+    weather = without(ordinary(3), "wind")
+    days = station_days(PAYERNE, weather, neighbour_wind=near)
+    assert days.wind_rung.tolist() == [2, 2, 3]
+    assert days.wind_2m.tolist() == [2.5, 1.0, 2.0]
+    own = station_days(PAYERNE, ordinary(3), neighbour_wind=near)
+    assert set(own.wind_rung) == {1}
+    assumed = station_days(PAYERNE, weather)
+    assert days.eto_uncertainty[0] < assumed.eto_uncertainty[0]
+    assert days.eto_uncertainty[2] == assumed.eto_uncertainty[2]
 
 
 def test_neighbour_check_finds_a_dead_and_a_slipping_sensor() -> None:
