@@ -1,6 +1,7 @@
 """Hours of a station day: net radiation and reference ET hour by hour, summed to the day."""
 
-from dataclasses import dataclass, fields
+from collections.abc import Mapping
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,6 +29,7 @@ from app.science.energy.sun import (
 from app.science.energy.wind import wind_at_2m
 
 HOURS = 24
+HOUR_SHARE = 0.9  # of an hour's rows, working value
 CARRY_HOURS = 24  # h, longest that cloudiness is carried over, working value
 RATIO_DAYS = 30  # days before, whose ratio of hourly to daily ET serves an incomplete day (METHODS)
 LEAST_RATIOS = 5  # of those days with both, working value
@@ -71,6 +73,47 @@ class HourlyWeather:
         days = np.asarray(date, dtype="datetime64[D]")
         names = [f.name for f in fields(cls) if f.name != "date"]
         return cls(date=days, **{name: np.full((days.size, HOURS), np.nan) for name in names})
+
+
+_FROM_ROWS = {  # field of HourlyWeather -> quantity of rows, MJ m-2 h-1 of it
+    "temperature": ("air_temperature", 1.0),
+    "vapour_pressure": ("vapour_pressure", 1.0),
+    "wind": ("wind_speed", 1.0),
+    **{
+        name: (name, 0.0036)
+        for name in (
+            "shortwave_down",
+            "shortwave_up",
+            "longwave_down",
+            "longwave_up",
+            "net_radiation",
+        )
+    },
+}
+
+
+def hours_from_rows(date: Days, values: Mapping[str, Floats]) -> HourlyWeather:
+    """Hourly means of finer rows laid out by local standard day.
+
+    Arguments: `date` (days,); `values` canonical quantity to (days, rows of a day) in the units of
+    `science.quantities`, what must not be used NaN, negative shortwave zeroed; rows of at most an
+    hour. Returns HourlyWeather; an hour with less than 90 % of its rows is NaN (working value).
+    Errors: ValueError naming the quantity whose rows do not divide into hours.
+    """
+    weather = HourlyWeather.missing(date)
+    fields_of_hours = {}
+    for name, (quantity, scale) in _FROM_ROWS.items():
+        if quantity not in values:
+            continue
+        rows = values[quantity]
+        if rows.shape[1] % HOURS:
+            raise ValueError(f"{quantity} has {rows.shape[1]} rows a day; they must make up hours")
+        parts = rows.reshape(weather.date.size, HOURS, rows.shape[1] // HOURS)
+        known = ~np.isnan(parts)
+        enough = known.sum(axis=2) >= HOUR_SHARE * parts.shape[2]
+        mean = np.where(known, parts, 0.0).sum(axis=2) / np.maximum(known.sum(axis=2), 1)
+        fields_of_hours[name] = np.where(enough, mean * scale, np.nan)
+    return replace(weather, **fields_of_hours)
 
 
 @dataclass(frozen=True)

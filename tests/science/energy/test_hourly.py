@@ -7,6 +7,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from app.science.constants import FAO56
 from app.science.energy import longwave as lw
 from app.science.energy.hourly import (
     HourlyWeather,
@@ -14,6 +15,7 @@ from app.science.energy.hourly import (
     hourly_cloud,
     hourly_days,
     hourly_sun,
+    hours_from_rows,
 )
 from app.science.energy.humidity import saturation_vapour_pressure
 from app.science.energy.records import DailyWeather, Site
@@ -155,6 +157,14 @@ def test_rungs_of_hours() -> None:
     assert set(hourly_days(UTC, cold).rung) == {0}
 
 
+def test_fao_constants_know_the_short_surface_only() -> None:
+    """FAO-56 hourly (Cd 0.34 day and night) lies a few percent below ASCE-EWRI by day."""
+    weather = payerne_hours()
+    asce, fao = hourly_days(UTC, weather), hourly_days(UTC, weather, FAO56)
+    assert np.isnan(fao.etr).all()
+    assert 0.9 < fao.eto_sum.sum() / asce.eto_sum.sum() < 1.0
+
+
 def test_low_sun_takes_the_last_cloudiness() -> None:
     """ASCE-EWRI: below 0.3 rad fcd is the last one computed above it; the day before changes the
     night, the day after changes nothing."""
@@ -210,6 +220,25 @@ def test_high_latitude_winter_has_cloudiness() -> None:
     rso = clear_sky(ra, 100.0)
     cloud = hourly_cloud(date, 0.5 * rso, rso, sine)
     np.testing.assert_allclose(cloud, 1.35 * 0.5 - 0.35)
+
+
+def test_hours_of_rows() -> None:
+    """Quarter hours of the record make the hours the tests above use."""
+    v = payerne_rows().values
+    expected = payerne_hours()
+    grid = {name: values.reshape(30, 96).copy() for name, values in v.items()}
+    moist = np.minimum(grid["relative_humidity"], 100.0) / 100.0
+    grid["vapour_pressure"] = saturation_vapour_pressure(grid["air_temperature"]) * moist
+    grid["shortwave_down"][2, 40] = np.nan
+    hours = hours_from_rows(expected.date, grid)
+    gap = np.zeros((30, 24), dtype=bool)
+    gap[2, 10] = True
+    np.testing.assert_array_equal(np.isnan(hours.shortwave_down), gap)
+    for name in ("temperature", "vapour_pressure", "longwave_down", "net_radiation"):
+        np.testing.assert_allclose(getattr(hours, name), getattr(expected, name), rtol=1e-12)
+    assert np.isnan(hours.wind).all()  # it was not measured
+    with pytest.raises(ValueError, match="air_temperature has 8 rows a day"):
+        hours_from_rows(expected.date, {"air_temperature": np.zeros((30, 8))})
 
 
 def test_shape_is_refused_by_name() -> None:
