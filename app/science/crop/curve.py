@@ -182,9 +182,9 @@ def season_of_stand(season: CropSeason, cover: float, height_m: float) -> CropSe
     """The season with Kcb mid and end of a stand of `cover` 0-1 and `height_m` at mid-season.
 
     Kcb mid by the season's canopy and the noon sun of the first day of mid-season, at the table's
-    climate (the season's climate adjustment comes on top); Kcb end keeps its share of Kcb mid;
-    live ground cover is the least of both and of the initial coefficient. Raises ValueError with
-    single coefficients. Source: FAO-56 chapter 9; `stand_kcb`.
+    climate (the season's climate adjustment comes on top); Kcb end keeps its share of Kcb mid,
+    and is no less than live ground cover; Kcb ini stays, as ground cover may still rest. Raises
+    ValueError with single coefficients. Source: FAO-56 chapter 9; `stand_kcb`.
     """
     if season.coefficients != "dual":
         raise ValueError("a stand's cover tells Kcb, not Kc: choose dual coefficients")
@@ -197,7 +197,6 @@ def season_of_stand(season: CropSeason, cover: float, height_m: float) -> CropSe
     end = kcb * season.k_end / season.k_mid if season.k_mid > 0.0 else kcb
     return replace(
         season,
-        k_ini=max(season.k_ini, ground),
         k_mid=kcb,
         k_end=max(end, ground),
         height_max_m=height_m,

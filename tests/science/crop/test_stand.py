@@ -72,7 +72,7 @@ def test_the_season_of_a_stand() -> None:
     kd = float(density_coefficient(0.4, 3.0))
     assert stand.k_mid == pytest.approx(0.6 + kd * 0.6)
     assert stand.k_end == pytest.approx(max(stand.k_mid * 0.65 / 0.9, 0.6))
-    assert stand.k_ini == 0.6
+    assert stand.k_ini == season.k_ini
     assert stand.height_max_m == 3.0
     table = season_of_stand(replace(season, canopy=Canopy(full="table")), 1.0, 3.0)
     assert table.k_mid == pytest.approx(0.9)
