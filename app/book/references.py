@@ -52,6 +52,9 @@ def reference_problems(book: Book, known: Known) -> list[str]:
     twice("fields", (part.key for part in book.fields))
     twice("seasons", ((part.field, part.block, part.planting) for part in book.seasons))
 
+    for station in book.stations:
+        if station.teacher is not None:
+            leads(f"stations {station.key}, teacher", "station", station.teacher, stations)
     for soil in book.soils:
         for number, layer in enumerate(soil.layers, 1):
             if layer.texture is not None:

@@ -23,6 +23,7 @@ Share = Annotated[float, Field(gt=0, le=1)]
 Depth = Annotated[float, Field(ge=0, le=2000)]
 Purpose = Literal["crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"]
 Variable = Literal["energy", "temperature", "wind", "rain"]
+Surface = Literal["reference grass", "green cover", "bare soil", "water", "snow"]
 SaidToBeDone = Literal["advised", "presumed", "reported", "metered", "measured"]
 
 
@@ -44,6 +45,12 @@ class StationPart(Part):
     time_zone: str | None = Field(None, description="IANA zone of a logger on civil time")
     wind_height_m: Annotated[float, Field(gt=0.2, le=100)] = 2.0
     reference_surface: bool = Field(False, description="clipped, watered grass under the sensors")
+    surface: Surface | None = Field(
+        None, description="what lies under the radiometers; the albedo is held against it"
+    )
+    teacher: Key | None = Field(
+        None, description="a station whose measured days teach this one's model of net radiation"
+    )
     arid: bool = False
     coastal: bool = False
 

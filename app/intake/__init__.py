@@ -33,6 +33,7 @@ from app.intake.pack import pack, station_day, unpack
 from app.intake.questions import answer, unanswered
 from app.intake.read import read
 from app.intake.sniff import sniff
+from app.intake.watching import Watched, watched
 
 __all__ = [
     "Choice",
@@ -50,6 +51,7 @@ __all__ = [
     "Sniffed",
     "TimeColumn",
     "TimeLayout",
+    "Watched",
     "aggregate",
     "answer",
     "fold",
@@ -59,4 +61,5 @@ __all__ = [
     "station_day",
     "unanswered",
     "unpack",
+    "watched",
 ]

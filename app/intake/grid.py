@@ -60,18 +60,30 @@ def lay_out(
         if failed.any():
             grid.tally["set_aside", quantity, name] = _per_day(grid, place[failed] // n)
             values[quantity][failed] = np.nan
+    _place(grid, place, values)
+    _zero_night(grid)
+    _clip_humidity(grid)
+    form_vapour_pressure(grid)
+    for name in _BETWEEN:
+        if name in grid.values:
+            _bridge(grid, name)
+    return grid
+
+
+def lay_out_as_read(rows: Rows, site: Site, days: Instants) -> tuple[Grid, NDArray[np.int64]]:
+    """Rows of one common step on the grid as they were read, and each row's place (-1: none)."""
+    grid, place = _empty(rows, site, days)
+    kept = place >= 0
+    _place(grid, place[kept], {name: column[kept] for name, column in rows.values.items()})
+    return grid, place
+
+
+def _place(grid: Grid, place: NDArray[np.int64], values: Mapping[str, Floats]) -> None:
     for name, column in values.items():
         laid = np.full(grid.night.size, np.nan)
         given = ~np.isnan(column)
         laid[place[given]] = column[given]
         grid.values[name] = laid.reshape(grid.night.shape)
-    _zero_night(grid)
-    _clip_humidity(grid)
-    _form_vapour_pressure(grid)
-    for name in _BETWEEN:
-        if name in grid.values:
-            _bridge(grid, name)
-    return grid
 
 
 def _empty(rows: Rows, site: Site, days: Instants) -> tuple[Grid, NDArray[np.int64]]:
@@ -122,7 +134,7 @@ def _clip_humidity(grid: Grid) -> None:
             values[above] = 100.0
 
 
-def _form_vapour_pressure(grid: Grid) -> None:
+def form_vapour_pressure(grid: Grid) -> None:
     """Vapour pressure of each interval: as read, from T and RH, from the dew point, from VPD."""
     values = grid.values
     air = values.get("air_temperature")

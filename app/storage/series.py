@@ -117,3 +117,8 @@ def replace_station_days(
 def day_range(first: date, days: int) -> list[date]:
     """`days` dates from `first` on."""
     return [first + timedelta(days=step) for step in range(days)]
+
+
+def numbers(values: Any) -> list[float | None]:
+    """Floats for the database: None for NaN."""
+    return [None if value != value else value for value in np.asarray(values, float).tolist()]

@@ -11,7 +11,8 @@ from app.storage.database import Database
 from app.storage.tables import Advice, Block
 from app.workflows.advise import advise
 from app.workflows.assemble import assemble
-from app.workflows.recompute import compute, due_ledgers, recompute_stations, write_ledgers
+from app.workflows.recompute import compute, due_ledgers, write_ledgers
+from app.workflows.station_days import recompute_stations
 
 BLOCKS_AT_A_TIME = 256
 

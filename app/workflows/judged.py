@@ -8,10 +8,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.intake import Clock, DayNote, Rows, station_day
+from app.science.energy.day_checks import Marks
 from app.storage.judgement import LogEntry, Mark
 from app.workflows.compare import EPOCH, as_day
 
 Bools = NDArray[np.bool_]
+FIELDS = {
+    "air_temperature": ("tmax", "tmin", "tmean"),
+    "air_temperature_max": ("tmax",),
+    "air_temperature_min": ("tmin",),
+    "relative_humidity": ("rh_max", "rh_min", "rh_mean", "vapour_pressure"),
+    "relative_humidity_max": ("rh_max",),
+    "relative_humidity_min": ("rh_min",),
+    "wind_speed": ("wind",),
+    "sunshine_hours": ("sunshine",),
+}
+"""Fields of a day's weather that rest on a quantity of its rows; else of the same name."""
 
 
 @dataclass(frozen=True)
@@ -21,6 +33,17 @@ class JudgedRows:
     rows: Rows
     good: dict[str, Bools]
     notes: list[DayNote]
+
+    def marks_of_days(self, days: NDArray[np.datetime64], clock: Clock) -> Marks:
+        """The days with readings that a person vouches for, by field of DailyWeather."""
+        of_rows = station_day(self.rows.instant, self.rows.interval_s, clock)
+        wanted = days.astype("datetime64[D]").astype(np.int64)
+        good: dict[str, Bools] = {}
+        for quantity, mask in self.good.items():
+            vouched = np.isin(wanted, of_rows[mask])
+            for field in FIELDS.get(quantity, (quantity,)):
+                good[field] = good.get(field, np.zeros(wanted.size, np.bool_)) | vouched
+        return Marks(good=good)
 
 
 def judged(rows: Rows, marks: Sequence[Mark], log: Iterable[LogEntry], clock: Clock) -> JudgedRows:

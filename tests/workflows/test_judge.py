@@ -46,12 +46,12 @@ def test_a_span_marked_bad_is_set_aside_and_taken_back_exactly(db: Database) -> 
     number = mark(db)
     row = station_day(db)
     assert row.shortwave_down is None
-    assert row.rung == 8
+    assert row.rung == 6  # its neighbour measured
     assert "shortwave_down:set_aside:1:marked_bad" in row.notes
     assert station_day(db, date(2026, 6, 14)).rung == 5
     with db.read() as session:
         ledger = session.scalars(select(LedgerDay.rung).where(LedgerDay.day == DAY)).all()
-    assert ledger == [8, 8, 8]
+    assert ledger == [6, 6, 6]
     assert mark(db) == number  # the same form again
     take_back_mark(db, number, "advisor", "form-2", basin.TODAY)
     take_back_mark(db, number, "advisor", "form-2", basin.TODAY)
@@ -68,7 +68,7 @@ def test_good_over_bad_and_the_other_way_the_last_word_counts(db: Database) -> N
     mark(db, "good", "form-2")
     assert basin.derived(db) == before
     mark(db, "bad", "form-3")
-    assert station_day(db).rung == 8
+    assert station_day(db).rung == 6
 
 
 def test_a_value_that_a_check_sets_aside_is_used_when_a_person_vouches_for_it(
@@ -104,7 +104,7 @@ def test_part_of_a_day_by_the_clock(db: Database) -> None:
     mark(db, token="noon", from_time=time(6), to_time=time(12))
     assert station_day(db).rung == 5
     mark(db, token="end", from_time=time(6))
-    assert station_day(db).rung == 8
+    assert station_day(db).rung == 6
 
 
 def test_a_calibration_counts_from_its_day_until_the_next(db: Database) -> None:
