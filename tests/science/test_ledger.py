@@ -13,12 +13,10 @@ from app.science.ledger import (
     BlockLedger,
     BlockPlan,
     BlockWeather,
-    Restart,
     block_ledgers,
     close_standing,
     closure_error,
     ensemble_depletion,
-    state_after,
 )
 from app.science.soil.profile import Layer, Profile
 from tests.science.random_blocks import random_blocks
@@ -97,56 +95,6 @@ def test_more_days_leave_earlier_days_alone() -> None:
         whole = block_ledgers([plan], [sky])[0]
         part = block_ledgers([shortened(plan, plan.days // 2)], [cut(sky, plan.days // 2)])[0]
         np.testing.assert_array_equal(whole.depletion_mm[: plan.days // 2], part.depletion_mm)
-
-
-@settings(max_examples=10, deadline=None)
-@given(st.integers(0, 2**32 - 1))
-def test_run_on_from_a_saved_state_equals_run_whole(seed: int) -> None:
-    """Alone and in company, restarted or not, on the first day, in between and on the last."""
-    plans, weather = random_blocks(seed, 10, most_days=60)
-    whole = block_ledgers(plans, weather)
-    rng = np.random.default_rng(seed)
-    restarts: list[Restart | None] = []
-    for ledger in whole:
-        place = int(rng.integers(0, ledger.date.size))
-        day = ledger.date[place]
-        state = None if place == 0 else state_after(ledger, day - 1)
-        restarts.append(None if state is None else Restart(since=day, state=state))
-    together = block_ledgers(plans, weather, restarts)
-    for i, (restart, ledger) in enumerate(zip(restarts, whole, strict=True)):
-        rest = together[i]
-        assert_same(rest, block_ledgers([plans[i]], [weather[i]], [restart])[0])
-        assert_same(rest, from_place(ledger, ledger.date.size - rest.date.size))
-        assert closure_error(rest) < 1e-9
-
-
-def from_place(ledger: BlockLedger, place: int) -> BlockLedger:
-    columns = {k: v[place:] for k, v in vars(ledger).items() if k != "opening_depletion_mm"}
-    before = ledger.opening_depletion_mm if place == 0 else ledger.depletion_mm[place - 1]
-    return BlockLedger(opening_depletion_mm=float(before), **columns)
-
-
-def test_a_correction_eleven_days_back_recomputes_eleven_days() -> None:
-    plan, sky = field(40, net={10: 30.0}, rise={20: 1.0}, curve_number=80.0), weather(40)
-    before = block_ledgers([plan], [sky])[0]
-    corrected = replace(plan, correction=np.where(np.arange(40) == 29, 9.0, 0.0))
-    restart = Restart(since=plan.date[29], state=state_after(before, plan.date[28]))
-    rest = block_ledgers([corrected], [sky], [restart])[0]
-    assert rest.date.size == 11
-    assert rest.correction_mm[0] == 9.0
-    assert_same(rest, from_place(block_ledgers([corrected], [sky])[0], 29))
-
-
-def test_a_restart_outside_its_plan_is_refused() -> None:
-    plan, sky = field(5), weather(5)
-    ledger = block_ledgers([plan], [sky])[0]
-    state = state_after(ledger, plan.date[4])
-    with pytest.raises(ValueError, match="a restart on 2025-06-06 lies outside"):
-        block_ledgers([plan], [sky], [Restart(since=plan.date[4] + 1, state=state)])
-    with pytest.raises(ValueError, match="not 2025-06-06"):
-        state_after(ledger, plan.date[4] + 1)
-    with pytest.raises(ValueError, match="1 plans, but 2 restarts"):
-        block_ledgers([plan], [sky], [None, None])
 
 
 def cut(weather: BlockWeather, days: int) -> BlockWeather:

@@ -161,8 +161,8 @@ def _by_cover(
     when = np.array([s.date.astype("datetime64[D]").astype(np.float64) for s in seen])
     cover = np.interp(days, when, [s.cover for s in seen], left=np.nan)
     tall = np.interp(days, when, [s.height_m for s in seen], left=np.nan)
-    last = int(np.clip(when[-1] - days[0], 0, days.size - 1))
-    moved = np.where(days > when[-1], curve / curve[last] if curve[last] > 0.0 else 1.0, 1.0)
+    then = _curve_when(season, date, curve, seen[-1].date)
+    moved = np.where(days > when[-1], curve / then if then > 0.0 else 1.0, 1.0)
     cover = np.minimum(cover * moved, MOST_COVER)
     tall = np.minimum(tall * np.maximum(moved, 1.0), np.maximum(tall, season.height_max_m))
     calm = np.isnan(wind)
@@ -171,6 +171,17 @@ def _by_cover(
         full = np.minimum(1.0 + 0.1 * tall, 1.20) + np.where(calm, 0.0, term)
     kcb = stand_kcb(season.canopy, cover, tall, _day_of_year(date), full, season.kc_min)
     return kcb, cover, tall
+
+
+def _curve_when(season: CropSeason, date: Days, curve: Floats, when: np.datetime64) -> float:
+    """The season's own coefficient on the day `when`; before the first day of `date` by the
+    table, or as on the first day where the stages do not go by days alone."""
+    place = int((when - date[0]).astype("timedelta64[D]").astype(np.int64))
+    if place < 0 and season.plain:
+        day = float((when - season.planting).astype("timedelta64[D]").astype(np.int64)) + 1.0
+        k = coefficient_on(day, season.stage_days, season.k_ini, season.k_mid, season.k_end)
+        return float(k)
+    return float(curve[min(max(place, 0), curve.size - 1)])
 
 
 def _day_of_year(date: Days) -> Floats:

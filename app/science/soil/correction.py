@@ -101,10 +101,18 @@ def depletion_at(hour: float, before_mm: float, after_mm: float) -> float:
     """Depletion [mm] at `hour` 0-24 of a day between the closes before and after it.
 
     Up to 6 h the close before, from 18 h the day's own, linear between (working value); NaN in,
-    NaN out. The correction goes to the day before where the hour is at most 6, else to the day.
+    NaN out.
     """
     share = float(np.clip((hour - MORNING) / (EVENING - MORNING), 0.0, 1.0))
     return before_mm + share * (after_mm - before_mm)
+
+
+def corrected_close(day: np.datetime64, hour: float) -> np.datetime64:
+    """The day whose close a reading on `day` at `hour` 0-24 corrects: the day before up to 6 h (the
+    close it was compared with), else the day itself."""
+    check_range("hour", hour, 0.0, 24.0)
+    own: np.datetime64 = day.astype("datetime64[D]")
+    return own - np.timedelta64(1, "D") if hour <= MORNING else own
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -156,6 +156,31 @@ def measured_depletion(
     )
 
 
+def depletion_by_layer(readings: Sequence[DepthReading], profile: Profile) -> tuple[float, ...]:
+    """Depletion of each layer of `profile` as a share of its available water, 0-1, by readings.
+
+    readings: one or more depths; a layer takes the mean over its thickness of what they say, each
+    speaking for the soil halfway to the next, the last for all below it. For the opening of a
+    ledger (`subsoil_layer_depletion`). Raises ValueError for no reading. Source: FAO-56 eq 86, by
+    layer.
+    """
+    if not readings:
+        raise ValueError("no reading is given; a depletion needs at least one depth")
+    used = sorted(readings, key=lambda r: r.depth_m)
+    cuts = [0.0, *((a.depth_m + b.depth_m) / 2.0 for a, b in pairwise(used)), np.inf]
+    shares, top = [], 0.0
+    for layer in profile.layers:
+        told = 0.0
+        for reading, (above, below) in zip(used, pairwise(cuts), strict=True):
+            thick = min(below, layer.bottom_m) - max(above, top)
+            if thick > 0.0:
+                share = _dryness(reading, layer_at(profile, reading.depth_m))
+                told += min(max(share, 0.0), 1.0) * thick
+        shares.append(told / (layer.bottom_m - top))
+        top = layer.bottom_m
+    return tuple(shares)
+
+
 def _dryness(reading: DepthReading, layer: Layer) -> float:
     """Depletion as a share of the layer's available water; carried to other layers by it."""
     available = layer.field_capacity - layer.wilting_point

@@ -75,6 +75,23 @@ def yield_share(et_actual: ArrayLike, et_potential: ArrayLike, ky: ArrayLike) ->
     return np.asarray(np.clip(1.0 - floats(ky) * short, 0.0, 1.0))
 
 
+def yield_by_stages(et_actual: ArrayLike, et_potential: ArrayLike, ky: ArrayLike) -> Floats:
+    """Yield over its maximum, 0-1, from the ET of each stage.
+
+    et_actual, et_potential [mm] and ky [-] of each stage along the first axis; a stage without
+    potential ET counts for nothing. NaN in, NaN out. Source: product over stages of 1 - Ky (1 -
+    ETa / ETc), a common form of FAO-33's relation, from memory.
+    """
+    actual, potential, response = np.broadcast_arrays(
+        floats(et_actual), floats(et_potential), floats(ky)
+    )
+    share = np.ones(actual.shape[1:])
+    for eta, etc, k in zip(actual, potential, response, strict=True):
+        ratio = np.where(etc == 0.0, 1.0 + 0.0 * eta, eta / np.where(etc == 0.0, 1.0, etc))
+        share = share * np.clip(1.0 - k * (1.0 - ratio), 0.0, 1.0)
+    return np.asarray(share)
+
+
 def stress_from_yield(yield_actual: ArrayLike, yield_most: ArrayLike, ky: ArrayLike) -> Floats:
     """Seasonal mean Ks that explains a yield (FAO-56 eq 103); yields in one unit.
 

@@ -117,6 +117,14 @@ def test_cover_seen_gives_kcb_by_the_density_coefficient() -> None:
     assert (c.cover[39:150] <= 0.99).all()
 
 
+def test_a_ledger_that_starts_after_the_last_cover_seen_goes_on_as_the_whole() -> None:
+    seen = (CoverSeen(date=on(50), cover=0.3, height_m=0.8),)
+    season = replace(MAIZE, cover_seen=seen)
+    whole, rest = curve(season), curve(season, first=80, days=121)
+    np.testing.assert_allclose(rest.coefficient, whole.coefficient[79:])
+    np.testing.assert_allclose(rest.cover[:70], whole.cover[79:149])
+
+
 def test_cover_seen_is_what_evaporation_sees() -> None:
     """Ground covered as seen leaves the rest to evaporation (FAO-56 eq 75)."""
     plan = field(1, k=0.6, net={0: 20.0})

@@ -8,7 +8,13 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from app.science.ledger import block_ledgers, ensemble_depletion
-from app.science.soil.correction import correct, depletion_at, spread_of_range, suspicion
+from app.science.soil.correction import (
+    correct,
+    corrected_close,
+    depletion_at,
+    spread_of_range,
+    suspicion,
+)
 from app.science.soil.readings import Measured
 from tests.science.soil.fields import field, weather
 
@@ -95,6 +101,14 @@ def test_a_morning_reading_is_the_close_before() -> None:
     assert depletion_at(12.0, 30.0, 40.0) == 35.0
     assert depletion_at(20.0, 30.0, 40.0) == 40.0
     assert np.isnan(depletion_at(9.0, np.nan, 40.0))
+
+
+def test_the_close_a_reading_corrects() -> None:
+    day = np.datetime64("2025-07-01")
+    assert corrected_close(day, 5.5) == np.datetime64("2025-06-30")
+    assert corrected_close(day, 14.0) == day
+    with pytest.raises(ValueError, match="hour is 25"):
+        corrected_close(day, 25.0)
 
 
 def test_spread_of_a_range() -> None:

@@ -13,6 +13,7 @@ from app.science.soil.readings import (
     by_content,
     by_count_ratio,
     by_tension,
+    depletion_by_layer,
     gravimetric,
     layer_at,
     measured_depletion,
@@ -82,6 +83,17 @@ def test_a_uniform_soil_gives_back_its_depletion(content: float, roots: float, c
     depths = np.linspace(0.05, roots, count)
     measured = measured_depletion([at(float(d), content) for d in depths], EVEN, roots)
     assert measured.depletion_mm == pytest.approx(1000.0 * (0.30 - content) * roots)
+
+
+def test_depletion_by_layer_opens_a_subsoil() -> None:
+    """0.4 m at 0.24 of (0.30, 0.15): 0.4 dry; below, 0.15 of (0.20, 0.10): half dry."""
+    readings = [at(0.2, 0.24), at(0.6, 0.15)]
+    np.testing.assert_allclose(depletion_by_layer(readings, SOIL), (0.4, 0.5))
+    np.testing.assert_allclose(depletion_by_layer([at(0.2, 0.24)], SOIL), (0.4, 0.4))
+    mixed = [at(0.1, 0.30), at(0.3, 0.15), at(0.9, 0.40)]
+    np.testing.assert_allclose(depletion_by_layer(mixed, SOIL), (0.5, 0.2 / 1.6))
+    with pytest.raises(ValueError, match="at least one depth"):
+        depletion_by_layer([], SOIL)
 
 
 def test_weight_and_count_ratio() -> None:

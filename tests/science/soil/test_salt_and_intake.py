@@ -12,6 +12,7 @@ from app.science.soil import salinity
 from app.science.soil.intake_rate import BASIC_RATES, intake_warning, local_rate
 from app.science.soil.profile import Layer
 from app.science.soil.retention import content_error, tension, water_content
+from app.science.soil.root_zone import yield_by_stages, yield_share
 from app.science.soil.texture import gravel_volume
 
 LOAM = Layer(1.0, 0.28, 0.14, 0.46)
@@ -138,3 +139,16 @@ def test_kc_ini_of_a_known_soil() -> None:
     assert light == pytest.approx(5.0 / 60.0, rel=0.01)
     part = float(kc_ini_own_soil(8.0, 6.0, 20.0, 9.0, depth=60.0, fw=0.4))
     assert part == pytest.approx(0.4 * float(plain))
+
+
+def test_yield_by_stages_is_the_product_of_its_stages() -> None:
+    """1 - Ky (1 - ETa / ETc) of each stage multiplied (FAO-33's relation by stage, from memory)."""
+    share = yield_by_stages([90.0, 200.0, 0.0], [100.0, 250.0, 0.0], [0.4, 1.5, 0.2])
+    assert float(share) == pytest.approx((1 - 0.4 * 0.1) * (1 - 1.5 * 0.2))
+    assert float(yield_by_stages([300.0], [400.0], [1.25])) == pytest.approx(
+        float(yield_share(300.0, 400.0, 1.25))
+    )
+    many = yield_by_stages([[90.0, np.nan], [200.0, 200.0]], [[100.0], [250.0]], [[0.4], [1.5]])
+    assert many[0] == pytest.approx(0.96 * 0.7)
+    assert np.isnan(many[1])
+    assert float(yield_by_stages([0.0, 50.0], [100.0, 50.0], [1.5, 1.0])) == 0.0
