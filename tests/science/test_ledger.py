@@ -275,6 +275,17 @@ def test_the_energys_uncertainty_is_half_persistent() -> None:
     assert high[19] - low[19] == pytest.approx(P10_TO_P90 * share * 80.0, rel=0.08)
 
 
+def test_rain_far_from_its_gauge_is_less_sure() -> None:
+    """Working value: the error of rain has doubled at 20 km."""
+    plan = replace(field(1, coefficients="single"), initial_depletion_mm=60.0)
+    sky = weather(1, eto=0.0, rain={0: 8.0})
+    width = [
+        np.subtract(*ensemble_depletion(plan, sky, 9, 4000, rain_distance_km=km)[::-1])[0]
+        for km in (0.0, 20.0)
+    ]
+    assert width[1] / width[0] == pytest.approx(2.0, rel=0.02)
+
+
 def test_net_water_never_exceeds_what_was_applied() -> None:
     """Gross equal to net leaves no room for a better efficiency: p10 is the ledger itself."""
     plan = replace(

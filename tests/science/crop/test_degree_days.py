@@ -128,6 +128,7 @@ def test_the_ledger_takes_warmth_from_its_temperatures() -> None:
 
 def test_stage_sums_of_a_usual_year() -> None:
     assert usual_stage_sums((2, 3, 1, 0), np.arange(10.0)) == (1.0, 9.0, 5.0, 0.0)
+    assert usual_stage_sums((2, 3, 1, 0), np.ones(6)) == (2.0, 3.0, 1.0, 0.0)
     with pytest.raises(ValueError, match="daily has 3 days; the stages take 6"):
         usual_stage_sums((2, 3, 1, 0), np.zeros(3))
 

@@ -35,6 +35,18 @@ def test_a_stage_seen_moves_the_days_from_it_on_and_none_before() -> None:
     assert (np.diff(seen.root_depth) >= 0.0).all()
 
 
+def test_single_roots_grow_from_planting_by_the_place_in_the_stages() -> None:
+    """Single coefficients: linear from planting to the first day of mid-season (day 71)."""
+    single = replace(MAIZE, coefficients="single")
+    seen = curve(replace(single, stages_seen=(StageSeen(date=on(50), stage=3),)))
+    table = curve(single)
+    np.testing.assert_array_equal(seen.root_depth[:49], table.root_depth[:49])
+    assert seen.root_depth[47] == pytest.approx(0.2 + 0.8 * 47.0 / 70.0)
+    assert seen.root_depth[49] == 1.0
+    dual = curve(replace(MAIZE, stages_seen=(StageSeen(date=on(60), stage=3),)))
+    np.testing.assert_allclose(dual.root_depth[[29, 49, 58, 59]], [0.2, 0.6, 0.78, 1.0])
+
+
 def test_a_late_crop_waits_and_keeps_its_roots() -> None:
     """Development seen to begin on day 45 only: the coefficient falls back to the initial one,
     roots stay where they had come to."""

@@ -19,6 +19,7 @@ def test_shade_of_rows_by_their_direction() -> None:
     south not at all; Example 41 (40 N, day 200, cover 0.3, height over width 1)."""
     shade = float(effective_cover(VINES, 0.3, 1.0, 200))
     assert_printed(rows("41")["fc eff"], shade)
+    assert float(effective_cover(replace(VINES, width_m=2.0), 0.3, 2.0, 200)) == shade
     along = replace(VINES, row_azimuth_deg=0.0)
     assert float(effective_cover(along, 0.3, 2.0, 200)) == pytest.approx(0.3)
     slant = replace(VINES, row_azimuth_deg=30.0)

@@ -141,6 +141,12 @@ def test_corrections_of_one_sign_all_season_raise_a_suspicion() -> None:
     assert np.isnan(wetter.efficiency_factor)
 
 
+def test_a_millimetre_counts() -> None:
+    series = corrections(dict.fromkeys((10, 30, 45, 60, 80), 1.0))
+    assert suspicion(series, np.ones(100), np.ones(100)) is not None
+    assert suspicion(0.99 * series, np.ones(100), np.ones(100)) is None
+
+
 @pytest.mark.parametrize(
     "days",
     [

@@ -56,6 +56,8 @@ def test_roots_below_the_deepest_reading_are_as_dry_with_twice_the_error() -> No
     share = 0.06 / 0.15
     assert one.depletion_mm == pytest.approx(share * float(SOIL.taw(1.0)))
     assert one.error_mm == pytest.approx(30.0 * (0.4 + 2.0 * 0.6))
+    at_the_end = measured_depletion([at(0.5, 0.20), at(1.0, 0.15)], SOIL, 1.0)
+    assert at_the_end.error_mm == pytest.approx(30.0)
     deep = measured_depletion([at(0.25, 0.24), at(1.5, 0.10)], SOIL, 1.0)
     assert deep == one
     only_below = measured_depletion([at(1.5, 0.15)], SOIL, 1.0)

@@ -72,6 +72,7 @@ def test_yield_under_salt_ends_where_the_slope_says() -> None:
     assert threshold is not None
     assert slope is not None
     most = float(salinity.most_salinity(threshold, slope))
+    assert most == pytest.approx(1.7 + 100.0 / 12.0)  # about 10 dS/m, as FAO-29 prints
     ece = np.array([0.0, threshold, threshold + 50.0 / slope, most, most + 5.0])
     share = salinity.salinity_yield(ece, threshold, slope)
     np.testing.assert_allclose(share, [1.0, 1.0, 0.5, 0.0, 0.0], atol=1e-12)
@@ -137,6 +138,7 @@ def test_kc_ini_of_a_known_soil() -> None:
     assert float(cool) == float(kc_ini(8.0, 3.2, 20.0 * 0.8, 9.0))
     light = float(kc_ini_own_soil(10.0, 6.0, 20.0, 9.0, depth=5.0))
     assert light == pytest.approx(5.0 / 60.0, rel=0.01)
+    assert float(kc_ini_own_soil(8.0, 6.0, 20.0, 9.0, fw=1.0)) == float(plain)
     part = float(kc_ini_own_soil(8.0, 6.0, 20.0, 9.0, depth=60.0, fw=0.4))
     assert part == pytest.approx(0.4 * float(plain))
 
