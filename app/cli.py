@@ -9,7 +9,7 @@ from contextlib import contextmanager
 from dataclasses import asdict
 from datetime import date
 from pathlib import Path
-from typing import Annotated, Any
+from typing import Annotated, Any, NoReturn
 
 import typer
 from rich.console import Console
@@ -40,11 +40,17 @@ def main() -> None:
     """Run a command; whatever the input, the last word is one line, not a traceback."""
     try:
         app()
-    except (InputError, OSError) as error:
-        notes.print(f"rillbook: {error}", style="red", soft_wrap=True, markup=False)
-        sys.exit(1)
+    except OSError as error:
+        _fail(f"{error.filename}: {error.strerror}" if error.filename else str(error))
+    except InputError as error:
+        _fail(str(error))
     except KeyboardInterrupt:
         sys.exit(130)
+
+
+def _fail(message: str) -> NoReturn:
+    notes.print(f"rillbook: {message}", style="red", soft_wrap=True, markup=False)
+    sys.exit(1)
 
 
 @contextmanager
@@ -58,6 +64,9 @@ def _database(on: str | None = None) -> Iterator[tuple[Any, Settings, date]]:
     settings = read_settings()
     if on is not None:
         settings = replace(settings, today=_date(on))
+    new = settings.database.removeprefix("sqlite:///")
+    if new != settings.database and not Path(new).exists():
+        notes.print(f"A new, empty database: {new}", soft_wrap=True, markup=False)
     db = Database(settings.database)
     try:
         db.migrate()
@@ -140,24 +149,51 @@ def load(
     with _database() as (db, _, _), db.write() as session:
         loaded = load_book(session, book, WHO)
     outcome = asdict(loaded)
-    added = ", ".join(f"{count} {kind}" for kind, count in loaded.added.items()) or "nothing"
-    changed = ", ".join(f"{count} {kind}" for kind, count in loaded.changed.items()) or "nothing"
-    _say(outcome, as_json, f"Added {added}; changed {changed}; {loaded.same} the same.")
+    text = f"Added {_counted(loaded.added)}; changed {_counted(loaded.changed)}; "
+    text += f"{loaded.same} the same."
+    if loaded.added or loaded.changed:
+        text += " `rillbook advise` brings ledgers and advice up to date."
+    _say(outcome, as_json, text)
+
+
+def _counted(parts: dict[str, int]) -> str:
+    """`2 soils, 1 field`; kinds come as the store names them, some in the plural."""
+    kinds = {kind: kind.removesuffix("s").replace("irrigation_", "") for kind in parts}
+    words = [f"{n} {kinds[kind]}{'' if n == 1 else 's'}" for kind, n in parts.items()]
+    return ", ".join(words) or "nothing"
 
 
 @app.command()
 def schema() -> None:
-    """Print the JSON Schema of a book file."""
+    """Print the JSON Schema of a book file, with the handbook's crops, textures and wettings."""
+    from app import handbook
     from app.book import Book
 
-    print(json.dumps(Book.model_json_schema(), indent=2))
+    described = Book.model_json_schema()
+    choices = (
+        ("SeasonPart", "crop", {key: row.crop_name for key, row in handbook.crops().items()}),
+        ("LayerPart", "texture", {key: key.replace("_", " ") for key in handbook.soil_textures()}),
+        ("SystemPart", "wetting", {key: key.replace("_", " ") for key in handbook.wettings()}),
+    )
+    for part, name, named in choices:
+        place = described["$defs"][part]["properties"][name]
+        place.pop("type", None)
+        nothing = [{"type": "null"}] if place.pop("anyOf", None) else []
+        place["oneOf"] = [{"const": key, "title": title} for key, title in named.items()] + nothing
+    print(json.dumps(described, indent=2, ensure_ascii=False))
 
 
 @app.command()
 def intake(
     station: str,
     file: Annotated[Path, typer.Argument()],
-    mapping: Annotated[Path | None, typer.Option(help="A mapping as --preview prints it.")] = None,
+    answer: Annotated[
+        list[str] | None,
+        typer.Option(help="What the file leaves open, such as time.order=mdy; may be repeated."),
+    ] = None,
+    mapping: Annotated[
+        Path | None, typer.Option(help="How to read it, as --preview --json prints it.")
+    ] = None,
     preview: Annotated[bool, typer.Option("--preview", help="Only say what would change.")] = False,
     on: On = None,
     as_json: AsJson = False,
@@ -169,7 +205,11 @@ def intake(
     with _database(on) as (db, _, today):
         with file.open("rb") as source, _progress(f"Reading {file.name}") as step:
             number = take_in.receive(db, station, file.name, source, WHO, chosen, step)
-        seen = take_in.preview_of(db, number)
+        try:
+            seen = _answered(db, number, answer or [])
+        except InputError:
+            take_in.discard(db, number, WHO)
+            raise
         if preview:
             take_in.discard(db, number, WHO)
             _say(_preview_json(seen), as_json, _preview_text(seen))
@@ -186,7 +226,26 @@ def intake(
         f"{applied.days_changed} days changed from {applied.first_day}, "
         f"{applied.blocks} ledgers recomputed."
     )
+    text = "\n".join([text, *_refusals(seen)])
     _say({"intake": number, **asdict(applied)}, as_json, text)
+
+
+def _answered(db: Any, number: int, answers: list[str]) -> Any:
+    """The preview of a received file, read again with the answers if there are any."""
+    from app.intake import answer
+    from app.workflows import take_in
+
+    seen = take_in.preview_of(db, number)
+    if not answers or seen.mapping is None:
+        return seen
+    given = {}
+    for text in answers:
+        field, sign, value = text.partition("=")
+        if not sign:
+            raise InputError(f"--answer is {text!r}; write it as FIELD=VALUE, as time.order=mdy")
+        given[field.strip()] = value.strip()
+    take_in.remap(db, number, answer(seen.mapping, given), WHO)
+    return take_in.preview_of(db, number)
 
 
 def _mapping(path: Path | None) -> Any:
@@ -197,8 +256,13 @@ def _mapping(path: Path | None) -> Any:
     if path is None:
         return None
     try:
-        return Mapping.model_validate_json(path.read_bytes())
-    except ValidationError as error:
+        found = json.loads(path.read_bytes())
+        if isinstance(found, dict) and isinstance(found.get("mapping"), dict):
+            found = found["mapping"]  # the whole of what --preview --json prints will do
+        return Mapping.model_validate(found)
+    except ValueError as error:
+        if not isinstance(error, ValidationError):
+            raise IntakeError(f"{path}: not JSON ({error})") from None
         first = error.errors()[0]
         place = ".".join(str(step) for step in first["loc"]) or "top"
         raise IntakeError(
@@ -217,26 +281,40 @@ def _preview_text(seen: Any) -> str:
     if seen.message:
         return f"{seen.file_name}: {seen.message}"
     lines = [f"{seen.file_name} for {seen.station_name}"]
+    when = {column.position for column in seen.mapping.time.columns}
     for column, place in zip(seen.mapping.columns, seen.columns, strict=False):
-        meaning = f"{column.quantity} [{column.unit}]" if column.quantity else "left out"
+        meaning = "says when" if column.position in when else "left out"
+        if column.quantity:
+            meaning = f"{column.quantity} [{column.unit or 'unit?'}]"
         lines.append(f"  {place['name']}: {meaning}. {place['why']}")
     lines += [_asked(question) for question in seen.questions]
+    if any(question["blocking"] for question in seen.questions):
+        return "\n".join([*lines, "No row can be read before that is answered (--answer)."])
     lines.append(
         f"{seen.rows_accepted} rows would be taken ({seen.rows_same} here already, "
         f"{seen.rows_differing} differ), {seen.rows_refused} refused; "
         f"{len(seen.days_changed)} days would change, {seen.fields_touched} fields with them."
     )
-    for problem in seen.problems[:20]:
-        lines.append(
-            f"  line {problem.line}, {problem.column}, {problem.value!r}: "
-            f"{problem.why} {problem.remedy}"
-        )
-    return "\n".join(lines)
+    return "\n".join([*lines, *_refusals(seen)])
+
+
+def _refusals(seen: Any) -> list[str]:
+    """What was left out or doubted: the first few, by line."""
+    shown = seen.problems[:20]
+    lines = [
+        f"  line {problem.line}, {problem.column}, {problem.value!r}: "
+        f"{problem.why.rstrip('.')}. {problem.remedy}"
+        for problem in shown
+    ]
+    if seen.problems_total > len(shown):
+        lines.append(f"  and {seen.problems_total - len(shown)} more; the Intake page shows them")
+    return lines
 
 
 def _asked(question: dict[str, Any]) -> str:
     choices = ", ".join(f"{choice['value']} ({choice['label']})" for choice in question["choices"])
-    return f"  to be answered, {question['field']}: {question['asks']} {choices}. {question['why']}"
+    ask = "to be answered" if question["blocking"] else "to be confirmed"
+    return f"  {ask}, {question['field']}: {question['asks']} {choices}. {question['why']}"
 
 
 def _why_not(seen: Any) -> str:
@@ -244,8 +322,8 @@ def _why_not(seen: Any) -> str:
         return f"{seen.file_name}: {seen.message}"
     asked = "\n".join(_asked(question) for question in seen.questions if question["blocking"])
     return (
-        f"{seen.file_name} needs an answer first:\n{asked}\nPrint the mapping with "
-        "--preview --json, set the answer in it, and give it with --mapping."
+        f"{seen.file_name} needs an answer first:\n{asked}\nGive each with --answer FIELD=VALUE, "
+        "or set it in what --preview --json prints and give that with --mapping."
     )
 
 
@@ -317,6 +395,10 @@ def _write(parts: Iterator[str], out: Path | None) -> None:
         for part in parts:
             sys.stdout.write(part)
         return
+    if out.is_dir():
+        raise InputError(f"{out}: is a folder; name the file to write in it")
+    if not out.absolute().parent.is_dir():
+        raise InputError(f"{out}: there is no folder {out.absolute().parent}")
     half = out.with_name(f".{out.name}.part")
     try:
         with half.open("w", encoding="utf-8", newline="") as file:

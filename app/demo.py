@@ -2,6 +2,8 @@
 
 import json
 import shutil
+import signal
+import sys
 import tempfile
 from datetime import date
 from pathlib import Path
@@ -27,18 +29,23 @@ TODAY = date(2026, 7, 14)
 
 def run_demo(port: int, serve: bool) -> None:
     """Fill the database, print the ways in, serve until stopped, and clean up."""
+    # else the folder would outlive a closed terminal
+    signal.signal(signal.SIGTERM, lambda number, _: sys.exit(128 + number))
+    signal.signal(signal.SIGHUP, lambda *_: signal.raise_signal(signal.SIGTERM))
     folder = Path(tempfile.mkdtemp(prefix="rillbook-demo-"))
     try:
         db = Database(f"sqlite:///{folder / 'demo.sqlite'}")
         settings = Settings(database=db.url, today=TODAY, demo=True)
         fill(db)
-        base = f"http://127.0.0.1:{port}"
-        print(f"Rillbook answers on {base} with the demo basin, as of {TODAY}. Ways in:")
-        for role in ("advisor", "grower", "admin"):
-            print(f"  as {role:8} {base}/enter/{role}")
-        print("Stop with Ctrl-C; nothing is kept.", flush=True)
         if serve:
+            base = f"http://127.0.0.1:{port}"
+            print(f"Rillbook answers on {base} with the demo basin, as of {TODAY}. Ways in:")
+            for role in ("advisor", "grower", "admin"):
+                print(f"  as {role:8} {base}/enter/{role}")
+            print("Stop with Ctrl-C; nothing is kept.", flush=True)
             uvicorn.run(create_app(settings, db), host="127.0.0.1", port=port, log_level="warning")
+        else:
+            print(f"The demo basin fills, as of {TODAY}; nothing is kept.")
         db.close()
     finally:
         shutil.rmtree(folder, ignore_errors=True)

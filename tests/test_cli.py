@@ -4,15 +4,19 @@ import csv
 import io
 import json
 import os
+import signal
 import socket
 import subprocess
 import sys
+import tempfile
 from datetime import timedelta
 from pathlib import Path
 from typing import Any
 
 import pytest
 
+import app.demo
+from app import handbook
 from app.wording import CAUTION
 from tests.workflows import basin
 
@@ -100,6 +104,9 @@ def test_an_export_to_a_file_is_whole(shell: Shell) -> None:
     shell.run("export", "station-days", "--station", "bench", "--out", str(out))
     assert len(out.read_text().splitlines()) == 125
     assert sorted(path.name for path in shell.folder.glob("*out*")) == ["out.csv"]
+    for place in (shell.folder, shell.folder / "none" / "out.csv"):
+        words = ("export", "station-days", "--station", "bench", "--out", str(place))
+        assert "folder" in shell.run(*words, code=1).stderr
 
 
 def test_the_schema_is_a_json_schema_of_a_book(shell: Shell) -> None:
@@ -108,20 +115,33 @@ def test_the_schema_is_a_json_schema_of_a_book(shell: Shell) -> None:
     assert {"stations", "fields", "seasons"} <= set(schema["properties"])
 
 
+def test_the_schema_names_what_the_handbook_has(shell: Shell) -> None:
+    parts = json.loads(shell.run("schema").stdout)["$defs"]
+    for part, name, known in (
+        ("SeasonPart", "crop", handbook.crops()),
+        ("LayerPart", "texture", handbook.soil_textures()),
+        ("SystemPart", "wetting", handbook.wettings()),
+    ):
+        choices = parts[part]["properties"][name]["oneOf"]
+        assert {choice["const"] for choice in choices if "const" in choice} == set(known)
+    assert {"type": "null"} in parts["LayerPart"]["properties"]["texture"]["oneOf"]
+
+
 @pytest.mark.parametrize(
     ("words", "says"),
     [
         (["load", "none.json"], "cannot be read"),
-        (["intake", "bench", "none.csv"], "none.csv"),
         (["export", "ledger", "--field", "none"], "no field 'none'"),
         (["advise", "--on", "14.7.2026"], "write a date as 2026-07-14"),
         (["export", "station-days", "--station", "none"], "no station 'none'"),
+        (["intake", "bench", "none.csv"], "none.csv: No such file or directory"),
     ],
 )
 def test_bad_input_is_one_line_and_exit_1(shell: Shell, words: list[str], says: str) -> None:
     done = shell.run(*words, code=1)
     assert says in done.stderr
-    assert len(done.stderr.strip().splitlines()) == 1
+    said = [line for line in done.stderr.splitlines() if "A new, empty database" not in line]
+    assert len(said) == 1
 
 
 def test_a_station_that_is_not_there_names_those_that_are(shell: Shell) -> None:
@@ -140,13 +160,33 @@ def test_what_a_file_leaves_open_is_asked_and_answered_by_a_mapping(shell: Shell
     refused = shell.run("intake", "bench", str(path), code=1).stderr
     assert "needs an answer" in refused
     assert "m/s" in refused
-    mapping = shell.json("intake", "bench", str(path), "--preview")["mapping"]
-    wind = next(column for column in mapping["columns"] if column["name"] == "wind")
+    preview = shell.run("intake", "bench", str(path), "--preview").stdout
+    assert "date: says when" in preview
+    assert "No row can be read" in preview
+    seen = shell.json("intake", "bench", str(path), "--preview")
+    wind = next(column for column in seen["mapping"]["columns"] if column["name"] == "wind")
     wind["unit"] = "m/s"
-    (folder / "mapping.json").write_text(json.dumps(mapping))
-    applied = shell.json("intake", "bench", str(path), "--mapping", str(folder / "mapping.json"))
+    for whole in (seen, seen["mapping"]):
+        (folder / "mapping.json").write_text(json.dumps(whole))
+        words = ("intake", "bench", str(path), "--mapping", str(folder / "mapping.json"))
+        assert shell.json(*words, "--preview")["rows_accepted"] == 10
+    applied = shell.json(*words)
     assert applied["rows"] == 10
     assert applied["first_day"] == "2026-05-01"
+
+
+def test_what_a_file_leaves_open_is_answered_by_a_word(shell: Shell) -> None:
+    folder = shell.folder
+    shell.run("load", str(folder / "book.json"))
+    path = folder / "open.csv"
+    path.write_text("date,tmax (degC),tmin (degC)\n1/5/2026,20,5\n2/5/2026,21,99\n3/5/2026,22,6\n")
+    said = ("intake", "bench", str(path), "--answer")
+    for wrong, says in (("dmy", "FIELD=VALUE"), ("time.order=x", "'dmy' or 'mdy'")):
+        assert says in shell.run(*said, wrong, code=1).stderr
+    taken = shell.run(*said, "time.order=dmy").stdout
+    assert "3 rows" in taken
+    assert "from 2026-05-01" in taken
+    assert "line 3, tmin (degC), '99': impossible" in taken
 
 
 def test_a_port_that_is_taken_is_told_before_anything_is_filled(shell: Shell) -> None:
@@ -169,3 +209,26 @@ def test_wrong_settings_say_how_to_mend_them(tmp_path: Path) -> None:
         )
         assert done.returncode == 1
         assert name in done.stderr
+
+
+def test_a_database_is_said_to_be_new_and_one_that_is_none_is_refused(shell: Shell) -> None:
+    assert "A new, empty database" in shell.run("advise").stderr
+    assert shell.run("advise").stderr == ""
+    (shell.folder / "book.sqlite").write_bytes(b"no database at all" * 100)
+    assert "cannot be opened: file is not a database" in shell.run("advise", code=1).stderr
+
+
+@pytest.mark.parametrize("number", [signal.SIGTERM, signal.SIGHUP])
+def test_a_demo_that_is_stopped_leaves_nothing(
+    number: signal.Signals, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(tempfile, "tempdir", str(tmp_path))
+    monkeypatch.setattr(app.demo, "fill", lambda _db: signal.raise_signal(number))
+    before = [signal.getsignal(stop) for stop in (signal.SIGTERM, signal.SIGHUP)]
+    try:
+        with pytest.raises(SystemExit):
+            app.demo.run_demo(8000, serve=False)
+    finally:
+        signal.signal(signal.SIGTERM, before[0])
+        signal.signal(signal.SIGHUP, before[1])
+    assert list(tmp_path.iterdir()) == []

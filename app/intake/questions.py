@@ -1,5 +1,7 @@
 """The questions a file may raise, and their answers."""
 
+from pydantic import ValidationError
+
 from app.intake.civil import zone
 from app.intake.errors import IntakeError
 from app.intake.model import Choice, ColumnMap, Mapping, Question
@@ -28,9 +30,10 @@ def answer(mapping: Mapping, answers: dict[str, str]) -> Mapping:
             raise IntakeError(f"There is no question {field!r} about this file.")
     try:
         answered = Mapping.model_validate(data)
-    except ValueError as error:
+    except ValidationError as error:
         given = ", ".join(f"{field} = {value}" for field, value in answers.items())
-        raise IntakeError(f"This answer cannot be used: {given}. {error}") from error
+        why = error.errors()[0]["msg"]
+        raise IntakeError(f"This answer cannot be used: {given}. {why}.") from error
     if answered.time_zone not in ("station", "UTC"):
         zone(answered.time_zone)
     return answered

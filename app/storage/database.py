@@ -16,7 +16,7 @@ from alembic.config import Config
 from alembic.runtime.migration import MigrationContext
 from alembic.script import ScriptDirectory
 from sqlalchemy import Connection, Engine, create_engine, event, text
-from sqlalchemy.exc import OperationalError
+from sqlalchemy.exc import DBAPIError
 from sqlalchemy.orm import Session
 
 from app.errors import InputError
@@ -78,7 +78,7 @@ class Database:
         try:
             with self.engine.connect() as connection:
                 at = MigrationContext.configure(connection).get_current_heads()
-        except OperationalError as error:
+        except DBAPIError as error:
             raise DatabaseError(
                 f"the database {self.engine.url!r} cannot be opened: {error.orig}"
             ) from None
