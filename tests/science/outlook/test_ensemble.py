@@ -1,5 +1,6 @@
 """Ranges of many blocks at once: the same bits as one by one. Source: our own rule (regression)."""
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -9,6 +10,7 @@ from app.science.ledger import block_ledgers, ensemble_depletion, ensemble_deple
 from app.science.outlook import ensemble
 from app.science.outlook.ensemble import _percentiles
 from tests.science.random_blocks import random_blocks
+from tests.science.soil.fields import field, weather
 
 MEMBERS = 60
 
@@ -77,3 +79,15 @@ def test_percentiles_are_numpys(count: int) -> None:
     values = np.random.default_rng(count).normal(size=(4, 3, count))
     expected = np.percentile(values, [10.0, 90.0], axis=-1)
     np.testing.assert_allclose(_percentiles(values.copy()), expected, rtol=1e-12)
+
+
+def test_the_subsoil_is_as_uncertain_as_the_root_zone() -> None:
+    """TAW's 10 % (working value) goes for the soil that roots have yet to enter: what they take
+    over of a half dry subsoil varies with it, known evenly or by layer."""
+    plan = field(40, perennial=False, subsoil=0.5, coefficients="single")
+    layered = replace(plan, subsoil_layer_depletion=(0.5,))
+    for one in (plan, layered):
+        taken = float(block_ledgers([one], [weather(40, eto=0.0)])[0].depletion_mm[-1])
+        low, high = ensemble_depletion(one, weather(40, eto=0.0), seed=9, members=4000)
+        assert high[-1] - low[-1] == pytest.approx(2.563 * 0.10 * taken, rel=0.06)
+        assert high[-1] > taken > low[-1]
