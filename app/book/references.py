@@ -34,8 +34,10 @@ def reference_problems(book: Book, known: Known) -> list[str]:
 
     def leads(place: str, kind: str, key: str, there: Iterable[str]) -> None:
         if key not in (names := set(there)):
-            near = get_close_matches(key, names, n=3)
-            hint = f"; near: {', '.join(near)}" if near else ""
+            close = get_close_matches(key, names, n=3)
+            within = sorted(name for name in names if key in name and name not in close)
+            near = ", ".join([*close, *within][:5])
+            hint = f"; near: {near}" if near else ""
             lines.append(f"{place}: no {kind} {key!r}{hint}")
 
     stations = known.stations | {part.key for part in book.stations}

@@ -16,7 +16,14 @@ from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_valida
 
 from app.errors import InputError
 
-Key = Annotated[str, Field(pattern=r"^[a-z0-9]+(-[a-z0-9]+)*$", max_length=60)]
+Key = Annotated[
+    str,
+    Field(
+        pattern=r"^[a-z0-9]+(-[a-z0-9]+)*$",
+        max_length=60,
+        description="small letters and digits, parted by hyphens",
+    ),
+]
 Name = Annotated[str, Field(min_length=1, max_length=80)]
 Fraction = Annotated[float, Field(ge=0, le=1)]
 Share = Annotated[float, Field(gt=0, le=1)]
@@ -41,9 +48,14 @@ class StationPart(Part):
     latitude_deg: Annotated[float, Field(ge=-90, le=90)]
     longitude_deg: Annotated[float, Field(ge=-180, le=180)]
     elevation_m: Annotated[float, Field(ge=-430, le=6000)]
-    utc_offset_h: Annotated[float, Field(ge=-12, le=14, description="fixed standard offset")]
+    utc_offset_h: Annotated[
+        float,
+        Field(ge=-12, le=14, description="standard time all year, such as -7"),
+    ]
     time_zone: str | None = Field(None, description="IANA zone of a logger on civil time")
-    wind_height_m: Annotated[float, Field(gt=0.2, le=100)] = 2.0
+    wind_height_m: Annotated[float, Field(gt=0.2, le=100)] = Field(
+        2.0, description="height of the anemometer"
+    )
     reference_surface: bool = Field(False, description="clipped, watered grass under the sensors")
     surface: Surface | None = Field(
         None, description="what lies under the radiometers; the albedo is held against it"
@@ -51,8 +63,11 @@ class StationPart(Part):
     teacher: Key | None = Field(
         None, description="a station whose measured days teach this one's model of net radiation"
     )
-    arid: bool = False
-    coastal: bool = False
+    arid: bool = Field(
+        False,
+        description="dry surroundings: an unmeasured dew point is 2 degC below Tmin",
+    )
+    coastal: bool = Field(False, description="solar from temperature range as near a large water")
 
     @model_validator(mode="after")
     def _zone_is_known(self) -> Self:
@@ -99,8 +114,12 @@ class SoilPart(Part):
         None, description="readily evaporable water; of the top layer's texture when not given"
     )
     tew_mm: Annotated[float, Field(gt=0, le=60)] | None = None
-    curve_number: Annotated[float, Field(ge=30, le=100)] | None = None
-    drainage_days: Annotated[int, Field(ge=0, le=10)] = 0
+    curve_number: Annotated[float, Field(ge=30, le=100)] | None = Field(
+        None, description="for runoff; no runoff is reckoned when not given"
+    )
+    drainage_days: Annotated[int, Field(ge=0, le=10)] = Field(
+        0, description="0: water above field capacity drains the same day; N: over N + 1 days"
+    )
 
     @model_validator(mode="after")
     def _deeper_and_deeper(self) -> Self:
@@ -116,17 +135,31 @@ class SystemPart(Part):
     key: Key
     name: Name
     kind: Name = Field(description="plain words, such as 'centre pivot'")
-    efficiency: Annotated[float, Field(gt=0.2, le=1)]
-    rate_mm_h: Annotated[float, Field(gt=0, le=200)]
+    efficiency: Annotated[float, Field(gt=0.2, le=1)] = Field(
+        description="net over gross, a fraction such as 0.85"
+    )
+    rate_mm_h: Annotated[float, Field(gt=0, le=200)] = Field(
+        description="gross depth an hour over the whole field while it runs"
+    )
     wetting: str = Field("sprinkler", description="method_id of the handbook's wetted fractions")
-    wetted_fraction: Share | None = None
-    under_canopy: bool = False
-    root_wetted_fraction: Share = 1.0
-    least_mm: Depth = 0
-    most_mm: Annotated[float, Field(gt=0, le=500)] = 150
-    interval_days: Annotated[int, Field(ge=1, le=60)] = 1
-    cover_days: Annotated[int, Field(ge=1, le=30)] = 1
-    hours_per_day: Annotated[float, Field(gt=0, le=24)] = 24
+    wetted_fraction: Share | None = Field(
+        None, description="of the surface, by an application; of `wetting` when not given"
+    )
+    under_canopy: bool = Field(False, description="drip or trickle that lies in the crop's shade")
+    root_wetted_fraction: Share = Field(1.0, description="of the root zone that is ever wetted")
+    least_mm: Depth = Field(0, description="least gross depth of one application")
+    most_mm: Annotated[float, Field(gt=0, le=500)] = Field(
+        150, description="most gross depth of one application"
+    )
+    interval_days: Annotated[int, Field(ge=1, le=60)] = Field(
+        1, description="least days from one application to the next"
+    )
+    cover_days: Annotated[int, Field(ge=1, le=30)] = Field(
+        1, description="days it takes to cover the field once"
+    )
+    hours_per_day: Annotated[float, Field(gt=0, le=24)] = Field(
+        24, description="most hours it can run in a day"
+    )
 
     @model_validator(mode="after")
     def _least_below_most(self) -> Self:
@@ -211,16 +244,26 @@ class SeasonPart(Part):
     height_m: Annotated[float, Field(gt=0, le=30)] | None = None
     root_depth_min_m: Annotated[float, Field(gt=0, le=5)] | None = None
     root_depth_max_m: Annotated[float, Field(gt=0, le=5)] | None = None
-    depletion_fraction: Annotated[float, Field(ge=0.1, le=0.8)] | None = None
-    mad: Annotated[float, Field(gt=0, le=0.95)] | None = None
-    climate_adjustment: Literal["trailing", "stage_mean", "day", "none"] = "trailing"
-    ledger_start: date | None = None
-    initial_depletion_mm: Depth | None = None
-    initial_depletion_fraction: Fraction | None = None
-    initial_subsoil_depletion_fraction: Fraction = 0
+    depletion_fraction: Annotated[float, Field(ge=0.1, le=0.8)] | None = Field(
+        None, description="p of RAW = p TAW, at 5 mm of ETc a day"
+    )
+    mad: Annotated[float, Field(gt=0, le=0.95)] | None = Field(
+        None, description="share of TAW the limit stands at; RAW when not given"
+    )
+    climate_adjustment: Literal["trailing", "stage_mean", "day", "none"] = Field(
+        "trailing", description="wind and humidity that adjust Kc: mean of 30 days, stage, the day"
+    )
+    ledger_start: date | None = Field(None, description="a later first day; planting if not given")
+    initial_depletion_mm: Depth | None = Field(
+        None, description="root zone at the start; this or the fraction, else field capacity"
+    )
+    initial_depletion_fraction: Fraction | None = Field(None, description="the same, of TAW")
+    initial_subsoil_depletion_fraction: Fraction = Field(
+        0, description="of the soil that roots have yet to reach; 0 is field capacity"
+    )
     initial_evaporation_depletion_mm: Depth = 0
-    refill_to_mm: Depth = 0
-    rain_room_mm: Depth = 0
+    refill_to_mm: Depth = Field(0, description="depletion an application is to leave")
+    rain_room_mm: Depth = Field(0, description="room an application is to leave for rain")
     end: date | None = Field(
         None, description="harvest or frost; planting plus the stages if not given"
     )
@@ -271,7 +314,12 @@ class RainPart(Part):
 
 
 class Book(Part):
-    """A whole book."""
+    """A whole book: parts have a key, unique among their kind, and name each other by it.
+
+    Depths are mm, areas ha, heights and root depths m, water contents m3 a m3 of soil, fractions
+    0-1, dates as 2026-07-14. A season is known by its field and planting; what a later book leaves
+    out stays as it was.
+    """
 
     stations: list[StationPart] = []
     soils: list[SoilPart] = []
@@ -327,6 +375,17 @@ def _place(path: Path, raw: Any, item: Any) -> str:
             words.append(str(step))
     value = item.get("input")
     shown = "" if isinstance(value, (dict, list)) else f" (it is {value!r})"
-    return (
-        f"{path}, {', '.join(words) or 'top'}: {item['msg'].removeprefix('Value error, ')}{shown}"
-    )
+    why = PLAINER.get(item["type"], item["msg"].removeprefix("Value error, "))
+    return f"{path}, {', '.join(words) or 'top'}: {why}{shown}"
+
+
+PLAINER = {
+    "string_pattern_mismatch": "must be small letters and digits, parted by hyphens",
+    "extra_forbidden": "there is no such name here; `rillbook schema` lists them",
+    "missing": "is missing",
+    "model_type": "must be an object in braces, {}",
+    "list_type": "must be a list in brackets, []",
+    "date_parsing": "must be a date such as 2026-07-14",
+    "date_from_datetime_parsing": "must be a date such as 2026-07-14",
+}
+"""Kinds of validation errors whose own words speak of programs, not of books."""

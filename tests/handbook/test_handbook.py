@@ -17,9 +17,10 @@ from app.science.soil.runoff import AVERAGE, DRY, WET
 
 
 def test_every_table_loads_with_a_source_in_every_row() -> None:
-    """Row counts of FAO-56 Tables 11, 12, 17, 19 and 20 and the NEH tables as carried over."""
-    assert len(handbook.crops()) == 119
-    assert sum(len(handbook.stage_lengths(c.stage_key)) > 0 for c in _staged()) == 102
+    """At least the rows of FAO-56 Tables 11, 12, 17, 19 and 20 and the NEH tables as carried over;
+    a crop may be added."""
+    assert len(handbook.crops()) >= 119
+    assert sum(len(handbook.stage_lengths(c.stage_key)) > 0 for c in _staged()) >= 102
     assert len(handbook.soil_textures()) == 12
     assert len(handbook.wettings()) == 8
     assert len(handbook.efficiencies()) == 21
@@ -85,7 +86,7 @@ def test_every_crop_makes_a_season_where_its_figures_are_published() -> None:
                 perennial=crop.perennial,
             )
             made += season.last_day > season.planting
-    assert made == 119 + 116
+    assert made >= 119 + 116
 
 
 def test_every_crop_is_usable_by_name_and_says_what_is_not_printed() -> None:

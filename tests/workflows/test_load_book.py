@@ -68,6 +68,7 @@ def test_every_name_that_leads_nowhere_is_told_at_once(db: Database) -> None:
     raw = copy.deepcopy(basin.BOOK)
     raw["fields"][0]["station"] = "bemch"
     raw["seasons"][0]["crop"] = "maze_grain"
+    raw["seasons"][1]["crop"] = "alfalfa"
     raw["soils"][0]["layers"][0]["texture"] = "loom"
     raw["fields"][1]["blocks"][0]["area_ha"] = 9
     with pytest.raises(BookError) as caught:
@@ -75,6 +76,7 @@ def test_every_name_that_leads_nowhere_is_told_at_once(db: Database) -> None:
     text = str(caught.value)
     assert "no station 'bemch'; near: bench" in text
     assert "no crop in the handbook 'maze_grain'; near: maize_grain" in text
+    assert "alfalfa_hay_averaged, alfalfa_hay_cycles" in text
     assert "no texture in the handbook 'loom'; near: loam" in text
     assert "their areas add to 24 ha, the field has 20 ha" in text
     with db.read() as session:
@@ -101,7 +103,11 @@ def test_what_the_handbook_leaves_blank_must_be_given(db: Database) -> None:
             "stations 1 (bench), latitude_deg",
         ),
         (lambda raw: raw["fields"][0].update(area_ha="wide"), "fields 1 (long-piece), area_ha"),
-        (lambda raw: raw.update(stattions=[]), "stattions"),
+        (lambda raw: raw.update(stattions=[]), "stattions: there is no such name here"),
+        (lambda raw: raw["farms"][0].update(key="Mill Farm"), "small letters and digits, parted"),
+        (lambda raw: raw.update(fields={}), "fields: must be a list in brackets"),
+        (lambda raw: raw["seasons"][0].update(planting="2026-4-20"), "a date such as 2026-07-14"),
+        (lambda raw: raw["fields"][0].pop("farm"), "fields 1 (long-piece), farm: is missing"),
         (lambda raw: raw["irrigations"][0].update(hours=2), "exactly one of gross_mm"),
         (lambda raw: raw["soils"][1]["layers"][0].update(wilting_point=0.4), "must be above"),
         (lambda raw: raw["seasons"][0].update(end="2026-01-01"), "is not after planting"),
