@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from app.science.crop.bare_soil import season_of_wetting, wettings
+from app.science.crop.bare_soil import kc_ini_between, season_of_wetting, wettings
 from app.science.ledger import block_ledgers
 from app.science.soil.carry_over import Stores, carried_over
 from app.science.soil.profile import Layer, Profile
@@ -23,6 +23,12 @@ def test_wet_days_next_to_each_other_are_one_wetting() -> None:
     assert count == 3
     assert depth == pytest.approx(43.0 / 3.0)
     assert wettings(np.zeros(3), np.zeros(3), np.ones(3)) == (0, 0.0)
+
+
+def test_a_wetting_beyond_40_mm_is_a_heavy_one() -> None:
+    """FAO-56 eq 59: light up to 10 mm, heavy from 40 mm on."""
+    depth = [5.0, 10.0, 25.0, 40.0, 90.0]
+    np.testing.assert_allclose(kc_ini_between(depth, 0.4, 1.0), [0.4, 0.4, 0.7, 1.0, 1.0])
 
 
 def test_kc_ini_by_wetting_is_for_single_coefficients() -> None:

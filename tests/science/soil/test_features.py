@@ -49,6 +49,7 @@ def test_rise_falls_with_distance_and_holds_its_bounds() -> None:
     table = np.array([0.9, 1.9, 2.1, np.nan])
     np.testing.assert_array_equal(rise_to_roots(SILT, table, 1.0, 5.0), [5.0, 5.0, 0.0, 0.0])
     assert np.isnan(rise_to_roots(SILT, 1.0, np.nan, 5.0))
+    assert float(rise_to_roots(SILT, 9.0, 1.0, 0.0)) == 0.0
     slow = RisingSoil(conductivity_mm_d=5.0, air_entry_m=0.3, pore_index=0.2, reach_m=3.0)
     far = float(rise_to_roots(slow, 3.5, 1.0, 5.0))
     assert far == float(steady_rise(2.5, 5.0, 0.3, 2.6)) < 5.0

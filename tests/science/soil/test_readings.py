@@ -94,6 +94,9 @@ def test_depletion_by_layer_opens_a_subsoil() -> None:
     np.testing.assert_allclose(depletion_by_layer([at(0.2, 0.24)], SOIL), (0.4, 0.4))
     mixed = [at(0.1, 0.30), at(0.3, 0.15), at(0.9, 0.40)]
     np.testing.assert_allclose(depletion_by_layer(mixed, SOIL), (0.5, 0.2 / 1.6))
+    thin = [at(0.02, 0.15), at(0.08, 0.30)]  # 0.05 m at the wilting point, the rest full
+    np.testing.assert_allclose(depletion_by_layer(thin, SOIL), (0.05 / 0.4, 0.0), atol=1e-12)
+    assert measured_depletion(thin, SOIL, 0.5).depletion_mm == pytest.approx(150.0 * 0.05)
     with pytest.raises(ValueError, match="at least one depth"):
         depletion_by_layer([], SOIL)
 
