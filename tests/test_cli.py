@@ -148,6 +148,12 @@ def test_a_station_that_is_not_there_names_those_that_are(shell: Shell) -> None:
     shell.run("load", str(shell.folder / "book.json"))
     done = shell.run("intake", "bemch", str(shell.folder / "bench.csv"), code=1)
     assert "bench, meadow" in done.stderr
+    for words, says in (
+        (("station-days", "--station", "bemch"), "no station 'bemch'; near: bench"),
+        (("ledger", "--field", "piece"), "no field 'piece'; near: long-piece"),
+        (("ledger", "--field", "two-halves", "--block", "x"), "its blocks are: upper, lower"),
+    ):
+        assert says in shell.run("export", *words, code=1).stderr
 
 
 def test_what_a_file_leaves_open_is_asked_and_answered_by_a_mapping(shell: Shell) -> None:

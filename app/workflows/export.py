@@ -7,14 +7,15 @@ import csv
 import io
 from collections.abc import Iterable, Iterator
 from datetime import date
+from difflib import get_close_matches
 from typing import Any
 
 from sqlalchemy import select
 
 from app.errors import InputError
-from app.storage import exports
+from app.storage import book, exports
 from app.storage.database import Database
-from app.storage.tables import Station
+from app.storage.tables import WHOLE, Field, Station
 from app.wording import CAUTION
 
 FORMULA = ("=", "+", "-", "@", "\t", "\r")
@@ -28,11 +29,16 @@ def ledger_csv(db: Database, field_key: str, block_key: str | None = None) -> It
     """Every ledger column of a field's blocks, or of one; raises ExportError."""
     with db.read() as session:
         blocks = exports.blocks_of(session, field_key)
+        fields = [] if blocks else sorted(book.keys_of(session, Field))
     chosen = [number for number, key in blocks if block_key in (None, key)]
     lead = 0 if len(blocks) > 1 else 1  # a field that is one whole does not speak of blocks
+    if not blocks:
+        raise ExportError(f"There is no field {field_key!r}{_near(field_key, fields)}.")
     if not chosen:
-        part = f" with a block {block_key!r}" if block_key else ""
-        raise ExportError(f"There is no field {field_key!r}{part}.")
+        there = ", ".join(key for _, key in blocks if key != WHOLE) or "none, it is one whole"
+        raise ExportError(
+            f"There is no field {field_key!r} with a block {block_key!r}; its blocks are: {there}."
+        )
 
     def rows() -> Iterator[str]:
         with db.read() as session:
@@ -49,7 +55,8 @@ def station_days_csv(db: Database, station_key: str) -> Iterator[str]:
     """Every column of a station's days; raises ExportError."""
     with db.read() as session:
         if session.scalar(select(Station.id).where(Station.key == station_key)) is None:
-            raise ExportError(f"There is no station {station_key!r}.")
+            near = _near(station_key, sorted(book.keys_of(session, Station)))
+            raise ExportError(f"There is no station {station_key!r}{near}.")
 
     def rows() -> Iterator[str]:
         with db.read() as session:
@@ -70,6 +77,15 @@ def advice_csv(db: Database, on: date) -> Iterator[str]:
             ("farm", "field", "block", *exports.ADVICE_COLUMNS),
             exports.advice_rows(session, on),
         )
+
+
+def _near(key: str, there: list[str]) -> str:
+    """A word on the keys there are: near ones, else the first few."""
+    near = get_close_matches(key, there, n=5) or [name for name in there if key in name][:5]
+    if near:
+        return f"; near: {', '.join(near)}"
+    more = ", ..." if len(there) > 12 else ""
+    return f"; there are: {', '.join(there[:12]) or 'none yet'}{more}"
 
 
 def _csv(title: str, names: Iterable[str], rows: Iterable[tuple[Any, ...]]) -> Iterator[str]:
