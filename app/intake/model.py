@@ -42,14 +42,17 @@ class Clock:
     time_zone: str | None = None
 
 
+MOST_COLUMNS = 20_000
+
+
 class _Strict(BaseModel):
-    model_config = ConfigDict(extra="forbid", frozen=True)
+    model_config = ConfigDict(extra="forbid", frozen=True, allow_inf_nan=False)
 
 
 class TimeColumn(_Strict):
     """One column that says when."""
 
-    position: int = Field(ge=0, description="0-based place in the row")
+    position: int = Field(ge=0, lt=MOST_COLUMNS, description="0-based place in the row")
     role: TimeRole
 
 
@@ -63,7 +66,7 @@ class TimeLayout(_Strict):
 class ColumnMap(_Strict):
     """What one column of the file means. `quantity` None: leave out."""
 
-    position: int = Field(ge=0, description="0-based place in the row")
+    position: int = Field(ge=0, lt=MOST_COLUMNS, description="0-based place in the row")
     name: str
     quantity: str | None = Field(default=None, description="canonical name, see science/quantities")
     unit: str | None = Field(default=None, description="unit in the file, a name of app.units")
@@ -74,7 +77,10 @@ class ColumnMap(_Strict):
         default=False, description="longwave to which sigma T^4 of its body must be added"
     )
     body_position: int | None = Field(
-        default=None, ge=0, description="the column of that body temperature, None while undecided"
+        default=None,
+        ge=0,
+        lt=MOST_COLUMNS,
+        description="the column of that body temperature, None while undecided",
     )
 
 

@@ -226,7 +226,8 @@ def sample_times(table: Table, layout: TimeLayout, most: int = 2000) -> Instants
     rows = table.rows[:most]
     columns = {}
     for column in layout.columns:
-        cells = [row[column.position] for row in rows]
+        place = column.position  # of a mapping written by hand it may lie beyond the row
+        cells = [row[place] if place < len(row) else "" for row in rows]
         if column.role in _TEXT_ROLES:
             columns[column.position] = np.array([cell.encode() for cell in cells], dtype="S")
         else:

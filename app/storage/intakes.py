@@ -6,6 +6,7 @@ import zlib
 from collections.abc import Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from datetime import date
+from itertools import islice
 from typing import Any, BinaryIO, cast
 
 from sqlalchemy import delete, func, insert, select
@@ -64,7 +65,8 @@ def open_file(session: Session, intake: int) -> Iterator[BinaryIO]:
 def replace_problems(session: Session, intake: int, problems: Iterable[dict[str, Any]]) -> None:
     """Keep the problems of an intake in place of those of an earlier preview."""
     session.execute(delete(IntakeProblem).where(IntakeProblem.intake_id == intake))
-    rows = [{"intake_id": intake, **problem} for problem in problems][:PROBLEMS_KEPT]
+    kept = islice(problems, PROBLEMS_KEPT)
+    rows = [{"intake_id": intake, **storable(problem)} for problem in kept]
     if rows:
         session.execute(insert(IntakeProblem), rows)
 
@@ -83,6 +85,15 @@ def contribute(session: Session, intake: Intake, packs: Iterable[tuple[date, int
     ]
     if rows:
         session.execute(insert(Contribution), rows)
+
+
+def storable(value: Any) -> Any:
+    """A JSON value, or a text, with what PostgreSQL takes in no text: NUL shown as its symbol."""
+    if isinstance(value, str):
+        return value.replace("\0", "\u2400").encode("utf-8", "replace").decode()
+    if isinstance(value, dict):
+        return {name: storable(item) for name, item in value.items()}
+    return [storable(item) for item in value] if isinstance(value, list | tuple) else value
 
 
 def next_order(session: Session) -> int:

@@ -61,14 +61,14 @@ def read_series(
     return found
 
 
-def last_days(session: Session) -> dict[int, date]:
-    """The last day each station has sent rows for."""
+def last_days(session: Session, on: date) -> dict[int, date]:
+    """The last day up to `on` each station has sent rows for; a logger's clock may run ahead."""
     return {
         station: day
         for station, day in session.execute(
             select(Contribution.station_id, func.max(Contribution.day))
             .join(Intake, Intake.id == Contribution.intake_id)
-            .where(Intake.state == "applied")
+            .where(Intake.state == "applied", Contribution.day <= on)
             .group_by(Contribution.station_id)
         )
     }

@@ -35,8 +35,8 @@ AsDay = Annotated[date, Path(ge=date(1900, 1, 1), le=date(2200, 1, 1))]
 
 
 def without_nul(text: str) -> str:
-    """A text without the one character that no database takes."""
-    return text.replace("\0", "")
+    """A text without the characters that no database takes: NUL, halves of a surrogate pair."""
+    return text.replace("\0", "").encode("utf-8", "ignore").decode()
 
 
 Clean = Annotated[str, AfterValidator(without_nul)]

@@ -1,6 +1,7 @@
 """Refusals and errors: a page in plain words, or problem details (RFC 9457) for the API."""
 
 from collections.abc import Sequence
+from math import isfinite
 from typing import Any
 
 from fastapi import FastAPI, Request
@@ -30,6 +31,7 @@ LOST_NOTHING = "Nothing was stored or changed."
 REFUSED = {
     "host": "This server answers only as 127.0.0.1 or localhost, on its own machine; it was "
     "asked for as {value!r}.",
+    "size": "What was sent is larger than {value}. Send a long record in parts, a year each.",
     "origin": "The form was sent from {value}, not from a page of this program. "
     "Open the page here and send it again.",
 }
@@ -92,9 +94,9 @@ def _validation(request: Request, error: Exception) -> Response:
     assert isinstance(error, RequestValidationError)
     found = [
         {
-            "field": ".".join(str(step) for step in item["loc"][1:]) or str(item["loc"][0]),
+            "field": whole_text(".".join(map(str, item["loc"][1:])) or str(item["loc"][0])),
             "value": _shown(item.get("input")),
-            "remedy": str(item["msg"]).removeprefix("Value error, "),
+            "remedy": whole_text(str(item["msg"]).removeprefix("Value error, ")),
         }
         for item in error.errors()
     ]
@@ -135,9 +137,17 @@ def _unforeseen(request: Request, error: Exception) -> Response:
 
 
 def _shown(value: Any) -> Any:
-    if isinstance(value, str):
-        return value[:100]
-    return value if value is None or isinstance(value, (int, float, bool)) else str(value)[:100]
+    """A refused value as an answer can carry it: short, and neither NaN nor half a character."""
+    if value is None or isinstance(value, bool) or (isinstance(value, float) and isfinite(value)):
+        return value
+    if isinstance(value, int) and abs(value) < 2**63:
+        return value
+    return whole_text(value if isinstance(value, str) else repr(value)[:200])[:100]
+
+
+def whole_text(text: str) -> str:
+    """A text with each half of a surrogate pair, which no encoding takes, as a question mark."""
+    return text.encode("utf-8", "replace").decode()
 
 
 def install(app: FastAPI) -> None:

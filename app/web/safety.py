@@ -1,15 +1,20 @@
-"""What stands before every request and around every answer: host, origin, safe headers."""
+"""What stands before every request and around every answer: host, origin, size, safe headers."""
 
 from urllib.parse import urlsplit
 
 from starlette.datastructures import Headers, MutableHeaders
+from starlette.exceptions import HTTPException
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from app.web.access import SAFE
 from app.web.headers import CAUTION_HEADER, HEADERS
-from app.web.problems import refusal
+from app.web.problems import REFUSED, refusal
 
 HOSTS = frozenset({"127.0.0.1", "localhost", "[::1]"})
+MEGABYTE = 1_000_000
+LARGEST_FILE = 300 * MEGABYTE
+"""A year of one-minute rows of thirty quantities takes about 100 MB."""
+LARGEST_FORM = 8 * MEGABYTE
 
 
 def host_name(host: str) -> str:
@@ -27,11 +32,45 @@ def is_foreign(headers: Headers) -> bool:
     if site is not None:
         return site not in ("same-origin", "none")
     origin = headers.get("origin")
-    return origin is not None and urlsplit(origin).netloc != headers.get("host")
+    try:
+        return origin is not None and urlsplit(origin).netloc != headers.get("host")
+    except ValueError:
+        return True
+
+
+def most_bytes(scope: Scope) -> int:
+    """The largest body a request may have: a station's file, or a form."""
+    return LARGEST_FILE if scope["path"] in ("/intake", "/api/v1/intakes") else LARGEST_FORM
+
+
+def counted(receive: Receive, most: int) -> Receive:
+    """The same `receive`, which refuses to go on when more than `most` bytes have come."""
+    had = 0
+
+    async def receive_counted() -> Message:
+        nonlocal had
+        message = await receive()
+        had += len(message.get("body", b""))
+        if had > most:
+            raise HTTPException(413, REFUSED["size"].format(value=in_words(most)))
+        return message
+
+    return receive_counted
+
+
+def in_words(size: int) -> str:
+    """A size in megabytes."""
+    return f"{size // MEGABYTE} MB"
+
+
+def announced(headers: Headers) -> int:
+    """The length of the body as the request announces it; 0 when it does not."""
+    length = headers.get("content-length", "")
+    return int(length) if length.isascii() and length.isdecimal() and len(length) < 20 else 0
 
 
 class Safety:
-    """Refuses a foreign host and another site's POST; adds the safe headers to every answer."""
+    """Refuses a foreign host, another site's POST and too large a body; adds the safe headers."""
 
     def __init__(self, app: ASGIApp) -> None:
         self.app = app
@@ -59,5 +98,8 @@ class Safety:
         elif scope["method"] not in SAFE and is_foreign(headers):
             answer = refusal(scope, 403, "origin", headers.get("origin") or "another site")
             await answer(scope, receive, send_safely)
+        elif announced(headers) > (most := most_bytes(scope)):
+            answer = refusal(scope, 413, "size", in_words(most))
+            await answer(scope, receive, send_safely)
         else:
-            await self.app(scope, receive, send_safely)
+            await self.app(scope, counted(receive, most), send_safely)

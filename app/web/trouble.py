@@ -32,6 +32,8 @@ def silence(last: date | None, today: date) -> str:
     age = age_days(last, today)
     if last is None or age is None:
         return "Has sent nothing yet."
+    if age < 0:
+        return f"Holds readings of {wording.full_day(last)}, which is to come; see to its clock."
     if age <= 1:
         return ""
     if age == STALE_DAYS:

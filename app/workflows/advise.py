@@ -74,7 +74,7 @@ def advise(session: Session, on: date, computed: Sequence[Computed]) -> int:
 
 def _ages(session: Session, on: date) -> dict[int, list[tuple[str, int, date | None]]]:
     """For each field, its stations of this morning: key, days since the last data, last day."""
-    last = last_days(session)
+    last = last_days(session, on)
     newest: dict[tuple[int, str], tuple[int, str]] = {}
     for field, variable, number, key in session.execute(
         select(Source.field_id, Source.variable, Source.station_id, Station.key)

@@ -5,6 +5,7 @@ once-only token, so that sending it twice changes nothing.
 """
 
 import math
+import re
 from datetime import UTC, date, datetime, timedelta
 
 from sqlalchemy import select
@@ -21,6 +22,7 @@ from app.workflows.bring_up_to_date import up_to_date
 UNITS = {"hours": 1000.0, "gross_mm": 1000.0, "net_mm": 1000.0, "volume_m3": 1e8, "rain_mm": 1000.0}
 """The greatest amount taken in each unit; more is a slip of the pen."""
 PURPOSES = {"crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"}
+TOKEN = re.compile(r"[A-Za-z0-9._-]{1,200}")
 CONFIRMATIONS = {"advised", "presumed", "reported", "metered", "measured"}
 
 
@@ -135,7 +137,8 @@ def _log(
         if not blocks:
             part = f" with a block {block_key!r}" if block_key else ""
             raise EventError(f"there is no field {field_key!r}{part}")
-        already = session.scalar(select(Event.id).where(Event.origin == f"{token}/{blocks[0].id}"))
+        origin = _origin(token, blocks[0].id)
+        already = session.scalar(select(Event.id).where(Event.origin == origin))
         if already is not None:
             return already
         area = sum(block.area_ha for block in blocks)
@@ -153,7 +156,7 @@ def _log(
                 note=note,
                 who=who,
                 entered=datetime.now(UTC),
-                origin=f"{token}/{block.id}",
+                origin=_origin(token, block.id),
             )
             session.add(event)
             session.flush()
@@ -180,7 +183,7 @@ def _supersede(
             old = session.get(Event, event_id)
             if old is None or old.kind == VOID:
                 raise EventError(f"there is no event {event_id}")
-            origin = f"{token}/{old.block_id}"
+            origin = _origin(token, old.block_id)
             already = session.scalar(select(Event.id).where(Event.origin == origin))
             if already is not None:
                 return already
@@ -208,6 +211,15 @@ def _supersede(
             return event.id
     except IntegrityError:
         raise EventError(_CHANGED) from None
+
+
+def _origin(token: str, block: int) -> str:
+    """What marks an entry as come from this form; a book's own marks cannot be imitated."""
+    if not TOKEN.fullmatch(token):
+        raise EventError(
+            f"token is {token[:40]!r}; it must be 1 to 200 letters, figures and any of . - _"
+        )
+    return f"{token}/{block}"
 
 
 _CHANGED = "this entry was changed by somebody else meanwhile; look at it again"

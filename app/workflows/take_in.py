@@ -310,7 +310,7 @@ def _look(
 
 def _keep(session: Session, intake: Intake, look: _Look) -> None:
     """Keep what a look at the file found in place of an earlier one."""
-    intake.mapping, intake.summary = look.mapping, look.summary
+    intake.mapping, intake.summary = map(intakes.storable, (look.mapping, look.summary))
     intake.rows, intake.first_day, intake.last_day = look.rows, look.first_day, look.last_day
     session.add(intake)
     session.flush()

@@ -86,6 +86,8 @@ def test_silence_is_told_by_its_length() -> None:
     ):
         assert said([], TODAY - timedelta(days=back)) == [text]
     assert said([], None) == ["Has sent nothing yet."]
+    (ahead,) = said([], TODAY + timedelta(days=400))
+    assert "to come" in ahead
 
 
 def test_a_fall_down_the_ladder_is_told_from_its_first_day() -> None:

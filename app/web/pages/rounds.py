@@ -16,7 +16,7 @@ from app.storage.database import Database
 from app.web import rounds_view as view
 from app.web.access import AsViewer, Viewer
 from app.web.managed import ORDER, one_a_field
-from app.web.needs import AsDatabase, AsToday, read_day, read_number
+from app.web.needs import AsDatabase, AsToday, read_day, read_number, without_nul
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.trouble import troubles
@@ -59,7 +59,7 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
     from app.workflows.log_event import EventError, log_irrigation
 
     sieve = view.Sieve(**{name: str(form.get(name, "")) for name in vars(view.Sieve())})
-    token = str(form.get("token", "")) or secrets.token_urlsafe(12)
+    token = without_nul(str(form.get("token", ""))) or secrets.token_urlsafe(12)
     filled = {
         name.removeprefix("h."): str(value)
         for name, value in form.multi_items()
