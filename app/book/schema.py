@@ -317,8 +317,8 @@ class Book(Part):
     """A whole book: parts have a key, unique among their kind, and name each other by it.
 
     Depths are mm, areas ha, heights and root depths m, water contents m3 a m3 of soil, fractions
-    0-1, dates as 2026-07-14. A season is known by its field and planting; what a later book leaves
-    out stays as it was.
+    0-1, dates as 2026-07-14. A season is known by its field and planting (a date put right by at
+    most 30 days moves it); what a later book leaves out stays as it was.
     """
 
     stations: list[StationPart] = []

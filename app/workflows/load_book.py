@@ -2,7 +2,7 @@
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from datetime import UTC, date, datetime
+from datetime import UTC, date, datetime, timedelta
 from functools import partial
 from typing import Any
 
@@ -37,6 +37,8 @@ from app.storage.tables import (
 from app.workflows import agronomy
 
 VARIABLES = ("energy", "temperature", "wind", "rain")
+MOVED = timedelta(days=30)
+"""A crop is not planted twice on a block within this time; its date has been corrected."""
 ORIGIN = "book:"
 """What the origin of an event begins with that a book brought."""
 
@@ -73,8 +75,9 @@ def load_book(session: Session, book: Book, who: str) -> Loaded:
         _field(session, part, keys, who, loaded)
     session.flush()
     blocks = _blocks(session)
+    plantings = {(season.field, season.planting) for season in book.seasons}
     for season in book.seasons:
-        _season(session, season, blocks, who, loaded)
+        _season(session, season, blocks, plantings, who, loaded)
     _events(session, book, blocks, who, loaded)
     return loaded
 
@@ -253,6 +256,7 @@ def _season(
     session: Session,
     part: SeasonPart,
     blocks: dict[str, dict[str, Block]],
+    plantings: set[tuple[str, date]],
     who: str,
     loaded: Loaded,
 ) -> None:
@@ -264,14 +268,30 @@ def _season(
         if row is not None and row.details == details:
             loaded.count("seasons", "same")
             continue
+        row = row or _moved(session, block, part, plantings)
         before = None if row is None else row.details
         row = row or Season(block_id=block.id, planting=part.planting)
-        row.crop, row.details = part.crop, details
+        since = min(part.planting, row.planting)
+        row.planting, row.crop, row.details = part.planting, part.crop, details
         session.add(row)
         key = f"{part.field}/{block.key}/{part.planting}"
         rows.note_change(session, who, "season", key, before, details)
-        rows.dirty_blocks(session, [block.id], part.ledger_start or part.planting)
+        rows.dirty_blocks(session, [block.id], since)
         loaded.count("seasons", "added" if before is None else "changed")
+
+
+def _moved(
+    session: Session, block: Block, part: SeasonPart, plantings: set[tuple[str, date]]
+) -> Season | None:
+    """The stored season whose planting date this part corrects: the same crop, at most `MOVED`
+    apart, and no longer in the book under its own date."""
+    near = session.scalars(
+        select(Season)
+        .where(Season.block_id == block.id, Season.crop == part.crop)
+        .where(Season.planting.between(part.planting - MOVED, part.planting + MOVED))
+        .order_by(Season.planting)
+    )
+    return next((row for row in near if (part.field, row.planting) not in plantings), None)
 
 
 def _events(

@@ -11,7 +11,8 @@ from sqlalchemy import func, select
 
 from app.book import Book, BookError, read_book
 from app.storage.database import Database
-from app.storage.tables import Block, BookChange, Event, Season, Source
+from app.storage.tables import Block, BookChange, Event, LedgerDay, Season, Source
+from app.workflows.bring_up_to_date import bring_up_to_date
 from app.workflows.load_book import load_book
 from app.workflows.log_event import void_event
 from tests.workflows import basin
@@ -47,6 +48,27 @@ def test_a_change_is_kept_with_before_and_after(db: Database) -> None:
         assert (note.before or {})["efficiency"] == 0.8
         assert (note.after or {})["efficiency"] == 0.7
         assert set(session.scalars(select(Block.dirty_from))) == {date(1900, 1, 1)}
+
+
+@pytest.mark.parametrize("day", ["2026-04-10", "2026-05-10"])
+def test_a_corrected_planting_date_moves_the_season(db: Database, day: str) -> None:
+    basin.fill(db)
+    raw = copy.deepcopy(basin.BOOK)
+    was = raw["seasons"][0]["planting"]
+    raw["seasons"][0]["planting"] = day
+    loaded = load(db, raw)
+    assert loaded.added == {}
+    assert loaded.changed == {"seasons": 1}
+    bring_up_to_date(db, basin.TODAY)
+    with db.read() as session:
+        season = session.scalars(select(Season).order_by(Season.id)).first()
+        assert season is not None
+        assert str(season.planting) == day != was
+        days = session.scalars(select(LedgerDay.day).where(LedgerDay.season_id == season.id)).all()
+        assert str(min(days)) == day
+        note = session.scalars(select(BookChange).order_by(BookChange.id.desc())).first()
+        assert note is not None
+        assert (note.before or {})["planting"] == was
 
 
 def test_a_changed_irrigation_supersedes_and_a_deleted_one_stays_deleted(db: Database) -> None:
