@@ -78,12 +78,12 @@ def station_rows(session: Session, station_key: str) -> Iterator[tuple[Any, ...]
 
 
 def advice_rows(session: Session, on: date) -> Iterator[tuple[Any, ...]]:
-    """Farm, field, block and the advice that stands for a morning, by farm and field."""
+    """Farm, field, its key, block and the advice that stands for a morning, by farm and field."""
     columns = [getattr(Advice, name) for name in ADVICE_COLUMNS]
     named = case((Block.key == WHOLE, ""), else_=Block.name)
     yield from _streamed(
         session,
-        select(Farm.name, Field.name, named, *columns)
+        select(Farm.name, Field.name, Field.key, named, *columns)
         .join(Block, Block.id == Advice.block_id)
         .join(Field, Field.id == Block.field_id)
         .join(Farm, Farm.id == Field.farm_id)

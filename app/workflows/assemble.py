@@ -31,7 +31,7 @@ from app.workflows import agronomy
 Floats = NDArray[np.float64]
 HORIZON = 14
 """Days ahead that advice looks at."""
-HISTORY = 60
+HISTORY = 120
 """Days before a season that the usual for the date may look back on."""
 USUAL_RUNG = 9
 TODAY = timedelta(days=1)

@@ -74,7 +74,7 @@ def advice_csv(db: Database, on: date) -> Iterator[str]:
     with db.read() as session:
         yield from _csv(
             f"Advice of {on}; mm, hours, m3",
-            ("farm", "field", "block", *exports.ADVICE_COLUMNS),
+            ("farm", "field", "field_key", "block", *exports.ADVICE_COLUMNS),
             exports.advice_rows(session, on),
         )
 

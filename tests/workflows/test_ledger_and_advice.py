@@ -9,6 +9,8 @@ from sqlalchemy import delete, select, update
 from app.book import Book
 from app.storage.database import Database
 from app.storage.tables import Advice, Block, Event, LedgerDay, Station, StationDay
+from app.workflows.advise import inputs_hash
+from app.workflows.assemble import assemble
 from app.workflows.bring_up_to_date import bring_up_to_date
 from app.workflows.load_book import load_book
 from app.workflows.log_event import (
@@ -194,3 +196,28 @@ def test_advice_keeps_to_the_system(db: Database) -> None:
             assert 6 <= advice.gross_mm <= 40
             assert advice.net_mm == pytest.approx(0.8 * advice.gross_mm)
             assert advice.hours == pytest.approx(advice.gross_mm / 6)
+
+
+def test_a_block_is_foretold_the_same_alone_and_in_company(db: Database) -> None:
+    """Which other blocks are recomputed with it, and from when, changes no bit of a block."""
+    basin.fill(db)
+    early, late = date(2026, 1, 1), basin.TODAY
+    through = basin.TODAY - timedelta(days=1)
+    with db.read() as session:
+        blocks = list(session.scalars(select(Block.id)))
+        together = assemble(session, dict.fromkeys(blocks, early), through)
+        for subject in together:
+            number = subject.block.block_id
+            alone = next(iter(assemble(session, {number: late}, through)))
+            assert alone.weather.eto.tolist() == subject.weather.eto.tolist()
+            assert inputs_hash(alone, []) == inputs_hash(subject, [])
+
+
+def test_going_back_a_day_and_forward_again_issues_no_second_number(db: Database) -> None:
+    basin.fill(db)
+    before = {block: row.number for block, row in basin.standing_advice(db).items()}
+    state = basin.derived(db)
+    bring_up_to_date(db, basin.TODAY - timedelta(days=1))
+    bring_up_to_date(db, basin.TODAY)
+    assert {block: row.number for block, row in basin.standing_advice(db).items()} == before
+    assert basin.derived(db) == state

@@ -6,7 +6,7 @@ from app.science import Bools, Floats
 
 # Days the usual ratio is taken over, and pairs of days below which no persistence is assumed
 # (working values).
-RATIO_DAYS, LEAST_PAIRS = 30, 10
+RATIO_DAYS, RECORD_DAYS, LEAST_PAIRS = 30, 60, 10
 
 
 def usual_ahead(eto_history: Floats, ra_history: Floats, ra_ahead: Floats) -> Floats:
@@ -14,8 +14,8 @@ def usual_ahead(eto_history: Floats, ra_history: Floats, ra_ahead: Floats) -> Fl
 
     eto_history (n,) [mm d-1] up to yesterday, NaN allowed; ra_history (n,) and ra_ahead (h,)
     extraterrestrial radiation [MJ m-2 d-1]. The last 30 days' mean ratio ETo/Ra carries on;
-    yesterday's departure from it fades with the record's lag-1 correlation. Returns (h,) [mm
-    d-1], NaN where the last 30 days hold nothing. Source: working values of the methods page.
+    yesterday's departure from it fades with the lag-1 correlation of the last 60. Returns (h,)
+    [mm d-1], NaN where the last 30 days hold nothing. Source: working values of the methods page.
     """
     ratio = _ratio(eto_history, ra_history)
     recent = ratio[-RATIO_DAYS:]
@@ -24,7 +24,7 @@ def usual_ahead(eto_history: Floats, ra_history: Floats, ra_ahead: Floats) -> Fl
         return np.full(ra_ahead.shape, np.nan)
     mean = float(known.mean())
     departure = float(ratio[-1]) - mean if not np.isnan(ratio[-1]) else 0.0
-    fading = departure * persistence(ratio) ** np.arange(1, ra_ahead.size + 1)
+    fading = departure * persistence(ratio[-RECORD_DAYS:]) ** np.arange(1, ra_ahead.size + 1)
     return np.asarray(np.maximum(mean + fading, 0.0) * ra_ahead)
 
 

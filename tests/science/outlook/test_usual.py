@@ -24,7 +24,11 @@ def test_yesterdays_departure_fades_with_the_records_own_persistence() -> None:
     ra = np.full(2000, 38.0)
     ahead = usual_ahead(ratio * ra, ra, np.full(5, 38.0)) / 38.0
     mean = ratio[-30:].mean()
-    np.testing.assert_allclose(ahead, mean + (ratio[-1] - mean) * rho ** np.arange(1, 6))
+    recent = persistence(ratio[-60:])
+    np.testing.assert_allclose(ahead, mean + (ratio[-1] - mean) * recent ** np.arange(1, 6))
+    # only the last 60 days speak: a longer record foretells the same
+    longer = usual_ahead(ratio[-60:] * ra[-60:], ra[-60:], np.full(5, 38.0)) / 38.0
+    np.testing.assert_array_equal(longer, ahead)
 
 
 def test_nothing_known_gives_nan_and_a_missing_yesterday_no_departure() -> None:
