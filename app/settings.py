@@ -46,4 +46,6 @@ def read_settings(environment: Mapping[str, str] = os.environ) -> Settings:
         raise SettingsError(
             f"RILLBOOK_TODAY is {stated!r}; it must be a date such as 2026-07-14, or not set"
         ) from None
+    if today is not None and not 1980 <= today.year <= 2200:
+        raise SettingsError(f"RILLBOOK_TODAY is {stated!r}; it must lie in the years 1980 to 2200")
     return Settings(database=database, today=today)

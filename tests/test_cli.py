@@ -205,7 +205,11 @@ def test_a_port_that_is_taken_is_told_before_anything_is_filled(shell: Shell) ->
 
 
 def test_wrong_settings_say_how_to_mend_them(tmp_path: Path) -> None:
-    for name, value in (("RILLBOOK_TODAY", "14.7.2026"), ("RILLBOOK_DATABASE", "mysql://x")):
+    for name, value in (
+        ("RILLBOOK_TODAY", "14.7.2026"),
+        ("RILLBOOK_TODAY", "0001-01-01"),
+        ("RILLBOOK_DATABASE", "mysql://x"),
+    ):
         done = subprocess.run(
             [sys.executable, "-m", "app.cli", "advise"],
             capture_output=True,

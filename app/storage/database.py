@@ -16,7 +16,7 @@ from alembic.config import Config
 from alembic.runtime.migration import MigrationContext
 from alembic.script import ScriptDirectory
 from sqlalchemy import Connection, Engine, create_engine, event, text
-from sqlalchemy.exc import DBAPIError
+from sqlalchemy.exc import DBAPIError, OperationalError
 from sqlalchemy.orm import Session
 
 from app.errors import InputError
@@ -68,10 +68,16 @@ class Database:
     def write(self) -> Iterator[Session]:
         """A session committed as a whole at the end, or rolled back as a whole on an error."""
         engine = self.engine.execution_options(write=True)
-        with Session(engine) as session, session.begin():
-            if engine.dialect.name == "postgresql":
-                session.execute(text("SELECT pg_advisory_xact_lock(:turn)"), {"turn": WRITERS})
-            yield session
+        try:
+            with Session(engine) as session, session.begin():
+                if engine.dialect.name == "postgresql":
+                    session.execute(text("SELECT pg_advisory_xact_lock(:turn)"), {"turn": WRITERS})
+                yield session
+        except OperationalError as error:  # locked, disk full, read-only, connection lost
+            raise DatabaseError(
+                f"the database {self.engine.url!r} cannot be written: {error.orig}; "
+                "nothing was changed"
+            ) from error
 
     def migrate(self) -> None:
         """Bring the tables to the newest version; an up-to-date database is left as it is."""
@@ -83,6 +89,12 @@ class Database:
                 f"the database {self.engine.url!r} cannot be opened: {error.orig}"
             ) from None
         config = alembic_config(self.engine)
+        known = {script.revision for script in ScriptDirectory.from_config(config).walk_revisions()}
+        if unknown := sorted(set(at) - known):
+            raise DatabaseError(
+                f"the database {self.engine.url!r} was last used by a newer version of the program "
+                f"(tables of {unknown[0]}); install that version, nothing was changed"
+            )
         if set(at) != set(ScriptDirectory.from_config(config).get_heads()):
             command.upgrade(config, "head")
 

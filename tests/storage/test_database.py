@@ -89,3 +89,27 @@ def test_sqlite_is_in_wal_with_foreign_keys(sqlite_url: str) -> None:
         assert connection.execute(text("PRAGMA journal_mode")).scalar() == "wal"
         assert connection.execute(text("PRAGMA foreign_keys")).scalar() == 1
     db.close()
+
+
+def test_a_database_of_a_newer_program_is_left_alone(db: Database) -> None:
+    with db.write() as session:
+        session.execute(text("UPDATE alembic_version SET version_num = '9999'"))
+    with pytest.raises(DatabaseError, match="newer version of the program"):
+        db.migrate()
+
+
+def test_a_database_that_cannot_be_written_says_so(tmp_path: Path) -> None:
+    db = Database(f"sqlite:///{tmp_path / 'full.sqlite'}")
+    db.migrate()
+
+    def fill_it() -> None:
+        with db.write() as session:
+            pages = session.execute(text("PRAGMA page_count")).scalar()
+            session.execute(text(f"PRAGMA max_page_count = {pages}"))
+            session.add(Farm(key="a", name="A", details={"long": "x" * 1_000_000}))
+
+    with pytest.raises(DatabaseError, match="cannot be written: database or disk is full"):
+        fill_it()
+    with db.read() as session:
+        assert session.query(Farm).all() == []
+    db.close()
