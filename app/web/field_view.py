@@ -91,7 +91,7 @@ def facts(
     expected = _expected_et(advice, today)
     if expected:
         found.append(expected)
-    if advice["limit_day"] is not None:
+    if advice["limit_day"] is not None and advice["depletion_mm"] <= advice["limit_mm"]:
         found.append(("closes past the limit", wording.short_day(advice["limit_day"])))
     figures = advice["figures"]
     for name, label in (("refill_to_mm", "left for a deficit"), ("rain_room_mm", "room for rain")):

@@ -136,28 +136,44 @@ def _weather(sources: Mapping[str, SourceRow], days: Mapping[int, Row]) -> list[
 
 def _crop(row: Row) -> list[Term]:
     cut = abs(row["kc_actual"] * row["eto_mm"] - row["et_actual_mm"]) > 0.006
+    single = number(row["kcb"], 3) == number(None, 3)
+    curve, factor, actual = _single(row) if single else _dual(row)
     return [
         Term("reference ET, ETo", number(row["eto_mm"], 2), "mm",
              "[0.408 Δ (Rn − G) + γ 900/(T + 273) u2 (es − ea)] / [Δ + γ (1 + 0.34 u2)], G = 0",
              "ASCE-EWRI eq 1; FAO-56 eq 6"),
-        Term("basal coefficient, Kcb", number(row["kcb"], 3), "",
-             "the crop curve of the day (Kc where the season has single coefficients)",
-             "FAO-56 eq 66, 70"),
-        Term("soil evaporation, Ke", number(row["ke"], 3), "", "Kr (Kc max − Kcb) ≤ few Kc max",
-             "FAO-56 eq 71 to 77"),
+        *curve,
         Term("water stress, Ks", number(row["ks"], 3), "",
              f"(TAW − Dr) / (TAW − RAW), at most 1; RAW {number(row['raw_mm'], 1)}",
              "FAO-56 eq 84"),
         Term("actual coefficient", number(row["kc_actual"], 3), "",
-             f"Ks Kcb + Ke = {number(row['ks'], 3)} × {number(row['kcb'], 3)} + "
-             f"{number(row['ke'], 3)}", "FAO-56 eq 80"),
+             actual, "FAO-56 eq 81" if single else "FAO-56 eq 80"),
         Term("crop ET without stress", number(row["etc_potential_mm"], 2), "mm",
-             f"(Kcb + Ke) ETo = ({number(row['kcb'], 3)} + {number(row['ke'], 3)}) × "
-             f"{number(row['eto_mm'], 2)}", "FAO-56 eq 69"),
+             f"{factor} × {number(row['eto_mm'], 2)}",
+             "FAO-56 eq 58" if single else "FAO-56 eq 69"),
         Term("crop ET", number(row["et_actual_mm"], 2), "mm",
              f"{number(row['kc_actual'], 3)} × {number(row['eto_mm'], 2)}"
-             + ("; cut so that no layer goes below empty" if cut else ""), "FAO-56 eq 80"),
+             + ("; cut so that no layer goes below empty" if cut else ""),
+             "FAO-56 eq 81" if single else "FAO-56 eq 80"),
     ]  # fmt: skip
+
+
+def _dual(row: Row) -> tuple[list[Term], str, str]:
+    """The terms of dual coefficients, and how the unstressed and the actual one are made."""
+    ks, kcb, ke = (number(row[name], 3) for name in ("ks", "kcb", "ke"))
+    terms = [
+        Term("basal coefficient, Kcb", kcb, "", "the crop curve of the day", "FAO-56 eq 66, 70"),
+        Term("soil evaporation, Ke", ke, "", "Kr (Kc max − Kcb) ≤ few Kc max",
+             "FAO-56 eq 71 to 77"),
+    ]  # fmt: skip
+    return terms, f"(Kcb + Ke) ETo = ({kcb} + {ke})", f"Ks Kcb + Ke = {ks} × {kcb} + {ke}"
+
+
+def _single(row: Row) -> tuple[list[Term], str, str]:
+    """The same of a single coefficient, which the ledger holds as crop ET without stress by ETo."""
+    kc = number(row["etc_potential_mm"] / row["eto_mm"] if row["eto_mm"] else None, 3)
+    terms = [Term("crop coefficient, Kc", kc, "", "the crop curve of the day", "FAO-56 eq 58, 62")]
+    return terms, f"Kc ETo = {kc}", f"Ks Kc = {number(row['ks'], 3)} × {kc}"
 
 
 def _water(

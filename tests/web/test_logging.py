@@ -72,8 +72,8 @@ def test_a_fragment_holds_the_changed_rows_alone(live: Browser) -> None:
     ("typed", "day", "says"),
     [
         ("abc", DAY, "hours is &#39;abc&#39;, which is no number. Write a number such as 7.5."),
-        ("-3", DAY, "must be a number above 0"),
-        ("9999999", DAY, "more than 1000 is not taken"),
+        ("-3", DAY, "hours is -3; one run takes above 0, at most 168."),
+        ("9999999", DAY, "hours is 9999999; one run takes above 0, at most 168."),
         ("5", "2031-01-01", "log water when it has run"),
         ("5", "yesterday", "which is no date"),
     ],
@@ -171,3 +171,13 @@ def test_bad_entries_of_the_field_page_are_refused_in_words(live: Browser) -> No
 def test_the_morning_can_be_worked_out_by_hand(live: Browser) -> None:
     assert live.post("/rounds/up-to-date").headers["location"] == "/"
     assert live.get("/api/v1/rounds").json()["morning"] == str(TODAY)
+
+
+def test_hours_no_run_can_take_are_refused_in_the_row(live: Browser) -> None:
+    for typed in ("500", "-3", "0"):
+        form = {"token": f"slip{typed}", "day": DAY, "h.long-piece": typed}
+        answer = live.post("/rounds/log", data=form)
+        assert answer.status_code == 422
+        assert f"hours is {typed}; one run takes above 0, at most 168." in answer.text
+    events = live.get("/api/v1/fields/long-piece/events").json()
+    assert not any(event["amount"] == 500 for event in events)

@@ -23,6 +23,7 @@ from app.web.trouble import troubles
 
 router = APIRouter()
 EVENTS_SHOWN_DAYS = 4
+LONGEST_RUN_H = 168  # a week; more in one row is a slip of the finger
 Short = Annotated[str, Query(max_length=80)]
 
 
@@ -75,6 +76,11 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
                 raise RefusedError("There is no such field.")
             day = read_day(str(form.get("day", "")), "the day")
             hours = read_number(typed, "hours")
+            if not 0 < hours <= LONGEST_RUN_H:
+                raise RefusedError(
+                    f"hours is {typed.strip()}; one run takes above 0, at most {LONGEST_RUN_H}.",
+                    "Log longer runs day by day.",
+                )
             log_irrigation(db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today)
             done.append(key)
         except RefusedError as error:
