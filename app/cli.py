@@ -49,7 +49,7 @@ def main() -> None:
 
 
 def _fail(message: str) -> NoReturn:
-    notes.print(f"rillbook: {message}", style="red", soft_wrap=True, markup=False)
+    notes.print(f"rillbook: {_inert(message)}", style="red", soft_wrap=True, markup=False)
     sys.exit(1)
 
 
@@ -83,7 +83,12 @@ def _date(text: str) -> date:
 
 
 def _say(outcome: dict[str, Any], as_json: bool, text: str) -> None:
-    print(json.dumps(outcome, default=str) if as_json else text)
+    print(json.dumps(outcome, default=str) if as_json else _inert(text))
+
+
+def _inert(text: str) -> str:
+    """A text without the control characters by which a file's names could steer the terminal."""
+    return "".join(sign if sign.isprintable() or sign == "\n" else "\ufffd" for sign in text)
 
 
 @contextmanager

@@ -242,3 +242,13 @@ def test_a_demo_that_is_stopped_leaves_nothing(
         signal.signal(signal.SIGTERM, before[0])
         signal.signal(signal.SIGHUP, before[1])
     assert list(tmp_path.iterdir()) == []
+
+
+def test_a_files_names_do_not_steer_the_terminal(shell: Shell, tmp_path: Path) -> None:
+    path = tmp_path / "odd.csv"
+    lines = [f"2026-06-01 {hour:02}:00,20,50" for hour in range(10)]
+    path.write_text("\n".join(["time,\033[31mAir temperature (degC)\033]0;x\007,RH (%)", *lines]))
+    shell.run("load", str(shell.folder / "book.json"))
+    seen = shell.run("intake", "bench", str(path), "--preview")
+    assert "Air temperature" in seen.stdout
+    assert not {"\033", "\007"} & set(seen.stdout + seen.stderr)
