@@ -84,3 +84,16 @@ def superseded(session: Session, row: Judged) -> bool:
     """Whether a later row takes the place of this one."""
     table = type(row)
     return session.scalar(select(table.id).where(table.supersedes == row.id)) is not None
+
+
+def said_of_station(
+    session: Session, table: type[SpanMark] | type[SensorEntry], number: int
+) -> int | None:
+    """The station a mark or entry was made of; None when there is none, or it takes one back."""
+    if table is SpanMark:
+        return session.scalar(
+            select(SpanMark.station_id).where(SpanMark.id == number, SpanMark.verdict != VOID)
+        )
+    return session.scalar(
+        select(SensorEntry.station_id).where(SensorEntry.id == number, SensorEntry.kind != VOID)
+    )

@@ -2,9 +2,11 @@
 
 from fastapi import APIRouter
 
-from app.web.pages import enter, fields, intake, methods, rounds, stations
+from app.web.pages import enter, fields, intake, methods, rounds, station_words, stations
 
-PARTS = tuple(part.router for part in (enter, rounds, fields, stations, intake, methods))
+PARTS = tuple(
+    part.router for part in (enter, rounds, fields, stations, station_words, intake, methods)
+)
 
 router = APIRouter(include_in_schema=False)
 for part in PARTS:

@@ -1,5 +1,6 @@
 """Stations: their days, rungs, checks, and measured against modelled energy."""
 
+import secrets
 from datetime import date, timedelta
 from typing import Annotated
 
@@ -18,11 +19,29 @@ from app.web.measured import by_month, compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
 from app.web.pages.fields import csv_answer
 from app.web.render import page
+from app.web.station_words import said_of
 from app.web.trouble import troubles
 
 router = APIRouter()
 SPANS = {"month": 30, "season": 120, "year": 366}
 RECENT_DAYS = 30
+NOTHING_TYPED = dict.fromkeys(
+    [
+        "quantity",
+        "first",
+        "last",
+        "from_time",
+        "to_time",
+        "verdict",
+        "why",
+        "day",
+        "kind",
+        "sensor",
+        "factor",
+        "note",
+    ],
+    "",
+)
 
 
 def own_stations(db: Database, viewer: Viewer, today: date) -> list[store.StationRow]:
@@ -86,6 +105,20 @@ def station(
     span: Annotated[str, Query(max_length=10)] = "month",
 ) -> Response:
     """One station: days, rungs and why no better one, measured against modelled, gaps, flags."""
+    return show(request, db, viewer, today, key, span)
+
+
+def show(
+    request: Request,
+    db: Database,
+    viewer: Viewer,
+    today: date,
+    key: str,
+    span: str = "month",
+    error: str = "",
+    typed: dict[str, str] | None = None,
+) -> Response:
+    """The station page; with an error over its forms, and what was typed still in them."""
     found = own_station(db, viewer, today, key)
     span = span if span in SPANS else "month"
     first = today - timedelta(days=SPANS[span])
@@ -95,6 +128,7 @@ def station(
         last = store.last_days(session)
         recent = store.recent_days(session, today)
         fed = store_station.fed_fields(session, found.id, today, viewer.farm)
+        said = said_of(session, found)
         files = store_station.intakes(session, 6, key) if viewer.may("GET", "/intake") else []
     elevation = found.details.get("elevation_m", 0.0)
     compared = compare(days, elevation)
@@ -103,6 +137,7 @@ def station(
     return page(
         request,
         "pages/station.html",
+        422 if error else 200,
         station=found,
         today=today,
         place=view.place(found.details),
@@ -128,6 +163,11 @@ def station(
         files=files,
         intake_states=wording.INTAKE_STATES,
         variables=wording.VARIABLES,
+        said=said,
+        may_say=viewer.may("POST", "/stations/{key}/marks"),
+        token=secrets.token_urlsafe(12),
+        error=error,
+        typed=NOTHING_TYPED | (typed or {}),
     )
 
 
