@@ -218,3 +218,13 @@ def test_an_error_of_ours_is_a_page_in_plain_words(
 )
 def test_odd_addresses_are_not_found(browse: Browser, path: str) -> None:
     assert browse.get(path).status_code in (404, 307)
+
+
+def test_what_measuring_is_worth_is_told_on_station_and_field(browse: Browser) -> None:
+    station = browse.get("/stations/north").text
+    assert "Modelled energy would have asked for" in station
+    assert "acre-feet" in station
+    field = browse.get("/fields/field-3").text
+    assert re.search(r"would have asked for <b>\d+ mm more</b> on .* since planting", field)
+    assert "would have asked for" not in browse.get("/stations/lane").text
+    assert "By season" in browse.get("/stations/north?span=year").text

@@ -141,9 +141,9 @@ def test_measured_against_modelled_is_told_in_mm_of_eto() -> None:
     found = measured.compare([day, {**day, "rn_measured": None}], 100.0)
     assert found is not None
     assert (found.days, found.both) == (2, 1)
-    assert found.more == pytest.approx(1 / 14)
+    assert found.ratio - 1.0 == pytest.approx(1 / 14)
     assert found.bias_mj == pytest.approx(1.0)
-    assert 0.2 < found.eto_mm < 0.35
+    assert 0.2 < found.eto_more_mm < 0.35
     assert measured.compare([], 0.0) is None
     assert [month for month, _ in measured.by_month([day], 100.0)] == ["2026-07"]
 

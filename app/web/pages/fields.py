@@ -20,6 +20,7 @@ from app.web.needs import AsDatabase, AsDay, AsKey, AsNumber, AsToday, Clean, re
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.working_view import working
+from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
 
 router = APIRouter()
 Text = Annotated[Clean, Form(max_length=400)]
@@ -82,7 +83,14 @@ def show(
             if energy is not None and season is not None
             else []
         )
-    elevation = {item.id: item.details.get("elevation_m", 0.0) for item in stations}
+        height = {item.id: item.details.get("elevation_m", 0.0) for item in stations}
+        saved = (
+            measuring_saved(
+                session, energy.station_id, height.get(energy.station_id, 0.0), today, field=key
+            ).fields
+            if energy is not None and any(day["rung"] in MEASURED_RUNGS for day in station_days)
+            else ()
+        )
     if advice is not None and season is not None and advice["season_id"] != season.id:
         advice = None
     return page(
@@ -116,7 +124,8 @@ def show(
         variables=wording.VARIABLES,
         sources=[row for (number, _), row in sources.items() if number == chosen.field_id],
         energy=energy,
-        compared=compare(station_days, elevation.get(energy.station_id, 0.0)) if energy else None,
+        compared=compare(station_days, height.get(energy.station_id, 0.0)) if energy else None,
+        saved=saved[0] if saved else None,
         soil=view.soil_rows(chosen.soil),
         season_facts=view.season_facts(season),
         token=secrets.token_urlsafe(12),

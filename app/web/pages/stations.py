@@ -15,12 +15,13 @@ from app.storage.database import Database
 from app.web import station_view as view
 from app.web.access import AsViewer, Viewer
 from app.web.charts import energy_chart
-from app.web.measured import by_month, compare
+from app.web.measured import by_month, by_season, compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
 from app.web.pages.fields import csv_answer
 from app.web.render import page
 from app.web.station_words import said_of
 from app.web.trouble import troubles
+from app.workflows.measuring_saved import measuring_saved
 
 router = APIRouter()
 SPANS = {"month": 30, "season": 120, "year": 366}
@@ -129,6 +130,9 @@ def show(
         recent = store.recent_days(session, today)
         fed = store_station.fed_fields(session, found.id, today, viewer.farm)
         said = said_of(session, found)
+        saved = measuring_saved(
+            session, found.id, found.details.get("elevation_m", 0.0), today, viewer.farm
+        )
         files = store_station.intakes(session, 6, key) if viewer.may("GET", "/intake") else []
     elevation = found.details.get("elevation_m", 0.0)
     compared = compare(days, elevation)
@@ -148,9 +152,10 @@ def show(
         spans=SPANS,
         days=list(reversed(days)),
         fed=fed,
-        area=sum(item.area_ha for item in fed if "energy" in item.variables),
+        saved=saved,
         compared=compared,
         months=by_month(days, elevation),
+        seasons=by_season(days, elevation) if span == "year" else [],
         chart=energy_chart(
             [day["day"] for day in days],
             [day["rn_measured"] for day in days],
