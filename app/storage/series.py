@@ -91,14 +91,22 @@ def applied_packs(
 
 
 def days_with_rows(session: Session, station: int, since: date) -> tuple[date, date] | None:
-    """First and last day, from `since` on, that an applied intake brought rows for."""
+    """First and last day to compute from `since` on: the last with readings, and the first with
+    readings, or the day after the last one kept, so that a gap between them has its rows."""
     first, last = session.execute(
         select(func.min(Contribution.day), func.max(Contribution.day))
         .join(Intake, Intake.id == Contribution.intake_id)
         .where(Contribution.station_id == station, Contribution.day >= since)
         .where(Intake.state == "applied")
     ).one()
-    return None if first is None else (first, last)
+    if first is None:
+        return None
+    kept = session.scalar(
+        select(func.max(StationDay.day)).where(
+            StationDay.station_id == station, StationDay.day < since
+        )
+    )
+    return (first if kept is None else min(first, kept + timedelta(days=1))), last
 
 
 def replace_station_days(

@@ -140,6 +140,16 @@ def test_what_a_neighbour_measures_later_reaches_those_that_lean_on_it(db: Datab
     assert rebuilt(db, basin.TODAY) == state
 
 
+def test_a_gap_before_late_readings_has_its_rows_as_after_a_rebuild(db: Database) -> None:
+    basin.fill(db, date(2026, 6, 10))
+    for station in ("bench", "meadow"):
+        basin.take(db, station, basin.daily_csv(date(2026, 6, 25), date(2026, 6, 30)))
+    gap = days_of(db, "bench")[date(2026, 6, 15)]
+    assert gap.eto is None
+    state = basin.derived(db)
+    assert rebuilt(db, basin.TODAY) == state
+
+
 def test_distances_on_the_globe() -> None:
     """A degree of latitude is 111.2 km on a sphere of 6,371 km (definition)."""
     here = {"latitude_deg": 46.0, "longitude_deg": 7.0}
