@@ -94,8 +94,11 @@ def receive(
     who: str,
     mapping: Mapping | None = None,
     progress: Progress | None = None,
+    as_stated: bool = False,
 ) -> int:
     """Keep a file for a station and preview it; returns the intake's number.
+
+    With `as_stated` the mapping given is read as it stands and nothing of the file is guessed.
 
     A file that cannot be read is kept too, with the message that says why. Raises TakeInError
     when there is no such station.
@@ -103,7 +106,7 @@ def receive(
     sha256, pieces = intakes.compress(source)
     with db.read() as session:
         station = _station(session, station_key)
-        seen = _look(session, station, source, mapping, progress)
+        seen = _look(session, station, source, mapping, progress, as_stated)
     with db.write() as session:
         intake = Intake(
             station_id=station.id,
@@ -282,13 +285,18 @@ def _look(
     source: BinaryIO,
     mapping: Mapping | None,
     progress: Progress | None,
+    as_stated: bool = False,
 ) -> _Look:
     """Sniff a file and, where nothing is left open, read it and compare; stores nothing."""
     clock = _clock(station)
     summary: dict[str, Any] = {"message": ""}
     used: dict[str, Any] = {}
     try:
-        sniffed = _sniff(session, station, source, clock, mapping)
+        if as_stated and mapping is not None:
+            columns = len(mapping.columns)
+            sniffed = Sniffed(mapping, (), ((),) * columns, ("as stated",) * columns)
+        else:
+            sniffed = _sniff(session, station, source, clock, mapping)
         used = sniffed.mapping.model_dump(mode="json")
         summary |= _seen(sniffed)
         if any(question.blocking for question in sniffed.questions):

@@ -114,3 +114,9 @@ def test_a_grower_sees_the_log_without_forms(filled_db: Database) -> None:
     assert 'action="/stations/' not in text
     for what in ("marks", "log", "marks/1/take-back", "log/1/take-back"):
         assert demo.post(f"/stations/north/{what}", data=MARK).status_code == 403
+    for what in ("marks", "log", "readings"):
+        assert demo.post(f"/api/v1/stations/north/{what}", json={}).status_code == 403
+    for what in ("marks/1", "log/1"):
+        assert demo.request("DELETE", f"/api/v1/stations/north/{what}").status_code == 403
+    assert demo.get("/api/v1/stations/north/log").json() == []
+    assert demo.get("/api/v1/stations/bench/log").status_code == 404
