@@ -64,29 +64,6 @@ def gaps(days: Sequence[Row], first: date, last: date) -> list[str]:
     ]
 
 
-@dataclass(frozen=True)
-class FlagLine:
-    """A check that bit: on how many days, the last of them, with its figure."""
-
-    name: str
-    days: int
-    last: date
-    figure: str
-
-
-def flag_lines(days: Sequence[Row]) -> list[FlagLine]:
-    """The checks that bit, most days first."""
-    found: dict[str, FlagLine] = {}
-    for day in days:
-        for flag in day["flags"].split():
-            name, _, figure = flag.partition("=")
-            before = found.get(name)
-            found[name] = FlagLine(
-                wording.check_word(name), before.days + 1 if before else 1, day["day"], figure
-            )
-    return sorted(found.values(), key=lambda line: -line.days)
-
-
 def place(details: Mapping[str, Any]) -> str:
     """Where a station stands, in one line."""
     latitude, longitude = details.get("latitude_deg", 0.0), details.get("longitude_deg", 0.0)

@@ -15,6 +15,7 @@ PATHS = (
     "/fields/field-10/days/2026-07-13",
     "/stations",
     "/stations/bench?span=year",
+    "/stations/north",
     "/stations/bench/days/2026-07-13",
     "/intake",
     "/methods",

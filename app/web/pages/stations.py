@@ -19,6 +19,7 @@ from app.web.measured import by_month, by_season, compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
 from app.web.pages.fields import csv_answer
 from app.web.render import page
+from app.web.station_watch import watch
 from app.web.station_words import said_of
 from app.web.trouble import troubles
 from app.workflows.measuring_saved import measuring_saved
@@ -164,7 +165,10 @@ def show(
         ),
         rungs=view.rung_lines(days),
         gaps=view.gaps(days, begins, today - timedelta(days=1)) if everything else [],
-        flags=view.flag_lines(days),
+        watch=watch(
+            [day for day in days if day["day"] >= today - timedelta(days=RECENT_DAYS)], today
+        ),
+        watched_days=RECENT_DAYS,
         files=files,
         intake_states=wording.INTAKE_STATES,
         variables=wording.VARIABLES,
