@@ -146,3 +146,25 @@ def test_the_keyboard_reaches_the_rows_and_skips_the_frame(browser: Any, valley:
         seen.append(page.evaluate("document.activeElement.getAttribute('aria-label')"))
     assert "Long Piece" in seen
     page.close()
+
+
+@pytest.mark.parametrize("scripts", [True, False])
+def test_a_span_is_marked_and_taken_back_at_360_px(
+    browser: Any, valley: str, scripts: bool
+) -> None:
+    context = browser.new_context(
+        viewport={"width": 360, "height": 800}, java_script_enabled=scripts
+    )
+    page = context.new_page()
+    page.goto(f"{valley}/stations/bench")
+    form = page.get_by_role("form", name="Mark a span of readings")
+    form.get_by_label("Quantity").select_option("shortwave_down")
+    form.get_by_label("First day").fill("2026-06-20")
+    form.get_by_label("Last day").fill("2026-06-21")
+    form.get_by_label("Why").fill("a rag lay on it")
+    form.get_by_role("button", name="Mark").click()
+    page.get_by_text("a rag lay on it").wait_for()
+    assert page.url.endswith("/stations/bench#words")
+    page.get_by_role("button", name="Take back the mark of").click()
+    page.get_by_text("No span is marked.").wait_for()
+    context.close()
