@@ -8,12 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app.science import Floats
-from app.science.outlook.ensemble import ensemble_depletion, ensemble_depletions
+from app.science.outlook.ensemble import Ahead, ensemble_depletion, ensemble_depletions
 from app.science.soil.balance import Balance, State, Terms, balance, balance_scalar
 from app.science.soil.block import BlockLedger, BlockPlan, BlockWeather
 from app.science.soil.stack import Stack, stack_plans
 
 __all__ = [
+    "Ahead",
     "BlockLedger",
     "BlockPlan",
     "BlockWeather",

@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from app.science.crop.season import CropSeason
 from app.science.ledger import (
     SCALAR_BLOCKS,
+    Ahead,
     BlockLedger,
     BlockPlan,
     BlockWeather,
@@ -318,10 +319,8 @@ def test_days_added_at_the_end_leave_the_earlier_range_alone() -> None:
 
 def test_sequences_ahead_replace_the_plans_weather() -> None:
     plan, sky = constant_plan()
-    eto = np.full((40, 200), np.nan)
-    rain = np.full((40, 200), np.nan)
-    eto[30:], rain[30:] = 0.0, 0.0
-    low, _ = ensemble_depletion(plan, sky, seed=5, eto_members=eto, rain_members=rain)
+    nothing = Ahead(30, np.zeros((10, 3)), np.zeros((10, 3)))
+    low, _ = ensemble_depletion(plan, sky, seed=5, ahead=nothing)
     base = ensemble_depletion(plan, sky, seed=5)
     np.testing.assert_array_equal(low[:30], base[0][:30])
     assert low[-1] < base[0][-1]

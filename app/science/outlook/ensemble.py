@@ -6,6 +6,7 @@ and the draws are held for all days.
 """
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import TypeVar
 
 import numpy as np
@@ -17,9 +18,6 @@ from app.science.soil.block import BlockPlan, BlockWeather
 from app.science.soil.root_zone import P_ETC, P_LEAST, P_MOST, P_SLOPE
 from app.science.soil.stack import Stack, stack_plans
 
-# Standard deviations of the season-long factors, and of rain on a wet day (working values).
-KC_SHARE, TAW_SHARE, EFFICIENCY_SHARE = 0.10, 0.10, 0.08
-RAIN_SHARE, RAIN_MM = 0.15, 1.0
 # Distance [km] from gauge to field at which the error of rain has doubled (working value).
 RAIN_DOUBLED_KM = 20.0
 # Share of reference ET that follows net radiation where the caller gives none (working value;
@@ -35,6 +33,35 @@ Range = tuple[Floats, Floats]
 One = TypeVar("One")
 
 
+@dataclass(frozen=True, kw_only=True)
+class Spread:
+    """Standard deviations of what members differ by (working values).
+
+    Season-long factors on Kc (`kc`), TAW (`taw`), efficiency and station rain, 0-1; `rain_mm` on a
+    wet day [mm]; `energy` scales the uncertainty of each day's net radiation.
+    """
+
+    kc: float = 0.10
+    taw: float = 0.10
+    efficiency: float = 0.08
+    rain: float = 0.15
+    rain_mm: float = 1.0
+    energy: float = 1.0
+
+
+@dataclass(frozen=True)
+class Ahead:
+    """What the weather ahead may be: `eto` and `rain` [mm] (h, columns), NaN where the plan's own
+    weather holds, from day `first` of the plan on. Members take the columns evenly."""
+
+    first: int
+    eto: Floats
+    rain: Floats
+
+
+WORKING = Spread()
+
+
 def ensemble_depletion(
     plan: BlockPlan,
     weather: BlockWeather,
@@ -44,17 +71,17 @@ def ensemble_depletion(
     *,
     rain_distance_km: float = 0.0,
     initial_unknown: bool = False,
-    eto_members: Floats | None = None,
-    rain_members: Floats | None = None,
+    ahead: Ahead | None = None,
+    spread: Spread = WORKING,
 ) -> Range:
     """10th and 90th percentile [mm] of each day's closing depletion, each (days,).
 
     plan and weather as for a ledger. seed: whole number made from block and date; the same inputs
     give the same bits, and days added at the end leave earlier days alone. rn_share (days,) 0-1:
     share of ETo that follows net radiation, default 0.7. rain_distance_km from gauge to field.
-    initial_unknown: the opening depletion lies anywhere in 0-100 % of RAW. eto_members and
-    rain_members (days, members) [mm]: sequences that replace the plan's weather where not NaN
-    (past years for the days ahead). Widened where needed to hold the ledger's own depletion.
+    initial_unknown: the opening depletion lies anywhere in 0-100 % of RAW. ahead: sequences that
+    replace the plan's weather and its uncertainty on the days ahead. spread: how far members
+    differ. Widened where needed to hold the ledger's own depletion.
     Raises ValueError as `block_ledgers` does. Source: working values of the methods page.
     """
     return ensemble_depletions(
@@ -65,8 +92,8 @@ def ensemble_depletion(
         [rn_share],
         rain_distance_km=[rain_distance_km],
         initial_unknown=[initial_unknown],
-        eto_members=[eto_members],
-        rain_members=[rain_members],
+        ahead=[ahead],
+        spread=spread,
     )[0]
 
 
@@ -79,8 +106,8 @@ def ensemble_depletions(
     *,
     rain_distance_km: Sequence[float] | None = None,
     initial_unknown: Sequence[bool] | None = None,
-    eto_members: Sequence[Floats | None] | None = None,
-    rain_members: Sequence[Floats | None] | None = None,
+    ahead: Sequence[Ahead | None] | None = None,
+    spread: Spread = WORKING,
 ) -> list[Range]:
     """`ensemble_depletion` of many blocks at once, in order, bit for bit the same as one by one.
 
@@ -91,18 +118,17 @@ def ensemble_depletions(
     shares = _each(rn_share, None, count, "rn_share")
     distances = _each(rain_distance_km, 0.0, count, "rain_distance_km")
     unknown = _each(initial_unknown, False, count, "initial_unknown")
-    etos = _each(eto_members, None, count, "eto_members")
-    rains = _each(rain_members, None, count, "rain_members")
+    skies = _each(ahead, None, count, "ahead")
     _each(weather, None, count, "weather")
     _each(seeds, 0, count, "seeds")
     ranges: list[Range] = []
     step = max(1, COLUMNS // (members + 1))
     for first in range(0, count, step):
         part = slice(first, first + step)
-        group = _Group(plans[part], weather[part], members)
+        group = _Group(plans[part], weather[part], members, spread)
         for b, seed in enumerate(seeds[part]):
             i = first + b
-            group.draw(b, seed, shares[i], distances[i], etos[i], rains[i])
+            group.draw(b, seed, shares[i], distances[i], skies[i])
         ranges += group.ranges(np.array(unknown[part], dtype=np.bool_))
     return ranges
 
@@ -123,9 +149,13 @@ class _Group:
     """
 
     def __init__(
-        self, plans: Sequence[BlockPlan], weather: Sequence[BlockWeather], members: int
+        self,
+        plans: Sequence[BlockPlan],
+        weather: Sequence[BlockWeather],
+        members: int,
+        spread: Spread,
     ) -> None:
-        self.plans, self.weather, self.members = plans, weather, members
+        self.plans, self.weather, self.members, self.spread = plans, weather, members, spread
         self.stack: Stack = stack_plans(plans, weather)
         self.base: Terms = self.stack.terms()
         days, blocks = self.base.days.rain.shape
@@ -142,30 +172,26 @@ class _Group:
         seed: int,
         rn_share: Floats | None,
         rain_distance_km: float,
-        eto_members: Floats | None,
-        rain_members: Floats | None,
+        ahead: Ahead | None,
     ) -> None:
         """Draw the members of block `b`."""
-        plan, sky, members = self.plans[b], self.weather[b], self.members
+        plan, sky, members, spread = self.plans[b], self.weather[b], self.members, self.spread
         lots = np.random.Generator(np.random.PCG64(seed))
         season = np.zeros((5, members + 1))
         season[:, 1:] = lots.standard_normal((5, members))
         self.anywhere[b, 1:] = lots.random(members)
         daily = np.zeros((plan.days, 2, members + 1))
         daily[:, :, 1:] = lots.standard_normal((plan.days, 2, members))
-        self.taw[b] = _factor(TAW_SHARE * season[1])
-        self.efficiency[b] = _factor(EFFICIENCY_SHARE * season[2])
+        self.taw[b] = _factor(spread.taw * season[1])
+        self.efficiency[b] = _factor(spread.efficiency * season[2])
         self.most[: plan.days, b, 0] = _most_efficient(plan)
-        energy = _energy(sky, rn_share, season[4], daily[:, 0])
-        if eto_members is not None:
-            energy *= _ratio(eto_members, sky.eto)
-        np.multiply(_factor(KC_SHARE * season[0]), energy, out=self.demand[: plan.days, b])
+        energy = _energy(sky, rn_share, spread.energy * season[4], spread.energy * daily[:, 0])
         rain = self.rain[: plan.days, b]
         wet = sky.rain > 0.0
-        rain[wet] = _rain(sky.rain[wet], rain_distance_km, season[3], daily[wet, 1])
-        if rain_members is not None:
-            told = np.concatenate((sky.rain[:, None], rain_members), axis=1)
-            np.copyto(rain, told, where=~np.isnan(told))
+        rain[wet] = _rain(sky.rain[wet], rain_distance_km, season[3], daily[wet, 1], spread)
+        if ahead is not None and ahead.eto.shape[1]:
+            _put_ahead(ahead, sky, energy, rain)
+        np.multiply(_factor(spread.kc * season[0]), energy, out=self.demand[: plan.days, b])
 
     def ranges(self, unknown: Bools) -> list[Range]:
         """Each block's 10th and 90th percentile, by as many members as were drawn; `unknown`
@@ -231,12 +257,19 @@ def _factor(departure: Floats) -> Floats:
     return np.maximum(1.0 + departure, LEAST_FACTOR)
 
 
-def _ratio(sequences: Floats, eto: Floats) -> Floats:
-    """Factor that turns the plan's ETo into each member's sequence; 1 where there is none."""
-    told = np.concatenate((eto[:, None], sequences), axis=1)
-    known = (eto > 0.0)[:, None] & ~np.isnan(told)
-    ratio = np.divide(told, eto[:, None], out=np.ones(told.shape), where=known)
-    return np.maximum(ratio, 0.0)
+def _put_ahead(ahead: Ahead, sky: BlockWeather, energy: Floats, rain: Floats) -> None:
+    """Sequences in place of the factor on ETo and the rain of each member, on the days they hold;
+    the first member keeps the plan's own."""
+    members, columns = energy.shape[1] - 1, ahead.eto.shape[1]
+    taken = np.arange(members) * columns // max(members, 1)
+    days = slice(ahead.first, ahead.first + ahead.eto.shape[0])
+    eto = sky.eto[days, None]
+    told = ahead.eto[:, taken]
+    known = (eto > 0.0) & ~np.isnan(told)
+    np.divide(np.maximum(told, 0.0), eto, out=energy[days, 1:], where=known)
+    energy[days, 0] = 1.0
+    told = ahead.rain[:, taken]
+    np.copyto(rain[days, 1:], told, where=~np.isnan(told))
 
 
 def _energy(
@@ -252,11 +285,11 @@ def _energy(
     return _factor((spread * share)[:, None] * (season + daily) / np.sqrt(2.0))
 
 
-def _rain(rain: Floats, distance_km: float, season: Floats, daily: Floats) -> Floats:
+def _rain(rain: Floats, distance_km: float, season: Floats, daily: Floats, by: Spread) -> Floats:
     """Field rain (wet days, members) [mm] from the station's: a season-long factor and a daily
     error; dry days stay dry."""
     wider = 1.0 + max(distance_km, 0.0) / RAIN_DOUBLED_KM
-    field = rain[:, None] * _factor(RAIN_SHARE * wider * season) + RAIN_MM * wider * daily
+    field = rain[:, None] * _factor(by.rain * wider * season) + by.rain_mm * wider * daily
     return np.maximum(field, 0.0)
 
 

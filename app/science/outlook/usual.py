@@ -1,46 +1,74 @@
-"""The usual reference ET where there is no forecast and no measurement."""
+"""The usual reference ET where there is no forecast and no measurement.
+
+All is reckoned in ratios to extraterrestrial radiation Ra, which carry the season's shape.
+"""
 
 import numpy as np
 
 from app.science import Bools, Floats
 
-# Days the usual ratio is taken over, and pairs of days below which no persistence is assumed
-# (working values).
+# Days the recent ratio is taken over, days of the record that persistence is taken from, and pairs
+# of days below which none is assumed (working values).
 RATIO_DAYS, RECORD_DAYS, LEAST_PAIRS = 30, 60, 10
+# Share of the recent departure from the usual for the date that is carried on (working value).
+CARRIED = 0.5
 
 
-def usual_ahead(eto_history: Floats, ra_history: Floats, ra_ahead: Floats) -> Floats:
-    """Usual ETo of the days ahead: the season's shape times the recent ratio to it.
+def usual_ahead(
+    eto_history: Floats, ra_history: Floats, ra_ahead: Floats, usual: Floats | None = None
+) -> Floats:
+    """Usual ETo of the days ahead.
 
     eto_history (n,) [mm d-1] up to yesterday, NaN allowed; ra_history (n,) and ra_ahead (h,)
-    extraterrestrial radiation [MJ m-2 d-1]. The last 30 days' mean ratio ETo/Ra carries on;
-    yesterday's departure from it fades with the lag-1 correlation of the last 60. Returns (h,)
-    [mm d-1], NaN where the last 30 days hold nothing. Source: working values of the methods page.
+    extraterrestrial radiation [MJ m-2 d-1]; usual (n + h,) [mm d-1]: the mean of past years for
+    the date on each of these days, NaN where not known. Returns (h,) [mm d-1] by `foretell`, NaN
+    where the last 30 days hold nothing. Source: working values of the methods page.
     """
-    ratio = _ratio(eto_history, ra_history)
-    recent = ratio[-RATIO_DAYS:]
-    known = recent[~np.isnan(recent)]
-    if known.size == 0:
-        return np.full(ra_ahead.shape, np.nan)
-    mean = float(known.mean())
-    departure = float(ratio[-1]) - mean if not np.isnan(ratio[-1]) else 0.0
-    fading = departure * persistence(ratio[-RECORD_DAYS:]) ** np.arange(1, ra_ahead.size + 1)
-    return np.asarray(np.maximum(mean + fading, 0.0) * ra_ahead)
+    days = min(eto_history.size, RECORD_DAYS)
+    history = slice(eto_history.size - days, None)
+    record = ratio_to_ra(eto_history[history], ra_history[history])
+    shape = np.full(days + ra_ahead.size, np.nan)
+    if usual is not None:
+        ra = np.concatenate((ra_history[history], ra_ahead))
+        shape = ratio_to_ra(usual[history], ra)
+    return foretell(record, shape) * ra_ahead
 
 
-def persistence(values: Floats) -> float:
-    """Lag-1 correlation of a record, held to 0-1; NaN are left out; 0 for fewer than 10 pairs.
+def foretell(record: Floats, usual: Floats) -> Floats:
+    """Ratios ETo/Ra ahead (..., h) from those up to yesterday.
 
-    values (n,). Departures are taken from the record's own mean.
+    record (..., n): ratios of the last 60 days, NaN allowed. usual (..., n + h): the ratio usual
+    for the date on these days and the h ahead. Ahead, the usual for the date holds, with half of
+    the last 30 days' mean departure from it; where any of it is NaN, the last 30 days' mean ratio
+    holds instead. Yesterday's departure from that fades with the record's lag-1 correlation.
+    Never below 0; NaN where the last 30 days hold nothing. Source: working values of the methods
+    page, the weather ahead.
     """
-    today, tomorrow = values[:-1], values[1:]
+    days = record.shape[-1]
+    told = ~np.isnan(usual).any(axis=-1, keepdims=True)
+    base = np.where(told, usual, 0.0)
+    departure = record - base[..., :days]
+    level = _mean(departure[..., -RATIO_DAYS:]) * np.where(told, CARRIED, 1.0)
+    last = departure[..., -1:] - level
+    fading = persistence(record)[..., None] ** np.arange(1, usual.shape[-1] - days + 1)
+    ahead = base[..., days:] + level + np.where(np.isnan(last), 0.0, last) * fading
+    return np.asarray(np.maximum(ahead, 0.0))
+
+
+def persistence(values: Floats) -> Floats:
+    """Lag-1 correlation of records (..., n), held to 0-1; 0 for fewer than 10 pairs.
+
+    NaN are left out. Departures are taken from each record's own mean. Returns (...).
+    """
+    departure = values - _mean(values)
+    today, tomorrow = departure[..., :-1], departure[..., 1:]
     both = ~np.isnan(today) & ~np.isnan(tomorrow)
-    if both.sum() < LEAST_PAIRS:
-        return 0.0
-    departure = values - np.nanmean(values)
-    together = float(np.sum(departure[:-1][both] * departure[1:][both]))
-    spread = np.sqrt(np.sum(departure[:-1][both] ** 2) * np.sum(departure[1:][both] ** 2))
-    return float(np.clip(together / spread, 0.0, 1.0)) if spread > 0.0 else 0.0
+    today, tomorrow = np.where(both, today, 0.0), np.where(both, tomorrow, 0.0)
+    together = np.sum(today * tomorrow, axis=-1)
+    spread = np.sqrt(np.sum(today**2, axis=-1) * np.sum(tomorrow**2, axis=-1))
+    known = (both.sum(axis=-1) >= LEAST_PAIRS) & (spread > 0.0)
+    found = np.divide(together, spread, out=np.zeros(together.shape), where=known)
+    return np.asarray(np.clip(found, 0.0, 1.0))
 
 
 def fill_gaps(eto: Floats, ra: Floats) -> tuple[Floats, Bools]:
@@ -69,7 +97,15 @@ def fill_gaps(eto: Floats, ra: Floats) -> tuple[Floats, Bools]:
     return filled, was_filled
 
 
-def _ratio(eto: Floats, ra: Floats) -> Floats:
-    """ETo over Ra; NaN in the polar night."""
+def ratio_to_ra(eto: Floats, ra: Floats) -> Floats:
+    """ETo over Ra [mm MJ-1 m2], any shape; NaN in the polar night."""
     none = np.full(eto.shape, np.nan)
     return np.asarray(np.divide(eto, ra, out=none, where=ra > 0.1))
+
+
+def _mean(values: Floats) -> Floats:
+    """Mean over the last axis of what is known, (..., 1); NaN where nothing is."""
+    known = ~np.isnan(values)
+    count = known.sum(axis=-1, keepdims=True)
+    total = np.where(known, values, 0.0).sum(axis=-1, keepdims=True)
+    return np.asarray(np.divide(total, count, out=np.full(total.shape, np.nan), where=count > 0))

@@ -20,14 +20,13 @@ def options(seed: int, days: list[int]) -> list[dict[str, Any]]:
     rng = np.random.default_rng(seed)
     found: list[dict[str, Any]] = []
     for i, n in enumerate(days):
-        told = np.where(rng.random((n, MEMBERS)) < 0.5, np.nan, rng.uniform(0, 9, (n, MEMBERS)))
+        told = np.where(rng.random((n // 2, 7)) < 0.5, np.nan, rng.uniform(0, 9, (n // 2, 7)))
         found.append(
             {
                 "rn_share": rng.uniform(0.3, 0.9, n) if i % 2 else None,
                 "rain_distance_km": 7.0 * (i % 3),
                 "initial_unknown": i % 4 == 0,
-                "eto_members": told if i % 5 == 0 else None,
-                "rain_members": told if i % 3 == 0 else None,
+                "ahead": ensemble.Ahead(n - n // 2, told, 2.0 * told) if i % 5 == 0 else None,
             }
         )
     return found
