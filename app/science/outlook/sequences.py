@@ -9,7 +9,7 @@ from app.science.energy.usual import usual_for_date, years_before
 from app.science.outlook.usual import LEAST_PAIRS, RECORD_DAYS, foretell, ratio_to_ra
 
 # Past years looked at, days on either side of the date whose mornings count, years with such
-# mornings that are needed, and recent mornings that serve where they are not there (working values).
+# mornings that are needed, and recent mornings that serve in their stead (working values).
 MOST_YEARS, NEAR_DATE, LEAST_YEARS, RECENT = 10, 15, 3, 60
 # Mornings this many leads apart are taken to miss independently of each other (working value).
 APART = 3
