@@ -7,6 +7,7 @@ from typing import Any, NamedTuple
 from sqlalchemy import Text, and_, cast, exists, func, select
 from sqlalchemy.orm import Session, aliased
 
+from app.science.energy.ladder import USUAL
 from app.storage.tables import (
     Advice,
     Block,
@@ -261,7 +262,7 @@ def recent_days(session: Session, today: date, days: int = 15) -> list[RecentDay
             StationDay.flags,
         )
         .where(StationDay.day > today - timedelta(days=days), StationDay.day < today)
-        .where(StationDay.rung > 0, StationDay.rung < 9)
+        .where(StationDay.rung > 0, StationDay.rung < USUAL)
         .order_by(StationDay.station_id, StationDay.day)
     )
     return [RecentDay._make(row) for row in session.execute(statement)]
@@ -271,7 +272,7 @@ def last_days(session: Session) -> dict[int, date]:
     """The last day with data of each station."""
     statement = (
         select(StationDay.station_id, func.max(StationDay.day))
-        .where(StationDay.rung > 0, StationDay.rung < 9)
+        .where(StationDay.rung > 0, StationDay.rung < USUAL)
         .group_by(StationDay.station_id)
     )
     return {row[0]: row[1] for row in session.execute(statement)}

@@ -7,9 +7,10 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from sqlalchemy import delete, func, insert, select
+from sqlalchemy import case, delete, func, insert, or_, select
 from sqlalchemy.orm import Session
 
+from app.science.energy.ladder import USUAL
 from app.storage.tables import Contribution, Intake, StationDay
 
 Floats = NDArray[np.float64]
@@ -59,6 +60,61 @@ def read_series(
             if number is not None:
                 series.values[name][place] = number
     return found
+
+
+PAST_YEARS = ("eto", "rain")
+
+
+def read_past_years(
+    session: Session,
+    stations: Sequence[int],
+    until: date,
+    *,
+    years: int,
+    before: int,
+    after: int,
+    recent: int,
+) -> dict[int, Series]:
+    """What each station had around the date in past years, on one axis of days up to `until`.
+
+    Only days from `before` days before each anniversary of `until` to `after` days after it are
+    read, and the last `recent` days; the others are NaN, and so is reference ET that itself
+    rests on the usual for the date. `rung` stays 0.
+    """
+    anniversaries = [_years_before(until, back) for back in range(1, years + 1)]
+    first = anniversaries[-1] - timedelta(days=before)
+    days = (until - first).days + 1
+    found = {
+        station: Series(
+            first, np.zeros(days, np.int8), {name: np.full(days, np.nan) for name in PAST_YEARS}
+        )
+        for station in stations
+    }
+    near = [
+        StationDay.day.between(day - timedelta(days=before), day + timedelta(days=after))
+        for day in anniversaries
+    ]
+    near.append(StationDay.day.between(until - timedelta(days=recent), until))
+    eto = case((StationDay.rung != USUAL, StationDay.eto))
+    rows = session.execute(
+        select(StationDay.station_id, StationDay.day, eto, StationDay.rain)
+        .where(StationDay.station_id.in_(stations))
+        .where(or_(*near))
+    )
+    for station, day, *numbers in rows:
+        place = (day - first).days
+        for name, number in zip(PAST_YEARS, numbers, strict=True):
+            if number is not None:
+                found[station].values[name][place] = number
+    return found
+
+
+def _years_before(day: date, years: int) -> date:
+    """The same date in an earlier year; 29 February becomes the 28th."""
+    try:
+        return day.replace(year=day.year - years)
+    except ValueError:
+        return day.replace(year=day.year - years, day=28)
 
 
 def last_days(session: Session, on: date) -> dict[int, date]:

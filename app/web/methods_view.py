@@ -3,7 +3,7 @@
 from app.intake import complete, grid
 from app.science.advice import decide
 from app.science.energy import checks, day_checks, ladder
-from app.science.outlook import ensemble, usual
+from app.science.outlook import ensemble, sequences, usual
 from app.wording import number, share
 from app.workflows import assemble, recompute
 
@@ -16,7 +16,7 @@ def rungs() -> list[tuple[int, str, str, str]]:
             rung.name,
             share(rung.share),
             ""
-            if not rung.absent or rung.number == assemble.USUAL_RUNG
+            if not rung.absent or rung.number == ladder.USUAL
             else "its place is kept; it does not serve yet",
         )
         for rung in ladder.LADDER
@@ -59,16 +59,22 @@ def working_values() -> list[tuple[str, str, str]]:
             f"{ladder.LEAST_UNCERTAINTY:g} MJ/m²",
             "ladder",
         ),
-        ("season-long factor for Kc", share(ensemble.KC_SHARE), "range"),
-        ("season-long factor for TAW", share(ensemble.TAW_SHARE), "range"),
-        ("season-long factor for efficiency", share(ensemble.EFFICIENCY_SHARE), "range"),
+        ("season-long factor for Kc", share(ensemble.WORKING.kc), "range"),
+        ("season-long factor for TAW", share(ensemble.WORKING.taw), "range"),
+        ("season-long factor for efficiency", share(ensemble.WORKING.efficiency), "range"),
         (
             "rain of the station against the field’s",
-            f"{share(ensemble.RAIN_SHARE)} + {ensemble.RAIN_MM:g} mm on wet days",
+            f"{share(ensemble.WORKING.rain)} + {ensemble.WORKING.rain_mm:g} mm on wet days",
             "range",
         ),
         ("members", number(recompute.MEMBERS), "range"),
         ("days the usual ratio of ETo to Ra is taken over", f"{usual.RATIO_DAYS}", "ahead"),
+        ("share of a recent departure carried on", share(usual.CARRIED), "ahead"),
+        ("past years whose mornings lend a range", f"{sequences.MOST_YEARS}", "range"),
+        ("past years below which recent mornings do", f"{sequences.LEAST_YEARS}", "range"),
+        ("days on either side of the date", f"{sequences.NEAR_DATE}", "range"),
+        ("recent mornings", f"{sequences.RECENT}", "range"),
+        ("leads apart that mornings count as independent", f"{sequences.APART}", "range"),
         ("days looked ahead", f"{assemble.HORIZON}", "ahead"),
         ("soon: days after due", f"{decide.SOON_DAYS}", "advice"),
         ("unsure: an input older than", f"{decide.STALE_DAYS} days", "advice"),

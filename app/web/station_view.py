@@ -7,6 +7,7 @@ from typing import Any
 
 from app import wording
 from app.intake import Rows
+from app.science.energy.ladder import USUAL
 from app.science.quantities import QUANTITIES
 from app.storage.pages_station import Span
 
@@ -45,7 +46,7 @@ def rung_lines(days: Sequence[Row]) -> list[RungLine]:
 
 def gaps(days: Sequence[Row], first: date, last: date) -> list[str]:
     """Spans of days without any data, in words, newest first."""
-    held = {day["day"] for day in days if 0 < day["rung"] < 9}
+    held = {day["day"] for day in days if 0 < day["rung"] < USUAL}
     found: list[tuple[date, date]] = []
     day = first
     while day <= last:

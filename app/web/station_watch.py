@@ -6,6 +6,7 @@ from datetime import date, timedelta
 from typing import Any
 
 from app import wording
+from app.science.energy.ladder import USUAL
 
 Row = Mapping[str, Any]
 QUANTITIES = (
@@ -59,7 +60,7 @@ class _Seen:
 
 def watch(days: Sequence[Row], today: date) -> Watch:
     """The panel of the station days given, oldest first."""
-    held = [day for day in days if 0 < day["rung"] < 9]
+    held = [day for day in days if 0 < day["rung"] < USUAL]
     return Watch(findings(days), tuple(missing(held, today)), served(days))
 
 

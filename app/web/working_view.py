@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from app import wording
+from app.science.energy.ladder import USUAL
 from app.storage.pages import EventRow, SourceRow
 from app.storage.pages_field import BlockRow, SeasonRow
 from app.wording import number
@@ -62,7 +63,7 @@ def _energy(row: Row, sources: Mapping[str, SourceRow], days: Mapping[int, Row])
     if source is not None:
         how += f", {source.station_name}"
     terms = []
-    if row["rung"] == 9 or day is None or day["rung"] == 0:
+    if row["rung"] == USUAL or day is None or day["rung"] == 0:
         how += "; the station has no usable radiation or temperature for this day"
     link = f"/stations/{source.station_key}/days/{row['day']}" if source and day else ""
     terms.append(

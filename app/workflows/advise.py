@@ -96,7 +96,7 @@ def _ages(session: Session, on: date) -> dict[int, list[tuple[str, int, date | N
 def inputs_hash(subject: Subject, stale: Any) -> str:
     """Fingerprint of all an advice rests on, the program's version included."""
     digest = hashlib.sha256(__version__.encode())
-    for part in (subject.plan, subject.weather):
+    for part in (subject.plan, subject.weather, subject.ahead):
         for field in fields(part):
             value = getattr(part, field.name)
             digest.update(field.name.encode())

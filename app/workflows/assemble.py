@@ -11,10 +11,19 @@ from numpy.typing import NDArray
 from sqlalchemy.orm import Session
 
 from app.science.crop.season import CropSeason
+from app.science.energy.ladder import USUAL
 from app.science.energy.reference_et import eto_from_parts
 from app.science.energy.sun import day_of_year, extraterrestrial_daily
-from app.science.ledger import BlockPlan, BlockWeather
-from app.science.outlook.usual import fill_gaps, usual_ahead
+from app.science.energy.usual import HALF_WINDOW, usual_for_date
+from app.science.ledger import Ahead, BlockPlan, BlockWeather
+from app.science.outlook.sequences import (
+    MOST_YEARS,
+    NEAR_DATE,
+    RECENT_REACH,
+    Sequences,
+    past_sequences,
+)
+from app.science.outlook.usual import RECORD_DAYS, fill_gaps, usual_ahead
 from app.storage.events import Standing, standing_events
 from app.storage.ledgers import (
     BlockRow,
@@ -25,7 +34,7 @@ from app.storage.ledgers import (
     read_sources,
     station_details,
 )
-from app.storage.series import read_series
+from app.storage.series import read_past_years, read_series
 from app.workflows import agronomy
 
 Floats = NDArray[np.float64]
@@ -33,7 +42,6 @@ HORIZON = 14
 """Days ahead that advice looks at."""
 HISTORY = 120
 """Days before a season that the usual for the date may look back on."""
-USUAL_RUNG = 9
 TODAY = timedelta(days=1)
 """Ledgers close yesterday; water logged for today is already counted in the outlook."""
 
@@ -55,6 +63,17 @@ class Subject:
     opening_unknown: bool
     """A ledger that starts after planting without a reading: anywhere in 0-100 % of RAW."""
     last_irrigation: date | None
+    ahead: Ahead
+    """What the weather ahead may be; without a column where no past morning tells."""
+
+
+@dataclass(frozen=True)
+class Past:
+    """What past years lend to the days ahead: the usual ETo [mm] of the last 60 days and the
+    `HORIZON` ahead, and what may come."""
+
+    usual: Floats
+    sequences: Sequences
 
 
 @dataclass(frozen=True)
@@ -70,6 +89,9 @@ class FieldWeather:
     rh_min: Floats
     rung: NDArray[np.int8]
     rn: Floats
+    eto_ahead: Floats
+    rain_ahead: Floats
+    """What may come, (`HORIZON`, columns), a past morning each."""
 
 
 def assemble(session: Session, since: Mapping[int, date], through: date) -> list[Subject]:
@@ -144,6 +166,15 @@ class _Weather:
         self.sources = sources
         self.first, self.days = first, (through - first).days + 1
         self.series = read_series(session, stations, first, through)
+        self.years = read_past_years(
+            session,
+            stations,
+            through,
+            years=MOST_YEARS,
+            before=RECORD_DAYS + NEAR_DATE + HALF_WINDOW,
+            after=NEAR_DATE + HORIZON + HALF_WINDOW,
+            recent=RECENT_REACH + HORIZON + RECORD_DAYS,
+        )
         self.details = station_details(session, stations)
         self.known: dict[tuple[Any, ...], FieldWeather] = {}
 
@@ -189,6 +220,22 @@ class _Weather:
             self._pick(station["rain"], "rain"),
             self._pick(wind, "wind_2m"),
             self._pick(air, "rh_min_used"),
+            self._past(int(energy[-1]), int(station["rain"][-1])),
+        )
+
+    def _past(self, energy: int, rain: int) -> "Past":
+        """What past years of the stations that feed a field this morning lend to its outlook."""
+        years = self.years[energy]
+        eto = years.values["eto"]
+        date = np.datetime64(years.first, "D") + np.arange(eto.size)
+        ra = extraterrestrial_daily(
+            np.full(eto.size, float(self.details[energy]["latitude_deg"])), day_of_year(date)
+        )
+        today = date[-1] + 1
+        near = today + np.arange(-RECORD_DAYS, HORIZON)
+        return Past(
+            usual_for_date(near, date, eto),
+            past_sequences(today, date, eto, self.years[rain].values["rain"], ra, HORIZON),
         )
 
     def _stations(self, rows: tuple[SourceRow, ...], variable: str) -> NDArray[np.int64]:
@@ -218,23 +265,28 @@ def _completed(
     rain: Floats,
     u2: Floats,
     rh_min: Floats,
+    past: Past,
 ) -> FieldWeather:
     """Fill gaps by the usual for the date and go on `HORIZON` days beyond the last day."""
     days = eto.size
     filled, was_filled = fill_gaps(eto, ra[:days])
     energy, _ = fill_gaps(rn, ra[:days])
     known = np.flatnonzero(~np.isnan(filled))
-    rung = np.where(was_filled, USUAL_RUNG, rung).astype(np.int8)
+    rung = np.where(was_filled, USUAL, rung).astype(np.int8)
     ahead = ra[days:]
+    usual = np.r_[np.full(days, np.nan), past.usual][-days - HORIZON :]
+    foretold = usual_ahead(filled, ra[:days], ahead, usual)
     return FieldWeather(
         first=first,
         known_from=int(known[0]) if known.size else days,
-        eto=np.r_[filled, usual_ahead(filled, ra[:days], ahead)],
+        eto=np.r_[filled, foretold],
         rain=np.r_[np.nan_to_num(rain), np.zeros(HORIZON)],
         u2=_steady(u2, 2.0),
         rh_min=_steady(rh_min, 45.0),
-        rung=np.r_[rung, np.full(HORIZON, USUAL_RUNG, np.int8)],
+        rung=np.r_[rung, np.full(HORIZON, USUAL, np.int8)],
         rn=np.r_[energy, usual_ahead(energy, ra[:days], ahead)],
+        eto_ahead=past.sequences.eto(foretold, ahead),
+        rain_ahead=past.sequences.rain,
     )
 
 
@@ -290,6 +342,7 @@ def _subject(
     for place, amount in gauge.items():
         rain[place] = amount
     details = season.details
+    past = min(days, (through - start).days + 1)
     return Subject(
         block=block,
         season=season,
@@ -317,11 +370,12 @@ def _subject(
             rung=weather.rung[here],
             rn=weather.rn[here],
         ),
-        past=min(days, (through - start).days + 1),
+        past=past,
         opening_unknown=(
             start > season.planting
             and details["initial_depletion_mm"] is None
             and details["initial_depletion_fraction"] is None
         ),
         last_irrigation=last_irrigation,
+        ahead=Ahead(past, weather.eto_ahead[: days - past], weather.rain_ahead[: days - past]),
     )

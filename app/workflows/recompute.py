@@ -14,7 +14,7 @@ from typing import Any
 from sqlalchemy.orm import Session
 
 from app.science import Floats
-from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletion
+from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletions
 from app.storage.ledgers import (
     clear_dirty,
     last_ledger_days,
@@ -63,27 +63,28 @@ class Computed:
 
 def compute(subjects: list[Subject]) -> list[Computed]:
     """The ledgers of subjects and their ranges."""
-    ledgers = block_ledgers(
-        [subject.plan for subject in subjects], [subject.weather for subject in subjects]
+    plans = [subject.plan for subject in subjects]
+    weather = [subject.weather for subject in subjects]
+    ledgers = block_ledgers(plans, weather)
+    ranges = ensemble_depletions(
+        plans,
+        weather,
+        [_seed(subject) for subject in subjects],
+        MEMBERS,
+        initial_unknown=[subject.opening_unknown for subject in subjects],
+        ahead=[subject.ahead for subject in subjects],
     )
     return [
-        Computed(subject, ledger, *_range(subject))
-        for subject, ledger in zip(subjects, ledgers, strict=True)
+        Computed(subject, ledger, low, high)
+        for subject, ledger, (low, high) in zip(subjects, ledgers, ranges, strict=True)
     ]
 
 
-def _range(subject: Subject) -> tuple[Floats, Floats]:
-    """The seed is of the block and its season, so that the same inputs give the same bytes and a
-    new day does not stir the days before."""
+def _seed(subject: Subject) -> int:
+    """Of the block and its season, so that the same inputs give the same bytes and a new day does
+    not stir the days before."""
     name = f"{subject.block.field_key}/{subject.block.block_key}/{subject.season.planting}"
-    seed = zlib.crc32(name.encode())
-    return ensemble_depletion(
-        subject.plan,
-        subject.weather,
-        seed=seed,
-        members=MEMBERS,
-        initial_unknown=subject.opening_unknown,
-    )
+    return zlib.crc32(name.encode())
 
 
 def write_ledgers(session: Session, computed: Iterable[Computed], since: Mapping[int, date]) -> int:

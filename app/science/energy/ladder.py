@@ -20,6 +20,7 @@ from app.science.energy.usual import Usual
 from app.science.energy.watch import WORDS
 from app.science.quantities import QUANTITIES
 
+USUAL = 9  # the last rung: no reading at all, only what is usual for the date
 LEAST_UNCERTAINTY = 0.5  # MJ m-2 d-1, standard uncertainty of a day at best, working value
 TEACHER_SHARE = 0.10  # of net radiation, rung 4 taught by another station, working value
 

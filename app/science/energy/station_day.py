@@ -11,6 +11,7 @@ from app.science.energy.humidity import (
     saturation_vapour_pressure,
 )
 from app.science.energy.ladder import (
+    USUAL,
     Shortwave,
     best_rung,
     candidates,
@@ -102,7 +103,7 @@ def station_days(
         humidity_error = np.where(
             np.isnan(ea), GUESSED_SHARE * usual.vapour_pressure, humidity_error
         )
-        parts = _with_usual(rung == 9, parts, usual)
+        parts = _with_usual(rung == USUAL, parts, usual)
     eto, etr = eto_from_parts(*parts, rn, u2, site.elevation_m)
     flags = np.empty(weather.date.shape, dtype=np.object_)
     flags[:] = tokens(checked.findings, weather.date.size)

@@ -12,7 +12,7 @@ from typing import TypeVar
 import numpy as np
 
 from app.science import Bools, Floats
-from app.science.energy.ladder import RUNGS, rn_uncertainty
+from app.science.energy.ladder import RUNGS, USUAL, rn_uncertainty
 from app.science.soil.balance import Blocks, Days, State, Terms, balance_day
 from app.science.soil.block import BlockPlan, BlockWeather
 from app.science.soil.root_zone import P_ETC, P_LEAST, P_MOST, P_SLOPE
@@ -278,7 +278,7 @@ def _energy(
     """Factor of radiation on ETo (days, members): variance by rung, half persistent, half daily;
     days without a rung count as the usual for the date."""
     known = (weather.rung > 0) & (np.abs(weather.rn) > 0.0)
-    spread = np.full(weather.eto.shape, RUNGS[9].share)
+    spread = np.full(weather.eto.shape, RUNGS[USUAL].share)
     rn = np.abs(weather.rn[known])
     spread[known] = np.minimum(rn_uncertainty(weather.rung[known], rn) / rn, 1.0)
     share = np.full(weather.eto.shape, RN_SHARE) if rn_share is None else rn_share

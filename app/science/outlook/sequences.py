@@ -11,6 +11,8 @@ from app.science.outlook.usual import LEAST_PAIRS, RECORD_DAYS, foretell, ratio_
 # Past years looked at, days on either side of the date whose mornings count, years with such
 # mornings that are needed, and recent mornings that serve in their stead (working values).
 MOST_YEARS, NEAR_DATE, LEAST_YEARS, RECENT = 10, 15, 3, 60
+# How far back those mornings may lie, where days are missing.
+RECENT_REACH = 2 * RECENT
 # Mornings this many leads apart are taken to miss independently of each other (working value).
 APART = 3
 Z = 1.2816  # a normal variable passes it one time in ten
@@ -54,7 +56,7 @@ def past_sequences(
     chosen = _near_the_date(today, date, usable)
     if np.unique(_season_of(today, date[chosen])).size < LEAST_YEARS:
         chosen = usable[-RECENT:]
-        chosen = chosen[date[chosen] >= today - np.timedelta64(2 * RECENT + horizon, "D")]
+        chosen = chosen[date[chosen] >= today - np.timedelta64(RECENT_REACH + horizon, "D")]
     return _sequences(ratio, usual, rain, chosen, horizon)
 
 
@@ -64,7 +66,7 @@ def _usable(ratio: Floats, horizon: int) -> Ints:
     mornings = np.arange(RECORD_DAYS, ratio.size - horizon + 1)
     ahead = known[mornings + horizon] - known[mornings]
     before = known[mornings] - known[mornings - RECORD_DAYS]
-    return mornings[(ahead == horizon) & (before >= LEAST_PAIRS)]
+    return np.asarray(mornings[(ahead == horizon) & (before >= LEAST_PAIRS)])
 
 
 def _season_of(today: np.datetime64, days: Days) -> Ints:
@@ -79,7 +81,7 @@ def _near_the_date(today: np.datetime64, date: Days, usable: Ints) -> Ints:
         [years_before(np.array([today]), int(b))[0] for b in back], "datetime64[D]"
     )
     away = np.abs((days - anniversary).astype(np.int64))
-    return usable[(back >= 1) & (back <= MOST_YEARS) & (away <= NEAR_DATE)]
+    return np.asarray(usable[(back >= 1) & (back <= MOST_YEARS) & (away <= NEAR_DATE)])
 
 
 def _sequences(
