@@ -358,6 +358,11 @@ def _up_to_date(on: str | None, as_json: bool) -> None:
         f"{today}: {done.station_days} station days and {done.ledger_days} ledger days "
         f"recomputed, {done.advices} advices issued; standing: {words}."
     )
+    if done.advised_until:
+        text += (
+            f" Advice stands already for the morning of {done.advised_until}; none is issued for "
+            "one before it."
+        )
     _say({"on": today, **asdict(done), "standing": counted}, as_json, text)
 
 

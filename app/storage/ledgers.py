@@ -16,6 +16,7 @@ from app.storage.tables import (
     Soil,
     Source,
     Station,
+    StationDay,
 )
 
 
@@ -116,6 +117,26 @@ def last_ledger_days(session: Session) -> dict[int, date]:
         season: day
         for season, day in session.execute(
             select(LedgerDay.season_id, func.max(LedgerDay.day)).group_by(LedgerDay.season_id)
+        )
+    }
+
+
+def first_energy_days(session: Session) -> dict[int, date]:
+    """The first day with reference ET at a station that feeds a block energy, by block."""
+    first = (
+        select(StationDay.station_id, func.min(StationDay.day).label("day"))
+        .where(StationDay.eto.is_not(None))
+        .group_by(StationDay.station_id)
+        .subquery()
+    )
+    return {
+        block: day
+        for block, day in session.execute(
+            select(Block.id, func.min(first.c.day))
+            .join(Source, Source.field_id == Block.field_id)
+            .join(first, first.c.station_id == Source.station_id)
+            .where(Source.variable == "energy")
+            .group_by(Block.id)
         )
     }
 

@@ -4,7 +4,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from datetime import date, timedelta
 
-from sqlalchemy import select
+from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
 from app.storage.database import Database
@@ -19,12 +19,16 @@ BLOCKS_AT_A_TIME = 256
 
 @dataclass(frozen=True)
 class UpToDate:
-    """How much was done: station days, blocks and ledger days recomputed, advice numbers issued."""
+    """How much was done: station days, blocks and ledger days recomputed, advice numbers issued.
+
+    advised_until: a morning after today's that has advice; then none is issued for today, for it
+    would rest on what was not known then."""
 
     station_days: int
     blocks: int
     ledger_days: int
     advices: int
+    advised_until: date | None
 
 
 def bring_up_to_date(db: Database, today: date) -> UpToDate:
@@ -39,13 +43,21 @@ def up_to_date(session: Session, today: date) -> UpToDate:
     days = recompute_stations(session)
     due = due_ledgers(session, through)
     ledger_days = advices = 0
-    since = dict.fromkeys(_unadvised(session, today), today) | due
+    later = _advised_after(session, today)
+    unadvised = [] if later else _unadvised(session, today)
+    since = dict.fromkeys(unadvised, today) | due
     for some in batched(sorted(since), BLOCKS_AT_A_TIME):
         computed = compute(assemble(session, {block: since[block] for block in some}, through))
         written = {block: due[block] for block in some if block in due}
         ledger_days += write_ledgers(session, computed, written)
-        advices += advise(session, today, computed)
-    return UpToDate(days, len(due), ledger_days, advices)
+        if later is None:
+            advices += advise(session, today, computed)
+    return UpToDate(days, len(due), ledger_days, advices, later)
+
+
+def _advised_after(session: Session, today: date) -> date | None:
+    """The last morning with advice, where it is after today's."""
+    return session.scalar(select(func.max(Advice.issued_on)).where(Advice.issued_on > today))
 
 
 def _unadvised(session: Session, today: date) -> list[int]:

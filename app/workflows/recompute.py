@@ -17,6 +17,7 @@ from app.science import Floats
 from app.science.ledger import BlockLedger, block_ledgers, ensemble_depletions
 from app.storage.ledgers import (
     clear_dirty,
+    first_energy_days,
     last_ledger_days,
     read_blocks,
     replace_ledger_days,
@@ -35,19 +36,21 @@ LEDGER_COLUMNS = tuple(
 
 
 def due_ledgers(session: Session, through: date) -> dict[int, date]:
-    """Blocks whose ledger is dirty or stops before it should, and the day to write from."""
-    due: dict[int, date] = {}
+    """Blocks whose ledger is dirty or stops before it should, and the day to write from.
+
+    A season without a ledger is due once a station of its field has reference ET before its end.
+    """
     blocks = read_blocks(session)
-    dirty = {row.block_id: row.dirty_from for row in blocks if row.dirty_from is not None}
-    last = last_ledger_days(session)
+    due = {row.block_id: row.dirty_from for row in blocks if row.dirty_from is not None}
+    last, known = last_ledger_days(session), first_energy_days(session)
     for season, crop in seasons_of(session, [row.block_id for row in blocks]):
         until = min(through, agronomy.as_date(crop.last_day))
-        if season.season_id in last and last[season.season_id] < until:
-            due[season.block_id] = last[season.season_id] + timedelta(days=1)
-        elif season.season_id not in last and season.planting <= until:
-            due[season.block_id] = min(season.planting, due.get(season.block_id, season.planting))
-    for block, since in dirty.items():
-        due[block] = min(since, due.get(block, since))
+        if season.season_id in last:
+            since = last[season.season_id] + timedelta(days=1)
+        else:
+            since = max(season.planting, known.get(season.block_id, date.max))
+        if since <= until:
+            due[season.block_id] = min(since, due.get(season.block_id, since))
     return due
 
 

@@ -1,5 +1,6 @@
 """Ledgers and advice follow the facts, and are the same whenever they are computed again."""
 
+import copy
 from datetime import date, timedelta
 from itertools import pairwise
 
@@ -213,11 +214,25 @@ def test_a_block_is_foretold_the_same_alone_and_in_company(db: Database) -> None
             assert inputs_hash(alone, []) == inputs_hash(subject, [])
 
 
-def test_going_back_a_day_and_forward_again_issues_no_second_number(db: Database) -> None:
+def test_a_season_before_its_stations_first_day_is_not_due_each_morning(db: Database) -> None:
+    book = copy.deepcopy(basin.BOOK)
+    book["seasons"].append({"field": "long-piece", "crop": "potato", "planting": "2024-04-20"})
+    with db.write() as session:
+        load_book(session, Book.model_validate(book), "admin")
+    for station in ("bench", "meadow"):
+        basin.take(db, station, basin.daily_csv())
+    assert bring_up_to_date(db, basin.TODAY).blocks == 0
+    changed = ledger_of(db, "whole")
+    assert min(changed) == date(2026, 4, 20)
+
+
+def test_a_clock_set_back_issues_nothing_for_a_morning_before_the_last(db: Database) -> None:
     basin.fill(db)
     before = {block: row.number for block, row in basin.standing_advice(db).items()}
     state = basin.derived(db)
-    bring_up_to_date(db, basin.TODAY - timedelta(days=1))
+    done = bring_up_to_date(db, basin.TODAY - timedelta(days=1))
+    assert (done.advices, done.advised_until) == (0, basin.TODAY)
+    assert basin.standing_advice(db, basin.TODAY - timedelta(days=1)) == {}
     bring_up_to_date(db, basin.TODAY)
     assert {block: row.number for block, row in basin.standing_advice(db).items()} == before
     assert basin.derived(db) == state
