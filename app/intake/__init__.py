@@ -30,7 +30,7 @@ from app.intake.model import (
     TimeLayout,
 )
 from app.intake.pack import pack, station_day, unpack
-from app.intake.questions import answer, unanswered
+from app.intake.questions import answer, check_mapping, unanswered
 from app.intake.read import read
 from app.intake.sniff import sniff
 from app.intake.watching import Watched, watched
@@ -54,6 +54,7 @@ __all__ = [
     "Watched",
     "aggregate",
     "answer",
+    "check_mapping",
     "fold",
     "pack",
     "read",

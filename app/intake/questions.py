@@ -2,10 +2,13 @@
 
 from pydantic import ValidationError
 
+from app.intake.cells import DELIMITERS
 from app.intake.civil import zone
 from app.intake.errors import IntakeError
 from app.intake.model import Choice, ColumnMap, Mapping, Question
 from app.intake.sniff_columns import unit_question
+from app.science.quantities import QUANTITIES
+from app.units import UNITS, fits
 
 _DAY = 86400
 _LEAVE_OUT = "leave out"
@@ -47,6 +50,49 @@ def _answer_column(columns: list[dict[str, object]], position: str, key: str, va
         column.update(quantity=None, needs_body=False, body_position=None)
     else:
         column[key] = value
+
+
+def check_mapping(mapping: Mapping) -> None:
+    """IntakeError where a mapping contradicts itself, naming the column and the remedy."""
+    if mapping.delimiter not in DELIMITERS:
+        known = ", ".join(repr(name) for name in DELIMITERS)
+        raise IntakeError(f"The delimiter {mapping.delimiter!r} is not known; use one of {known}.")
+    try:
+        "".encode(mapping.encoding)
+    except LookupError as error:
+        raise IntakeError(
+            f"The encoding {mapping.encoding!r} is not known; use utf-8, utf-16-le or cp1252."
+        ) from error
+    if not mapping.time.columns:
+        raise IntakeError("The mapping names no column that says when.")
+    when = {column.position for column in mapping.time.columns}
+    seen: dict[str, str] = {}
+    for column in mapping.columns:
+        if column.quantity is None:
+            continue
+        if column.position in when or column.body_position in when:
+            raise IntakeError(
+                f"Column {column.name!r}: a column that says when cannot be read as "
+                f"{column.quantity} as well; leave it out."
+            )
+        if column.quantity not in QUANTITIES:
+            raise IntakeError(
+                f"Column {column.name!r}: {column.quantity!r} is no quantity known here; use one "
+                f"of {', '.join(QUANTITIES)}."
+            )
+        if column.quantity in seen:
+            raise IntakeError(
+                f"Columns {seen[column.quantity]!r} and {column.name!r} are both mapped to "
+                f"{column.quantity}; leave one of them out."
+            )
+        seen[column.quantity] = column.name
+        if column.unit is not None and (
+            column.unit not in UNITS or not fits(column.unit, column.quantity)
+        ):
+            raise IntakeError(
+                f"Column {column.name!r}: the unit {column.unit!r} does not measure "
+                f"{column.quantity}; choose another."
+            )
 
 
 def unanswered(mapping: Mapping) -> list[Question]:

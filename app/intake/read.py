@@ -5,7 +5,7 @@ from typing import BinaryIO
 
 import numpy as np
 
-from app.intake.cells import DELIMITERS, kind_of, split_line
+from app.intake.cells import kind_of, split_line
 from app.intake.chunk import parse
 from app.intake.civil import civil_to_utc
 from app.intake.dates import NOT_A_DATE, OK, WHY, Times, read_times
@@ -21,13 +21,13 @@ from app.intake.model import (
     Reading,
 )
 from app.intake.plan import Chunk, Plan, plan_of
-from app.intake.questions import unanswered
+from app.intake.questions import check_mapping, unanswered
 from app.intake.report import Report
 from app.intake.sniff_dates import has_clock
 from app.intake.text import Block, blocks, read_head, refuse_what_is_no_text
 from app.intake.tidy import tidy
 from app.science.quantities import QUANTITIES
-from app.units import UNITS, fits, to_si
+from app.units import to_si
 
 _DAY = 86400
 _TAIL = 8192  # bytes of the lines before the last that tell whether the last is whole
@@ -92,40 +92,8 @@ def _gather(
 
 
 def _check(mapping: Mapping) -> None:
-    """IntakeError where a mapping cannot be used, naming the column and the remedy."""
-    if mapping.delimiter not in DELIMITERS:
-        known = ", ".join(repr(name) for name in DELIMITERS)
-        raise IntakeError(f"The delimiter {mapping.delimiter!r} is not known; use one of {known}.")
-    try:
-        "".encode(mapping.encoding)
-    except LookupError as error:
-        raise IntakeError(
-            f"The encoding {mapping.encoding!r} is not known; use utf-8, utf-16-le or cp1252."
-        ) from error
-    if not mapping.time.columns:
-        raise IntakeError("The mapping names no column that says when.")
-    seen: dict[str, str] = {}
-    for column in mapping.columns:
-        if column.quantity is None:
-            continue
-        if column.quantity not in QUANTITIES:
-            raise IntakeError(
-                f"Column {column.name!r}: {column.quantity!r} is no quantity known here; use one "
-                f"of {', '.join(QUANTITIES)}."
-            )
-        if column.quantity in seen:
-            raise IntakeError(
-                f"Columns {seen[column.quantity]!r} and {column.name!r} are both mapped to "
-                f"{column.quantity}; leave one of them out."
-            )
-        seen[column.quantity] = column.name
-        if column.unit is not None and (
-            column.unit not in UNITS or not fits(column.unit, column.quantity)
-        ):
-            raise IntakeError(
-                f"Column {column.name!r}: the unit {column.unit!r} does not measure "
-                f"{column.quantity}; choose another."
-            )
+    """IntakeError where a mapping cannot be used or a question is unanswered."""
+    check_mapping(mapping)
     open_questions = unanswered(mapping)
     if open_questions:
         first = open_questions[0]

@@ -1,5 +1,6 @@
 """Refusals and errors: a page in plain words, or problem details (RFC 9457) for the API."""
 
+import logging
 from collections.abc import Sequence
 from math import isfinite
 from typing import Any
@@ -7,9 +8,11 @@ from typing import Any
 from fastapi import FastAPI, Request
 from fastapi.exceptions import RequestValidationError
 from fastapi.responses import JSONResponse, PlainTextResponse, RedirectResponse, Response
+from sqlalchemy.exc import OperationalError
 from starlette.exceptions import HTTPException
 from starlette.types import Scope
 
+from app.storage.database import DatabaseError
 from app.web.access import NoWayInError
 from app.web.headers import HEADERS
 from app.web.render import page
@@ -26,6 +29,7 @@ TITLES = {
     421: "Not served under this name",
     422: "Something has to be put right first",
     500: "Something went wrong on our side",
+    503: "The database cannot be reached or written just now",
 }
 LOST_NOTHING = "Nothing was stored or changed."
 REFUSED = {
@@ -136,6 +140,15 @@ def _unforeseen(request: Request, error: Exception) -> Response:
     return answer
 
 
+def _no_database(request: Request, error: Exception) -> Response:
+    """A database that is busy, full, read-only or gone: said without its name and path."""
+    logging.getLogger("rillbook").error("%s", error)
+    detail = f"{LOST_NOTHING} Try again in a minute; if it stays so, tell who runs this server."
+    answer = problem(503, detail) if is_api(request) else error_page(request, 503, detail)
+    answer.headers["Retry-After"] = "30"
+    return answer
+
+
 def _shown(value: Any) -> Any:
     """A refused value as an answer can carry it: short, and neither NaN nor half a character."""
     if value is None or isinstance(value, bool) or (isinstance(value, float) and isfinite(value)):
@@ -156,4 +169,6 @@ def install(app: FastAPI) -> None:
     app.add_exception_handler(RequestValidationError, _validation)
     app.add_exception_handler(RefusedError, _refused)
     app.add_exception_handler(NoWayInError, _needs_way_in)
+    app.add_exception_handler(DatabaseError, _no_database)
+    app.add_exception_handler(OperationalError, _no_database)
     app.add_exception_handler(Exception, _unforeseen)

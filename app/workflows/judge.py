@@ -11,22 +11,18 @@ from datetime import UTC, date, datetime, time, timedelta, timezone
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
-from app.errors import InputError
 from app.science.quantities import QUANTITIES
 from app.storage import book, judgement
 from app.storage.database import Database
 from app.storage.tables import SensorEntry, SpanMark, Station
 from app.workflows.bring_up_to_date import up_to_date
+from app.workflows.once import EntryError, once
 
 VERDICTS = ("bad", "good")
 KINDS = ("calibration", "cleaning", "levelling", "moved", "note")
 FACTORS = (0.5, 2.0)
 """A calibration outside these is a slip of the pen (working value)."""
 LONGEST_TEXT = 400
-
-
-class JudgementError(InputError):
-    """A mark or entry that cannot be taken; the message says which value, why, and the remedy."""
 
 
 def mark_span(
@@ -46,12 +42,12 @@ def mark_span(
     """Mark a quantity's readings bad or good, local standard time, both days included.
 
     Without times the span is whole days. Returns the mark's number; the same token again changes
-    nothing. Raises JudgementError.
+    nothing. Raises EntryError.
     """
     if quantity not in QUANTITIES:
-        raise JudgementError(f"there is no quantity {quantity!r}")
+        raise EntryError(f"there is no quantity {quantity!r}")
     if verdict not in VERDICTS:
-        raise JudgementError(f"verdict is {verdict!r}; choose bad or good")
+        raise EntryError(f"verdict is {verdict!r}; choose bad or good")
     said = _text(why, "why")
     with db.write() as session:
         station = _station(session, station_key)
@@ -63,8 +59,9 @@ def mark_span(
             else datetime.combine(last, to_time, zone)
         )
         if end <= start:
-            raise JudgementError(f"the span ends {end:%Y-%m-%d %H:%M}, not after its start")
-        already = session.scalar(select(SpanMark.id).where(SpanMark.origin == token))
+            raise EntryError(f"the span ends {end:%Y-%m-%d %H:%M}, not after its start")
+        origin = once(token, station.id)
+        already = session.scalar(select(SpanMark.id).where(SpanMark.origin == origin))
         if already is not None:
             return already
         mark = SpanMark(
@@ -76,7 +73,7 @@ def mark_span(
             why=said,
             who=who,
             entered=datetime.now(UTC),
-            origin=token,
+            origin=origin,
         )
         session.add(mark)
         session.flush()
@@ -96,29 +93,30 @@ def log_sensor(
     quantity: str | None = None,
     factor: float | None = None,
 ) -> int:
-    """Add a line to a station's sensor log; raises JudgementError.
+    """Add a line to a station's sensor log; raises EntryError.
 
     A calibration names its quantity and the factor that multiplies the readings from `day` on, in
     place of the factor before.
     """
     if kind not in KINDS:
-        raise JudgementError(f"kind is {kind!r}; choose one of {', '.join(KINDS)}")
+        raise EntryError(f"kind is {kind!r}; choose one of {', '.join(KINDS)}")
     if quantity is not None and quantity not in QUANTITIES:
-        raise JudgementError(f"there is no quantity {quantity!r}")
+        raise EntryError(f"there is no quantity {quantity!r}")
     if kind == "calibration":
         if quantity is None or factor is None:
-            raise JudgementError("a calibration needs the quantity and the factor")
+            raise EntryError("a calibration needs the quantity and the factor")
         if not (math.isfinite(factor) and FACTORS[0] <= factor <= FACTORS[1]):
-            raise JudgementError(
+            raise EntryError(
                 f"factor is {factor:g}; it multiplies the readings and must lie between "
                 f"{FACTORS[0]:g} and {FACTORS[1]:g}"
             )
     elif factor is not None:
-        raise JudgementError("only a calibration has a factor")
+        raise EntryError("only a calibration has a factor")
     said = _text(note, "note") if kind != "calibration" or note.strip() else ""
     with db.write() as session:
         station = _station(session, station_key)
-        already = session.scalar(select(SensorEntry.id).where(SensorEntry.origin == token))
+        origin = once(token, station.id)
+        already = session.scalar(select(SensorEntry.id).where(SensorEntry.origin == origin))
         if already is not None:
             return already
         entry = SensorEntry(
@@ -130,7 +128,7 @@ def log_sensor(
             note=said,
             who=who,
             entered=datetime.now(UTC),
-            origin=token,
+            origin=origin,
         )
         session.add(entry)
         session.flush()
@@ -140,11 +138,11 @@ def log_sensor(
 
 
 def take_back_mark(db: Database, mark_id: int, who: str, token: str, today: date) -> None:
-    """A mark no longer counts; it stays in the history. Raises JudgementError."""
+    """A mark no longer counts; it stays in the history. Raises EntryError."""
     with db.write() as session:
         old = session.get(SpanMark, mark_id)
         if old is None or old.verdict == judgement.VOID:
-            raise JudgementError(f"there is no mark {mark_id}")
+            raise EntryError(f"there is no mark {mark_id}")
         if judgement.superseded(session, old):
             return
         station = session.get_one(Station, old.station_id)
@@ -159,7 +157,7 @@ def take_back_mark(db: Database, mark_id: int, who: str, token: str, today: date
                 who=who,
                 entered=datetime.now(UTC),
                 supersedes=old.id,
-                origin=token,
+                origin=once(token, old.station_id),
             )
         )
         session.flush()
@@ -172,7 +170,7 @@ def take_back_entry(db: Database, entry_id: int, who: str, token: str, today: da
     with db.write() as session:
         old = session.get(SensorEntry, entry_id)
         if old is None or old.kind == judgement.VOID:
-            raise JudgementError(f"there is no entry {entry_id} in a sensor log")
+            raise EntryError(f"there is no entry {entry_id} in a sensor log")
         if judgement.superseded(session, old):
             return
         session.add(
@@ -186,7 +184,7 @@ def take_back_entry(db: Database, entry_id: int, who: str, token: str, today: da
                 who=who,
                 entered=datetime.now(UTC),
                 supersedes=old.id,
-                origin=token,
+                origin=once(token, old.station_id),
             )
         )
         session.flush()
@@ -197,16 +195,16 @@ def take_back_entry(db: Database, entry_id: int, who: str, token: str, today: da
 def _station(session: Session, key: str) -> Station:
     station = book.find(session, Station, key)
     if station is None:
-        raise JudgementError(f"there is no station {key!r}")
+        raise EntryError(f"there is no station {key!r}")
     return station
 
 
 def _text(text: str, name: str) -> str:
     said = " ".join(text.split())
     if not said:
-        raise JudgementError(f"{name} is empty; say in a few words what was seen")
+        raise EntryError(f"{name} is empty; say in a few words what was seen")
     if len(said) > LONGEST_TEXT:
-        raise JudgementError(f"{name} is longer than {LONGEST_TEXT} letters; say it shorter")
+        raise EntryError(f"{name} is longer than {LONGEST_TEXT} letters; say it shorter")
     return said
 
 

@@ -5,29 +5,23 @@ once-only token, so that sending it twice changes nothing.
 """
 
 import math
-import re
 from datetime import UTC, date, datetime, timedelta
 
 from sqlalchemy import select
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
-from app.errors import InputError
 from app.storage import book
 from app.storage.database import Database
 from app.storage.events import VOID, head_of
 from app.storage.tables import Block, Event, Field
 from app.workflows.bring_up_to_date import up_to_date
+from app.workflows.once import EntryError, once
 
 UNITS = {"hours": 1000.0, "gross_mm": 1000.0, "net_mm": 1000.0, "volume_m3": 1e8, "rain_mm": 1000.0}
 """The greatest amount taken in each unit; more is a slip of the pen."""
 PURPOSES = {"crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"}
-TOKEN = re.compile(r"[A-Za-z0-9._-]{1,200}")
 CONFIRMATIONS = {"advised", "presumed", "reported", "metered", "measured"}
-
-
-class EventError(InputError):
-    """An entry that cannot be taken; the message says which value, why, and the remedy."""
 
 
 def log_irrigation(
@@ -46,15 +40,15 @@ def log_irrigation(
 ) -> int:
     """Log water put on a field, or on one of its blocks; a volume is shared by area.
 
-    Returns the number of the (first) event. Raises EventError.
+    Returns the number of the (first) event. Raises EntryError.
     """
     if unit == "rain_mm":
-        raise EventError("rain is logged as rain, not as irrigation")
+        raise EntryError("rain is logged as rain, not as irrigation")
     if purpose not in PURPOSES:
-        raise EventError(f"purpose is {purpose!r}; choose one of {', '.join(sorted(PURPOSES))}")
+        raise EntryError(f"purpose is {purpose!r}; choose one of {', '.join(sorted(PURPOSES))}")
     if confirmation not in CONFIRMATIONS:
         choices = ", ".join(sorted(CONFIRMATIONS))
-        raise EventError(f"confirmation is {confirmation!r}; choose one of {choices}")
+        raise EntryError(f"confirmation is {confirmation!r}; choose one of {choices}")
     _check(day, amount, unit, today)
     return _log(
         db, "irrigation", field_key, block_key, day, amount, unit, purpose, confirmation, note,
@@ -72,7 +66,7 @@ def log_rain(
     today: date,
     note: str | None = None,
 ) -> int:
-    """Log rain of a field's own gauge, in place of its station's; raises EventError."""
+    """Log rain of a field's own gauge, in place of its station's; raises EntryError."""
     _check(day, rain_mm, "rain_mm", today)
     return _log(
         db, "rain", field_key, None, day, rain_mm, "rain_mm", "crop", "measured", note,
@@ -91,27 +85,27 @@ def correct_event(
     today: date,
     note: str | None = None,
 ) -> int:
-    """Put a corrected entry in place of an event; raises EventError."""
+    """Put a corrected entry in place of an event; raises EntryError."""
     _check(day, amount, unit, today)
     return _supersede(db, event_id, None, day, amount, unit, note, who, token, today)
 
 
 def void_event(db: Database, event_id: int, who: str, token: str, today: date) -> None:
-    """Delete an event: it stays in the history and no longer counts; raises EventError."""
+    """Delete an event: it stays in the history and no longer counts; raises EntryError."""
     _supersede(db, event_id, VOID, None, None, None, None, who, token, today)
 
 
 def _check(day: date, amount: float, unit: str, today: date) -> None:
     if unit not in UNITS:
-        raise EventError(f"unit is {unit!r}; choose one of {', '.join(UNITS)}")
+        raise EntryError(f"unit is {unit!r}; choose one of {', '.join(UNITS)}")
     if not math.isfinite(amount) or amount < 0 or (amount == 0 and unit != "rain_mm"):
-        raise EventError(f"amount is {amount:g}; it must be a number above 0")
+        raise EntryError(f"amount is {amount:g}; it must be a number above 0")
     if amount > UNITS[unit]:
-        raise EventError(f"amount is {amount:g} {unit}; more than {UNITS[unit]:g} is not taken")
+        raise EntryError(f"amount is {amount:g} {unit}; more than {UNITS[unit]:g} is not taken")
     if day > today + timedelta(days=1):
-        raise EventError(f"day is {day}; log water when it has run, at the latest for tomorrow")
+        raise EntryError(f"day is {day}; log water when it has run, at the latest for tomorrow")
     if day.year < 1980:
-        raise EventError(f"day is {day}; give a day from 1980 on")
+        raise EntryError(f"day is {day}; give a day from 1980 on")
 
 
 def _log(
@@ -136,8 +130,8 @@ def _log(
         blocks = list(session.scalars(wanted))
         if not blocks:
             part = f" with a block {block_key!r}" if block_key else ""
-            raise EventError(f"there is no field {field_key!r}{part}")
-        origin = _origin(token, blocks[0].id)
+            raise EntryError(f"there is no field {field_key!r}{part}")
+        origin = once(token, blocks[0].id)
         already = session.scalar(select(Event.id).where(Event.origin == origin))
         if already is not None:
             return already
@@ -156,7 +150,7 @@ def _log(
                 note=note,
                 who=who,
                 entered=datetime.now(UTC),
-                origin=_origin(token, block.id),
+                origin=once(token, block.id),
             )
             session.add(event)
             session.flush()
@@ -182,14 +176,14 @@ def _supersede(
         with db.write() as session:
             old = session.get(Event, event_id)
             if old is None or old.kind == VOID:
-                raise EventError(f"there is no event {event_id}")
-            origin = _origin(token, old.block_id)
+                raise EntryError(f"there is no event {event_id}")
+            origin = once(token, old.block_id)
             already = session.scalar(select(Event.id).where(Event.origin == origin))
             if already is not None:
                 return already
             _still_stands(session, old)
             if unit is not None and (old.kind == "rain") != (unit == "rain_mm"):
-                raise EventError(f"event {event_id} is {old.kind}; it cannot become {unit}")
+                raise EntryError(f"event {event_id} is {old.kind}; it cannot become {unit}")
             event = Event(
                 block_id=old.block_id,
                 kind=kind or old.kind,
@@ -210,16 +204,7 @@ def _supersede(
             up_to_date(session, today)
             return event.id
     except IntegrityError:
-        raise EventError(_CHANGED) from None
-
-
-def _origin(token: str, block: int) -> str:
-    """What marks an entry as come from this form; a book's own marks cannot be imitated."""
-    if not TOKEN.fullmatch(token):
-        raise EventError(
-            f"token is {token[:40]!r}; it must be 1 to 200 letters, figures and any of . - _"
-        )
-    return f"{token}/{block}"
+        raise EntryError(_CHANGED) from None
 
 
 _CHANGED = "this entry was changed by somebody else meanwhile; look at it again"
@@ -227,4 +212,4 @@ _CHANGED = "this entry was changed by somebody else meanwhile; look at it again"
 
 def _still_stands(session: Session, event: Event) -> None:
     if head_of(session, event).id != event.id:
-        raise EventError(_CHANGED)
+        raise EntryError(_CHANGED)

@@ -5,11 +5,12 @@ new), or previewed -> away (put away unread). Only `apply` and `undo` change rea
 transaction together with all that follows from it.
 """
 
-from dataclasses import asdict, dataclass, field
+from dataclasses import asdict, dataclass, field, replace
 from datetime import UTC, date, datetime
 from pathlib import PurePath
 from typing import Any, BinaryIO
 
+import numpy as np
 from sqlalchemy import select
 from sqlalchemy.orm import Session
 
@@ -20,11 +21,14 @@ from app.intake import (
     Mapping,
     Problem,
     Reading,
+    Rows,
     Sniffed,
+    check_mapping,
     pack,
     read,
     sniff,
     station_day,
+    unanswered,
 )
 from app.intake.model import Progress
 from app.storage import book, intakes
@@ -98,11 +102,11 @@ def receive(
 ) -> int:
     """Keep a file for a station and preview it; returns the intake's number.
 
-    With `as_stated` the mapping given is read as it stands and nothing of the file is guessed.
-
-    A file that cannot be read is kept too, with the message that says why. Raises TakeInError
-    when there is no such station.
+    With `as_stated` the mapping given is read as it stands and nothing of the file is guessed;
+    else it must be of this file's header. A file that cannot be read is kept too, with the message
+    that says why. Raises TakeInError for no such station and a mapping that contradicts itself.
     """
+    _checked(mapping)
     sha256, pieces = intakes.compress(source)
     with db.read() as session:
         station = _station(session, station_key)
@@ -122,11 +126,19 @@ def receive(
 
 
 def remap(db: Database, intake_id: int, mapping: Mapping, who: str) -> None:
-    """Preview again with a corrected mapping; raises TakeInError."""
+    """Preview again with a corrected mapping, read as it stands; raises TakeInError."""
+    _checked(mapping)
     with db.read() as session:
         intake = _open(session, intake_id)
+        before = intake.summary
         with intakes.open_file(session, intake_id) as source:
-            seen = _look(session, intake.station, source, mapping, None)
+            seen = _look(session, intake.station, source, mapping, None, as_stated=True)
+    for told in ("columns", "notes", "remembered"):
+        seen.summary[told] = before.get(told, seen.summary.get(told))
+    asked = {question["field"]: question for question in before.get("questions", [])}
+    seen.summary["questions"] = [
+        asked.get(question["field"], question) for question in seen.summary.get("questions", [])
+    ]
     with db.write() as session:
         intake = _open(session, intake_id)
         intake.who = who
@@ -294,7 +306,8 @@ def _look(
     try:
         if as_stated and mapping is not None:
             columns = len(mapping.columns)
-            sniffed = Sniffed(mapping, (), ((),) * columns, ("as stated",) * columns)
+            asked = tuple(unanswered(mapping))
+            sniffed = Sniffed(mapping, asked, ((),) * columns, ("as stated",) * columns)
         else:
             sniffed = _sniff(session, station, source, clock, mapping)
         used = sniffed.mapping.model_dump(mode="json")
@@ -312,8 +325,39 @@ def _look(
         len(rows),
         as_day(days.min()) if len(rows) else None,
         as_day(days.max()) if len(rows) else None,
-        reading.problems,
+        (*_ahead_of_time(rows), *reading.problems),
     )
+
+
+def _ahead_of_time(rows: Rows) -> tuple[Problem, ...]:
+    """A warning where rows are dated after now: the year, the order of the date or a clock."""
+    now = datetime.now(UTC)
+    late = np.flatnonzero(rows.instant > now.timestamp() + 3600.0)
+    if not late.size:
+        return ()
+    first = datetime.fromtimestamp(int(rows.instant[late[0]]), UTC)
+    return (
+        Problem(
+            line=int(rows.line[late].min()),
+            last_line=int(rows.line[late].max()),
+            column="(date)",
+            value=f"{first:%Y-%m-%d %H:%M} UTC",
+            why=f"dated after now ({now:%Y-%m-%d %H:%M} UTC)",
+            remedy="See whether the year, the order of day and month, or the logger's clock is "
+            "wrong before you take the file in; such readings count once their day has come.",
+            severity="warning",
+            count=int(late.size),
+        ),
+    )
+
+
+def _checked(mapping: Mapping | None) -> None:
+    if mapping is None:
+        return
+    try:
+        check_mapping(mapping)
+    except IntakeError as error:
+        raise TakeInError(str(error)) from None
 
 
 def _keep(session: Session, intake: Intake, look: _Look) -> None:
@@ -335,7 +379,14 @@ def _sniff(
     """A given mapping is kept to; else the one remembered for this header; else a guess."""
     source.seek(0)
     if mapping is not None:
-        return sniff(source, clock, mapping)
+        found = sniff(source, clock, mapping)
+        if not found.remembered:
+            raise IntakeError(
+                "The mapping given is of another header, or its dates are not those of this file: "
+                "take the mapping that a preview of this file shows."
+            )
+        stated = {"interval_s": mapping.interval_s or found.mapping.interval_s}
+        return replace(found, mapping=found.mapping.model_copy(update=stated))
     sniffed = sniff(source, clock)
     known = intakes.remembered(session, station.id, sniffed.mapping.signature)
     if known is None:
@@ -366,7 +417,9 @@ def _brings(session: Session, station: Station, reading: Reading, clock: Clock) 
         "rows_differing": compared.differing,
         "days_changed": [str(day) for day in compared.days],
         "fields_touched": intakes.fields_fed(session, station.id) if compared.days else 0,
-        "problems_total": len(reading.problems) + reading.counts.problems_not_listed,
+        "problems_total": len(_ahead_of_time(reading.rows))
+        + len(reading.problems)
+        + reading.counts.problems_not_listed,
         "counts": asdict(reading.counts),
     }
 

@@ -3,8 +3,9 @@
 from typing import Any
 
 import pytest
+from sqlalchemy import create_engine, event, text
 
-from app.storage.database import Database
+from app.storage.database import Database, _begin_sqlite
 from tests.web.conftest import Browser
 from tests.workflows import basin
 
@@ -142,3 +143,38 @@ def test_pages_and_api_on_both_databases(db: Database) -> None:
         assert answer.status_code == 200, (path, answer.text[:300])
     odd = {"day": "2026-06-30", "amount": 1, "token": "nul\0nul", "note": "a\0b"}
     assert browser.post(f"{BASE}/events", json=odd).status_code == 201
+
+
+@pytest.mark.parametrize(
+    ("place", "change", "says"),
+    [
+        (1, {"quantity": "temprature"}, "'temprature' is no quantity known here"),
+        (0, {"quantity": "rain", "unit": "mm"}, "a column that says when cannot be read as rain"),
+        (2, {"quantity": "air_temperature_max"}, "are both mapped to air_temperature_max"),
+        (1, {"unit": "mm"}, "the unit 'mm' does not measure"),
+    ],
+)
+def test_a_mapping_that_contradicts_itself_is_refused_by_column(
+    live: Browser, place: int, change: dict[str, Any], says: str
+) -> None:
+    sent = {"file": ("found.csv", FOUND.encode(), "text/csv")}
+    made = live.post("/api/v1/intakes", data={"station": "bench"}, files=sent).json()
+    mapping = made["mapping"]
+    mapping["columns"][place].update(change)
+    answer = live.request("PUT", f"/api/v1/intakes/{made['id']}/mapping", json=mapping)
+    assert answer.status_code == 422
+    assert says in answer.json()["detail"]
+
+
+def test_a_database_that_another_holds_is_said_so(live: Browser, monkeypatch: Any) -> None:
+    with live.db.write() as session:
+        session.execute(text("SELECT 1"))  # takes the lock
+        monkeypatch.setattr(
+            live.db, "engine", create_engine(live.db.url, connect_args={"timeout": 0.1})
+        )
+        event.listen(live.db.engine, "begin", _begin_sqlite)
+        answer = live.post(f"{BASE}/events", json={**EVENT, "token": "busy"})
+    assert answer.status_code == 503
+    assert answer.headers["retry-after"]
+    assert "Nothing was stored" in answer.json()["detail"]
+    assert live.db.url not in answer.text

@@ -11,12 +11,12 @@ from app.storage.database import Database
 from app.storage.tables import LedgerDay, SensorEntry, SpanMark, StationDay
 from app.workflows import take_in
 from app.workflows.judge import (
-    JudgementError,
     log_sensor,
     mark_span,
     take_back_entry,
     take_back_mark,
 )
+from app.workflows.once import EntryError
 from tests.workflows import basin
 
 DAY = date(2026, 6, 15)
@@ -153,7 +153,7 @@ def test_the_log_keeps_what_was_done_at_the_mast(db: Database) -> None:
 )
 def test_a_mark_that_makes_no_sense_is_refused(db: Database, more: dict, says: str) -> None:
     basin.fill(db)
-    with pytest.raises(JudgementError, match=says):
+    with pytest.raises(EntryError, match=says):
         mark(db, **more)
 
 
@@ -172,5 +172,5 @@ def test_an_entry_that_makes_no_sense_is_refused(
     db: Database, kind: str, quantity: str | None, factor: float | None, says: str
 ) -> None:
     basin.fill(db)
-    with pytest.raises(JudgementError, match=says):
+    with pytest.raises(EntryError, match=says):
         log_sensor(db, "bench", kind, DAY, "said", "admin", "f", basin.TODAY, quantity, factor)

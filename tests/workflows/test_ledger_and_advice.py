@@ -15,12 +15,12 @@ from app.workflows.assemble import assemble
 from app.workflows.bring_up_to_date import bring_up_to_date
 from app.workflows.load_book import load_book
 from app.workflows.log_event import (
-    EventError,
     correct_event,
     log_irrigation,
     log_rain,
     void_event,
 )
+from app.workflows.once import EntryError
 from tests.workflows import basin
 
 
@@ -128,7 +128,7 @@ def test_an_irrigation_logged_corrected_and_deleted(db: Database) -> None:
 
     corrected = correct_event(db, number, day, 18, "gross_mm", "advisor", "form-2", basin.TODAY)
     assert ledger_of(db, "whole")[day].irrigation_gross_mm == 18
-    with pytest.raises(EventError, match="changed by somebody else"):
+    with pytest.raises(EntryError, match="changed by somebody else"):
         correct_event(db, number, day, 9, "gross_mm", "advisor", "form-3", basin.TODAY)
     void_event(db, corrected, "advisor", "form-4", basin.TODAY)
     assert basin.derived(db) == before
@@ -167,7 +167,7 @@ def test_a_bad_entry_is_refused_by_name(
     db: Database, amount: float, unit: str, day: date, says: str
 ) -> None:
     basin.fill(db)
-    with pytest.raises(EventError, match=says):
+    with pytest.raises(EntryError, match=says):
         log_irrigation(db, "long-piece", None, day, amount, unit, "advisor", "f", basin.TODAY)
 
 

@@ -176,3 +176,38 @@ def test_a_killed_process_leaves_the_database_as_it_was(db: Database, database_u
     assert counted(db) == rows
     assert take_in.preview_of(db, number).state == "previewed"
     assert take_in.apply(db, number, "admin", basin.TODAY).days_changed == 30
+
+
+def test_what_a_person_said_of_the_step_is_kept(db: Database) -> None:
+    """A corrected mapping is read as it stands, not guessed again."""
+    basin.fill(db)
+    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    mapping = take_in.preview_of(db, number).mapping
+    assert mapping is not None
+    assert mapping.interval_s == 86400
+    before = take_in.preview_of(db, number)
+    take_in.remap(db, number, mapping.model_copy(update={"interval_s": 43200}), "admin")
+    seen = take_in.preview_of(db, number)
+    assert seen.mapping is not None
+    assert seen.mapping.interval_s == 43200
+    assert seen.columns == before.columns
+
+
+def test_a_given_mapping_of_another_header_is_not_passed_over(db: Database) -> None:
+    basin.fill(db)
+    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    mapping = take_in.preview_of(db, number).mapping
+    other = b"when,temperature (degC)\n2026-06-01,12\n2026-06-02,13\n2026-06-03,14\n"
+    number = take_in.receive(db, "bench", "b.csv", io.BytesIO(other), "admin", mapping)
+    assert "another header" in take_in.preview_of(db, number).message
+
+
+def test_rows_dated_after_now_are_warned_of(db: Database) -> None:
+    basin.fill(db)
+    wrong_year = basin.daily_csv(date(2026, 6, 1)).replace(b"\n2026-", b"\n2126-")
+    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(wrong_year), "admin")
+    seen = take_in.preview_of(db, number)
+    (warning,) = [item for item in seen.problems if "after now" in item.why]
+    assert (warning.line, warning.last_line, warning.count) == (2, 31, 30)
+    assert warning.value.startswith("2126-06-0")
+    assert seen.problems_total == len(seen.problems)

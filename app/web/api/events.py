@@ -11,6 +11,7 @@ from app.web.api.schemas import EventChange, EventIn, EventOut, Logged
 from app.web.needs import AsDatabase, AsKey, AsNumber, AsToday, Clean
 from app.web.pages.fields import own_blocks, own_event
 from app.web.problems import RefusedError
+from app.workflows.once import EntryError
 
 router = APIRouter(prefix="/api/v1", tags=["events"])
 
@@ -40,7 +41,7 @@ def _plain(row: store.EventRow) -> dict[str, Any]:
 @router.post("/fields/{key}/events", status_code=201)
 def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, event: EventIn) -> Logged:
     """Log an irrigation, or rain of the field's own gauge (`rain_mm`)."""
-    from app.workflows.log_event import EventError, log_irrigation, log_rain
+    from app.workflows.log_event import log_irrigation, log_rain
 
     own_blocks(db, viewer, key)
     try:
@@ -53,7 +54,7 @@ def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, event: Eve
                 db, key, event.block, event.day, event.amount, event.unit, viewer.who,
                 event.token, today, event.purpose, event.confirmation, event.note,
             )  # fmt: skip
-    except EventError as error:
+    except EntryError as error:
         raise refused(error) from None
     return Logged(id=number)
 
@@ -68,7 +69,7 @@ def correct(
     event: EventChange,
 ) -> Logged:
     """Put a corrected entry in place of one; the old one stays in the history."""
-    from app.workflows.log_event import EventError, correct_event
+    from app.workflows.log_event import correct_event
 
     own_event(db, viewer, key, event_id)
     try:
@@ -76,7 +77,7 @@ def correct(
             db, event_id, event.day, event.amount, event.unit, viewer.who, event.token, today,
             event.note,
         )  # fmt: skip
-    except EventError as error:
+    except EntryError as error:
         raise refused(error) from None
     return Logged(id=number)
 
@@ -91,12 +92,12 @@ def delete(
     token: Annotated[Clean, Query(min_length=4, max_length=80)],
 ) -> Response:
     """Delete an entry: it no longer counts, and stays in the history."""
-    from app.workflows.log_event import EventError, void_event
+    from app.workflows.log_event import void_event
 
     own_event(db, viewer, key, event_id)
     try:
         void_event(db, event_id, viewer.who, token, today)
-    except EventError as error:
+    except EntryError as error:
         raise refused(error) from None
     return Response(status_code=204)
 

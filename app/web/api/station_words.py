@@ -18,12 +18,12 @@ from app.web.pages.station_words import own_word, past_day
 from app.web.pages.stations import own_station
 from app.web.problems import RefusedError
 from app.workflows.judge import (
-    JudgementError,
     log_sensor,
     mark_span,
     take_back_entry,
     take_back_mark,
 )
+from app.workflows.once import EntryError
 from app.workflows.push_readings import MOST_ROWS, PushedRow, PushError, push_readings
 
 router = APIRouter(prefix="/api/v1", tags=["stations"])
@@ -198,7 +198,7 @@ def mark(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, given: Ma
             past_day(str(given.last), "last", today), given.verdict, given.why, viewer.who,
             given.token, today, _local(given.from_time) or time.min, _local(given.to_time),
         )  # fmt: skip
-    except JudgementError as error:
+    except EntryError as error:
         raise refused(error) from None
     return Logged(id=number)
 
@@ -234,7 +234,7 @@ def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, given: Ent
             db, key, given.kind, past_day(str(given.day), "day", today), given.note, viewer.who,
             given.token, today, given.quantity, given.factor,
         )  # fmt: skip
-    except JudgementError as error:
+    except EntryError as error:
         raise refused(error) from None
     return Logged(id=number)
 

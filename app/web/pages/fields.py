@@ -21,6 +21,7 @@ from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.working_view import working
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
+from app.workflows.once import EntryError
 
 router = APIRouter()
 Text = Annotated[Clean, Form(max_length=400)]
@@ -177,7 +178,7 @@ def log(
     token: Text = "",
 ) -> Response:
     """Log an irrigation, or rain of the field's own gauge."""
-    from app.workflows.log_event import EventError, log_irrigation, log_rain
+    from app.workflows.log_event import log_irrigation, log_rain
 
     own_blocks(db, viewer, key)
     token = token or secrets.token_urlsafe(12)
@@ -190,7 +191,7 @@ def log(
                 db, key, block or None, on, much, unit, viewer.who, token, today,
                 purpose, confirmation, note.strip() or None,
             )  # fmt: skip
-    except (EventError, RefusedError) as error:
+    except (EntryError, RefusedError) as error:
         typed = {"day": day, "amount": amount, "unit": unit, "note": note}
         return show(request, db, viewer, today, key, error=said(error), typed=typed)
     return back(key, block)
@@ -211,14 +212,14 @@ def correct(
     token: Text = "",
 ) -> Response:
     """Correct an entry: the old one stays in the history."""
-    from app.workflows.log_event import EventError, correct_event
+    from app.workflows.log_event import correct_event
 
     own_event(db, viewer, key, event_id)
     token = token or secrets.token_urlsafe(12)
     try:
         on, much = read_day(day, "the day"), read_number(amount, "the amount")
         correct_event(db, event_id, on, much, unit, viewer.who, token, today, note.strip())
-    except (EventError, RefusedError) as error:
+    except (EntryError, RefusedError) as error:
         return show(request, db, viewer, today, key, error=said(error))
     return back(key)
 
@@ -234,12 +235,12 @@ def delete(
     token: Text = "",
 ) -> Response:
     """Delete an entry: it no longer counts, and stays in the history."""
-    from app.workflows.log_event import EventError, void_event
+    from app.workflows.log_event import void_event
 
     own_event(db, viewer, key, event_id)
     try:
         void_event(db, event_id, viewer.who, token or secrets.token_urlsafe(12), today)
-    except EventError as error:
+    except EntryError as error:
         return show(request, db, viewer, today, key, error=said(error))
     return back(key)
 

@@ -20,6 +20,7 @@ from app.web.needs import AsDatabase, AsToday, read_day, read_number, without_nu
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.trouble import troubles
+from app.workflows.once import EntryError
 
 router = APIRouter()
 EVENTS_SHOWN_DAYS = 4
@@ -57,7 +58,7 @@ async def log(request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday
 
 
 def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: date) -> Response:
-    from app.workflows.log_event import EventError, log_irrigation
+    from app.workflows.log_event import log_irrigation
 
     sieve = view.Sieve(**{name: str(form.get(name, "")) for name in vars(view.Sieve())})
     token = without_nul(str(form.get("token", ""))) or secrets.token_urlsafe(12)
@@ -85,7 +86,7 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
             done.append(key)
         except RefusedError as error:
             errors[key] = f"{error.says} {error.remedy}".strip()
-        except EventError as error:
+        except EntryError as error:
             errors[key] = str(error)
     if request.headers.get("rillbook-fragment") == "rows":
         shown = set(filled)

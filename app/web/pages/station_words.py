@@ -16,12 +16,12 @@ from app.web.pages.fields import said
 from app.web.pages.stations import own_station, show
 from app.web.problems import RefusedError
 from app.workflows.judge import (
-    JudgementError,
     log_sensor,
     mark_span,
     take_back_entry,
     take_back_mark,
 )
+from app.workflows.once import EntryError
 
 router = APIRouter()
 Text = Annotated[Clean, Form(max_length=400)]
@@ -53,7 +53,7 @@ def mark(
             token or secrets.token_urlsafe(12), today,
             read_time(from_time, "the time from") or time.min, read_time(to_time, "the time until"),
         )  # fmt: skip
-    except (JudgementError, RefusedError) as error:
+    except (EntryError, RefusedError) as error:
         typed = {
             "quantity": quantity, "first": first, "last": last, "from_time": from_time,
             "to_time": to_time, "verdict": verdict, "why": why,
@@ -84,7 +84,7 @@ def log(
             token or secrets.token_urlsafe(12), today, quantity or None,
             read_number(factor, "the factor") if factor.strip() else None,
         )  # fmt: skip
-    except (JudgementError, RefusedError) as error:
+    except (EntryError, RefusedError) as error:
         typed = {"kind": kind, "day": day, "sensor": quantity, "factor": factor, "note": note}
         return show(request, db, viewer, today, key, error=said(error), typed=typed)
     return back(key)
