@@ -112,16 +112,18 @@ def test_why_no_better_rung() -> None:
 def test_flags_carry_their_figure() -> None:
     assert wording.flag_words("wind_low=0.31 rain_negative=-1") == [
         "wind is below 0.5 m/s (0.31)",
-        "rain is below zero (-1)",
+        "rain is below zero (−1)",
     ]
 
 
 def test_unsure_says_which_station_and_how_old() -> None:
-    said = wording.unsure("stale:lane:4 range:6", {"lane": "Sand Lane"})
-    assert said[0] == "Sand Lane: last data 4 days ago; check the soil."
+    said = wording.unsure("stale:lane:4 range:6", {"lane": "Sand Lane"}, date(2026, 7, 13))
+    assert said[0] == "Sand Lane: last data Thu 9 Jul; check the soil."
     assert "6 days" in said[1]
-    assert wording.unsure("stale:lane:9999", {}) == ["lane: has sent nothing yet; check the soil."]
-    assert wording.unsure("", {}) == []
+    assert wording.unsure("stale:lane:9999", {}, date(2026, 7, 13)) == [
+        "lane: has sent nothing yet; check the soil."
+    ]
+    assert wording.unsure("", {}, date(2026, 7, 13)) == []
 
 
 @pytest.mark.parametrize(

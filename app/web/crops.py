@@ -11,11 +11,12 @@ from app.wording import STAGES
 
 
 @cache
-def crop_name(crop: str) -> str:
-    """The handbook's name of a crop without its asides; the id where the handbook has none."""
+def crop_name(crop: str, whole: bool = False) -> str:
+    """The handbook's name of a crop, without its asides unless `whole`; the id where the handbook
+    has none."""
     row = handbook.crops().get(crop)
     name = row.crop_name if row is not None else crop.replace("_", " ")
-    short = name.split(":")[0].split("(")[0].split(", cutting")[0].strip()
+    short = name if whole else name.split(":")[0].split("(")[0].split(", cutting")[0].strip()
     return short[:1].lower() + short[1:]
 
 

@@ -60,7 +60,7 @@ def order(
         advice["standing"],
         wording.reason(advice["reason"], advice["figures"], advice["day"], today),
         wording.bound(advice["figures"], today),
-        tuple(wording.unsure(advice["unsure"], stations)),
+        tuple(wording.unsure(advice["unsure"], stations, advice["issued_on"])),
         state,
     )
 

@@ -1,6 +1,7 @@
 """What the Rounds show: rows already worded, sifted and put in order."""
 
 import json
+from collections import Counter
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from datetime import date, timedelta
@@ -48,6 +49,7 @@ class Row(NamedTuple):
     ran: str
     error: str
     typed: str
+    sure: bool
     standing: str = "none"
     unsure: str = ""
     others: str = ""
@@ -165,8 +167,10 @@ def in_standing(row: RoundsRow, standing: str) -> bool:
     return (row.standing or "none") == standing
 
 
-def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> Row:
-    """A row in words."""
+def word_row(
+    row: RoundsRow, facts: Facts, error: str = "", typed: str = "", sure: bool = False
+) -> Row:
+    """A row in words; `sure`: the hours typed only want saying a second time."""
     last = facts.events.get(row.block_id, ())[:2]
     ran = "; ".join(event_words(event, facts.today) for event in last)
     plain = Row(
@@ -177,13 +181,14 @@ def word_row(row: RoundsRow, facts: Facts, error: str = "", typed: str = "") -> 
         ran,
         error,
         typed,
+        sure,
     )
     if row.number is None:
         return plain
     watering = row.day is not None and row.gross_mm > 0
     return plain._replace(
         standing=row.standing or "none",
-        unsure=" ".join(wording.unsure(row.unsure, facts.stations)),
+        unsure=" ".join(wording.unsure(row.unsure, facts.stations, row.issued_on or facts.today)),
         others=" ".join(
             f"{other.block_name} is {other.standing}."
             for other in facts.ahead.get(row.field_id, ())
@@ -248,13 +253,24 @@ def event_words(event: EventRow, today: date) -> str:
 
 def crops_of(rows: Sequence[RoundsRow]) -> list[tuple[str, str]]:
     """The crops that stand on the fields, by name."""
-    return sorted({(row.crop, crop_name(row.crop)) for row in rows if row.crop}, key=lambda c: c[1])
+    keys = {row.crop for row in rows if row.crop}
+    short = Counter(crop_name(key) for key in keys)
+    named = [(key, crop_name(key, whole=short[crop_name(key)] > 1)) for key in keys]
+    return sorted(named, key=lambda crop: crop[1])
 
 
 def counts(rows: Sequence[RoundsRow]) -> list[tuple[str, int]]:
     """How many fields there are of each standing, and how many are unsure."""
     found = [(name, sum(row.standing == name for row in rows)) for name in ORDER]
     found.append(("unsure", sum(bool(row.unsure) for row in rows)))
+    return [(name, count) for name, count in found if count]
+
+
+def to_water(rows: Sequence[RoundsRow], today: date) -> list[tuple[str, int]]:
+    """How many fields the advice waters today and tomorrow."""
+    found = [
+        (wording.NEAR[n], sum(row.day == today + timedelta(days=n) for row in rows)) for n in (0, 1)
+    ]
     return [(name, count) for name, count in found if count]
 
 

@@ -38,7 +38,7 @@ def silence(last: date | None, today: date) -> str:
         return ""
     if age == STALE_DAYS:
         return f"Yesterday is missing; last data {wording.short_day(last)}."
-    return f"Nothing received for {wording.days(age - 1)}; last data {wording.short_day(last)}."
+    return f"Silent; last data {wording.short_day(last)}."
 
 
 def usual_rung(days: Sequence[RecentDay]) -> int:

@@ -2,8 +2,9 @@
 
 import warnings
 from collections.abc import Mapping
+from datetime import date, timedelta
 
-from app.wording.figures import days
+from app.wording.figures import MINUS, days, short_day
 
 CAUTION_TITLE = "Estimates to support a decision."
 CAUTION = (
@@ -111,10 +112,11 @@ PRINTED_UNITS = {
 }
 
 
-def unsure(codes: str, stations: Mapping[str, str]) -> list[str]:
+def unsure(codes: str, stations: Mapping[str, str], on: date) -> list[str]:
     """Why the mark stands beside the standing, a sentence for each code.
 
-    `stale:<station key>:<days>` and `range:<days>`; `stations` gives the names by key.
+    `stale:<station key>:<days>` and `range:<days>`; `stations` gives the names by key; `on` is the
+    morning of the advice.
     """
     said = []
     for code in codes.split():
@@ -122,7 +124,8 @@ def unsure(codes: str, stations: Mapping[str, str]) -> list[str]:
         if kind == "stale":
             station, _, age = rest.partition(":")
             name, old = stations.get(station, station), int(float(age))
-            last = "has sent nothing yet" if old >= 9999 else f"last data {days(old)} ago"
+            since = short_day(on - timedelta(days=old)) if old < 9999 else ""
+            last = f"last data {since}" if since else "has sent nothing yet"
             said.append(f"{name}: {last}; check the soil.")
         elif kind == "range":
             said.append(f"The range is wide: {days(int(float(rest)))} between early and late.")
@@ -247,7 +250,9 @@ def flag_words(flags: str) -> list[str]:
     said = []
     for flag in flags.split():
         name, _, figure = flag.partition("=")
-        said.append(f"{check_word(name)} ({figure})" if figure else check_word(name))
+        said.append(
+            f"{check_word(name)} ({figure.replace('-', MINUS)})" if figure else check_word(name)
+        )
     return said
 
 

@@ -33,8 +33,8 @@ REASONS = {
     ),
     "past_limit": "Past its limit: {depletion_mm:mm} of {limit_mm:mm}.",
     "no_chance_in_time": (
-        "Passes its limit {limit_day:on}; the first chance, {first_chance:near}, "
-        "comes too late to hold it."
+        "Passes its limit {limit_day:on}, before water can hold it; the first chance is "
+        "{first_chance:near}."
     ),
     "falling_behind": (
         "The system falls behind: at most {most_net_mm:mm} net every {interval_days:days}, "

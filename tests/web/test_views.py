@@ -82,7 +82,7 @@ def test_a_station_that_is_well_is_silent_on_the_strip() -> None:
 def test_silence_is_told_by_its_length() -> None:
     for back, text in (
         (2, "Yesterday is missing; last data Sun 12 Jul."),
-        (3, "Nothing received for 2 days; last data Sat 11 Jul."),
+        (3, "Silent; last data Sat 11 Jul."),
     ):
         assert said([], TODAY - timedelta(days=back)) == [text]
     assert said([], None) == ["Has sent nothing yet."]

@@ -25,6 +25,9 @@ from app.workflows.once import EntryError
 router = APIRouter()
 EVENTS_SHOWN_DAYS = 4
 LONGEST_RUN_H = 168  # a week; more in one row is a slip of the finger
+# Hours in one row above this many times the advised, and above these, are asked again (working
+# values).
+DOUBTED_SHARE, FREE_HOURS = 1.5, 12.0
 Short = Annotated[str, Query(max_length=80)]
 
 
@@ -68,9 +71,14 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
         if name.startswith("h.") and str(value).strip()
     }
     errors: dict[str, str] = {}
+    sure: set[str] = set()
     done: list[str] = []
     with db.read() as session:
         own = store.field_keys(session, viewer.farm)
+        rows = store.rounds_rows(session, store.last_morning(session, today), viewer.farm)
+    advised: dict[str, float] = {}
+    for row in rows:
+        advised[row.field_key] = max(advised.get(row.field_key, 0.0), row.hours or 0.0)
     for key, typed in filled.items():
         try:
             if key not in own:
@@ -82,6 +90,9 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
                     f"hours is {typed.strip()}; one run takes above 0, at most {LONGEST_RUN_H}.",
                     "Log longer runs day by day.",
                 )
+            if form.get(f"sure.{key}") != typed and (doubt := _doubt(hours, advised.get(key, 0.0))):
+                sure.add(key)
+                raise RefusedError(doubt, "If that is right, log it again as it stands.")
             log_irrigation(db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today)
             done.append(key)
         except RefusedError as error:
@@ -91,13 +102,21 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
     if request.headers.get("rillbook-fragment") == "rows":
         shown = set(filled)
         return _show(
-            request, db, viewer, today, view.Sieve(), errors, filled, only=shown, done=done
+            request, db, viewer, today, view.Sieve(), errors, filled, sure, only=shown, done=done
         )
     if errors:
-        return _show(request, db, viewer, today, sieve, errors, filled, done=done)
+        return _show(request, db, viewer, today, sieve, errors, filled, sure, done=done)
     query = sieve.query() | ({"logged": str(len(done))} if done else {})
     anchor = f"#{done[0]}" if done else ""
     return RedirectResponse(f"/?{urlencode(query)}{anchor}", status_code=303)
+
+
+def _doubt(hours: float, advised: float) -> str:
+    """What to ask of hours that look like a slip: far more than advised, or than a day has."""
+    if hours <= max(DOUBTED_SHARE * advised, FREE_HOURS):
+        return ""
+    said = f"the advice was {wording.number(advised, 1)} h" if advised else "no water was advised"
+    return f"{wording.number(hours, 1)} h? {said[:1].upper()}{said[1:]}."
 
 
 @router.post("/rounds/up-to-date")
@@ -117,6 +136,7 @@ def _show(
     sieve: view.Sieve,
     errors: dict[str, str] | None = None,
     typed: dict[str, str] | None = None,
+    sure: set[str] | None = None,
     only: set[str] | None = None,
     done: list[str] | None = None,
     logged: str = "",
@@ -153,6 +173,7 @@ def _show(
             facts,
             errors.get(row.field_key, ""),
             typed.get(row.field_key, "") if row.field_key in errors else "",
+            row.field_key in (sure or ()),
         )
         for row in sifted
     ]
@@ -176,6 +197,7 @@ def _show(
         found=found,
         more=view.parts(sieve, found),
         counts=view.counts(rows),
+        to_water=view.to_water(rows, today),
         asked=view.asked_for(rows, today),
         troubles=troubles(shown, recent, last, fields, today),
         sieve=sieve,
