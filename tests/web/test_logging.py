@@ -181,3 +181,18 @@ def test_hours_no_run_can_take_are_refused_in_the_row(live: Browser) -> None:
         assert f"hours is {typed}; one run takes above 0, at most 168." in answer.text
     events = live.get("/api/v1/fields/long-piece/events").json()
     assert not any(event["amount"] == 500 for event in events)
+
+
+def test_far_more_hours_than_advised_are_asked_again_before_they_are_logged(live: Browser) -> None:
+    form = {"token": "slip", "day": DAY, "h.long-piece": "60"}
+    before = depletion(live)
+    answer = live.post("/rounds/log", data=form)
+    assert answer.status_code == 422
+    assert "60.0 h?" in answer.text
+    assert "log it again as it stands" in answer.text
+    assert depletion(live) == before
+    assert 'name="sure.long-piece" value="60"' in answer.text
+    # another figure than the one asked about is asked again, the same one is logged
+    assert live.post("/rounds/log", data=form | {"sure.long-piece": "6"}).status_code == 422
+    assert live.post("/rounds/log", data=form | {"sure.long-piece": "60"}).status_code == 303
+    assert depletion(live) < before

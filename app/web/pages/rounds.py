@@ -88,11 +88,11 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
             if not 0 < hours <= LONGEST_RUN_H:
                 raise RefusedError(
                     f"hours is {typed.strip()}; one run takes above 0, at most {LONGEST_RUN_H}.",
-                    "Log longer runs day by day.",
+                    remedy="Log longer runs day by day.",
                 )
             if form.get(f"sure.{key}") != typed and (doubt := _doubt(hours, advised.get(key, 0.0))):
                 sure.add(key)
-                raise RefusedError(doubt, "If that is right, log it again as it stands.")
+                raise RefusedError(doubt, remedy="If that is right, log it again as it stands.")
             log_irrigation(db, key, None, day, hours, "hours", viewer.who, f"{token}.{key}", today)
             done.append(key)
         except RefusedError as error:
