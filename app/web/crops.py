@@ -6,7 +6,6 @@ from functools import cache
 from itertools import accumulate
 
 from app import handbook
-from app.handbook.rows import NotPublishedError
 from app.wording import STAGES
 
 
@@ -22,12 +21,8 @@ def crop_name(crop: str, whole: bool = False) -> str:
 
 @cache
 def published_stages(crop: str) -> Sequence[int] | None:
-    """The handbook's stage lengths of a crop, None where it has none."""
-    row = handbook.crops().get(crop)
-    try:
-        return row.stage_days if row is not None else None
-    except NotPublishedError:
-        return None
+    """The handbook's stage lengths of a crop, None where the handbook does not know it."""
+    return handbook.usable(crop, "single").stage_days if crop in handbook.crops() else None
 
 
 def season_day(planting: date, today: date) -> int:

@@ -6,7 +6,7 @@ from datetime import date, timedelta
 from itertools import accumulate
 from typing import Any
 
-from app import wording
+from app import handbook, wording
 from app.storage.pages_field import BlockRow, SeasonRow
 from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
@@ -212,6 +212,26 @@ def season_facts(season: SeasonRow | None) -> list[tuple[str, str]]:
         ),
         ("p of the table", wording.number(crop.depletion_fraction, 2)),
         ("limit", f"MAD {wording.share(crop.mad)} of TAW" if crop.mad is not None else "RAW"),
+        *_figures_from(season.details, symbol.lower()),
+    ]
+
+
+def _figures_from(details: Mapping[str, Any], symbol: str) -> list[tuple[str, str]]:
+    """Where the stage lengths and coefficients are from: the book, or a page of the handbook."""
+    usable = handbook.usable(details["crop"], details["coefficients"])
+    given = [details[f"{symbol}_{stage}"] for stage in ("ini", "mid", "end")]
+    own = "this farm’s book"
+    partly = f"{own}, else {usable.coefficients_source}"
+    return [
+        ("stages from", own if details["stage_days"] else usable.stages_source),
+        (
+            "coefficients from",
+            usable.coefficients_source
+            if not any(value is not None for value in given)
+            else partly
+            if None in given
+            else own,
+        ),
     ]
 
 

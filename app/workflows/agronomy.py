@@ -74,17 +74,16 @@ def _readily_evaporable(details: dict[str, Any], tew: float) -> float:
 
 def crop_season(details: dict[str, Any], planting: date) -> CropSeason:
     """A season: the handbook's row of its crop, under what the book overrides."""
-    row = handbook.crop(details["crop"])
-    dual = details["coefficients"] == "dual"
-    names = ("kcb_ini", "kcb_mid", "kcb_end") if dual else ("kc_ini", "kc_mid", "kc_end")
-    given = [details[name] for name in names]
-    if None in given:
-        published = row.coefficients(details["coefficients"])
-        given = [p if g is None else g for g, p in zip(given, published, strict=True)]
-    k_ini, k_mid, k_end = given
+    usable = handbook.usable(details["crop"], details["coefficients"])
+    row = usable.row
+    kind = "kcb" if details["coefficients"] == "dual" else "kc"
+    k_ini, k_mid, k_end = (
+        _over(details[f"{kind}_{stage}"], published)
+        for stage, published in zip(("ini", "mid", "end"), usable.coefficients, strict=True)
+    )
     return CropSeason(
         planting=np.datetime64(planting, "D"),
-        stage_days=_stages(details, row),
+        stage_days=tuple(details["stage_days"] or usable.stage_days),
         coefficients=details["coefficients"],
         k_ini=k_ini,
         k_mid=k_mid,
@@ -103,11 +102,6 @@ def crop_season(details: dict[str, Any], planting: date) -> CropSeason:
 
 def _over(given: float | None, published: float) -> float:
     return published if given is None else given
-
-
-def _stages(details: dict[str, Any], row: Any) -> tuple[int, int, int, int]:
-    stages = details["stage_days"] or row.stage_days
-    return (stages[0], stages[1], stages[2], stages[3])
 
 
 def application_system(details: dict[str, Any]) -> ApplicationSystem:

@@ -9,9 +9,12 @@ from typing import Any
 import pytest
 from sqlalchemy import func, select
 
+from app import handbook
 from app.book import Book, BookError, read_book
+from app.book.schema import SeasonPart
 from app.storage.database import Database
 from app.storage.tables import Block, BookChange, Event, LedgerDay, Season, Source
+from app.workflows import agronomy
 from app.workflows.bring_up_to_date import bring_up_to_date
 from app.workflows.load_book import load_book
 from app.workflows.log_event import void_event
@@ -156,3 +159,14 @@ def test_what_is_not_json_is_told_by_line(tmp_path: Path) -> None:
         read_book(path)
     with pytest.raises(BookError, match="cannot be read"):
         read_book(tmp_path / "none.json")
+
+
+@pytest.mark.parametrize("kind", ["dual", "single"])
+def test_every_crop_of_the_handbook_makes_a_season_by_its_name_alone(kind: str) -> None:
+    """119 crops; what the tables leave blank stands as a working value (FAO-56 Tables 11 to 22)."""
+    assert len(handbook.crops()) == 119
+    for key in handbook.crops():
+        part = SeasonPart(field="a", crop=key, planting=date(2026, 4, 1), coefficients=kind)
+        season = agronomy.crop_season(part.model_dump(mode="json"), part.planting)
+        assert sum(season.stage_days) > 30
+        assert season.k_mid > 0.0
