@@ -23,7 +23,10 @@ from app.science.energy.records import DailyWeather, Site
 
 MJ_A_DAY = 0.0864  # MJ m-2 d-1 of a mean flux of 1 W m-2
 _EPOCH = dt.date(1970, 1, 1)
-_FLUXES = ("shortwave_down", "shortwave_up", "longwave_down", "longwave_up", "net_radiation")
+_HEAT = ("soil_heat_flux", "sensible_heat", "latent_heat")
+_FLUXES = (
+    "shortwave_down", "shortwave_up", "longwave_down", "longwave_up", "net_radiation", *_HEAT,
+)  # fmt: skip
 _DAILY_FIELDS = {  # field of DailyWeather -> quantity of a daily row
     "tmax": "air_temperature_max", "tmin": "air_temperature_min", "tmean": "air_temperature",
     "rh_max": "relative_humidity_max", "rh_min": "relative_humidity_min",
@@ -138,7 +141,7 @@ def _figures(grid: Grid) -> dict[str, Figure]:
     for name in ("shortwave_down", "shortwave_up"):
         if name in grid.values:
             found[name] = _energy(sun_mean_of_day(grid, name))
-    for name in ("longwave_down", "longwave_up", "net_radiation"):
+    for name in ("longwave_down", "longwave_up", "net_radiation", *_HEAT):
         if name in grid.values:
             found[name] = _energy(mean_of_day(grid, name, night=True))
     if "rain" in grid.values:

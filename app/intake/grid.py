@@ -9,7 +9,11 @@ from numpy.typing import NDArray
 from app.intake.model import Floats, Instants, Rows
 from app.intake.pack import SECONDS_A_DAY
 from app.science.energy.checks import row_checks
-from app.science.energy.humidity import saturation_vapour_pressure
+from app.science.energy.humidity import (
+    atmospheric_pressure,
+    saturation_vapour_pressure,
+    vapour_pressure_psychrometer,
+)
 from app.science.energy.records import Site
 from app.science.energy.sun import elevation_at_instants
 
@@ -20,6 +24,7 @@ OFFSET_FROM = -2.0  # W m-2, night shortwave below it counts as offset (METHODS 
 _BETWEEN = (  # quantities that run on between two readings, so a gap can be bridged
     "air_temperature", "relative_humidity", "dew_point", "vapour_pressure", "wind_speed",
     "shortwave_down", "shortwave_up", "longwave_down", "longwave_up", "net_radiation", "pressure",
+    "wet_bulb", "soil_heat_flux", "sensible_heat", "latent_heat",
 )  # fmt: skip
 
 
@@ -34,6 +39,7 @@ class Grid:
     interval_s: float
     night: Bools
     values: dict[str, Floats]
+    pressure_kpa: float
     filled: dict[str, Bools] = field(default_factory=dict)
     tally: dict[tuple[str, str, str], Floats] = field(default_factory=dict)
 
@@ -104,7 +110,7 @@ def _empty(rows: Rows, site: Site, days: Instants) -> tuple[Grid, NDArray[np.int
     starts = day * SECONDS_A_DAY - offset
     instants = starts[:, None] + np.rint((np.arange(n) + 0.5) * width).astype(np.int64)
     sine, _ = elevation_at_instants(site.latitude_deg, site.longitude_deg, instants)
-    return Grid(day, width, sine <= 0.0, {}), place
+    return Grid(day, width, sine <= 0.0, {}, float(atmospheric_pressure(site.elevation_m))), place
 
 
 def _per_day(grid: Grid, day_place: NDArray[np.int64]) -> Floats:
@@ -143,6 +149,11 @@ def form_vapour_pressure(grid: Grid) -> None:
         ways.append(saturation_vapour_pressure(air) * values["relative_humidity"] / 100.0)
     if "dew_point" in values:
         ways.append(saturation_vapour_pressure(values["dew_point"]))
+    if air is not None and "wet_bulb" in values:
+        pressure = values.get("pressure", np.full(air.shape, np.nan))
+        pressure = np.where(np.isnan(pressure), grid.pressure_kpa, pressure)
+        told = vapour_pressure_psychrometer(air, values["wet_bulb"], pressure)
+        ways.append(np.where(told > 0.0, told, np.nan))
     if air is not None and "vapour_pressure_deficit" in values:
         deficit = values["vapour_pressure_deficit"]
         ways.append(np.maximum(saturation_vapour_pressure(air) - deficit, 0.0))

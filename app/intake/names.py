@@ -30,11 +30,11 @@ _LEAVE_OUT = (
      "another part of the light"),
     (r"cloud\w*|cld|totcld|opqcld|nubes|visibility|hvis|ceil\w*|pwat|aod|alb\w*|snow|nieve|moon",
      "not used"),
-    (r"chill|heat index|feels|apparent|thw|thsw|degree days?|gdd|wet bulb|wetbulb|twb", "derived"),
+    (r"chill|heat index|feels|apparent|thw|thsw|degree days?|gdd", "derived"),
     (r"case|body|sensor|housing|dome|internal|inside|interior|indoor|carcasa|cuerpo",
      "the instrument's own temperature"),
     (r"record|rec|recno|id|no|index|station|estacion|nr|num|serial|site", "a label"),
-    (r"heat flux|g flux|shf|soil heat|co2|no2|ozone|pm 10|lightning|snow depth|water depth"
+    (r"heat flux|co2|no2|ozone|pm 10|lightning|snow depth|water depth"
      r"|sea level|quantity", "not used"),
 )  # fmt: skip
 
@@ -43,8 +43,17 @@ _LW = r"longwave|long wave|lw|infrared|ir|onda larga|l|thermal|terrestrial"
 _DOWN = r"in|down|dn|d|incoming|incident\w*|entrante|descendente|i|from sky"
 _UP = r"out|up|u|outgoing|reflect\w*|reflej\w*|saliente|ascendente|r|o|emitted"
 
+# Taken before anything is left out: their words are also those of columns nobody should take.
+_HEAT_FLUXES: tuple[tuple[str, str], ...] = (
+    ("soil_heat_flux", r"(?:soil|ground) heat(?: flux)?|shf|g flux|flux g|g(?= |$)"
+     r"|(?:flujo de )?calor (?:del |en el )?suelo"),
+    ("sensible_heat", r"sensible(?: heat)?(?: flux)?|(?:flujo de )?calor sensible|hs|h flux|h"),
+    ("latent_heat", r"latent(?: heat)?(?: flux)?|(?:flujo de )?calor latente|le|l e"),
+)  # fmt: skip
+
 # In order: the first that matches, and whose unit (if any is written) measures it, is taken.
 _RULES: tuple[tuple[str, str], ...] = (
+    ("wet_bulb", r"wet ?bulb|twb|t wet|bulbo humedo|termometro humedo"),
     ("dew_point", r"dew ?point|dew|dewpt|rocio|td|tdew|dewp|tdp|dp"),
     ("vapour_pressure_deficit", r"vpd|deficit|saturation deficit"),
     ("vapour_pressure", r"vapou?r|vapor|ea|vp|avp|e a|hpa vapor"),
@@ -71,6 +80,7 @@ _LETTERS = {  # one-letter names stand only with a unit that fits, or alone
     "rain": {"p", "pp"},
     "pressure": {"p", "pa"},
 }
+_FLUXES = tuple((name, re.compile(rf"(?:^| )(?:{rule})(?= |$)")) for name, rule in _HEAT_FLUXES)
 _COMPILED = tuple((name, re.compile(rf"(?:^| )(?:{rule})(?= |$)")) for name, rule in _RULES)
 _LEFT = tuple((re.compile(rf"(?:^| )(?:{rule})(?= |$)"), why) for rule, why in _LEAVE_OUT)
 _WITH_EXTREMES = {"air_temperature", "relative_humidity"}
@@ -155,6 +165,10 @@ def _suffix_unit(bare: str, words: list[str], count: int) -> str | None:
 
 def _quantity(words: list[str], unit: str | None) -> tuple[str | None, str]:
     text = " ".join(words)
+    if unit and UNITS[unit].dimension == UNITS["W/m2"].dimension:
+        for quantity, pattern in _FLUXES:
+            if found := pattern.search(text):
+                return quantity, f"the name says {found.group().strip()!r}"
     for pattern, why in _LEFT:
         found = pattern.search(text)
         if found:

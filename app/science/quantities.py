@@ -45,22 +45,13 @@ _TABLE = (
     Quantity("sunshine_hours", "sunshine duration", "h", "sum", 0.0, 24.0),
     Quantity("rain", "rain", "mm", "sum", 0.0, 2000.0),
     Quantity("pressure", "air pressure", "kPa", "mean", 45.0, 110.0),
+    Quantity("wet_bulb", "wet bulb temperature", "degC", "mean", -50.0, 40.0),
+    Quantity("soil_heat_flux", "soil heat flux", "W/m2", "mean", -500.0, 500.0),
+    Quantity("sensible_heat", "sensible heat flux", "W/m2", "mean", -500.0, 1000.0),
+    Quantity("latent_heat", "latent heat flux", "W/m2", "mean", -500.0, 1200.0),
 )
 
 QUANTITIES: dict[str, Quantity] = {quantity.name: quantity for quantity in _TABLE}
-
-# What an energy balance station and a raw pyrgeometer record besides. Not in QUANTITIES until the
-# intake has names and words for them; then the two tables become one.
-BALANCE_QUANTITIES: dict[str, Quantity] = {
-    quantity.name: quantity
-    for quantity in (
-        Quantity("soil_heat_flux", "soil heat flux", "W/m2", "mean", -500.0, 500.0),
-        Quantity("sensible_heat", "sensible heat flux", "W/m2", "mean", -500.0, 1000.0),
-        Quantity("latent_heat", "latent heat flux", "W/m2", "mean", -500.0, 1200.0),
-        Quantity("wet_bulb", "wet bulb temperature", "degC", "mean", -50.0, 40.0),
-        Quantity("body_temperature", "pyrgeometer body temperature", "degC", "mean", -80.0, 80.0),
-    )
-}
 
 
 def outside(name: str, values: Floats) -> Bools:

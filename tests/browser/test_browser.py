@@ -144,7 +144,7 @@ def test_the_keyboard_reaches_the_rows_and_skips_the_frame(browser: Any, valley:
     for _ in range(30):
         page.keyboard.press("Tab")
         seen.append(page.evaluate("document.activeElement.getAttribute('aria-label')"))
-    assert "Long Piece" in seen
+    assert "Long Piece, hours" in seen
     page.close()
 
 

@@ -307,3 +307,27 @@ def test_the_order_of_days_is_kept() -> None:
     rows = rows_of(rain=np.repeat([0.1, 0.2, 0.3], 96))
     weather, _ = aggregate(rows, SITE, np.array([DAY + 1, DAY - 1, DAY]))
     np.testing.assert_allclose(weather.rain, [28.8, 9.6, 19.2])
+
+
+def test_heat_fluxes_of_a_crop_are_energies_of_the_day() -> None:
+    """40 W/m2 through a day are 3.456 MJ/m2; with a fifth of the night missing there is none."""
+    rows = rows_of(soil_heat_flux=40.0, sensible_heat=-25.0, latent_heat=100.0)
+    weather, _ = day_of(rows)
+    assert weather.soil_heat_flux[0] == pytest.approx(3.456)
+    assert weather.sensible_heat[0] == pytest.approx(-2.16)
+    assert weather.latent_heat[0] == pytest.approx(8.64)
+    rows.values["soil_heat_flux"][slots(0, 5)] = np.nan
+    weather, notes = day_of(rows)
+    assert np.isnan(weather.soil_heat_flux[0])
+    assert any(what == "missing" and name == "soil_heat_flux" for what, name, _, _ in notes)
+
+
+def test_vapour_pressure_from_the_wet_bulb() -> None:
+    """FAO-56 Example 4: 25.6 degC dry, 19.5 degC wet, at 1200 m (87.9 kPa): ea 1.91 kPa."""
+    site = Site(46.8, 6.9, 1200.0, 1.0)
+    air = 25.6 + np.where(np.arange(288) % 2 == 0, 0.05, -0.05)  # a constant day would be stuck
+    weather, _ = day_of(rows_of(air_temperature=air, wet_bulb=19.5), site)
+    assert weather.vapour_pressure[0] == pytest.approx(1.91, abs=0.005)
+    # where pressure is measured it is used
+    rows = rows_of(air_temperature=air, wet_bulb=19.5, pressure=87.9)
+    assert day_of(rows, SITE)[0].vapour_pressure[0] == pytest.approx(1.91, abs=0.005)

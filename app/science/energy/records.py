@@ -59,7 +59,8 @@ class DailyWeather:
     Arguments: `date` [datetime64[D]]; `tmax`, `tmin`, `tmean`, `dew_point` [degC]; `rh_max`,
     `rh_min`, `rh_mean` [%]; `vapour_pressure`, `pressure` [kPa]; `wind` [m s-1 at the site's
     wind height]; `shortwave_down`, `shortwave_up`, `longwave_down`, `longwave_up`,
-    `net_radiation` [MJ m-2 d-1]; `sunshine` [h]; `rain` [mm].
+    `net_radiation`, `soil_heat_flux`, `sensible_heat`, `latent_heat` [MJ m-2 d-1]; `sunshine`
+    [h]; `rain` [mm].
     Errors: ValueError naming the field whose shape differs from that of `date`.
     """
 
@@ -78,6 +79,9 @@ class DailyWeather:
     longwave_down: Floats
     longwave_up: Floats
     net_radiation: Floats
+    soil_heat_flux: Floats
+    sensible_heat: Floats
+    latent_heat: Floats
     sunshine: Floats
     pressure: Floats
     rain: Floats

@@ -141,7 +141,9 @@ def test_fault_is_set_aside(change: dict[str, float], check: str, aside: set[str
     lost = {
         name
         for name in vars(clean)
-        if name != "date" and np.isnan(getattr(after, name)[4]) and name in vars(bad)
+        if name != "date"
+        and np.isnan(getattr(after, name)[4])
+        and not np.isnan(getattr(clean, name)[4])
     }
     assert lost == aside
     for name in aside:  # the other days keep theirs

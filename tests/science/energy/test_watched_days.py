@@ -14,7 +14,6 @@ from app.science.energy.sensor_faults import sensor_faults
 from app.science.energy.station_day import explain_rung, station_days
 from app.science.energy.taught import Lessons
 from app.science.energy.watch import watch_rows
-from app.science.quantities import BALANCE_QUANTITIES, QUANTITIES
 from tests.science.energy.detection import frost, swapped, without_body
 from tests.science.energy.planted import Grid, payerne_grid
 from tests.science.energy.records import PAYERNE, payerne_days
@@ -133,8 +132,3 @@ def test_pyrgeometer_with_its_body() -> None:
     """A body at 20 degC emits 419 W m-2 (Stefan-Boltzmann); a signal of -90 leaves 329."""
     assert longwave_with_body(-90.0, 20.0) == pytest.approx(5.67e-8 * 293.16**4 - 90.0)
     assert np.isnan(longwave_with_body(np.nan, 20.0))
-
-
-def test_balance_quantities_are_apart() -> None:
-    assert not set(BALANCE_QUANTITIES) & set(QUANTITIES)
-    assert all(q.low < q.high for q in BALANCE_QUANTITIES.values())
