@@ -57,6 +57,8 @@ def reference_problems(book: Book, known: Known) -> list[str]:
     for station in book.stations:
         if station.teacher is not None:
             leads(f"stations {station.key}, teacher", "station", station.teacher, stations)
+        if station.stands_in is not None:
+            leads(f"stations {station.key}, stands_in", "field", station.stands_in, fields)
     for soil in book.soils:
         for number, layer in enumerate(soil.layers, 1):
             if layer.texture is not None:

@@ -40,6 +40,21 @@ class Part(BaseModel):
     model_config = ConfigDict(extra="forbid", allow_inf_nan=False, str_strip_whitespace=True)
 
 
+class WindFactorPart(Part):
+    """Factor by wind u [m/s]: linear k + a u, or saturating 1 + k a u / (k + a u)."""
+
+    form: Literal["linear", "saturating"]
+    k: Annotated[float, Field(ge=-2, le=2)]
+    a: Annotated[float, Field(ge=-1, le=1)]
+
+
+class NetWindPart(Part):
+    """Factors of readings above zero, and of the others; no factor where not given."""
+
+    positive: WindFactorPart | None = None
+    negative: WindFactorPart | None = None
+
+
 class StationPart(Part):
     """A weather station: where it stands and what lies under its radiometers."""
 
@@ -68,6 +83,15 @@ class StationPart(Part):
         description="dry surroundings: an unmeasured dew point is 2 degC below Tmin",
     )
     coastal: bool = Field(False, description="solar from temperature range as near a large water")
+    et_step: Literal["daily", "hourly"] = Field(
+        "daily", description="reference ET by the day, or by the hour and summed"
+    )
+    net_wind: NetWindPart | None = Field(
+        None, description="wind correction of a single net sensor, as its certificate states it"
+    )
+    stands_in: Key | None = Field(
+        None, description="the field over whose crop its heat fluxes are measured"
+    )
 
     @model_validator(mode="after")
     def _zone_is_known(self) -> Self:

@@ -13,6 +13,7 @@ Knows nothing of the database.
 from app.intake.aggregate import aggregate
 from app.intake.errors import IntakeError
 from app.intake.fold import fold
+from app.intake.hours import hours_of
 from app.intake.model import (
     Choice,
     Clock,
@@ -33,9 +34,10 @@ from app.intake.pack import pack, station_day, unpack
 from app.intake.questions import answer, check_mapping, unanswered
 from app.intake.read import read
 from app.intake.sniff import sniff
-from app.intake.watching import Watched, watched
+from app.intake.watching import SHAPE, Watched, watched
 
 __all__ = [
+    "SHAPE",
     "Choice",
     "Clock",
     "ColumnMap",
@@ -56,6 +58,7 @@ __all__ = [
     "answer",
     "check_mapping",
     "fold",
+    "hours_of",
     "pack",
     "read",
     "sniff",

@@ -15,6 +15,7 @@ from app.science.energy.humidity import (
     vapour_pressure_psychrometer,
 )
 from app.science.energy.records import Site
+from app.science.energy.soft_checks import soft_row_checks
 from app.science.energy.sun import elevation_at_instants
 
 Bools = NDArray[np.bool_]
@@ -49,9 +50,10 @@ def lay_out(
 ) -> Grid:
     """Rows of one common step (below a day) on the grid of `days` (sorted) and their neighbours.
 
-    Values that fail a hard check are set aside, night offsets and small negative shortwave become
-    zero, humidity above 100 % becomes 100, vapour pressure is formed row by row, and short gaps
-    are bridged. `good` (rows,) by quantity: values no check sets aside.
+    Values that fail a hard check are set aside, those that fail a soft one counted; night offsets
+    and small negative shortwave become zero, humidity above 100 % becomes 100, vapour pressure is
+    formed row by row, and short gaps are bridged. `good` (rows,) by quantity: values no check sets
+    aside.
     """
     grid, place = _empty(rows, site, days)
     kept = place >= 0
@@ -66,6 +68,10 @@ def lay_out(
         if failed.any():
             grid.tally["set_aside", quantity, name] = _per_day(grid, place[failed] // n)
             values[quantity][failed] = np.nan
+    for check, warns in soft_row_checks(site, middle, values).items():
+        quantity, _, name = check.partition("/")
+        if name != "offset" and warns.any():
+            grid.tally["warned", quantity, name] = _per_day(grid, place[warns] // n)
     _place(grid, place, values)
     _zero_night(grid)
     _clip_humidity(grid)

@@ -215,12 +215,12 @@ class DayPack:
 class DayNote:
     """What aggregation did to one quantity on one day.
 
-    `what`: "missing" (reason says why), "filled", "set_aside", "offset", "clipped" (figure: how
-    many intervals; for set_aside `reason` is the name of the check).
+    `what`: "missing" (reason says why), "filled", "set_aside", "offset", "clipped", "warned"
+    (figure: how many intervals; for set_aside and warned `reason` is the name of the check).
     """
 
     day: dt.date
     quantity: str
-    what: Literal["missing", "filled", "set_aside", "offset", "clipped"]
+    what: Literal["missing", "filled", "set_aside", "offset", "clipped", "warned"]
     figure: float
     reason: str

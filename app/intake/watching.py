@@ -1,12 +1,12 @@
 """The rows of days as the sensors' watch wants them: laid out as read, before any check."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from app.intake.grid import form_vapour_pressure, lay_out_as_read
-from app.intake.model import Rows
+from app.intake.model import Floats, Rows
 from app.intake.pack import SECONDS_A_DAY
 from app.science.energy.day_checks import Finding
 from app.science.energy.day_rows import day_rows
@@ -15,39 +15,66 @@ from app.science.energy.watch import watch_rows
 
 COARSEST_S = 3600
 """Rows further apart than this say too little of a morning to be watched."""
+SHAPE = {"clear_level": "level", "clear_tilt_deg": "tilt_east", "clear_clock_min": "clock"}
+"""What a clear day's curve says, under the names it is kept by."""
 
 
 @dataclass(frozen=True)
 class Watched:
-    """What watching rows gave: the rows with covered longwave replaced, findings and the widening
-    of net radiation [MJ m-2 d-1], (days,) each."""
+    """What watching rows gave: the rows with covered longwave replaced, findings, the widening of
+    net radiation [MJ m-2 d-1] (days,), and what clear days' curves say (days,), NaN elsewhere."""
 
     rows: Rows
     findings: tuple[Finding, ...]
     widening: NDArray[np.float64]
+    shape: dict[str, Floats] = field(default_factory=dict)
 
 
 def watched(
     rows: Rows, site: Site, days: NDArray[np.datetime64], surface: str | None = None
 ) -> Watched:
-    """Watch a station's radiometers over `days` (consecutive) on its finest rows.
+    """Watch a station's radiometers over `days` (consecutive), each day on its finest rows.
 
     `rows` as people have judged them; `surface` as declared. Covered longwave of at most a quarter
     of a day is replaced by the model, more is taken out. Nothing is watched on rows further apart
     than an hour.
     """
     wanted = np.asarray(days, "datetime64[D]").astype(np.int64)
-    nothing = Watched(rows, (), np.zeros(wanted.size))
-    steps = np.unique(rows.interval_s) if len(rows) else np.array([SECONDS_A_DAY])
-    step = int(steps[0])
-    if step > COARSEST_S or SECONDS_A_DAY % step or wanted.size == 0:
-        return nothing
-    fine = rows.interval_s == step
+    none = {name: np.full(wanted.size, np.nan) for name in SHAPE}
+    seen = Watched(rows, (), np.zeros(wanted.size), none)
+    if not len(rows) or wanted.size == 0:
+        return seen
+    finest = _finest_of_day(rows, site)
+    for step in np.unique(finest).tolist():
+        if step <= COARSEST_S and SECONDS_A_DAY % step == 0:
+            here = (rows.interval_s == step) & (finest == step)
+            seen = _watch_step(seen, site, wanted, here, surface)
+    return seen
+
+
+def _finest_of_day(rows: Rows, site: Site) -> NDArray[np.int64]:
+    """The finest step [s] on the local standard day of each row, (rows,)."""
+    middle = rows.instant + round(site.utc_offset_h * 3600) - rows.interval_s / 2
+    _, place = np.unique(np.floor(middle / SECONDS_A_DAY), return_inverse=True)
+    finest = np.full(place.max() + 1, SECONDS_A_DAY, np.int64)
+    np.minimum.at(finest, place, rows.interval_s.astype(np.int64))
+    return np.asarray(finest[place])
+
+
+def _watch_step(
+    seen: Watched,
+    site: Site,
+    wanted: NDArray[np.int64],
+    here: NDArray[np.bool_],
+    surface: str | None,
+) -> Watched:
+    """What the rows of one step add to what was seen; other days have no such rows."""
+    rows = seen.rows
     part = Rows(
-        rows.instant[fine],
-        rows.line[fine],
-        rows.interval_s[fine],
-        {name: column[fine] for name, column in rows.values.items()},
+        rows.instant[here],
+        rows.line[here],
+        rows.interval_s[here],
+        {name: column[here] for name, column in rows.values.items()},
     )
     grid, place = lay_out_as_read(part, site, wanted)
     form_vapour_pressure(grid)
@@ -57,12 +84,16 @@ def watched(
     findings = tuple(
         replace(found, where=found.where[at], figure=found.figure[at]) for found in watch.findings
     )
-    widening = watch.rn_widening(grid.day.size)[at]
+    shape = seen.shape
+    if watch.shape is not None:
+        told = {name: getattr(watch.shape, of)[at] for name, of in SHAPE.items()}
+        shape = {name: np.where(np.isnan(told[name]), shape[name], told[name]) for name in SHAPE}
     if watch.replaced is not None and "longwave_down" in rows.values:
-        told = watch.replaced.longwave_down.ravel()
         column = rows.values["longwave_down"].copy()
         known = place >= 0
-        given = np.flatnonzero(fine)[known]
-        column[given] = np.where(np.isnan(column[given]), np.nan, told[place[known]])
+        given = np.flatnonzero(here)[known]
+        longwave = watch.replaced.longwave_down.ravel()[place[known]]
+        column[given] = np.where(np.isnan(column[given]), np.nan, longwave)
         rows = replace(rows, values={**rows.values, "longwave_down": column})
-    return Watched(rows, findings, widening)
+    widening = seen.widening + watch.rn_widening(grid.day.size)[at]
+    return Watched(rows, (*seen.findings, *findings), widening, shape)

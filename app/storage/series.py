@@ -62,6 +62,22 @@ def read_series(
     return found
 
 
+def read_columns(
+    session: Session, station: int, first: date, last: date, names: Sequence[str]
+) -> tuple[NDArray[np.datetime64], dict[str, Floats]]:
+    """Columns of a station's stored days over first..last in time order, NaN for none."""
+    rows = session.execute(
+        select(StationDay.day, *(getattr(StationDay, name) for name in names))
+        .where(StationDay.station_id == station, StationDay.day.between(first, last))
+        .order_by(StationDay.day)
+    ).all()
+    table = np.array([tuple(row)[1:] for row in rows], dtype=np.float64).reshape(-1, len(names))
+    return (
+        np.array([row.day for row in rows], dtype="datetime64[D]"),
+        {name: table[:, place] for place, name in enumerate(names)},
+    )
+
+
 PAST_YEARS = ("eto", "rain")
 
 

@@ -365,6 +365,21 @@ class StationDay(Base):
     eto: Mapped[float | None]
     etr: Mapped[float | None]
     eto_uncertainty: Mapped[float | None]
+    eto_daily: Mapped[float | None]
+    """Of a station that goes by hours, what the daily equation gives; eto is then by hours."""
+    etr_daily: Mapped[float | None]
+    eto_hours: Mapped[float | None]
+    """The sum of its hours; None where they are not complete."""
+    etr_hours: Mapped[float | None]
+    net_radiation: Mapped[float | None]
+    """Over whatever lies under the sensors, as measured: four components, else a net sensor."""
+    soil_heat_flux: Mapped[float | None]
+    sensible_heat: Mapped[float | None]
+    latent_heat: Mapped[float | None]
+    clear_level: Mapped[float | None]
+    """Of a clear day: shortwave over clear sky, lean to the east, minutes the clock runs ahead."""
+    clear_tilt_deg: Mapped[float | None]
+    clear_clock_min: Mapped[float | None]
     flags: Mapped[str]
     notes: Mapped[str]
 

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from app import handbook
 from app.science.advice.system import ApplicationSystem
 from app.science.crop.season import CropSeason
+from app.science.energy.net_sensor import WindFactor
 from app.science.energy.station_day import Site
 from app.science.soil.profile import Layer, Profile
 
@@ -37,6 +38,19 @@ def site(details: dict[str, Any]) -> Site:
         arid=details["arid"],
         coastal=details["coastal"],
     )
+
+
+def net_wind(details: dict[str, Any]) -> tuple[WindFactor, WindFactor] | None:
+    """Wind factors of a station's net sensor, of readings above zero and of the others; None
+    without a certificate."""
+    stated = details.get("net_wind")
+    if stated is None:
+        return None
+    above, below = (
+        WindFactor() if stated[name] is None else WindFactor(**stated[name])
+        for name in ("positive", "negative")
+    )
+    return above, below
 
 
 def profile(details: dict[str, Any]) -> Profile:

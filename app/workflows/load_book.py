@@ -86,6 +86,7 @@ def _science_problems(book: Book) -> list[str]:
     """What science would refuse: a profile, a system, a season that makes no sense as a whole."""
     trials: list[tuple[str, Callable[[], object]]] = [
         *((f"stations {p.key}", partial(agronomy.site, _plain(p))) for p in book.stations),
+        *((f"stations {p.key}", partial(agronomy.net_wind, _plain(p))) for p in book.stations),
         *((f"soils {p.key}", partial(agronomy.profile, _plain(p))) for p in book.soils),
         *(
             (f"systems {p.key}", partial(agronomy.application_system, _plain(p)))

@@ -7,6 +7,7 @@ that lack what it measures.
 """
 
 from collections.abc import Iterator
+from dataclasses import replace
 from datetime import date, timedelta
 from typing import Any
 
@@ -14,8 +15,10 @@ import numpy as np
 from sqlalchemy import select, update
 from sqlalchemy.orm import Session
 
-from app.intake import Clock, DayNote, aggregate, watched
+from app.intake import SHAPE, Clock, DayNote, Rows, aggregate, hours_of, watched
 from app.science.energy.day_checks import REACH_DAYS
+from app.science.energy.hourly import hourly_days
+from app.science.energy.net_sensor import WindFactor, net_corrected_for_wind
 from app.science.energy.records import DailyWeather, StationDays
 from app.science.energy.station_day import station_days
 from app.science.energy.taught import lessons, teach
@@ -26,6 +29,7 @@ from app.storage.series import days_with_rows, numbers, replace_station_days
 from app.storage.tables import Station
 from app.workflows import agronomy
 from app.workflows.compare import stored_rows
+from app.workflows.hourly_step import BY_STEP, Steps, hourly
 from app.workflows.judged import judged
 from app.workflows.neighbourhood import Neighbourhood
 
@@ -40,7 +44,12 @@ MEASURED = (
     "shortwave_up",
     "longwave_down",
     "longwave_up",
+    "soil_heat_flux",
+    "sensible_heat",
+    "latent_heat",
 )
+ASSUMED_WIND = 2.0
+"""m/s at a net sensor where wind was not measured (the methods page, wind)."""
 COMPUTED = (
     "tmax",
     "tmin",
@@ -114,6 +123,7 @@ def _days(
     site, clock = agronomy.site(details), Clock(details["utc_offset_h"], details["time_zone"])
     marks, log = judgement.marks(session, station), judgement.sensor_log(session, station)
     past = read_record(session, station, before=span[0])
+    steps = Steps.before(session, station, span[0]) if hourly(details) else None
     teacher = around.teacher(station)
     taught_by = None if teacher is None else read_record(session, teacher)
     first, last = span
@@ -122,7 +132,8 @@ def _days(
         stored = stored_rows(session, station, first - 2 * REACH, until + 2 * REACH)
         one = judged(stored, marks, log, clock)
         days = np.datetime64(first - REACH) + np.arange((until - first + 2 * REACH).days + 1)
-        seen = watched(one.rows, site, days, details.get("surface"))
+        rows = _net_for_wind(one.rows, agronomy.net_wind(details))
+        seen = watched(rows, site, days, details.get("surface"))
         weather, notes = aggregate(seen.rows, site, days, one.good)
         said = one.marks_of_days(days, clock)
         plain = station_days(site, weather, watched=seen.findings, marks=said)
@@ -143,7 +154,12 @@ def _days(
             watched=seen.findings,
             marks=said,
         )
-        for row in _station_rows(station, weather, computed, [*notes, *one.notes]):
+        told = _station_rows(station, weather, computed, seen.shape, [*notes, *one.notes])
+        if steps is not None:
+            hours = hours_of(seen.rows, site, days, one.good)
+            by_hour = hourly_days(site, hours, day_rung=computed.rung, day_rn=computed.rn)
+            steps = steps.stepped(told, by_hour, inside)
+        for row in told:
             if first <= row["day"] <= until:
                 yield row
         first = until + timedelta(days=1)
@@ -186,18 +202,42 @@ def _usual(record: Record, days: Any) -> Usual:
     )
 
 
+def _net_for_wind(rows: Rows, factors: tuple[WindFactor, WindFactor] | None) -> Rows:
+    """Rows with their net radiation corrected for wind as the sensor's certificate states."""
+    if factors is None or "net_radiation" not in rows.values:
+        return rows
+    wind = rows.values.get("wind_speed", np.full(len(rows), np.nan))
+    wind = np.where(np.isnan(wind), ASSUMED_WIND, wind)
+    net = net_corrected_for_wind(rows.values["net_radiation"], wind, *factors)
+    return replace(rows, values={**rows.values, "net_radiation": net})
+
+
+def _net_radiation(weather: DailyWeather) -> Any:
+    """Net radiation over whatever lies under the sensors: components, else a net sensor."""
+    components = weather.shortwave_down - weather.shortwave_up
+    components = components + weather.longwave_down - weather.longwave_up
+    return np.where(np.isnan(components), weather.net_radiation, components)
+
+
 def _station_rows(
-    station: int, weather: DailyWeather, days: StationDays, notes: list[DayNote]
-) -> Iterator[dict[str, Any]]:
+    station: int,
+    weather: DailyWeather,
+    days: StationDays,
+    shape: dict[str, Any],
+    notes: list[DayNote],
+) -> list[dict[str, Any]]:
     columns = {name: numbers(getattr(weather, name)) for name in MEASURED}
     columns |= {name: numbers(getattr(days, name)) for name in COMPUTED}
+    columns |= {name: numbers(shape[name]) for name in SHAPE}
+    columns["net_radiation"] = numbers(_net_radiation(weather))
+    columns |= {name: [None] * days.date.size for name in BY_STEP}
     words: dict[date, list[str]] = {}
     for note in notes:
         words.setdefault(note.day, []).append(
             f"{note.quantity}:{note.what}:{note.figure:g}:{note.reason}"
         )
-    for place, day in enumerate(days.date.tolist()):
-        yield {
+    return [
+        {
             "station_id": station,
             "day": day,
             "rung": int(days.rung[place]),
@@ -208,3 +248,5 @@ def _station_rows(
             "notes": "\n".join(words.get(day, [])),
             **{name: values[place] for name, values in columns.items()},
         }
+        for place, day in enumerate(days.date.tolist())
+    ]

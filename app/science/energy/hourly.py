@@ -74,6 +74,14 @@ class HourlyWeather:
         names = [f.name for f in fields(cls) if f.name != "date"]
         return cls(date=days, **{name: np.full((days.size, HOURS), np.nan) for name in names})
 
+    def or_else(self, other: "HourlyWeather") -> "HourlyWeather":
+        """These hours, and those of `other` of the same days where these are NaN."""
+        found = {}
+        for name in [f.name for f in fields(self) if f.name != "date"]:
+            own = getattr(self, name)
+            found[name] = np.where(np.isnan(own), getattr(other, name), own)
+        return replace(self, **found)
+
 
 _FROM_ROWS = {  # field of HourlyWeather -> quantity of rows, MJ m-2 h-1 of it
     "temperature": ("air_temperature", 1.0),
