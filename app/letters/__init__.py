@@ -1,0 +1,1 @@
+"""Letters: composed from facts without any clock or store (compose), and handed over (deliver)."""
