@@ -37,6 +37,10 @@ _LOOKS: dict[str, _Looks] = {
     "longwave_down": _LONGWAVE,
     "longwave_up": _LONGWAVE,
     "pressure": ((50.0, 106.0), (55.0, 106.0), (55.0, 108.0)),
+    "wet_bulb": ((-50.0, 28.0), (-20.0, 30.0), (-15.0, 36.0)),
+    "soil_heat_flux": ((-200.0, 40.0), (-60.0, 80.0), (-5.0, 350.0)),
+    "sensible_heat": ((-250.0, 60.0), (-80.0, 200.0), (0.0, 700.0)),
+    "latent_heat": ((-150.0, 130.0), (-30.0, 350.0), (5.0, 900.0)),
 }
 _LOOKS_DAILY: dict[str, _Looks] = {
     "shortwave_down": ((0.0, 300.0), (20.0, 380.0), (60.0, 440.0)),

@@ -106,7 +106,7 @@ def notes_words(notes: str) -> list[str]:
         named = wording.word(wording.QUANTITIES, quantity)
         done = wording.word(wording.NOTES, what)
         intervals = "" if figure in ("", "0") else f", {figure} intervals"
-        told = wording.check_word(reason) if what == "set_aside" and reason else reason
+        told = wording.check_word(reason) if what in ("set_aside", "warned") and reason else reason
         why = f": {told}" if told else ""
         said.append(f"{named} {done}{intervals}{why}")
     return said

@@ -87,7 +87,7 @@ def _said(day: Row) -> list[tuple[str, str]]:
     for line in day["notes"].splitlines():
         quantity, what, figure, reason = [*line.split(":", 3), "", "", ""][:4]
         named = wording.word(wording.QUANTITIES, quantity)
-        told = wording.check_word(reason) if what == "set_aside" and reason else ""
+        told = wording.check_word(reason) if what in ("set_aside", "warned") and reason else ""
         done = f"{named} {wording.word(wording.NOTES, what)}" + (f": {told}" if told else "")
         count = "" if figure in ("", "0", "0.0") else f"{figure} intervals"
         said.append((done, count))

@@ -226,6 +226,13 @@ FLAGS = {
     "above_shortwave": "above what the sun gives",
     "above_saturation": "above saturation",
     "stuck": "the same figure all day",
+    "rare": "physically possible, but extremely rare",
+    "albedo": "upward shortwave is no share of downward that any ground reflects",
+    "very_dry": "below 5 %",
+    "low": "below 0.5 m/s all day",
+    "step": "changes faster than weather does",
+    "hourly_incomplete": "not all hours: the day’s own equation, times the usual ratio of both",
+    "hourly_without_ratio": "not all hours, and no ratio yet: the day’s own equation",
 }
 NOTES = {
     "missing": "missing",
@@ -233,6 +240,7 @@ NOTES = {
     "set_aside": "set aside",
     "offset": "below zero at night, counted as zero",
     "clipped": "clipped to 100 %",
+    "warned": "used, but odd",
 }
 WHY_NOT = {
     "surface": "the site is not declared clipped, watered grass",

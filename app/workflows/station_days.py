@@ -157,7 +157,14 @@ def _days(
         told = _station_rows(station, weather, computed, seen.shape, [*notes, *one.notes])
         if steps is not None:
             hours = hours_of(seen.rows, site, days, one.good)
-            by_hour = hourly_days(site, hours, day_rung=computed.rung, day_rn=computed.rn)
+            by_hour = hourly_days(
+                site,
+                hours,
+                day_rung=computed.rung,
+                day_rn=computed.rn,
+                day_wind_2m=computed.wind_2m,
+                day_vapour_pressure=computed.vapour_pressure,
+            )
             steps = steps.stepped(told, by_hour, inside)
         for row in told:
             if first <= row["day"] <= until:

@@ -149,16 +149,23 @@ def hourly_days(
     *,
     day_rung: NDArray[np.int8] | None = None,
     day_rn: Floats | None = None,
+    day_wind_2m: Floats | None = None,
+    day_vapour_pressure: Floats | None = None,
 ) -> HourlyDays:
     """Net radiation and reference ET of each hour by the best rung that covers the whole day.
 
     Arguments: `site`; `weather` (days, 24) in time order, NaN where not measured; `constants`;
     `day_rung`, `day_rn` (days,) of the daily ladder [MJ m-2 d-1]: where the day's rung is better
-    than the hours' (a taught day), the hours are shifted alike so that they add up to it. Returns
+    than the hours' (a taught day), the hours are shifted alike so that they add up to it;
+    `day_wind_2m` [m s-1], `day_vapour_pressure` [kPa] (days,) by the day's ladders: they serve all
+    hours of a day on which none was measured. Returns
     HourlyDays; an hour that lacks an input is NaN and its day has rung 0, whose other hours are
     each by their own best rung. A sum below zero counts as 0 (common practice, no source).
     Source: ASCE-EWRI eq 1, table 1, hourly net radiation eq 42-45; rungs of the methods page.
     """
+    weather = replace(
+        weather, vapour_pressure=_served(weather.vapour_pressure, day_vapour_pressure)
+    )
     ra, sine = hourly_sun(site, weather.date)
     rso = clear_sky(ra, site.elevation_m, (site.angstrom_a, site.angstrom_b))
     cloud = hourly_cloud(weather.date, weather.shortwave_down, rso, sine, constants)
@@ -176,7 +183,8 @@ def hourly_days(
         shift = np.where(better, day_rn - rn.sum(axis=1), 0.0) / HOURS
         rn = rn + shift[:, None]
         rung_of_hour = np.where(better[:, None], day_rung[:, None], rung_of_hour)
-    u2 = np.maximum(wind_at_2m(weather.wind, site.wind_height_m), WIND_FLOOR)
+    u2 = _served(wind_at_2m(weather.wind, site.wind_height_m), day_wind_2m)
+    u2 = np.maximum(u2, WIND_FLOOR)
     pressure = atmospheric_pressure(site.elevation_m)
     surfaces: tuple[Surface, ...] = ("short",) if constants.name == "FAO-56" else ("short", "tall")
     et = [
@@ -204,6 +212,14 @@ def hourly_days(
         eto_sum=np.maximum(eto.sum(axis=1), 0.0),
         etr_sum=np.maximum(etr.sum(axis=1), 0.0),
     )
+
+
+def _served(hours: Floats, day: Floats | None) -> Floats:
+    """Hours (days, 24), those of days on which none is known at the day's own value (days,)."""
+    if day is None:
+        return hours
+    none = np.isnan(hours).all(axis=1)
+    return np.where(none[:, None], day[:, None], hours)
 
 
 def hourly_sun(site: Site, date: Days) -> tuple[Floats, Floats]:
