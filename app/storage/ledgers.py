@@ -111,6 +111,12 @@ def station_details(session: Session, stations: Sequence[int]) -> dict[int, dict
     }
 
 
+def every_station(session: Session) -> dict[int, dict[str, Any]]:
+    """The book's part of every station, by number."""
+    rows = session.execute(select(Station.id, Station.details))
+    return {number: details for number, details in rows}
+
+
 def last_ledger_days(session: Session) -> dict[int, date]:
     """The last ledger day of each season that has one."""
     return {

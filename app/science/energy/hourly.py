@@ -218,7 +218,7 @@ def _served(hours: Floats, day: Floats | None) -> Floats:
     """Hours (days, 24), those of days on which none is known at the day's own value (days,)."""
     if day is None:
         return hours
-    none = np.isnan(hours).all(axis=1)
+    none = np.asarray(np.isnan(hours).all(axis=1))
     return np.where(none[:, None], day[:, None], hours)
 
 

@@ -19,10 +19,12 @@ from app.web.measured import by_month, by_season, compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
 from app.web.pages.fields import csv_answer
 from app.web.render import page
+from app.web.sensor_words import verdicts
 from app.web.station_watch import watch
 from app.web.station_words import said_of
 from app.web.trouble import troubles
 from app.workflows.measuring_saved import measuring_saved
+from app.workflows.sensor_health import sensor_health
 
 router = APIRouter()
 SPANS = {"month": 30, "season": 120, "year": 366}
@@ -131,6 +133,7 @@ def show(
         recent = store.recent_days(session, today)
         fed = store_station.fed_fields(session, found.id, today, viewer.farm)
         said = said_of(session, found)
+        health = sensor_health(session, found.id, today) if last.get(found.id) else None
         saved = measuring_saved(
             session, found.id, found.details.get("elevation_m", 0.0), today, viewer.farm
         )
@@ -169,6 +172,8 @@ def show(
             [day for day in days if day["day"] >= today - timedelta(days=RECENT_DAYS)], today
         ),
         watched_days=RECENT_DAYS,
+        verdicts=verdicts(health) if health else [],
+        put_right=health.since if health else None,
         files=files,
         intake_states=wording.INTAKE_STATES,
         variables=wording.VARIABLES,
