@@ -9,7 +9,7 @@ import json
 from datetime import date
 from itertools import pairwise
 from pathlib import Path
-from typing import Annotated, Any, Literal, Self
+from typing import Annotated, Any, Literal, Self, get_args
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
@@ -55,6 +55,14 @@ class NetWindPart(Part):
     negative: WindFactorPart | None = None
 
 
+def known_zone(name: str) -> None:
+    """Nothing for an IANA zone; ValueError for anything else."""
+    try:
+        ZoneInfo(name)
+    except (ZoneInfoNotFoundError, ValueError, IsADirectoryError):
+        raise ValueError(f"time_zone {name!r} is no IANA zone such as 'America/Boise'") from None
+
+
 class StationPart(Part):
     """A weather station: where it stands and what lies under its radiometers."""
 
@@ -96,12 +104,7 @@ class StationPart(Part):
     @model_validator(mode="after")
     def _zone_is_known(self) -> Self:
         if self.time_zone is not None:
-            try:
-                ZoneInfo(self.time_zone)
-            except (ZoneInfoNotFoundError, ValueError):
-                raise ValueError(
-                    f"time_zone {self.time_zone!r} is no IANA zone such as 'America/Boise'"
-                ) from None
+            known_zone(self.time_zone)
         return self
 
 
@@ -192,10 +195,52 @@ class SystemPart(Part):
         return self
 
 
+Weekday = Literal["monday", "tuesday", "wednesday", "thursday", "friday", "saturday", "sunday"]
+WEEKDAYS: tuple[str, ...] = get_args(Weekday)
+
+
+class RecipientPart(Part):
+    """Somebody who gets the farm's weekly letter."""
+
+    name: Name
+    address: Annotated[
+        str,
+        Field(
+            max_length=254,
+            pattern=r"^[A-Za-z0-9.!#$%&'*+/=?^_`{|}~-]+@[A-Za-z0-9-]+(\.[A-Za-z0-9-]+)+$",
+            description="e-mail address",
+        ),
+    ]
+    language: Literal["en", "es"] = "en"
+    units: Literal["metric", "us"] = "metric"
+    weekday: Weekday = "sunday"
+    hour: Annotated[int, Field(ge=0, le=23, description="in the farm's time zone")] = 18
+    paused: bool = False
+
+
 class FarmPart(Part):
+    """A farm, who answers for it, and who gets its letters."""
+
     key: Key
     name: Name
     grower: Name | None = None
+    advisor: Name | None = Field(None, description="signs the farm's letters")
+    time_zone: str | None = Field(
+        None, description="IANA zone of the farm; the fixed offset of its station if not given"
+    )
+    letters: Literal["by hand", "automatic"] = Field(
+        "by hand", description="whether a letter waits for the advisor's release"
+    )
+    recipients: list[RecipientPart] = []
+
+    @model_validator(mode="after")
+    def _zone_and_addresses(self) -> Self:
+        if self.time_zone is not None:
+            known_zone(self.time_zone)
+        addresses = [part.address.lower() for part in self.recipients]
+        if len(set(addresses)) < len(addresses):
+            raise ValueError("an address stands twice among its recipients; keep one")
+        return self
 
 
 class SourcePart(Part):

@@ -12,7 +12,7 @@ from urllib.parse import urlencode
 from app import wording
 from app.storage.pages import EventRow, RoundsRow, SourceRow
 from app.web.crops import crop_name, season_words
-from app.web.managed import ORDER
+from app.workflows.managed import ORDER
 
 NOT_STANDING = 9
 ROWS_ON_A_PAGE = 250

@@ -12,8 +12,10 @@ from sqlalchemy.orm import Session
 from app import handbook
 from app.book.references import Known, reference_problems
 from app.book.schema import (
+    WEEKDAYS,
     Book,
     BookError,
+    FarmPart,
     FieldPart,
     IrrigationPart,
     Part,
@@ -22,6 +24,7 @@ from app.book.schema import (
 )
 from app.storage import book as rows
 from app.storage.events import VOID, events_by_origin, head_of
+from app.storage.recipients import put_recipient
 from app.storage.tables import (
     WHOLE,
     Block,
@@ -69,7 +72,8 @@ def load_book(session: Session, book: Book, who: str) -> Loaded:
     _stations(session, book, who, loaded)
     _shared(session, Soil, book.soils, who, loaded, rows.soil_blocks)
     _shared(session, IrrigationSystem, book.systems, who, loaded, rows.system_blocks)
-    _shared(session, Farm, book.farms, who, loaded, None)
+    for farm in book.farms:
+        _farm(session, farm, who, loaded)
     keys = _Keys(session)
     for part in book.fields:
         _field(session, part, keys, who, loaded)
@@ -140,17 +144,31 @@ def _stations(session: Session, book: Book, who: str, loaded: Loaded) -> None:
 
 def _shared(
     session: Session,
-    table: type[Soil] | type[IrrigationSystem] | type[Farm],
+    table: type[Soil] | type[IrrigationSystem],
     parts: list[Any],
     who: str,
     loaded: Loaded,
-    blocks_of: Callable[[Session, int], list[int]] | None,
+    blocks_of: Callable[[Session, int], list[int]],
 ) -> None:
     for part in parts:
         row, outcome = _put(session, table, part, who)
         loaded.count(table.__tablename__, outcome)
-        if outcome == "changed" and blocks_of is not None:
+        if outcome == "changed":
             rows.dirty_blocks(session, blocks_of(session, row.id), rows.BEGINNING)
+
+
+def _farm(session: Session, part: FarmPart, who: str, loaded: Loaded) -> None:
+    """Put a farm in, and of its recipients those that the book changed since it was last loaded:
+    what was changed on a page since then stays."""
+    there = rows.find(session, Farm, part.key)
+    said = [] if there is None else there.details.get("recipients", [])
+    row, outcome = _put(session, Farm, part, who)
+    loaded.count("farm", outcome)
+    for recipient in part.recipients:
+        plain = _plain(recipient)
+        if plain not in said:
+            weekday = WEEKDAYS.index(recipient.weekday)
+            put_recipient(session, row.id, {**plain, "weekday": weekday}, who)
 
 
 def _put(session: Session, table: type[rows.Keyed], part: Any, who: str) -> tuple[rows.Keyed, str]:

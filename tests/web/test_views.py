@@ -8,9 +8,9 @@ import pytest
 from app.storage.pages import RecentDay, RoundsRow, StationRow
 from app.web import charts, measured, trouble
 from app.web.crops import crop_name, published_stages, season_words, stage
-from app.web.managed import managed, one_a_field
 from app.web.rounds_view import Bar, bar
 from app.web.working_view import opening
+from app.workflows.managed import managed, one_a_field
 from tests.web.factory import TODAY
 
 NAN = float("nan")

@@ -11,10 +11,10 @@ from app.storage import pages_field as store_field
 from app.storage.pages import RoundsRow
 from app.web.access import AsViewer
 from app.web.api.schemas import AdviceOut, FieldOut, LedgerOut, RoundsField, RoundsOut
-from app.web.managed import managed, one_a_field
 from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.pages.fields import choose, own_blocks
 from app.web.rounds_view import urgency
+from app.workflows.managed import managed, one_a_field
 
 router = APIRouter(prefix="/api/v1")
 ADVICE = (

@@ -14,12 +14,12 @@ from app.storage.database import Database
 from app.storage.pages_field import BlockRow
 from app.web import field_view as view
 from app.web.access import AsViewer, Viewer
-from app.web.managed import managed
 from app.web.measured import compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsNumber, AsToday, Clean, read_day, read_number
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.working_view import working
+from app.workflows.managed import managed
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
 from app.workflows.once import EntryError
 

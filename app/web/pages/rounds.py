@@ -15,11 +15,11 @@ from app.storage import pages as store
 from app.storage.database import Database
 from app.web import rounds_view as view
 from app.web.access import AsViewer, Viewer
-from app.web.managed import ORDER, one_a_field
 from app.web.needs import AsDatabase, AsToday, read_day, read_number, without_nul
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.web.trouble import troubles
+from app.workflows.managed import ORDER, one_a_field
 from app.workflows.once import EntryError
 
 router = APIRouter()
