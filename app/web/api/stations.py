@@ -3,6 +3,7 @@
 from datetime import date, timedelta
 from typing import Annotated
 
+import numpy as np
 from fastapi import APIRouter, Query
 
 from app import wording
@@ -12,6 +13,7 @@ from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web.access import AsViewer
 from app.web.api.schemas import StationDaysOut, StationOut
+from app.web.balance_view import et_by_residual
 from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.pages.stations import own_station, own_stations
 from app.web.trouble import troubles
@@ -71,5 +73,16 @@ def days(
     return StationDaysOut(
         station=key,
         caution=wording.CAUTION,
-        days=[{name: row[name] for name in row if name != "station_id"} for row in rows],
+        days=[
+            {name: row[name] for name in row if name != "station_id"}
+            | {
+                "et_by_residual": None if np.isnan(et) else et,
+                "why_not_words": [
+                    {"rung": rung, "reason": reason}
+                    for rung, reason in wording.why_codes(row["why_not"])
+                ],
+                "flag_words": wording.flag_words(row["flags"]),
+            }
+            for row, et in zip(rows, et_by_residual(rows).tolist(), strict=True)
+        ],
     )

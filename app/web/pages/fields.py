@@ -14,6 +14,7 @@ from app.storage.database import Database
 from app.storage.pages_field import BlockRow
 from app.web import field_view as view
 from app.web.access import AsViewer, Viewer
+from app.web.balance_view import crop_balance
 from app.web.measured import compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsNumber, AsToday, Clean, read_day, read_number
 from app.web.problems import RefusedError
@@ -85,6 +86,15 @@ def show(
             else []
         )
         height = {item.id: item.details.get("elevation_m", 0.0) for item in stations}
+        stands_in = {item.id: item.details.get("stands_in") for item in stations}
+        et = (
+            [
+                (row["day"], row["et_actual_mm"])
+                for row in store_field.ledger_days(session, chosen.id, season.planting)
+            ]
+            if season is not None and key in stands_in.values()
+            else []
+        )
         saved = (
             measuring_saved(
                 session, energy.station_id, height.get(energy.station_id, 0.0), today, field=key
@@ -94,6 +104,9 @@ def show(
         )
     if advice is not None and season is not None and advice["season_id"] != season.id:
         advice = None
+    over_crop = (
+        station_days if energy is not None and stands_in.get(energy.station_id) == key else []
+    )
     return page(
         request,
         "pages/field.html",
@@ -127,6 +140,7 @@ def show(
         energy=energy,
         compared=compare(station_days, height.get(energy.station_id, 0.0)) if energy else None,
         saved=saved[0] if saved else None,
+        balance=crop_balance(over_crop, et) if over_crop else None,
         soil=view.soil_rows(chosen.soil),
         season_facts=view.season_facts(season),
         token=secrets.token_urlsafe(12),

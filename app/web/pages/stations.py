@@ -14,6 +14,7 @@ from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web import station_view as view
 from app.web.access import AsViewer, Viewer
+from app.web.balance_view import crop_balance, et_by_residual
 from app.web.charts import energy_chart
 from app.web.measured import by_month, by_season, compare
 from app.web.needs import AsDatabase, AsDay, AsKey, AsToday
@@ -173,6 +174,7 @@ def show(
         ),
         watched_days=RECENT_DAYS,
         verdicts=verdicts(health) if health else [],
+        balance=crop_balance(days),
         put_right=health.since if health else None,
         files=files,
         intake_states=wording.INTAKE_STATES,
@@ -207,6 +209,7 @@ def station_day(
         row=row,
         why_not=wording.why_codes(row["why_not"]),
         flags=wording.flag_words(row["flags"]),
+        et_by_residual=float(et_by_residual([row])[0]),
         notes=view.notes_words(row["notes"]),
         humidity=wording.HUMIDITY_RUNGS[row["humidity_rung"]],
         wind=wording.WIND_RUNGS[row["wind_rung"]],
