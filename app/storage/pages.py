@@ -249,6 +249,7 @@ class RecentDay(NamedTuple):
     rung: int
     why_not: str
     flags: str
+    eto_uncertainty: float | None
 
 
 def recent_days(session: Session, today: date, days: int = 15) -> list[RecentDay]:
@@ -260,6 +261,7 @@ def recent_days(session: Session, today: date, days: int = 15) -> list[RecentDay
             StationDay.rung,
             StationDay.why_not,
             StationDay.flags,
+            StationDay.eto_uncertainty,
         )
         .where(StationDay.day > today - timedelta(days=days), StationDay.day < today)
         .where(StationDay.rung > 0, StationDay.rung < USUAL)

@@ -59,8 +59,18 @@ def rung_fall(days: Sequence[RecentDay]) -> str:
     reason = why_not_rung(days[-1].why_not, usual)
     return (
         f"Energy fell from {wording.rung(usual)} to {wording.rung(days[-1].rung)} since "
-        f"{wording.short_day(since)}" + (f": {reason}." if reason else ".")
+        f"{wording.short_day(since)}" + (f": {reason}." if reason else ".") + _cost(days, usual)
     )
+
+
+def _cost(days: Sequence[RecentDay], usual: int) -> str:
+    """What the fall costs in range: the mean of ETo's uncertainty before and since."""
+    known = [(day.rung, day.eto_uncertainty) for day in days if day.eto_uncertainty is not None]
+    ranges = [by for rung, by in known if rung == usual], [by for rung, by in known if rung > usual]
+    if not all(ranges):
+        return ""
+    before, since = (wording.number(sum(found) / len(found), 2) for found in ranges)
+    return f" ETo is known to ± {since} mm a day in place of ± {before}."
 
 
 def raised(days: Sequence[RecentDay], today: date) -> str:

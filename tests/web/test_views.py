@@ -61,7 +61,14 @@ def test_a_more_urgent_block_is_not_hidden_behind_the_managed_one() -> None:
 def days(rungs: list[int], until: int = 1, flags: str = "") -> list[RecentDay]:
     first = TODAY - timedelta(days=until + len(rungs) - 1)
     return [
-        RecentDay(1, first + timedelta(days=place), rung, "2:missing:longwave_down", flags)
+        RecentDay(
+            1,
+            first + timedelta(days=place),
+            rung,
+            "2:missing:longwave_down",
+            flags,
+            0.2 + 0.1 * rung,
+        )
         for place, rung in enumerate(rungs)
     ]
 
@@ -94,6 +101,7 @@ def test_a_fall_down_the_ladder_is_told_from_its_first_day() -> None:
     (text,) = said(days([2] * 8 + [5, 5]), TODAY - timedelta(days=1))
     assert text == (
         "Energy fell from measured sky to model from solar since Sun 12 Jul: no downward longwave."
+        " ETo is known to ± 0.70 mm a day in place of ± 0.40."
     )
     assert said(days([5] * 8 + [2]), TODAY - timedelta(days=1)) == []
 
