@@ -5,7 +5,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from app.intake.grid import form_vapour_pressure, lay_out_as_read
+from app.intake.grid import Bools, form_vapour_pressure, lay_out_as_read
 from app.intake.model import Floats, Rows
 from app.intake.pack import SECONDS_A_DAY
 from app.science.energy.day_checks import Finding
@@ -31,11 +31,16 @@ class Watched:
 
 
 def watched(
-    rows: Rows, site: Site, days: NDArray[np.datetime64], surface: str | None = None
+    rows: Rows,
+    site: Site,
+    days: NDArray[np.datetime64],
+    surface: str | None = None,
+    open_sky: Bools | None = None,
 ) -> Watched:
     """Watch a station's radiometers over `days` (consecutive), each day on its finest rows.
 
-    `rows` as people have judged them; `surface` as declared. Covered longwave of at most a quarter
+    `rows` as people have judged them; `surface` as declared; `open_sky` (days,) where neighbours
+    saw that it was. Covered longwave of at most a quarter
     of a day is replaced by the model, more is taken out. Nothing is watched on rows further apart
     than an hour.
     """
@@ -48,7 +53,7 @@ def watched(
     for step in np.unique(finest).tolist():
         if step <= COARSEST_S and SECONDS_A_DAY % step == 0:
             here = (rows.interval_s == step) & (finest == step)
-            seen = _watch_step(seen, site, wanted, here, surface)
+            seen = _watch_step(seen, site, wanted, here, surface, open_sky)
     return seen
 
 
@@ -67,6 +72,7 @@ def _watch_step(
     wanted: NDArray[np.int64],
     here: NDArray[np.bool_],
     surface: str | None,
+    open_sky: Bools | None,
 ) -> Watched:
     """What the rows of one step add to what was seen; other days have no such rows."""
     rows = seen.rows
@@ -79,8 +85,11 @@ def _watch_step(
     grid, place = lay_out_as_read(part, site, wanted)
     form_vapour_pressure(grid)
     laid = day_rows(site, grid.day.astype("datetime64[D]"), grid.night.shape[1])
-    watch = watch_rows(site, laid, grid.values, surface=surface)
     at = np.searchsorted(grid.day, wanted)
+    seen_open = np.zeros(grid.day.size, np.bool_)
+    if open_sky is not None:
+        seen_open[at] = open_sky
+    watch = watch_rows(site, laid, grid.values, surface=surface, open_by_neighbour=seen_open)
     findings = tuple(
         replace(found, where=found.where[at], figure=found.figure[at]) for found in watch.findings
     )

@@ -95,12 +95,17 @@ def read_record(
 
 
 def needs_neighbours(session: Session, stations: Sequence[int], since: date) -> set[int]:
-    """Stations with a day, from `since` on, on which shortwave or wind was not measured."""
+    """Stations with a day, from `since` on, on which shortwave or wind was not measured, or the
+    longwave window may have been covered: there they lean on what neighbours saw."""
     return set(
         session.scalars(
             select(StationDay.station_id)
             .where(StationDay.station_id.in_(stations), StationDay.day >= since)
-            .where(StationDay.rung.not_in(MEASURED_SHORTWAVE) | (StationDay.wind_rung != 1))
+            .where(
+                StationDay.rung.not_in(MEASURED_SHORTWAVE)
+                | (StationDay.wind_rung != 1)
+                | StationDay.flags.contains("window_")
+            )
             .distinct()
         )
     )

@@ -48,6 +48,9 @@ MEASURED = (
     "sensible_heat",
     "latent_heat",
 )
+OPEN_SKY = 0.85
+"""Clear-sky ratio of the neighbours' day from which the sky of its morning was open (working
+value): a longwave window that then read like a black body was covered."""
 ASSUMED_WIND = 2.0
 """m/s at a net sensor where wind was not measured (the methods page, wind)."""
 COMPUTED = (
@@ -86,24 +89,40 @@ def recompute_stations(session: Session) -> int:
     if not dirty:
         return 0
     around = Neighbourhood({number: details for number, details, _ in every})
-    written = sum(_recompute(session, around, number, first) for number, first in dirty.items())
-    for number, first in _leaning(session, around, dirty).items():
-        written += _recompute(session, around, number, first)
+    written = 0
+    changed: dict[int, date] = {}
+    # Own readings first, then what leans on neighbours' measured sun and wind, then what was
+    # taught: none of the later moves what the earlier rest on, so that the order is enough.
+    for find in (
+        lambda: dirty,
+        lambda: _near(session, around, dirty),
+        lambda: _pupils(around, changed),
+    ):
+        for number, first in find().items():
+            written += _recompute(session, around, number, first)
+            changed[number] = min(first, changed.get(number, first))
     session.execute(update(Station).where(Station.id.in_(dirty)).values(dirty_from=None))
     return written
 
 
-def _leaning(session: Session, around: Neighbourhood, changed: dict[int, date]) -> dict[int, date]:
-    """Stations that rest on a changed one, and since when: by neighbourhood or as its pupils."""
+def _near(session: Session, around: Neighbourhood, changed: dict[int, date]) -> dict[int, date]:
+    """Stations that rest on what changed ones measured, as neighbours, and since when."""
     since: dict[int, date] = {}
     for number in around.details:
         near = [changed[other] for other in around.of(number) if other in changed]
         if near and needs_neighbours(session, [number], min(near)):
             since[number] = min(near)
-        teacher = around.teacher(number)
-        if teacher in changed:
-            since[number] = min(changed[teacher], since.get(number, date.max))
     return since
+
+
+def _pupils(around: Neighbourhood, changed: dict[int, date]) -> dict[int, date]:
+    """Stations whose model a changed one teaches, and since when."""
+    teachers = {number: around.teacher(number) for number in around.details}
+    return {
+        number: changed[teacher]
+        for number, teacher in teachers.items()
+        if teacher is not None and teacher in changed
+    }
 
 
 def _recompute(session: Session, around: Neighbourhood, station: int, first: date) -> int:
@@ -133,7 +152,8 @@ def _days(
         one = judged(stored, marks, log, clock)
         days = np.datetime64(first - REACH) + np.arange((until - first + 2 * REACH).days + 1)
         rows = _net_for_wind(one.rows, agronomy.net_wind(details))
-        seen = watched(rows, site, days, details.get("surface"))
+        ratio, wind = around.measured(session, station, days)
+        seen = watched(rows, site, days, details.get("surface"), ratio >= OPEN_SKY)
         weather, notes = aggregate(seen.rows, site, days, one.good)
         said = one.marks_of_days(days, clock)
         plain = station_days(site, weather, watched=seen.findings, marks=said)
@@ -142,7 +162,6 @@ def _days(
         taught = teach(days, _lessons(past))
         if taught_by is not None:
             taught = taught.or_else(teach(days, _lessons(taught_by), teacher=True))
-        ratio, wind = around.measured(session, station, days)
         computed = station_days(
             site,
             weather,

@@ -157,3 +157,34 @@ def test_distances_on_the_globe() -> None:
         111.19, abs=0.01
     )
     assert kilometres(here, here) == 0.0
+
+
+def test_a_neighbour_that_saw_an_open_sky_tells_a_covered_window(payerne: Database) -> None:
+    """A window like a black body from two to five, and no sun measured here to prove the sky open:
+    undecidable, until a neighbour's clear day comes in."""
+    take(payerne, "pupil", columns("sw_in", "t", "rh"))
+    pupil = days_of(payerne, "pupil")
+    day = max(pupil, key=lambda d: (pupil[d].rs or 0.0) / (pupil[d].rso or 1.0))
+    assert (pupil[day].rs or 0.0) / (pupil[day].rso or 1.0) > 0.85
+    lines = [line.split(",") for line in RECORD.read_text().splitlines()]
+    at = {name: place for place, name in enumerate(lines[0])}
+    frosted = []
+    for cells in lines[1:]:
+        if cells[0].startswith(str(day)):
+            cells = list(cells)
+            for name in ("sw_in", "sw_out"):
+                cells[at[name]] = ""
+            if "02:00" < cells[0][11:16] <= "05:00":
+                black = 5.67e-8 * (float(cells[at["t"]]) + 273.15) ** 4
+                cells[at["lw_in"]] = f"{black - 2.0:.2f}"
+        frosted.append(",".join(cells))
+    mark_span(
+        payerne, "mast", "shortwave_down", day, day, "bad", "shaded by a ladder", "advisor", "m1",
+        TODAY,
+    )  # fmt: skip
+    take(payerne, "mast", "\n".join([",".join(lines[0]), *frosted]) + "\n")
+    assert "window_hours" in days_of(payerne, "mast")[day].flags
+    mark_span(payerne, "pupil", "shortwave_down", day, day, "bad", "a bird", "advisor", "m2", TODAY)
+    assert "window_undecidable" in days_of(payerne, "mast")[day].flags
+    state = basin.derived(payerne)
+    assert rebuilt(payerne, TODAY) == state
