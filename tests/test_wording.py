@@ -6,7 +6,7 @@ from datetime import date, timedelta
 import pytest
 
 from app import wording
-from app.book.schema import Purpose, SaidToBeDone, Variable
+from app.book.parts import Purpose, SaidToBeDone, Variable
 from app.science.advice.reasons import Reason
 from app.science.energy import checks
 from app.science.energy.day_checks import CHECKS

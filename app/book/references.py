@@ -98,7 +98,8 @@ def reference_problems(book: Book, known: Known) -> list[str]:
     for number, season in enumerate(book.seasons, 1):
         place = f"seasons {number} ({season.field})"
         on_field(place, season.field, season.block)
-        leads(f"{place}, crop", "crop in the handbook", season.crop, known.crops)
+        if season.own_crop is None:
+            leads(f"{place}, crop", "crop in the handbook", season.crop, known.crops)
     for number, irrigation in enumerate(book.irrigations, 1):
         on_field(f"irrigations {number} ({irrigation.field})", irrigation.field, irrigation.block)
     for number, rain in enumerate(book.rain, 1):

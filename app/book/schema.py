@@ -12,32 +12,22 @@ from pathlib import Path
 from typing import Annotated, Any, Literal, Self, get_args
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
-from pydantic import BaseModel, ConfigDict, Field, ValidationError, model_validator
+from pydantic import Field, ValidationError, model_validator
 
+from app.book.parts import (
+    Depth,
+    Key,
+    Name,
+    Part,
+    Percent,
+    Purpose,
+    SaidToBeDone,
+    Share,
+    Surface,
+    Variable,
+)
+from app.book.season import SeasonPart
 from app.errors import InputError
-
-Key = Annotated[
-    str,
-    Field(
-        pattern=r"^[a-z0-9]+(-[a-z0-9]+)*$",
-        max_length=60,
-        description="small letters and digits, parted by hyphens",
-    ),
-]
-Name = Annotated[str, Field(min_length=1, max_length=80)]
-Fraction = Annotated[float, Field(ge=0, le=1)]
-Share = Annotated[float, Field(gt=0, le=1)]
-Depth = Annotated[float, Field(ge=0, le=2000)]
-Purpose = Literal["crop", "pre-plant", "germination", "leaching", "frost", "cooling", "injection"]
-Variable = Literal["energy", "temperature", "wind", "rain"]
-Surface = Literal["reference grass", "green cover", "bare soil", "water", "snow"]
-SaidToBeDone = Literal["advised", "presumed", "reported", "metered", "measured"]
-
-
-class Part(BaseModel):
-    """A part of the book: unknown names are refused, numbers must be finite."""
-
-    model_config = ConfigDict(extra="forbid", allow_inf_nan=False, str_strip_whitespace=True)
 
 
 class WindFactorPart(Part):
@@ -113,14 +103,27 @@ class LayerPart(Part):
 
     bottom_m: Annotated[float, Field(gt=0, le=5)]
     texture: str | None = Field(None, description="texture_id of the handbook's soils")
+    sand: Percent | None = Field(None, description="% by weight of the fine earth, with clay")
+    clay: Percent | None = None
+    organic_matter: Annotated[float, Field(ge=0, le=8)] = Field(2.5, description="%")
+    gravel: Annotated[float, Field(ge=0, le=80)] = Field(
+        0.0, description="% by weight of the whole soil"
+    )
     field_capacity: Annotated[float, Field(gt=0, lt=0.8)] | None = None
     wilting_point: Annotated[float, Field(ge=0, lt=0.7)] | None = None
     saturation: Annotated[float, Field(gt=0, lt=0.95)] | None = None
 
     @model_validator(mode="after")
     def _water_held(self) -> Self:
-        if self.texture is None and (self.field_capacity is None or self.wilting_point is None):
-            raise ValueError("give a texture, or both field_capacity and wilting_point")
+        if (self.sand is None) != (self.clay is None):
+            raise ValueError("give both sand and clay, or neither")
+        if self.texture is not None and self.sand is not None:
+            raise ValueError("give a texture or sand and clay, not both")
+        told = self.texture is not None or self.sand is not None
+        if not told and (self.field_capacity is None or self.wilting_point is None):
+            raise ValueError(
+                "give a texture, or sand and clay, or both field_capacity and wilting_point"
+            )
         if (
             self.field_capacity is not None
             and self.wilting_point is not None
@@ -147,6 +150,9 @@ class SoilPart(Part):
     drainage_days: Annotated[int, Field(ge=0, le=10)] = Field(
         0, description="0: water above field capacity drains the same day; N: over N + 1 days"
     )
+    intake_mm_h: Annotated[float, Field(gt=0, le=500)] | None = Field(
+        None, description="basic intake rate, against which applications are held"
+    )
 
     @model_validator(mode="after")
     def _deeper_and_deeper(self) -> Self:
@@ -171,6 +177,9 @@ class SystemPart(Part):
     wetting: str = Field("sprinkler", description="method_id of the handbook's wetted fractions")
     wetted_fraction: Share | None = Field(
         None, description="of the surface, by an application; of `wetting` when not given"
+    )
+    same_day: Literal["irrigation", "weighted"] = Field(
+        "irrigation", description="wetted fraction of a day with rain as well"
     )
     under_canopy: bool = Field(False, description="drip or trickle that lies in the crop's shade")
     root_wetted_fraction: Share = Field(1.0, description="of the root zone that is ever wetted")
@@ -231,7 +240,7 @@ class FarmPart(Part):
     letters: Literal["by hand", "automatic"] = Field(
         "by hand", description="whether a letter waits for the advisor's release"
     )
-    recipients: list[RecipientPart] = []
+    recipients: list[RecipientPart] = Field([])
 
     @model_validator(mode="after")
     def _zone_and_addresses(self) -> Self:
@@ -249,6 +258,13 @@ class SourcePart(Part):
     variable: Variable
     station: Key
     since: date | None = None
+
+
+class WaterTablePart(Part):
+    """Depth of the water table below the surface from a date on; none: out of reach."""
+
+    since: date
+    depth_m: Annotated[float, Field(gt=0, le=30)] | None
 
 
 class KeepOffPart(Part):
@@ -285,70 +301,17 @@ class FieldPart(Part):
     station: Key = Field(description="the station for every variable that `sources` does not name")
     soil: Key
     system: Key
-    sources: list[SourcePart] = []
-    blocks: list[BlockPart] = []
+    sources: list[SourcePart] = Field([])
+    blocks: list[BlockPart] = Field([])
+    water_table: list[WaterTablePart] = Field([], description="depth of a water table, by date")
+    water_ec_ds_m: Annotated[float, Field(gt=0, le=50)] | None = Field(
+        None, description="electrical conductivity of the irrigation water"
+    )
+    leaching_fraction: Annotated[float, Field(gt=0, le=1)] = Field(
+        0.15, description="share of the water that passes the roots, for the soil's salinity"
+    )
     managed_by: str = Field("driest", description="'driest', 'median', or a block's key")
-    keep_offs: list[KeepOffPart] = []
-
-
-class SeasonPart(Part):
-    """A crop on a field from planting on; what is given overrides the handbook's row."""
-
-    field: Key
-    block: Key | None = Field(None, description="one block only; every block when not given")
-    crop: str = Field(description="crop_id of the handbook")
-    planting: date
-    coefficients: Literal["dual", "single"] = "dual"
-    kc_reference: Literal["short"] = Field("short", description="handbook Kc go with ETo only")
-    stage_days: tuple[int, int, int, int] | None = Field(
-        None, description="initial, development, mid-season, late; the planting day is day 1"
-    )
-    kc_ini: Annotated[float, Field(ge=0, le=2)] | None = None
-    kc_mid: Annotated[float, Field(ge=0, le=2)] | None = None
-    kc_end: Annotated[float, Field(ge=0, le=2)] | None = None
-    kcb_ini: Annotated[float, Field(ge=0, le=2)] | None = None
-    kcb_mid: Annotated[float, Field(ge=0, le=2)] | None = None
-    kcb_end: Annotated[float, Field(ge=0, le=2)] | None = None
-    kc_min: Annotated[float, Field(ge=0, le=0.3)] | None = None
-    height_m: Annotated[float, Field(gt=0, le=30)] | None = None
-    root_depth_min_m: Annotated[float, Field(gt=0, le=5)] | None = None
-    root_depth_max_m: Annotated[float, Field(gt=0, le=5)] | None = None
-    depletion_fraction: Annotated[float, Field(ge=0.1, le=0.8)] | None = Field(
-        None, description="p of RAW = p TAW, at 5 mm of ETc a day"
-    )
-    mad: Annotated[float, Field(gt=0, le=0.95)] | None = Field(
-        None, description="share of TAW the limit stands at; RAW when not given"
-    )
-    climate_adjustment: Literal["trailing", "stage_mean", "day", "none"] = Field(
-        "trailing", description="wind and humidity that adjust Kc: mean of 30 days, stage, the day"
-    )
-    ledger_start: date | None = Field(None, description="a later first day; planting if not given")
-    initial_depletion_mm: Depth | None = Field(
-        None, description="root zone at the start; this or the fraction, else field capacity"
-    )
-    initial_depletion_fraction: Fraction | None = Field(None, description="the same, of TAW")
-    initial_subsoil_depletion_fraction: Fraction = Field(
-        0, description="of the soil that roots have yet to reach; 0 is field capacity"
-    )
-    initial_evaporation_depletion_mm: Depth = 0
-    refill_to_mm: Depth = Field(0, description="depletion an application is to leave")
-    rain_room_mm: Depth = Field(0, description="room an application is to leave for rain")
-    end: date | None = Field(
-        None, description="harvest or frost; planting plus the stages if not given"
-    )
-    note: str | None = None
-
-    @model_validator(mode="after")
-    def _in_order(self) -> Self:
-        if self.end is not None and self.end <= self.planting:
-            raise ValueError(f"end {self.end} is not after planting {self.planting}")
-        if self.ledger_start is not None and self.ledger_start < self.planting:
-            raise ValueError(f"ledger_start {self.ledger_start} is before planting {self.planting}")
-        if self.stage_days is not None and min(self.stage_days) < 1:
-            raise ValueError("each of stage_days must be at least 1 day")
-        if self.initial_depletion_mm is not None and self.initial_depletion_fraction is not None:
-            raise ValueError("give initial_depletion_mm or initial_depletion_fraction, not both")
-        return self
+    keep_offs: list[KeepOffPart] = Field([])
 
 
 class IrrigationPart(Part):
@@ -390,14 +353,14 @@ class Book(Part):
     most 30 days moves it); what a later book leaves out stays as it was.
     """
 
-    stations: list[StationPart] = []
-    soils: list[SoilPart] = []
-    systems: list[SystemPart] = []
-    farms: list[FarmPart] = []
-    fields: list[FieldPart] = []
-    seasons: list[SeasonPart] = []
-    irrigations: list[IrrigationPart] = []
-    rain: list[RainPart] = []
+    stations: list[StationPart] = Field([])
+    soils: list[SoilPart] = Field([])
+    systems: list[SystemPart] = Field([])
+    farms: list[FarmPart] = Field([])
+    fields: list[FieldPart] = Field([])
+    seasons: list[SeasonPart] = Field([])
+    irrigations: list[IrrigationPart] = Field([])
+    rain: list[RainPart] = Field([])
 
 
 class BookError(InputError):

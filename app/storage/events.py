@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable, Sequence
 from datetime import date
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 from sqlalchemy import exists, select
 from sqlalchemy.orm import Session, aliased
@@ -22,12 +22,15 @@ class Standing(NamedTuple):
     unit: str
     purpose: str
     confirmation: str
+    details: dict[str, Any] | None
 
 
-def standing_events(session: Session, blocks: Sequence[int]) -> Iterable[Standing]:
-    """Events of blocks that stand, in the order of entry."""
+def standing_events(
+    session: Session, blocks: Sequence[int], kinds: Sequence[str] = ()
+) -> Iterable[Standing]:
+    """Events of blocks that stand, of some kinds if given, in the order of entry."""
     later = aliased(Event)
-    rows = session.execute(
+    wanted = (
         select(
             Event.block_id,
             Event.day,
@@ -36,13 +39,16 @@ def standing_events(session: Session, blocks: Sequence[int]) -> Iterable[Standin
             Event.unit,
             Event.purpose,
             Event.confirmation,
+            Event.details,
         )
         .where(Event.block_id.in_(blocks))
         .where(Event.kind != VOID)
         .where(~exists().where(later.supersedes == Event.id))
         .order_by(Event.id)
     )
-    return (Standing(*row) for row in rows)
+    if kinds:
+        wanted = wanted.where(Event.kind.in_(kinds))
+    return (Standing(*row) for row in session.execute(wanted))
 
 
 def head_of(session: Session, event: Event) -> Event:

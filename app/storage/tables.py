@@ -189,10 +189,11 @@ class BookChange(Base):
 
 
 class Event(Base):
-    """Water put on a block, or rain of the field's own gauge, as entered; corrections supersede.
+    """What was done or seen on a block, as entered; corrections supersede.
 
-    kind irrigation: unit gross_mm, net_mm, hours or volume_m3; kind rain: unit rain_mm.
-    A deletion is a row of kind "void" that supersedes.
+    kind irrigation: unit gross_mm, net_mm, hours or volume_m3; rain: rain_mm; stage: amount 1 to 4;
+    cover: amount a fraction, `details` the height; cutting; reading: `details` its depths;
+    keep_off: `details` its last day; note. A deletion is a row of kind "void" that supersedes.
     """
 
     __tablename__ = "event"
@@ -204,6 +205,7 @@ class Event(Base):
     unit: Mapped[str]
     purpose: Mapped[str]
     confirmation: Mapped[str]
+    details: Mapped[dict[str, Any] | None]
     note: Mapped[str | None]
     who: Mapped[str]
     entered: Mapped[datetime]

@@ -12,6 +12,7 @@ from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
 from app.web.rounds_view import Bar, bar, span, when
 from app.workflows import agronomy
+from app.workflows.crop import crop_season
 
 CHART_DAYS = 35
 LEDGER_DAYS = 14
@@ -192,7 +193,7 @@ def season_facts(season: SeasonRow | None) -> list[tuple[str, str]]:
     """The crop as it is reckoned with: stages, coefficients, roots, depletion fraction."""
     if season is None:
         return []
-    crop = agronomy.crop_season(season.details, season.planting)
+    crop = crop_season(season.details, season.planting)
     ends = [season.planting + timedelta(days=days - 1) for days in accumulate(crop.stage_days)]
     symbol = "Kcb" if crop.coefficients == "dual" else "Kc"
     coefficients = (crop.k_ini, crop.k_mid, crop.k_end)

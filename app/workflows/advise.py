@@ -134,6 +134,7 @@ def _row(computed: Computed, on: date, stale: list[tuple[str, int, date | None]]
         refill_to_mm=details["refill_to_mm"],
         rain_room_mm=details["rain_room_mm"],
         last_irrigation=_day(subject.last_irrigation),
+        leaching_requirement=agronomy.leaching(subject.block.field, details),
         input_age_days=age,
     )
     known = [entry[2] for entry in stale if entry[2] is not None]

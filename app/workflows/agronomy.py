@@ -7,11 +7,16 @@ import numpy as np
 from numpy.typing import NDArray
 
 from app import handbook
+from app.science import Floats
 from app.science.advice.system import ApplicationSystem
-from app.science.crop.season import CropSeason
 from app.science.energy.net_sensor import WindFactor
 from app.science.energy.station_day import Site
+from app.science.soil import texture
+from app.science.soil.capillary import RisingSoil
 from app.science.soil.profile import Layer, Profile
+from app.science.soil.root_zone import leaching_requirement, salinity_stress
+from app.science.soil.salinity import soil_salinity
+from app.science.soil.texture import texture_layer
 
 
 def as_date(day: np.datetime64) -> date:
@@ -54,17 +59,8 @@ def net_wind(details: dict[str, Any]) -> tuple[WindFactor, WindFactor] | None:
 
 
 def profile(details: dict[str, Any]) -> Profile:
-    """A soil's profile: lab values where given, else of the texture class."""
-    layers = []
-    for part in details["layers"]:
-        texture = handbook.soil_texture(part["texture"]) if part["texture"] else None
-        held = [
-            part[name] if part[name] is not None or texture is None else getattr(texture, name)
-            for name in ("field_capacity", "wilting_point", "saturation")
-        ]
-        if held[2] is None:
-            held[2] = min(0.95, held[0] + 0.15)
-        layers.append(Layer(part["bottom_m"], *held))
+    """A soil's profile: lab values where given, else of the texture class or of sand and clay."""
+    layers = [_layer(part) for part in details["layers"]]
     evaporable = 1000 * (layers[0].field_capacity - 0.5 * layers[0].wilting_point)
     tew = details["tew_mm"] or evaporable * details["evaporation_depth_m"]
     return Profile(
@@ -77,6 +73,42 @@ def profile(details: dict[str, Any]) -> Profile:
     )
 
 
+def _layer(part: dict[str, Any]) -> Layer:
+    told: Any = handbook.soil_texture(part["texture"]) if part["texture"] else None
+    if part.get("sand") is not None:
+        told = texture_layer(
+            part["bottom_m"], part["sand"], part["clay"], part["organic_matter"], part["gravel"]
+        )
+    held = [
+        part[name] if part[name] is not None or told is None else getattr(told, name)
+        for name in ("field_capacity", "wilting_point", "saturation")
+    ]
+    if held[2] is None:
+        held[2] = min(0.95, held[0] + 0.15)
+    return Layer(part["bottom_m"], *held)
+
+
+def rising_soil(details: dict[str, Any]) -> RisingSoil | None:
+    """The soil above a water table: of the deepest layer with sand and clay; None without."""
+    for part in reversed(details["layers"]):
+        if part.get("sand") is not None:
+            return texture.rising_soil(part["sand"], part["clay"], part["organic_matter"])
+    return None
+
+
+def water_table(field: dict[str, Any], days: NDArray[np.datetime64]) -> Floats | None:
+    """Depth of the water table on each day [m], NaN out of reach; None where none is declared."""
+    declared = sorted(field.get("water_table", []), key=lambda part: str(part["since"]))
+    if not declared:
+        return None
+    depth = np.full(days.shape, np.nan)
+    for part in declared:
+        depth[days >= np.datetime64(part["since"], "D")] = (
+            np.nan if part["depth_m"] is None else part["depth_m"]
+        )
+    return depth
+
+
 def _readily_evaporable(details: dict[str, Any], tew: float) -> float:
     """REW as given; else of the top layer's texture, or the middle of the handbook's medium soils
     where only lab values are known, and then at most nine tenths of TEW."""
@@ -84,38 +116,6 @@ def _readily_evaporable(details: dict[str, Any], tew: float) -> float:
         return float(details["rew_mm"])
     texture = details["layers"][0]["texture"]
     return min(handbook.soil_texture(texture or "loam").rew_mm, 0.9 * tew)
-
-
-def crop_season(details: dict[str, Any], planting: date) -> CropSeason:
-    """A season: the handbook's row of its crop, under what the book overrides."""
-    usable = handbook.usable(details["crop"], details["coefficients"])
-    row = usable.row
-    kind = "kcb" if details["coefficients"] == "dual" else "kc"
-    k_ini, k_mid, k_end = (
-        _over(details[f"{kind}_{stage}"], published)
-        for stage, published in zip(("ini", "mid", "end"), usable.coefficients, strict=True)
-    )
-    return CropSeason(
-        planting=np.datetime64(planting, "D"),
-        stage_days=tuple(details["stage_days"] or usable.stage_days),
-        coefficients=details["coefficients"],
-        k_ini=k_ini,
-        k_mid=k_mid,
-        k_end=k_end,
-        kc_min=_over(details["kc_min"], 0.15),
-        height_max_m=_over(details["height_m"], row.height_max_m),
-        root_min_m=_over(details["root_depth_min_m"], row.root_depth_min_m),
-        root_max_m=_over(details["root_depth_max_m"], row.root_depth_max_m),
-        depletion_fraction=_over(details["depletion_fraction"], row.depletion_fraction),
-        mad=details["mad"],
-        perennial=row.perennial,
-        climate_adjustment=details["climate_adjustment"],
-        end=np.datetime64(details["end"], "D") if details["end"] else None,
-    )
-
-
-def _over(given: float | None, published: float) -> float:
-    return published if given is None else given
 
 
 def application_system(details: dict[str, Any]) -> ApplicationSystem:
@@ -164,3 +164,32 @@ def keep_off_mask(details: dict[str, Any], days: NDArray[np.datetime64]) -> NDAr
         first, last = np.datetime64(span["first"], "D"), np.datetime64(span["last"], "D")
         allowed &= ~((days >= first) & (days <= last))
     return allowed
+
+
+def salt_factor(field: dict[str, Any], season: dict[str, Any]) -> float:
+    """Stress coefficient of the salinity that a field's water leaves, 1 where nothing is known of
+    the water or of the crop."""
+    crop, water = _salt_row(season), field.get("water_ec_ds_m")
+    if water is None or crop is None or crop.salinity_slope_pct_per_ds_m is None:
+        return 1.0
+    ece = soil_salinity(water, field["leaching_fraction"])
+    slope, ky = crop.salinity_slope_pct_per_ds_m, crop.ky_seasonal or 1.0
+    return float(salinity_stress(ece, _threshold(crop), slope, ky))
+
+
+def leaching(field: dict[str, Any], season: dict[str, Any]) -> float:
+    """Leaching requirement 0-0.9 of a field's water for its crop; 0 where one is not known."""
+    crop, water = _salt_row(season), field.get("water_ec_ds_m")
+    if water is None or crop is None:
+        return 0.0
+    return float(leaching_requirement(water, _threshold(crop)))
+
+
+def _salt_row(season: dict[str, Any]) -> handbook.CropRow | None:
+    row = handbook.crops().get(season["crop"]) if not season.get("own_crop") else None
+    return row if row is not None and row.ece_threshold_ds_m is not None else None
+
+
+def _threshold(crop: handbook.CropRow) -> float:
+    assert crop.ece_threshold_ds_m is not None
+    return crop.ece_threshold_ds_m

@@ -36,6 +36,7 @@ from app.storage.ledgers import (
 )
 from app.storage.series import read_past_years, read_series
 from app.workflows import agronomy
+from app.workflows.crop import Seen, crop_season
 
 Floats = NDArray[np.float64]
 HORIZON = 14
@@ -87,6 +88,8 @@ class FieldWeather:
     rain: Floats
     u2: Floats
     rh_min: Floats
+    tmax: Floats
+    tmin: Floats
     rung: NDArray[np.int8]
     rn: Floats
     eto_ahead: Floats
@@ -126,12 +129,23 @@ def assemble(session: Session, since: Mapping[int, date], through: date) -> list
 
 
 def seasons_of(session: Session, blocks: Sequence[int]) -> list[tuple[SeasonRow, CropSeason]]:
-    """Seasons of blocks by block and planting; one that the next overtakes ends the day before."""
+    """Seasons of blocks by block and planting; one that the next overtakes ends the day before.
+
+    What was seen of a crop belongs to the season it was seen in.
+    """
     rows = read_seasons(session, blocks)
+    seen: dict[int, list[Seen]] = {}
+    for event in standing_events(session, blocks, ("stage", "cover", "cutting")):
+        height = (event.details or {}).get("height_m", 0.0)
+        seen.setdefault(event.block_id, []).append(
+            Seen(event.day, event.kind, event.amount, height)
+        )
     found = []
     for row, later in pairwise([*rows, None]):
         assert row is not None
-        crop = agronomy.crop_season(row.details, row.planting)
+        until = later.planting if later is not None and later.block_id == row.block_id else date.max
+        own = [one for one in seen.get(row.block_id, []) if row.planting <= one.day < until]
+        crop = crop_season(row.details, row.planting, own)
         if later is not None and later.block_id == row.block_id:
             eve = np.datetime64(_start(later), "D") - 1
             if crop.last_day > eve:
@@ -220,6 +234,7 @@ class _Weather:
             self._pick(station["rain"], "rain"),
             self._pick(wind, "wind_2m"),
             self._pick(air, "rh_min_used"),
+            (self._pick(air, "tmax"), self._pick(air, "tmin")),
             self._past(int(energy[-1]), int(station["rain"][-1])),
         )
 
@@ -265,6 +280,7 @@ def _completed(
     rain: Floats,
     u2: Floats,
     rh_min: Floats,
+    extremes: tuple[Floats, Floats],
     past: Past,
 ) -> FieldWeather:
     """Fill gaps by the usual for the date and go on `HORIZON` days beyond the last day."""
@@ -283,6 +299,8 @@ def _completed(
         rain=np.r_[np.nan_to_num(rain), np.zeros(HORIZON)],
         u2=_steady(u2, 2.0),
         rh_min=_steady(rh_min, 45.0),
+        tmax=_steady(extremes[0], 25.0),
+        tmin=_steady(extremes[1], 10.0),
         rung=np.r_[rung, np.full(HORIZON, USUAL, np.int8)],
         rn=np.r_[energy, usual_ahead(energy, ra[:days], ahead)],
         eto_ahead=past.sequences.eto(foretold, ahead),
@@ -293,8 +311,8 @@ def _completed(
 def _steady(values: Floats, neutral: float, window: int = 30) -> Floats:
     """Fill gaps, and the days ahead, with the mean of the 30 days before; `neutral` without any.
 
-    Only the climate adjustment of coefficients reads these, by their own 30-day mean; the neutral
-    values, 2 m/s and 45 %, are those of the handbook's tables.
+    Only the climate adjustment of coefficients reads these, by their own 30-day mean, and degree
+    days; the neutral values, 2 m/s and 45 %, are those of the handbook's tables.
     """
     steady: Floats = np.r_[values, np.full(HORIZON, np.nan)]
     for day in np.flatnonzero(np.isnan(steady)):
@@ -330,18 +348,23 @@ def _subject(
             last_irrigation = event.day
         if not 0 <= place < days:
             continue
-        if event.kind == "rain":
+        if event.kind != "irrigation":
+            if event.kind != "rain":
+                continue
             gauge[place] = gauge.get(place, 0.0) + event.amount
             continue
         g, n = agronomy.gross_and_net(
             event.amount, event.unit, event.purpose, block.system, block.area_ha
         )
-        gross[place] += g
-        net[place] += n
+        share = (event.details or {}).get("area_share", 1.0)
+        gross[place] += share * g
+        net[place] += share * n
         wetted[place] = fraction
     for place, amount in gauge.items():
         rain[place] = amount
     details = season.details
+    dates = np.datetime64(start, "D") + np.arange(days)
+    table = agronomy.water_table(block.field, dates)
     past = min(days, (through - start).days + 1)
     return Subject(
         block=block,
@@ -355,6 +378,11 @@ def _subject(
             irrigation_gross=gross,
             irrigation_net=net,
             irrigation_fw=wetted,
+            same_day=block.system.get("same_day", "irrigation"),
+            salt_factor=agronomy.salt_factor(block.field, details),
+            water_table_m=table,
+            rising_soil=None if table is None else agronomy.rising_soil(block.soil),
+            degree_days_before=_warmth_before(crop, start, weather),
             under_canopy=block.system["under_canopy"],
             root_wetted_fraction=block.system["root_wetted_fraction"],
             initial_depletion_mm=details["initial_depletion_mm"],
@@ -369,6 +397,8 @@ def _subject(
             rh_min=weather.rh_min[here],
             rung=weather.rung[here],
             rn=weather.rn[here],
+            tmax=weather.tmax[here],
+            tmin=weather.tmin[here],
         ),
         past=past,
         opening_unknown=(
@@ -379,3 +409,16 @@ def _subject(
         last_irrigation=last_irrigation,
         ahead=Ahead(past, weather.eto_ahead[: days - past], weather.rain_ahead[: days - past]),
     )
+
+
+def _warmth_before(crop: CropSeason, start: date, weather: FieldWeather) -> float:
+    """Degree days before a ledger's first day, from planting or what was last seen before it, as
+    far back as the weather goes."""
+    if crop.degree_days is None:
+        return 0.0
+    since = agronomy.as_date(crop.planting)
+    for day, _, _ in crop.anchors:
+        if agronomy.as_date(day) < start:
+            since = agronomy.as_date(day)
+    before = slice(max((since - weather.first).days, 0), max((start - weather.first).days, 0))
+    return float(crop.degree_days.daily(weather.tmax[before], weather.tmin[before]).sum())

@@ -10,6 +10,7 @@ from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from app import handbook
+from app.book.parts import Part
 from app.book.references import Known, reference_problems
 from app.book.schema import (
     WEEKDAYS,
@@ -18,10 +19,9 @@ from app.book.schema import (
     FarmPart,
     FieldPart,
     IrrigationPart,
-    Part,
     RainPart,
-    SeasonPart,
 )
+from app.book.season import SeasonPart
 from app.storage import book as rows
 from app.storage.events import VOID, events_by_origin, head_of
 from app.storage.recipients import put_recipient
@@ -38,6 +38,7 @@ from app.storage.tables import (
     Station,
 )
 from app.workflows import agronomy
+from app.workflows.crop import crop_season
 
 VARIABLES = ("energy", "temperature", "wind", "rain")
 MOVED = timedelta(days=30)
@@ -97,7 +98,7 @@ def _science_problems(book: Book) -> list[str]:
             for p in book.systems
         ),
         *(
-            (f"seasons {n} ({p.field})", partial(agronomy.crop_season, _plain(p), p.planting))
+            (f"seasons {n} ({p.field})", partial(crop_season, _plain(p), p.planting))
             for n, p in enumerate(book.seasons, 1)
         ),
     ]

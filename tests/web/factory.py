@@ -6,7 +6,8 @@ from typing import Any
 from sqlalchemy import insert
 from sqlalchemy.orm import Session
 
-from app.book.schema import LayerPart, SeasonPart, SoilPart, SystemPart
+from app.book.schema import LayerPart, SoilPart, SystemPart
+from app.book.season import SeasonPart
 from app.storage.database import Database
 from app.storage.tables import (
     Advice,

@@ -11,11 +11,11 @@ from sqlalchemy import func, select
 
 from app import handbook
 from app.book import Book, BookError, read_book
-from app.book.schema import SeasonPart
+from app.book.season import SeasonPart
 from app.storage.database import Database
 from app.storage.tables import Block, BookChange, Event, LedgerDay, Season, Source
-from app.workflows import agronomy
 from app.workflows.bring_up_to_date import bring_up_to_date
+from app.workflows.crop import crop_season
 from app.workflows.load_book import load_book
 from app.workflows.log_event import void_event
 from tests.workflows import basin
@@ -167,6 +167,6 @@ def test_every_crop_of_the_handbook_makes_a_season_by_its_name_alone(kind: str) 
     assert len(handbook.crops()) == 119
     for key in handbook.crops():
         part = SeasonPart(field="a", crop=key, planting=date(2026, 4, 1), coefficients=kind)
-        season = agronomy.crop_season(part.model_dump(mode="json"), part.planting)
+        season = crop_season(part.model_dump(mode="json"), part.planting)
         assert sum(season.stage_days) > 30
         assert season.k_mid > 0.0
