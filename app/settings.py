@@ -53,12 +53,16 @@ class Settings:
     today: the day it is for every station, or None for each station's own date.
     demo: True only under `rillbook demo`; opens the three ways in without an account.
     mail: how letters leave.
+    correction_days, correction_share: what makes a correction letter: days an irrigation moves,
+    share its hours change (working values).
     """
 
     database: str
     today: date | None = None
     demo: bool = False
     mail: Mail = field(default_factory=Mail)
+    correction_days: int = 2
+    correction_share: float = 0.25
 
 
 def default_database() -> str:
@@ -82,7 +86,29 @@ def read_settings(environment: Mapping[str, str] = os.environ) -> Settings:
         ) from None
     if today is not None and not 1980 <= today.year <= 2200:
         raise SettingsError(f"RILLBOOK_TODAY is {stated!r}; it must lie in the years 1980 to 2200")
-    return Settings(database=database, today=today, mail=read_mail(environment))
+    return Settings(
+        database=database,
+        today=today,
+        mail=read_mail(environment),
+        correction_days=int(_between(environment, "CORRECTION_DAYS", 2, 1, 7)),
+        correction_share=_between(environment, "CORRECTION_SHARE", 0.25, 0.01, 10.0),
+    )
+
+
+def _between(
+    environment: Mapping[str, str], name: str, plain: float, low: float, high: float
+) -> float:
+    """A number of the environment within bounds, `plain` where it is not set."""
+    stated = environment.get(f"RILLBOOK_{name}", "").strip()
+    try:
+        value = float(stated) if stated else plain
+    except ValueError:
+        value = high + 1
+    if not low <= value <= high:
+        raise SettingsError(
+            f"RILLBOOK_{name} is {stated!r}; it must be a number from {low:g} to {high:g}"
+        )
+    return value
 
 
 LOOPBACK = frozenset({"127.0.0.1", "localhost", "::1"})

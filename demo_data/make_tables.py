@@ -238,13 +238,72 @@ SYSTEMS: list[dict[str, Any]] = [
     },
 ]
 
+
+def letters_to(
+    name: str, address: str, language: str, units: str, weekday: str, hour: int
+) -> dict[str, Any]:
+    """A recipient of a farm's letters."""
+    return {
+        "name": name,
+        "address": f"{address}@example.org",
+        "language": language,
+        "units": units,
+        "weekday": weekday,
+        "hour": hour,
+    }
+
+
+ZONE = {"time_zone": "America/Denver", "advisor": "Dessa Arden"}
 FARMS: list[dict[str, Any]] = [
-    {"key": "hollin", "name": "Hollin Farm", "grower": "Ada Brennick"},
-    {"key": "tern-creek", "name": "Tern Creek", "grower": "Jory Maddick"},
-    {"key": "quarry-flat", "name": "Quarry Flat", "grower": "Elisa Torvane"},
-    {"key": "lower-lane", "name": "Lower Lane", "grower": "Ramón Quillera"},
-    {"key": "orchard-road", "name": "Orchard Road", "grower": "Teodora Vasken"},
-    {"key": "low-meadow", "name": "Low Meadow Dairy", "grower": "Pell Hasselby"},
+    {
+        "key": "hollin",
+        "name": "Hollin Farm",
+        "grower": "Ada Brennick",
+        **ZONE,
+        "recipients": [
+            letters_to("Ada Brennick", "ada.brennick", "en", "us", "monday", 18),
+            letters_to("Lázaro Fontenal", "lazaro.fontenal", "es", "metric", "monday", 18),
+        ],
+    },
+    {
+        "key": "tern-creek",
+        "name": "Tern Creek",
+        "grower": "Jory Maddick",
+        **ZONE,
+        "letters": "automatic",
+        "recipients": [letters_to("Jory Maddick", "jory.maddick", "en", "metric", "tuesday", 5)],
+    },
+    {
+        "key": "quarry-flat",
+        "name": "Quarry Flat",
+        "grower": "Elisa Torvane",
+        **ZONE,
+        "recipients": [letters_to("Elisa Torvane", "elisa.torvane", "en", "us", "sunday", 18)],
+    },
+    {
+        "key": "lower-lane",
+        "name": "Lower Lane",
+        "grower": "Ramón Quillera",
+        **ZONE,
+        "recipients": [letters_to("Ramón Quillera", "ramon.quillera", "es", "us", "tuesday", 6)],
+    },
+    {
+        "key": "orchard-road",
+        "name": "Orchard Road",
+        "grower": "Teodora Vasken",
+        **ZONE,
+        "recipients": [
+            letters_to("Teodora Vasken", "teodora.vasken", "en", "metric", "sunday", 18)
+        ],
+    },
+    {
+        "key": "low-meadow",
+        "name": "Low Meadow Dairy",
+        "grower": "Pell Hasselby",
+        **ZONE,
+        "letters": "automatic",
+        "recipients": [letters_to("Pell Hasselby", "pell.hasselby", "en", "us", "tuesday", 18)],
+    },
 ]
 
 # field capacity, wilting point, readily evaporable water (FAO-56 Table 19, middle of the ranges)

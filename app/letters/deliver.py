@@ -34,6 +34,10 @@ class TemporaryError(DeliveryError):
     """Not now: the server refused for the time being (4xx), or could not be reached."""
 
 
+class UnreachableError(TemporaryError):
+    """The server could not be reached, or does not let us in: no letter can leave just now."""
+
+
 class RejectedError(DeliveryError):
     """Not at all: the server refused for good (5xx)."""
 
@@ -75,7 +79,7 @@ def write_file(data: bytes, folder: Path, about_to_send: Callable[[], None] = la
         about_to_send()
         os.replace(half, folder / f"{name}.eml")
     except OSError as error:
-        raise TemporaryError(f"{error.filename or folder}: {error.strerror}") from error
+        raise UnreachableError(f"{error.filename or folder}: {error.strerror}") from error
     return str(folder / f"{name}.eml")
 
 
@@ -85,9 +89,9 @@ def _connected(mail: Mail) -> Iterator[smtplib.SMTP]:
     try:
         server = _connect(mail)
     except smtplib.SMTPResponseException as error:
-        raise TemporaryError(_words(mail, error.smtp_code, error.smtp_error)) from error
+        raise UnreachableError(_words(mail, error.smtp_code, error.smtp_error)) from error
     except (smtplib.SMTPException, OSError) as error:
-        raise TemporaryError(f"{mail.host}:{mail.port}: {error}") from error
+        raise UnreachableError(f"{mail.host}:{mail.port}: {error}") from error
     try:
         yield server
     finally:
