@@ -5,7 +5,7 @@ from datetime import datetime, timedelta
 
 from icalendar import Calendar, Event, vCalAddress
 
-from app.letters.content import Content, Item
+from app.letters.content import Content, Item, one_line
 from app.wording.reader import Reader
 
 PRODUCT = "-//Rillbook//Weekly letter//EN"
@@ -33,7 +33,7 @@ def calendar(
     book.add("method", "PUBLISH")
     if letters:
         name = reader.say("letter", "calendar_name", farm=letters[-1][0].farm)
-        book.add("x-wr-calname", name)
+        book.add("x-wr-calname", one_line(name))
     entries: dict[str, Event] = {}
     for content, gone, at in letters:
         for item in content.items:
@@ -64,11 +64,9 @@ def _entry(
     entry.add("status", "CANCELLED" if cancelled else "CONFIRMED")
     entry.add("organizer", vCalAddress(f"mailto:{organizer}"))
     hours, depth = reader.hours(item.hours), reader.depth(item.gross_mm)
-    entry.add(
-        "summary",
-        reader.say("letter", "calendar_item", field=item.field, hours=hours, depth=depth),
-    )
+    words = reader.say("letter", "calendar_item", field=item.field, hours=hours, depth=depth)
+    entry.add("summary", one_line(words))
     title, caution = reader.say("common", "caution_title"), reader.say("common", "caution")
     expected = f"{reader.say('letter', 'expected').lstrip('* ')}. " if item.expected else ""
-    entry.add("description", f"{content.farm}. {expected}{title} {caution}")
+    entry.add("description", one_line(f"{content.farm}. {expected}{title} {caution}"))
     return entry

@@ -7,9 +7,9 @@ from PIL import Image, ImageDraw, ImageFont
 
 from app.letters.content import Dryness
 
-WIDTH, NAME, ROW, EDGE = 560, 168, 26, 10
+WIDTH, NAME, ROW, EDGE = 420, 132, 28, 6
 """Width of the picture, room of names, height of a row, margin [CSS px]."""
-SCALE = 2
+SCALE = 3
 """Device pixels a CSS pixel, for sharp letters on a phone."""
 MOST = 14
 """More fields than this are left to the farm's page; the driest are shown."""
@@ -34,7 +34,7 @@ def bars(fields: Sequence[Dryness]) -> bytes:
     shown = driest(fields)
     picture = Image.new("RGB", (WIDTH * SCALE, (len(shown) * ROW + EDGE) * SCALE), PAPER)
     draw = ImageDraw.Draw(picture)
-    font = ImageFont.load_default(13 * SCALE)
+    font = ImageFont.load_default(14 * SCALE)
     for number, field in enumerate(shown):
         _row(draw, font, field, EDGE // 2 + number * ROW)
     out = io.BytesIO()

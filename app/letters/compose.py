@@ -16,14 +16,13 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
 from app.letters.calendar import letter_calendar
 from app.letters.chart import bars
-from app.letters.content import Content, Item
+from app.letters.content import Content, Item, one_line
 from app.letters.deliver import LETTER
-from app.letters.view import Links, View, view
+from app.letters.view import COLUMNS, Links, View, view
 from app.resources import resource
 from app.settings import Mail
 from app.wording.reader import Reader
 
-COLUMNS = 72
 CHART = "chart"
 
 
@@ -67,6 +66,7 @@ def compose(
             params={"method": "PUBLISH"},
             filename=f"{content.farm_key}-{content.first_day}.ics",
         )
+    letter["Content-Language"] = reader.language
     _fix_boundaries(letter, envelope.message_id)
     return letter
 
@@ -87,11 +87,6 @@ def body_text(worded: View) -> str:
     return re.sub(r"\n{3,}", "\n\n", text).strip() + "\n"
 
 
-def one_line(text: str) -> str:
-    """A text fit for a header: one line, nothing that cannot be printed."""
-    return "".join(sign for sign in " ".join(text.split()) if sign.isprintable())
-
-
 def _head(letter: EmailMessage, worded: View, envelope: Envelope, mail: Mail) -> None:
     letter["From"] = mail.sender
     letter["To"] = Address(one_line(envelope.name), addr_spec=envelope.address)
@@ -100,7 +95,6 @@ def _head(letter: EmailMessage, worded: View, envelope: Envelope, mail: Mail) ->
     )
     letter["Date"] = format_datetime(envelope.at)
     letter["Message-ID"] = f"<{envelope.message_id}>"
-    letter["Content-Language"] = worded.reader.language
     letter["Auto-Submitted"] = "auto-generated"  # RFC 3834 5
     letter["List-Unsubscribe"] = f"<{worded.links.stop}>"  # RFC 8058 3.1, both
     letter["List-Unsubscribe-Post"] = "List-Unsubscribe=One-Click"

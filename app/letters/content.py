@@ -10,6 +10,11 @@ from typing import Literal
 from pydantic import BaseModel, ConfigDict
 
 
+def one_line(text: str) -> str:
+    """A text fit for a header or a calendar: one line, nothing that cannot be printed."""
+    return "".join(sign for sign in " ".join(text.split()) if sign.isprintable())
+
+
 class Part(BaseModel):
     """A part of a letter; never changed once made."""
 

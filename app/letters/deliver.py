@@ -12,7 +12,9 @@ import ssl
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager, suppress
 from email import policy
+from email.headerregistry import BaseHeader, HeaderRegistry, UniqueUnstructuredHeader
 from email.message import EmailMessage
+from email.policy import Policy
 from email.utils import getaddresses
 from pathlib import Path
 
@@ -22,7 +24,19 @@ COMMAND_S = 60.0
 """How long a reply to a command is waited for (RFC 5321 4.5.3.2 asks 5 minutes of relays)."""
 DOT_S = 600.0
 """How long the reply to the end of DATA is waited for (RFC 5321 4.5.3.2.6)."""
-LETTER = policy.SMTP.clone(cte_type="7bit", max_line_length=76)
+
+
+class _WholeHeader(UniqueUnstructuredHeader, BaseHeader):
+    """A header whose address must not be broken or encoded, however long its line is."""
+
+    def fold(self, *, policy: Policy) -> str:
+        """The header on one line (up to 998 signs, RFC 5322 2.1.1)."""
+        return f"{self.name}: {self}{policy.linesep}"
+
+
+_HEADERS = HeaderRegistry()
+_HEADERS.map_to_type("list-unsubscribe", _WholeHeader)
+LETTER = policy.SMTP.clone(cte_type="7bit", max_line_length=76, header_factory=_HEADERS)
 """Header and body lines as every server takes them, with or without 8BITMIME."""
 
 

@@ -38,4 +38,4 @@ def read(key: bytes, purpose: str, token: str, today: date) -> list[str]:
 
 
 def _signature(key: bytes, said: str) -> str:
-    return hmac.new(key, said.encode(), sha256).hexdigest()[:32]
+    return hmac.new(key, said.encode(), sha256).hexdigest()[:24]

@@ -5,9 +5,12 @@ from dataclasses import dataclass
 from itertools import groupby
 
 from app.letters.chart import driest, share
-from app.letters.content import Content, Doubt, Item, Past
+from app.letters.content import Content, Doubt, Item, Past, one_line
 from app.wording.catalogue import RUNGS
 from app.wording.reader import Reader
+
+COLUMNS = 72
+"""Width of the plain text."""
 
 
 @dataclass(frozen=True)
@@ -78,6 +81,22 @@ class View:
     def caution(self) -> str:
         """The caution."""
         return self.reader.say("common", "caution")
+
+    @property
+    def past_lines(self) -> str:
+        """The last seven days in columns, for plain text."""
+        heads = [self.say(name) for name in ("rain", "used", "applied")]
+        widths = [max(len(head), 6) for head in heads]
+        room = COLUMNS - sum(widths) - 2 * len(widths)
+        table = [
+            (self.say("field"), *heads),
+            *((row.field, row.rain, row.used, row.applied) for row in self.past),
+        ]
+        return "\n".join(
+            one_line(name)[:room].ljust(room)
+            + "".join(f"  {cell:>{width}}" for cell, width in zip(cells, widths, strict=True))
+            for name, *cells in table
+        )
 
     @property
     def depth_unit(self) -> str:

@@ -124,7 +124,7 @@ def mark_sending(session: Session, number: int, claim: str, until: datetime) -> 
     return _settle(session, number, claim, ("claimed",), state="sending", claimed_until=until)
 
 
-def settle(session: Session, number: int, claim: str, **values: Any) -> bool:
+def settle(session: Session, number: int, claim: str, /, **values: Any) -> bool:
     """Write how a try ended; False where this worker no longer holds the letter.
 
     A worker that was thought gone may still find out what became of its letter."""

@@ -61,9 +61,9 @@ class Reader:
         return text.replace(group, NARROW).replace(sign, MINUS)
 
     def hours(self, value: float | None) -> str:
-        """Running time [h]: `7.4 h`; whole from 100 h on."""
-        digits = 0 if value is not None and abs(value) >= 99.95 else 1
-        return self._with_unit("hours", self.number(value, digits))
+        """Running time [h]: `7.4 h`; whole where it is, and from 100 h on."""
+        whole = value is None or abs(value) >= 99.95 or round(value, 1) == round(value)
+        return self._with_unit("hours", self.number(value, 0 if whole else 1))
 
     def depth(self, mm: float | None) -> str:
         """A depth [mm] in the reader's units: `53 mm`, `2.1 in`."""

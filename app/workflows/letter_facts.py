@@ -178,12 +178,13 @@ def letter_content(
 ) -> Content | None:
     """What a letter says of the week from `first_day` on; None where there is no advice at all.
 
-    Water due before `first_day`, from today on, is said too. `more`: note, signed, signed_for.
+    Water due the day before `first_day`, when the letter goes, is said too. `more`: note, signed,
+    signed_for, revision.
     """
     if facts.morning is None or not facts.fields:
         return None
     last_day = first_day + timedelta(days=6)
-    items = _items(facts, week, last_day, domain)
+    items = _items(facts, week, (first_day - timedelta(days=1), last_day), domain)
     watered = {item.field_key for item in items}
     return Content(
         farm_key=facts.key,
@@ -212,14 +213,14 @@ def letter_content(
     )
 
 
-def _items(facts: FarmFacts, week: date, last_day: date, domain: str) -> list[Item]:
-    """Every application up to the last day, by day; what was due before today is due today."""
+def _items(facts: FarmFacts, week: date, span: tuple[date, date], domain: str) -> list[Item]:
+    """Every application within a span of days, by day; what was due before today is due today."""
     found = []
     for one in facts.fields:
         row = one.row
         for nth, water in enumerate(one.water, 1):
             day = max(water.day, facts.today)
-            if day <= last_day:
+            if span[0] <= day <= span[1]:
                 uid = f"{week}.{row.field_key}.{nth}@{domain}"
                 found.append((day, row, water, uid, nth > 1))
     found.sort(key=lambda item: (item[0], item[1].field_name.casefold()))

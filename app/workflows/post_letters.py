@@ -126,7 +126,7 @@ def _failed(
     if isinstance(error, deliver.UnsureError):
         values = {"state": "unsure", "settled_at": now}
     elif isinstance(error, deliver.TemporaryError) and now - letter.due < GIVE_UP:
-        values = {"state": "released", "next_try": now + pause(tries), "claim": ""}
+        values = {"state": "released", "next_try": now + pause(tries)}
     else:
         values = {"state": "refused", "settled_at": now}
     with db.write() as session:

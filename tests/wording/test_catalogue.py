@@ -81,6 +81,7 @@ def test_figures() -> None:
     assert us.depth(0.0) == "0.0\u00a0in"
     assert spanish.depth(53.34) == "2.1\u00a0pulg"
     assert metric.hours(7.42) == "7.4\u00a0h"
+    assert metric.hours(48.02) == "48\u00a0h"
     assert metric.hours(120.4) == "120\u00a0h"
     # an acre-foot is 1233.48 m3 (NIST SP 811, appendix B)
     assert us.volume(6573.0) == "5.33\u00a0acre-feet"
