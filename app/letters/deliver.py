@@ -12,7 +12,7 @@ import ssl
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager, suppress
 from email import policy
-from email.headerregistry import BaseHeader, HeaderRegistry, UniqueUnstructuredHeader
+from email.headerregistry import BaseHeader, HeaderRegistry, UnstructuredHeader
 from email.message import EmailMessage
 from email.policy import Policy
 from email.utils import getaddresses
@@ -26,7 +26,7 @@ DOT_S = 600.0
 """How long the reply to the end of DATA is waited for (RFC 5321 4.5.3.2.6)."""
 
 
-class _WholeHeader(UniqueUnstructuredHeader, BaseHeader):
+class _WholeHeader(UnstructuredHeader, BaseHeader):
     """A header whose address must not be broken or encoded, however long its line is."""
 
     def fold(self, *, policy: Policy) -> str:
