@@ -15,6 +15,7 @@ VOID = "void"
 class Standing(NamedTuple):
     """An event that stands: not superseded, not deleted."""
 
+    event_id: int
     block_id: int
     day: date
     kind: str
@@ -22,7 +23,7 @@ class Standing(NamedTuple):
     unit: str
     purpose: str
     confirmation: str
-    details: dict[str, Any] | None
+    details: dict[str, Any]
 
 
 def standing_events(
@@ -32,6 +33,7 @@ def standing_events(
     later = aliased(Event)
     wanted = (
         select(
+            Event.id,
             Event.block_id,
             Event.day,
             Event.kind,
@@ -48,7 +50,8 @@ def standing_events(
     )
     if kinds:
         wanted = wanted.where(Event.kind.in_(kinds))
-    return (Standing(*row) for row in session.execute(wanted))
+    rows = session.execute(wanted)
+    return (Standing._make((*row[:-1], row[-1] or {})) for row in rows)
 
 
 def head_of(session: Session, event: Event) -> Event:

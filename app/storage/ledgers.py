@@ -12,6 +12,7 @@ from app.storage.tables import (
     Field,
     IrrigationSystem,
     LedgerDay,
+    ReadingTaken,
     Season,
     Soil,
     Source,
@@ -147,14 +148,30 @@ def first_energy_days(session: Session) -> dict[int, date]:
     }
 
 
+def replace_readings(
+    session: Session, since: Mapping[int, date], rows: Sequence[dict[str, Any]]
+) -> None:
+    """Put what readings did in place of what was kept of each block from its day of `since` on."""
+    for day, blocks in _by_day(since).items():
+        session.execute(
+            delete(ReadingTaken).where(ReadingTaken.block_id.in_(blocks), ReadingTaken.close >= day)
+        )
+    if rows:
+        session.execute(insert(ReadingTaken), rows)
+
+
+def _by_day(since: Mapping[int, date]) -> dict[date, list[int]]:
+    by_day: dict[date, list[int]] = {}
+    for block, day in since.items():
+        by_day.setdefault(day, []).append(block)
+    return by_day
+
+
 def replace_ledger_days(
     session: Session, since: Mapping[int, date], rows: Iterable[dict[str, Any]]
 ) -> int:
     """Put ledger rows in place of each block's rows from its day of `since` on."""
-    by_day: dict[date, list[int]] = {}
-    for block, day in since.items():
-        by_day.setdefault(day, []).append(block)
-    for day, blocks in by_day.items():
+    for day, blocks in _by_day(since).items():
         session.execute(
             delete(LedgerDay).where(LedgerDay.block_id.in_(blocks), LedgerDay.day >= day)
         )

@@ -190,10 +190,13 @@ class EventRow(NamedTuple):
     supersedes: int | None
 
 
+WATER = ("irrigation", "rain")
+
+
 def events_since(
     session: Session, since: date, blocks: Sequence[int] | None = None
 ) -> list[EventRow]:
-    """Events that stand from a day on, newest day first; of some blocks if given."""
+    """Water and rain that stand from a day on, newest day first; of some blocks if given."""
     later = aliased(Event)
     statement = (
         select(
@@ -213,7 +216,7 @@ def events_since(
             Event.supersedes,
         )
         .join(Block, Block.id == Event.block_id)
-        .where(Event.day >= since, Event.kind != "void")
+        .where(Event.day >= since, Event.kind.in_(WATER))
         .where(~exists().where(later.supersedes == Event.id))
         .order_by(Event.day.desc(), Event.id.desc())
     )

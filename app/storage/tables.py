@@ -425,6 +425,24 @@ class LedgerDay(Base):
     standing: Mapped[str]
 
 
+class ReadingTaken(Base):
+    """What a reading of soil water did to its block's ledger: how it was weighed, and the shift."""
+
+    __tablename__ = "reading_taken"
+    event_id: Mapped[int] = mapped_column(ForeignKey("event.id"), primary_key=True)
+    block_id: Mapped[int] = mapped_column(ForeignKey("block.id"), index=True)
+    close: Mapped[date]
+    correction_mm: Mapped[float]
+    gain: Mapped[float]
+    before_mm: Mapped[float]
+    before_spread_mm: Mapped[float]
+    reading_mm: Mapped[float]
+    reading_spread_mm: Mapped[float]
+    after_mm: Mapped[float]
+    after_spread_mm: Mapped[float]
+    why: Mapped[str]
+
+
 # Frozen
 
 

@@ -103,7 +103,8 @@ def inputs_hash(subject: Subject, stale: Any) -> str:
             digest.update(
                 value.tobytes() if isinstance(value, np.ndarray) else repr(value).encode()
             )
-    words = [subject.block.system, subject.block.field, subject.season.details, subject.past]
+    block, season = subject.block, subject.season
+    words = [block.system, block.field, season.details, subject.past, subject.keep_offs]
     digest.update(json.dumps([words, stale], sort_keys=True, default=str).encode())
     digest.update(repr(subject.last_irrigation).encode())
     return digest.hexdigest()
@@ -119,7 +120,7 @@ def _row(computed: Computed, on: date, stale: list[tuple[str, int, date | None]]
         limit=ledger.limit_mm[past:],
         taw=ledger.taw_mm[past:],
         etc=ledger.etc_potential_mm[past:],
-        allowed=agronomy.keep_off_mask(subject.block.field, days),
+        allowed=agronomy.keep_off_mask(subject.block.field, days, subject.keep_offs),
         p10=p10[past:],
         p90=p90[past:],
     )

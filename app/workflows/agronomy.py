@@ -1,5 +1,6 @@
 """From the book's parts and the handbook to the frozen objects that science works on."""
 
+from collections.abc import Sequence
 from datetime import date
 from typing import Any
 
@@ -157,12 +158,18 @@ def gross_and_net(
     return gross, gross * efficiency * PURPOSE_SHARE.get(purpose, 1.0)
 
 
-def keep_off_mask(details: dict[str, Any], days: NDArray[np.datetime64]) -> NDArray[np.bool_]:
-    """True on the days a field may be irrigated."""
+def keep_off_mask(
+    details: dict[str, Any],
+    days: NDArray[np.datetime64],
+    said: Sequence[tuple[date, date]] = (),
+) -> NDArray[np.bool_]:
+    """True on the days a field may be irrigated: by its book, and by what was `said` since."""
     allowed = np.ones(days.shape, np.bool_)
     for span in details["keep_offs"]:
         first, last = np.datetime64(span["first"], "D"), np.datetime64(span["last"], "D")
         allowed &= ~((days >= first) & (days <= last))
+    for begins, ends in said:
+        allowed &= ~((days >= np.datetime64(begins)) & (days <= np.datetime64(ends)))
     return allowed
 
 

@@ -64,6 +64,10 @@ class Subject:
     opening_unknown: bool
     """A ledger that starts after planting without a reading: anywhere in 0-100 % of RAW."""
     last_irrigation: date | None
+    readings: tuple[Standing, ...]
+    """Readings of soil water in the season, by day and hour."""
+    keep_offs: tuple[tuple[date, date], ...]
+    """Days on which somebody said that it must not be watered, both included."""
     ahead: Ahead
     """What the weather ahead may be; without a column where no past morning tells."""
 
@@ -136,7 +140,7 @@ def seasons_of(session: Session, blocks: Sequence[int]) -> list[tuple[SeasonRow,
     rows = read_seasons(session, blocks)
     seen: dict[int, list[Seen]] = {}
     for event in standing_events(session, blocks, ("stage", "cover", "cutting")):
-        height = (event.details or {}).get("height_m", 0.0)
+        height = event.details.get("height_m", 0.0)
         seen.setdefault(event.block_id, []).append(
             Seen(event.day, event.kind, event.amount, height)
         )
@@ -356,7 +360,7 @@ def _subject(
         g, n = agronomy.gross_and_net(
             event.amount, event.unit, event.purpose, block.system, block.area_ha
         )
-        share = (event.details or {}).get("area_share", 1.0)
+        share = event.details.get("area_share", 1.0)
         gross[place] += share * g
         net[place] += share * n
         wetted[place] = fraction
@@ -407,8 +411,20 @@ def _subject(
             and details["initial_depletion_fraction"] is None
         ),
         last_irrigation=last_irrigation,
+        readings=_readings(events, start, through),
+        keep_offs=tuple(
+            (event.day, date.fromisoformat(event.details["last"]))
+            for event in events
+            if event.kind == "keep_off"
+        ),
         ahead=Ahead(past, weather.eto_ahead[: days - past], weather.rain_ahead[: days - past]),
     )
+
+
+def _readings(events: list[Standing], start: date, through: date) -> tuple[Standing, ...]:
+    last = through + TODAY
+    found = [one for one in events if one.kind == "reading" and start <= one.day <= last]
+    return tuple(sorted(found, key=lambda one: (one.day, one.details["hour"], one.event_id)))
 
 
 def _warmth_before(crop: CropSeason, start: date, weather: FieldWeather) -> float:

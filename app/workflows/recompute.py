@@ -6,8 +6,8 @@ the date and are recomputed when the readings arrive.
 """
 
 import zlib
-from collections.abc import Iterable, Iterator, Mapping
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import asdict, dataclass
 from datetime import date, timedelta
 from typing import Any
 
@@ -21,11 +21,13 @@ from app.storage.ledgers import (
     last_ledger_days,
     read_blocks,
     replace_ledger_days,
+    replace_readings,
 )
 from app.storage.series import numbers
 from app.storage.tables import LedgerDay
 from app.workflows import agronomy
 from app.workflows.assemble import Subject, seasons_of
+from app.workflows.readings import Taken, corrected
 
 MEMBERS = 200
 LEDGER_COLUMNS = tuple(
@@ -62,24 +64,30 @@ class Computed:
     ledger: BlockLedger
     p10: Floats
     p90: Floats
+    taken: tuple[Taken, ...] = ()
+    """What the season's readings did."""
 
 
 def compute(subjects: list[Subject]) -> list[Computed]:
-    """The ledgers of subjects and their ranges."""
+    """The ledgers of subjects, corrected by their readings, and their ranges."""
+    seeds = [_seed(subject) for subject in subjects]
+    subjects, taken = corrected(subjects, seeds)
     plans = [subject.plan for subject in subjects]
     weather = [subject.weather for subject in subjects]
     ledgers = block_ledgers(plans, weather)
     ranges = ensemble_depletions(
         plans,
         weather,
-        [_seed(subject) for subject in subjects],
+        seeds,
         MEMBERS,
         initial_unknown=[subject.opening_unknown for subject in subjects],
         ahead=[subject.ahead for subject in subjects],
     )
     return [
-        Computed(subject, ledger, low, high)
-        for subject, ledger, (low, high) in zip(subjects, ledgers, ranges, strict=True)
+        Computed(subject, ledger, low, high, tuple(taken.get(n, ())))
+        for n, (subject, ledger, (low, high)) in enumerate(
+            zip(subjects, ledgers, ranges, strict=True)
+        )
     ]
 
 
@@ -90,7 +98,7 @@ def _seed(subject: Subject) -> int:
     return zlib.crc32(name.encode())
 
 
-def write_ledgers(session: Session, computed: Iterable[Computed], since: Mapping[int, date]) -> int:
+def write_ledgers(session: Session, computed: Sequence[Computed], since: Mapping[int, date]) -> int:
     """Write ledger rows from each block's day of `since` on; returns how many."""
     rows: list[dict[str, Any]] = []
     for one in computed:
@@ -98,6 +106,21 @@ def write_ledgers(session: Session, computed: Iterable[Computed], since: Mapping
         if first is not None:
             rows.extend(_ledger_rows(one, first))
     written = replace_ledger_days(session, since, rows)
+    starts: dict[int, date] = {}
+    for one in computed:
+        block, first = one.subject.block.block_id, agronomy.as_date(one.subject.plan.start)
+        starts[block] = min(first, starts.get(block, first))
+    told = [
+        {
+            "event_id": taken.event_id,
+            "block_id": one.subject.block.block_id,
+            "close": taken.close,
+            **asdict(taken.correction),
+        }
+        for one in computed
+        for taken in one.taken
+    ]
+    replace_readings(session, starts, told)
     clear_dirty(session, sorted(since))
     return written
 
