@@ -7,6 +7,7 @@ from typing import Any
 from sqlalchemy import case, func, select
 from sqlalchemy.orm import Session
 
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import WHOLE, Advice, Block, Farm, Field, LedgerDay, Station, StationDay
 
 LEDGER_COLUMNS = tuple(
@@ -77,19 +78,19 @@ def station_rows(session: Session, station_key: str) -> Iterator[tuple[Any, ...]
     )
 
 
-def advice_rows(session: Session, on: date) -> Iterator[tuple[Any, ...]]:
+def advice_rows(session: Session, on: date, farms: Farms = None) -> Iterator[tuple[Any, ...]]:
     """Farm, field, its key, block and the advice that stands for a morning, by farm and field."""
     columns = [getattr(Advice, name) for name in ADVICE_COLUMNS]
     named = case((Block.key == WHOLE, ""), else_=Block.name)
-    yield from _streamed(
-        session,
+    statement = (
         select(Farm.name, Field.name, Field.key, named, *columns)
         .join(Block, Block.id == Advice.block_id)
         .join(Field, Field.id == Block.field_id)
         .join(Farm, Farm.id == Field.farm_id)
         .where(Advice.issued_on == on, Advice.stands.is_(True))
-        .order_by(Farm.name, Field.name, Block.id),
+        .order_by(Farm.name, Field.name, Block.id)
     )
+    yield from _streamed(session, of_farms(statement, farms))
 
 
 def _streamed(session: Session, statement: Any) -> Iterator[tuple[Any, ...]]:

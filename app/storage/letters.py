@@ -8,6 +8,7 @@ from typing import Any, NamedTuple
 from sqlalchemy import and_, func, or_, select, update
 from sqlalchemy.orm import Session
 
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import Event, Farm
 from app.storage.tables_letters import Letter, LetterAnswer, Recipient, SigningKey
 
@@ -37,7 +38,7 @@ class LetterRow(NamedTuple):
 def letters(
     session: Session,
     weeks: Sequence[date] | None = None,
-    farm: str | None = None,
+    farms: Farms = None,
     one: int | None = None,
     states: Iterable[str] | None = None,
     most: int | None = None,
@@ -51,8 +52,7 @@ def letters(
     )
     if weeks is not None:
         statement = statement.where(Letter.week.in_(weeks))
-    if farm is not None:
-        statement = statement.where(Farm.key == farm)
+    statement = of_farms(statement, farms)
     if one is not None:
         statement = statement.where(Letter.id == one)
     if states is not None:

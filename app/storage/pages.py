@@ -8,6 +8,7 @@ from sqlalchemy import Text, and_, cast, exists, func, select
 from sqlalchemy.orm import Session, aliased
 
 from app.science.energy.ladder import USUAL
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import (
     Advice,
     Block,
@@ -94,9 +95,9 @@ def last_morning(session: Session, today: date) -> date | None:
 
 
 def rounds_rows(
-    session: Session, morning: date | None, farm: str | None = None, field: str | None = None
+    session: Session, morning: date | None, farms: Farms = None, field: str | None = None
 ) -> list[RoundsRow]:
-    """Every block with its advice of `morning`, of one farm or of one field if given."""
+    """Every block with its advice of `morning`, of some farms or of one field if given."""
     statement = (
         select(
             Field.id,
@@ -125,8 +126,7 @@ def rounds_rows(
         .outerjoin(Season, Season.id == Advice.season_id)
         .order_by(Field.name, Field.id, Block.id)
     )
-    if farm is not None:
-        statement = statement.where(Farm.key == farm)
+    statement = of_farms(statement, farms)
     if field is not None:
         statement = statement.where(Field.key == field)
     return [RoundsRow._make(row) for row in session.execute(statement)]
@@ -144,7 +144,7 @@ class SourceRow(NamedTuple):
 
 
 def sources(
-    session: Session, today: date, farm: str | None = None, variable: str | None = None
+    session: Session, today: date, farms: Farms = None, variable: str | None = None
 ) -> list[SourceRow]:
     """The sources that have begun, oldest first, so that the last of a variable is in force."""
     statement = (
@@ -157,11 +157,10 @@ def sources(
     )
     if variable is not None:
         statement = statement.where(Source.variable == variable)
-    if farm is not None:
-        statement = (
-            statement.join(Field, Field.id == Source.field_id)
-            .join(Farm, Farm.id == Field.farm_id)
-            .where(Farm.key == farm)
+    if farms is not None:
+        statement = of_farms(
+            statement.join(Field, Field.id == Source.field_id).join(Farm, Farm.id == Field.farm_id),
+            farms,
         )
     return [SourceRow._make(row) for row in session.execute(statement)]
 
@@ -283,17 +282,13 @@ def last_days(session: Session) -> dict[int, date]:
     return {row[0]: row[1] for row in session.execute(statement)}
 
 
-def farms(session: Session, key: str | None = None) -> list[tuple[str, str]]:
-    """Key and name of every farm (or the one), by name."""
-    statement = select(Farm.key, Farm.name).order_by(Farm.name)
-    if key is not None:
-        statement = statement.where(Farm.key == key)
+def farms(session: Session, keys: Farms = None) -> list[tuple[str, str]]:
+    """Key and name of every farm (or of some), by name."""
+    statement = of_farms(select(Farm.key, Farm.name).order_by(Farm.name), keys)
     return [(row[0], row[1]) for row in session.execute(statement)]
 
 
-def field_keys(session: Session, farm: str | None = None) -> set[str]:
-    """The keys of every field, or of one farm's."""
-    statement = select(Field.key)
-    if farm is not None:
-        statement = statement.join(Farm, Farm.id == Field.farm_id).where(Farm.key == farm)
-    return set(session.scalars(statement))
+def field_keys(session: Session, farms: Farms = None) -> set[str]:
+    """The keys of every field, or of some farms'."""
+    statement = select(Field.key).join(Farm, Farm.id == Field.farm_id)
+    return set(session.scalars(of_farms(statement, farms)))

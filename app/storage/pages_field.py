@@ -7,6 +7,7 @@ from typing import Any, NamedTuple
 from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import (
     Advice,
     Block,
@@ -44,7 +45,7 @@ class BlockRow(NamedTuple):
     system: dict[str, Any]
 
 
-def field_blocks(session: Session, key: str, farm: str | None = None) -> list[BlockRow]:
+def field_blocks(session: Session, key: str, farms: Farms = None) -> list[BlockRow]:
     """The blocks of a field, none when there is no such field (or it is another farm's)."""
     statement = (
         select(
@@ -72,9 +73,7 @@ def field_blocks(session: Session, key: str, farm: str | None = None) -> list[Bl
         .where(Field.key == key)
         .order_by(Block.id)
     )
-    if farm is not None:
-        statement = statement.where(Farm.key == farm)
-    return [BlockRow._make(row) for row in session.execute(statement)]
+    return [BlockRow._make(row) for row in session.execute(of_farms(statement, farms))]
 
 
 class SeasonRow(NamedTuple):

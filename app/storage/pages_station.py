@@ -6,6 +6,7 @@ from typing import Any, NamedTuple
 from sqlalchemy import func, select
 from sqlalchemy.orm import Session
 
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import (
     Farm,
     Field,
@@ -57,7 +58,7 @@ class Fed(NamedTuple):
     variables: tuple[str, ...]
 
 
-def fed_fields(session: Session, station: int, today: date, farm: str | None = None) -> list[Fed]:
+def fed_fields(session: Session, station: int, today: date, farms: Farms = None) -> list[Fed]:
     """The fields a station feeds today, with the variables it gives."""
     statement = (
         select(Field.id, Field.key, Field.name, Farm.name, Field.area_ha, Source.variable)
@@ -67,10 +68,8 @@ def fed_fields(session: Session, station: int, today: date, farm: str | None = N
         .add_columns(Source.station_id)
         .order_by(Field.name, Field.id, Source.variable, Source.since)
     )
-    if farm is not None:
-        statement = statement.where(Farm.key == farm)
     newest: dict[tuple[int, str], tuple[Any, ...]] = {}
-    for found in session.execute(statement):
+    for found in session.execute(of_farms(statement, farms)):
         newest[found[0], found[5]] = tuple(found)
     by_field: dict[int, list[tuple[Any, ...]]] = {}
     for row in newest.values():

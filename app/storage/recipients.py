@@ -8,6 +8,7 @@ from sqlalchemy import select
 from sqlalchemy.orm import Session
 
 from app.storage.book import note_change
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import Farm, Field, Source, Station
 from app.storage.tables_letters import Cover, Recipient
 
@@ -67,10 +68,8 @@ class RecipientRow(NamedTuple):
     stopped_at: datetime | None
 
 
-def recipients(
-    session: Session, farm: str | None = None, one: int | None = None
-) -> list[RecipientRow]:
-    """Every recipient, of one farm if given, or the one of a number; by farm and name."""
+def recipients(session: Session, farms: Farms = None, one: int | None = None) -> list[RecipientRow]:
+    """Every recipient, of some farms if given, or the one of a number; by farm and name."""
     statement = (
         select(
             Recipient.id, Farm.id, Farm.key, Farm.name, Farm.details,
@@ -80,8 +79,7 @@ def recipients(
         .join(Farm, Farm.id == Recipient.farm_id)
         .order_by(Farm.name, Recipient.name, Recipient.id)
     )  # fmt: skip
-    if farm is not None:
-        statement = statement.where(Farm.key == farm)
+    statement = of_farms(statement, farms)
     if one is not None:
         statement = statement.where(Recipient.id == one)
     return [RecipientRow._make(row) for row in session.execute(statement)]

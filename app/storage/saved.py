@@ -6,6 +6,7 @@ from typing import NamedTuple
 from sqlalchemy import exists, select
 from sqlalchemy.orm import Session, aliased
 
+from app.storage.scope import Farms, of_farms
 from app.storage.tables import Block, Farm, Field, LedgerDay, Season, Source
 
 
@@ -21,7 +22,7 @@ class FedDay(NamedTuple):
 
 
 def fed_days(
-    session: Session, station: int, today: date, farm: str | None = None, field: str | None = None
+    session: Session, station: int, today: date, farms: Farms = None, field: str | None = None
 ) -> list[FedDay]:
     """Ledger days since planting of the blocks that rest on a station for energy, in order.
 
@@ -33,6 +34,7 @@ def fed_days(
         .join(Block, Block.id == LedgerDay.block_id)
         .join(Field, Field.id == Block.field_id)
         .join(Season, Season.id == LedgerDay.season_id)
+        .join(Farm, Farm.id == Field.farm_id)
         .join(Source, Source.field_id == Field.id)
         .where(
             Source.variable == "energy",
@@ -54,8 +56,6 @@ def fed_days(
         )
         .order_by(Field.name, Field.key, Block.id, LedgerDay.day)
     )
-    if farm is not None:
-        statement = statement.join(Farm, Farm.id == Field.farm_id).where(Farm.key == farm)
     if field is not None:
         statement = statement.where(Field.key == field)
-    return [FedDay._make(row) for row in session.execute(statement)]
+    return [FedDay._make(row) for row in session.execute(of_farms(statement, farms))]

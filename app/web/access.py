@@ -12,6 +12,8 @@ from typing import Annotated, Literal
 from fastapi import Depends, HTTPException, Request
 from fastapi.responses import RedirectResponse
 
+from app.storage.scope import Farms
+
 Role = Literal["advisor", "grower", "admin"]
 COOKIE = "rillbook_way_in"
 KEY = re.compile(r"[a-z0-9-]{1,80}")
@@ -83,15 +85,15 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
 
 @dataclass(frozen=True)
 class Viewer:
-    """Who looks: role, the one farm of a grower, the name written beside what they enter."""
+    """Who looks: role, the farms they may know of (None: every one), the name kept with entries."""
 
     role: str
-    farm: str | None = None
+    farms: Farms = None
 
     @property
     def who(self) -> str:
         """The name kept with what this viewer enters."""
-        return f"{self.role} ({self.farm})" if self.farm else self.role
+        return f"{self.role} ({', '.join(sorted(self.farms))})" if self.farms else self.role
 
     def may(self, method: str, path: str) -> bool:
         """Whether this viewer may use a route, by its method and path pattern."""
@@ -110,7 +112,7 @@ def viewer_of(request: Request) -> Viewer:
     if role in STAFF and not farm:
         return Viewer(role)
     if role == "grower" and KEY.fullmatch(farm):
-        return Viewer("grower", farm)
+        return Viewer("grower", frozenset({farm}))
     return Viewer("nobody")
 
 

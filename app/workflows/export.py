@@ -15,10 +15,11 @@ from sqlalchemy import select
 from app.errors import InputError
 from app.storage import book, exports
 from app.storage.database import Database
+from app.storage.scope import Farms
 from app.storage.tables import WHOLE, Field, Station
 from app.wording import CAUTION
 
-FORMULA = ("=", "+", "-", "@", "\t", "\r")
+FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
 
 
 class ExportError(InputError):
@@ -69,13 +70,13 @@ def station_days_csv(db: Database, station_key: str) -> Iterator[str]:
     return rows()
 
 
-def advice_csv(db: Database, on: date) -> Iterator[str]:
-    """The advice that stands for a morning."""
+def advice_csv(db: Database, on: date, farms: Farms = None) -> Iterator[str]:
+    """The advice that stands for a morning, of some farms if given."""
     with db.read() as session:
         yield from _csv(
             f"Advice of {on}; mm, hours, m3",
             ("farm", "field", "field_key", "block", *exports.ADVICE_COLUMNS),
-            exports.advice_rows(session, on),
+            exports.advice_rows(session, on, farms),
         )
 
 

@@ -16,6 +16,7 @@ from app.science.advice.following import following
 from app.storage import letter_facts as store
 from app.storage import pages
 from app.storage.pages import RoundsRow
+from app.storage.scope import Farms
 from app.workflows import agronomy
 from app.workflows.managed import managed
 
@@ -60,12 +61,14 @@ class FarmFacts:
         return [one.row.block_id for one in self.fields]
 
 
-def farm_facts(session: Session, today: date, farm: str | None = None) -> dict[str, FarmFacts]:
-    """The facts of every farm (or the one) on a day, by key."""
+def farm_facts(session: Session, today: date, farms: Farms = None) -> dict[str, FarmFacts]:
+    """The facts of every farm (or of some) on a day, by key."""
     morning = pages.last_morning(session, today)
     rows = [
         managed(list(group))
-        for _, group in groupby(pages.rounds_rows(session, morning, farm), lambda row: row.field_id)
+        for _, group in groupby(
+            pages.rounds_rows(session, morning, farms), lambda row: row.field_id
+        )
     ]
     growing = [row for row in rows if row.number is not None]
     water = _water(session, growing)
@@ -79,7 +82,7 @@ def farm_facts(session: Session, today: date, farm: str | None = None) -> dict[s
         key: FarmFacts(
             key, name, today, morning, tuple(found[key]), tuple(energy.get(key, ())), stations
         )
-        for key, name in pages.farms(session, farm)
+        for key, name in pages.farms(session, farms)
     }
 
 

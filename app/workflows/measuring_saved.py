@@ -15,6 +15,7 @@ from app.science.energy.compare import acre_feet, volume_m3
 from app.science.energy.reference_et import eto_from_parts
 from app.storage.pages_field import station_days
 from app.storage.saved import FedDay, fed_days
+from app.storage.scope import Farms
 
 MEASURED_RUNGS = (1, 2, 3)
 NEEDS = ("tmax", "tmin", "vapour_pressure", "rn", "rn_modelled", "wind_2m")
@@ -102,11 +103,11 @@ def measuring_saved(
     station: int,
     elevation_m: float,
     today: date,
-    farm: str | None = None,
+    farms: Farms = None,
     field: str | None = None,
 ) -> Saved:
-    """What the model would have asked for more since planting, by field; of one farm or field."""
-    fed = fed_days(session, station, today, farm, field)
+    """What the model would have asked for more since planting, by field; of some farms, or one."""
+    fed = fed_days(session, station, today, farms, field)
     if not fed:
         return Saved(())
     every = [row.day for row in fed]

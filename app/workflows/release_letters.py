@@ -29,7 +29,11 @@ def set_note(session: Session, number: int, note: str, whole_farm: bool) -> None
     if len(note) > LONGEST_NOTE:
         raise EntryError(f"the note has {len(note)} signs; at most {LONGEST_NOTE} are taken")
     _must_be(row, store.OPEN, "its note can no longer be changed; take it back first")
-    rows = store.letters(session, [row.letter.week], row.farm.key) if whole_farm else [row]
+    rows = (
+        store.letters(session, [row.letter.week], frozenset({row.farm.key}))
+        if whole_farm
+        else [row]
+    )
     for other in rows:
         if other.letter.state in store.OPEN:
             other.letter.note = note

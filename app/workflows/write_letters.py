@@ -39,8 +39,7 @@ def write_letters(
     if not rows:
         return {}
     key = store.signing_key(session)
-    one_farm = rows[0].farm.key if len({row.farm.id for row in rows}) == 1 else None
-    facts = farm_facts(session, today, one_farm)
+    facts = farm_facts(session, today, frozenset(row.farm.key for row in rows))
     covers = people.covers(session, today)
     corrections = [row for row in rows if row.letter.revision]
     before = _before(session, corrections)

@@ -34,7 +34,7 @@ def rounds(db: AsDatabase, viewer: AsViewer, today: AsToday) -> RoundsOut:
     """Every field with its advice of the morning, most urgent first."""
     with db.read() as session:
         morning = store.last_morning(session, today)
-        rows = [row for row, _ in one_a_field(store.rounds_rows(session, morning, viewer.farm))]
+        rows = [row for row, _ in one_a_field(store.rounds_rows(session, morning, viewer.farms))]
     return RoundsOut(
         today=today,
         morning=morning,
@@ -59,8 +59,8 @@ def rounds(db: AsDatabase, viewer: AsViewer, today: AsToday) -> RoundsOut:
 def fields(db: AsDatabase, viewer: AsViewer, today: AsToday) -> list[FieldOut]:
     """Every field of the book."""
     with db.read() as session:
-        rows = store.rounds_rows(session, None, viewer.farm)
-        sources = store.current(store.sources(session, today, viewer.farm))
+        rows = store.rounds_rows(session, None, viewer.farms)
+        sources = store.current(store.sources(session, today, viewer.farms))
     return [_field(rows, sources, key) for key in dict.fromkeys(row.field_key for row in rows)]
 
 
@@ -69,8 +69,8 @@ def field(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey) -> Field
     """One field of the book."""
     own_blocks(db, viewer, key)
     with db.read() as session:
-        rows = store.rounds_rows(session, None, viewer.farm, key)
-        sources = store.current(store.sources(session, today, viewer.farm))
+        rows = store.rounds_rows(session, None, viewer.farms, key)
+        sources = store.current(store.sources(session, today, viewer.farms))
     return _field(rows, sources, key)
 
 
@@ -112,7 +112,7 @@ def ledger(
     with db.read() as session:
         if block is None:
             morning = store.last_morning(session, today)
-            block = managed(store.rounds_rows(session, morning, viewer.farm, key)).block_key
+            block = managed(store.rounds_rows(session, morning, viewer.farms, key)).block_key
         chosen = choose(blocks, block)
         days = store_field.ledger_days(session, chosen.id, first, last)
     hidden = ("block_id", "season_id")

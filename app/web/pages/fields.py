@@ -63,7 +63,7 @@ def show(
     blocks = own_blocks(db, viewer, key)
     with db.read() as session:
         morning = store.last_morning(session, today)
-        rounds = store.rounds_rows(session, morning, viewer.farm, key)
+        rounds = store.rounds_rows(session, morning, viewer.farms, key)
         chosen = choose(blocks, block_key or managed(rounds).block_key)
         season = store_field.season_at(session, chosen.id, today)
         first = view.first_ledger_day(season, today, whole)
@@ -75,7 +75,7 @@ def show(
             season.planting - timedelta(days=60) if season else today - timedelta(days=365),
             [chosen.id],
         )
-        sources = store.current(store.sources(session, today, viewer.farm))
+        sources = store.current(store.sources(session, today, viewer.farms))
         stations = store.stations(session)
         energy = sources.get((chosen.field_id, "energy"))
         station_days = (
@@ -153,7 +153,7 @@ def show(
 def own_blocks(db: Database, viewer: Viewer, key: str) -> list[BlockRow]:
     """The blocks of a field the viewer may see; 404 otherwise."""
     with db.read() as session:
-        blocks = store_field.field_blocks(session, key, viewer.farm)
+        blocks = store_field.field_blocks(session, key, viewer.farms)
     if not blocks:
         raise HTTPException(404, NO_FIELD)
     return blocks
@@ -288,13 +288,13 @@ def days_working(
     with db.read() as session:
         if not block:
             morning = store.last_morning(session, today)
-            block = managed(store.rounds_rows(session, morning, viewer.farm, key)).block_key
+            block = managed(store.rounds_rows(session, morning, viewer.farms, key)).block_key
         chosen = choose(blocks, block)
         rows = store_field.ledger_days(
             session, chosen.id, day - timedelta(days=1), day + timedelta(days=1)
         )
         season = store_field.season_at(session, chosen.id, day)
-        current = store.current(store.sources(session, day, viewer.farm))
+        current = store.current(store.sources(session, day, viewer.farms))
         sources = {
             variable: row
             for (number, variable), row in current.items()
@@ -353,10 +353,10 @@ def csv_answer(lines: object, name: str) -> StreamingResponse:
 
 
 @router.get("/advice.csv")
-def advice_file(db: AsDatabase, today: AsToday) -> Response:
+def advice_file(db: AsDatabase, viewer: AsViewer, today: AsToday) -> Response:
     """The morning's advice as CSV."""
     from app.workflows.export import advice_csv
 
     with db.read() as session:
         morning = store.last_morning(session, today) or today
-    return csv_answer(advice_csv(db, morning), f"advice-{morning}.csv")
+    return csv_answer(advice_csv(db, morning, viewer.farms), f"advice-{morning}.csv")

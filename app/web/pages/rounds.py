@@ -74,8 +74,8 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
     sure: set[str] = set()
     done: list[str] = []
     with db.read() as session:
-        own = store.field_keys(session, viewer.farm)
-        rows = store.rounds_rows(session, store.last_morning(session, today), viewer.farm)
+        own = store.field_keys(session, viewer.farms)
+        rows = store.rounds_rows(session, store.last_morning(session, today), viewer.farms)
     advised: dict[str, float] = {}
     for row in rows:
         advised[row.field_key] = max(advised.get(row.field_key, 0.0), row.hours or 0.0)
@@ -144,10 +144,10 @@ def _show(
     errors, typed = errors or {}, typed or {}
     with db.read() as session:
         morning = store.last_morning(session, today)
-        pairs = one_a_field(store.rounds_rows(session, morning, viewer.farm))
+        pairs = one_a_field(store.rounds_rows(session, morning, viewer.farms))
         rows = [row for row, _ in pairs]
         stations = store.stations(session)
-        energy = store.current(store.sources(session, today, viewer.farm, "energy"))
+        energy = store.current(store.sources(session, today, viewer.farms, "energy"))
         recent = store.recent_days(session, today)
         last = store.last_days(session)
         events = store.events_since(session, today - timedelta(days=EVENTS_SHOWN_DAYS))
@@ -184,7 +184,7 @@ def _show(
         return page(request, "parts/rounds_rows.html", status, **common)
     fields = Counter(source.station_id for source in facts.energy.values())
     # a grower sees the stations that feed the farm, and no other
-    shown = [item for item in stations if viewer.farm is None or item.id in fields]
+    shown = [item for item in stations if viewer.farms is None or item.id in fields]
     return page(
         request,
         "pages/rounds.html",

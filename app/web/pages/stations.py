@@ -53,9 +53,9 @@ def own_stations(db: Database, viewer: Viewer, today: date) -> list[store.Statio
     """The stations a viewer may see: every one, or those that feed the grower's farm."""
     with db.read() as session:
         stations = store.stations(session)
-        if viewer.farm is None:
+        if viewer.farms is None:
             return stations
-        fed = {row.station_id for row in store.sources(session, today, viewer.farm)}
+        fed = {row.station_id for row in store.sources(session, today, viewer.farms)}
     return [station for station in stations if station.id in fed]
 
 
@@ -76,7 +76,7 @@ def stations(request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday)
         counts = store_station.rung_counts(session, today - timedelta(days=RECENT_DAYS))
         last = store.last_days(session)
         recent = store.recent_days(session, today)
-        energy = store.current(store.sources(session, today, viewer.farm, "energy"))
+        energy = store.current(store.sources(session, today, viewer.farms, "energy"))
     fields: dict[int, int] = {}
     for source in energy.values():
         fields[source.station_id] = fields.get(source.station_id, 0) + 1
@@ -132,11 +132,11 @@ def show(
         everything = store_station.spans(session).get(found.id)
         last = store.last_days(session)
         recent = store.recent_days(session, today)
-        fed = store_station.fed_fields(session, found.id, today, viewer.farm)
+        fed = store_station.fed_fields(session, found.id, today, viewer.farms)
         said = said_of(session, found)
         health = sensor_health(session, found.id, today) if last.get(found.id) else None
         saved = measuring_saved(
-            session, found.id, found.details.get("elevation_m", 0.0), today, viewer.farm
+            session, found.id, found.details.get("elevation_m", 0.0), today, viewer.farms
         )
         files = store_station.intakes(session, 6, key) if viewer.may("GET", "/intake") else []
     elevation = found.details.get("elevation_m", 0.0)
