@@ -4,7 +4,7 @@ from typing import Any
 
 from fastapi import APIRouter
 
-from app.web.api import events, fields, intakes, station_words, stations
+from app.web.api import events, fields, intakes, seen, station_words, stations
 from app.web.api.schemas import Problem
 from app.wording import CAUTION, CAUTION_TITLE
 
@@ -24,7 +24,14 @@ PROBLEMS: dict[int | str, dict[str, Any]] = {
 }
 
 
-PARTS = (fields.router, events.router, stations.router, station_words.router, intakes.router)
+PARTS = (
+    fields.router,
+    events.router,
+    seen.router,
+    stations.router,
+    station_words.router,
+    intakes.router,
+)
 """Each carries the whole path of its routes, so that the table of access can name them."""
 
 router = APIRouter(responses=PROBLEMS)

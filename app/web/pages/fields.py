@@ -12,7 +12,9 @@ from app.storage import pages as store
 from app.storage import pages_field as store_field
 from app.storage.database import Database
 from app.storage.pages_field import BlockRow
+from app.storage.seen import seen_since
 from app.web import field_view as view
+from app.web import seen_view
 from app.web.access import AsViewer, Viewer
 from app.web.balance_view import crop_balance
 from app.web.measured import compare
@@ -75,6 +77,14 @@ def show(
             season.planting - timedelta(days=60) if season else today - timedelta(days=365),
             [chosen.id],
         )
+        noticed = seen_since(
+            session, [chosen.id], season.planting if season else today - timedelta(days=365)
+        )
+        shifts = (
+            store_field.ledger_days(session, chosen.id, season.planting)
+            if season is not None and any(row.correction_mm for row in noticed)
+            else []
+        )
         sources = store.current(store.sources(session, today, viewer.farms))
         stations = store.stations(session)
         energy = sources.get((chosen.field_id, "energy"))
@@ -130,6 +140,14 @@ def show(
         past=past,
         events=events if every_entry else events[:ENTRIES_SHOWN],
         earlier=0 if every_entry else max(len(events) - ENTRIES_SHOWN, 0),
+        seen=[seen_view.worded(row) for row in noticed],
+        suspicion=seen_view.suspicion_words(shifts),
+        seen_words={
+            "methods": seen_view.METHODS,
+            "trusts": seen_view.TRUSTS,
+            "stages": seen_view.STAGES,
+            "depths": seen_view.DEPTHS,
+        },
         units=wording.UNITS,
         unit_choices=wording.UNIT_CHOICES,
         log_units=[*wording.UNIT_CHOICES.items(), ("rain_mm", wording.OWN_GAUGE)],

@@ -1,0 +1,87 @@
+"""What was seen on a field, through its page and the API."""
+
+import re
+
+import pytest
+
+from tests.web.conftest import Browser
+from tests.web.test_logging import depletion, token_of
+
+PAGE = "/fields/long-piece"
+READING = {
+    "kind": "reading", "day": "2026-06-30", "hour": "6", "method": "volumetric", "trust": "full",
+    "depth1": "15", "value1": "0,20", "depth2": "45", "value2": "0.20", "depth3": "75",
+    "value3": "0.20",
+}  # fmt: skip
+
+
+def test_a_reading_logged_on_the_page_corrects_and_shows_both_spreads(live: Browser) -> None:
+    text = live.get(PAGE).text
+    before = depletion(live)
+    answer = live.post(f"{PAGE}/seen", data=READING | {"token": token_of(text)})
+    assert answer.status_code == 303
+    after = live.get(PAGE).text
+    assert "water content, m³/m³: 0.2 at 0.15 m, 0.2 at 0.45 m" in after
+    assert re.search(r"the ledger had \d+ ± \d+ mm depleted, the reading says \d+ ± \d+", after)
+    assert "taken in full" in after
+    assert depletion(live) != before
+    # deleted, the ledger is as it was
+    number = re.search(
+        r'/events/(\d+)/delete"><input type="hidden" name="token" value="[^"]*\.s', after
+    )
+    assert number is not None
+    live.post(f"{PAGE}/events/{number.group(1)}/delete", data={"token": "gone"})
+    assert depletion(live) == before
+
+
+@pytest.mark.parametrize(
+    ("form", "says"),
+    [
+        ({**READING, "value1": "wet"}, "reading 1 is &#39;wet&#39;"),
+        ({**READING, "value2": ""}, "reading 2 is"),
+        ({"kind": "reading", "day": "2026-06-30"}, "No depth has a reading."),
+        ({"kind": "cover", "day": "2026-06-30", "cover": "140", "height": "1"}, "Cover is 1.4"),
+        ({"kind": "keep_off", "day": "2026-07-05", "last": "2026-07-01"}, "give a last day from"),
+        ({"kind": "note", "day": "2026-06-30"}, "Note is empty"),
+        ({"kind": "stage", "day": "2026-06-30", "stage": "9"}, "Stage is 9"),
+        ({"kind": "gossip", "day": "2026-06-30"}, "Kind is"),
+    ],
+)
+def test_what_cannot_be_is_refused_in_words(live: Browser, form: dict[str, str], says: str) -> None:
+    answer = live.post(f"{PAGE}/seen", data=form)
+    assert answer.status_code == 422
+    assert says in answer.text
+    assert "Nothing was stored" in answer.text
+
+
+def test_the_api_logs_lists_and_deletes(live: Browser) -> None:
+    base = "/api/v1/fields/long-piece"
+    given = {
+        "kind": "reading", "day": "2026-06-30", "token": "abcd",
+        "reading": {"method": "tension", "trust": "weighed", "depths": [
+            {"depth_m": 0.3, "value": 60}]},
+    }  # fmt: skip
+    made = live.post(f"{base}/seen", json=given)
+    assert made.status_code == 201
+    assert live.post(f"{base}/seen", json=given).json() == made.json()
+    (row,) = live.get(f"{base}/seen").json()
+    assert row["why"] == "weighed"
+    assert 0 < row["gain"] < 1
+    assert row["after_spread_mm"] < row["before_spread_mm"]
+    assert (
+        live.request("DELETE", f"{base}/events/{made.json()['id']}?token=gone").status_code == 204
+    )
+    assert live.get(f"{base}/seen").json() == []
+    wrong = live.post(f"{base}/seen", json=given | {"token": "wxyz", "reading": {"method": "x"}})
+    assert wrong.status_code == 422
+    bare = live.post(f"{base}/seen", json={"kind": "cover", "day": "2026-06-30", "token": "qrst"})
+    assert "height_m" in bare.json()["detail"]
+
+
+def test_water_is_shown_apart_from_what_was_seen(live: Browser) -> None:
+    live.post(f"{PAGE}/seen", data={"kind": "note", "day": "2026-06-30", "note": "aphids <b>"})
+    text = live.get(PAGE).text
+    assert "aphids &lt;b&gt;" in text
+    assert "aphids" not in live.get("/").text
+    events = live.get("/api/v1/fields/long-piece/events").json()
+    assert all(event["kind"] in ("irrigation", "rain") for event in events)
