@@ -1,13 +1,13 @@
 """What was seen on a field: stages, cover, cuttings, readings, keep-offs, notes."""
 
 from datetime import date, timedelta
-from typing import Annotated, Literal
+from typing import Annotated, Any, Literal
 
 from fastapi import APIRouter, Query
-from pydantic import ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field
 
 from app.book.reading import ReadingPart
-from app.storage.seen import SeenRow, seen_since
+from app.storage.seen import seen_since
 from app.web.access import AsViewer
 from app.web.api.events import refused
 from app.web.api.schemas import Given, Logged
@@ -52,6 +52,28 @@ class SeenIn(Given):
     token: Annotated[Clean, Field(min_length=4, max_length=80)]
 
 
+class SeenOut(BaseModel):
+    """Something seen; of a reading, how it was weighed [mm of depletion] and what it moved."""
+
+    id: int
+    block_key: str
+    kind: str
+    day: date
+    amount: float
+    details: dict[str, Any]
+    note: str
+    who: str
+    correction_mm: float | None
+    gain: float | None
+    before_mm: float | None
+    before_spread_mm: float | None
+    reading_mm: float | None
+    reading_spread_mm: float | None
+    after_mm: float | None
+    after_spread_mm: float | None
+    why: str | None
+
+
 @router.get("/fields/{key}/seen")
 def seen(
     db: AsDatabase,
@@ -59,13 +81,14 @@ def seen(
     today: AsToday,
     key: AsKey,
     since: Annotated[date | None, Query(description="a year back when not given")] = None,
-) -> list[SeenRow]:
+) -> list[SeenOut]:
     """What was seen, newest first; of a reading, how it was weighed and what it moved."""
     blocks = own_blocks(db, viewer, key)
     with db.read() as session:
-        return seen_since(
+        rows = seen_since(
             session, [block.id for block in blocks], since or today - timedelta(days=366)
         )
+    return [SeenOut.model_validate(row._asdict()) for row in rows]
 
 
 @router.post("/fields/{key}/seen", status_code=201)
