@@ -7,12 +7,15 @@ from itertools import accumulate
 from typing import Any
 
 from app import handbook, wording
+from app.science.crop.season import CropSeason
 from app.storage.pages_field import BlockRow, SeasonRow
+from app.storage.seen import SeenRow
 from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
 from app.web.rounds_view import Bar, bar, span, when
 from app.workflows import agronomy
-from app.workflows.crop import crop_season
+from app.workflows.agronomy import as_date
+from app.workflows.crop import Seen, crop_season
 
 CHART_DAYS = 35
 LEDGER_DAYS = 14
@@ -189,12 +192,19 @@ def soil_rows(soil: Mapping[str, Any]) -> list[tuple[str, str, str, str, str]]:
     return rows
 
 
-def season_facts(season: SeasonRow | None) -> list[tuple[str, str]]:
+def season_facts(
+    season: SeasonRow | None, noticed: Sequence[SeenRow] = ()
+) -> list[tuple[str, str]]:
     """The crop as it is reckoned with: stages, coefficients, roots, depletion fraction."""
     if season is None:
         return []
-    crop = crop_season(season.details, season.planting)
-    ends = [season.planting + timedelta(days=days - 1) for days in accumulate(crop.stage_days)]
+    seen = [
+        Seen(row.day, row.kind, row.amount, row.details.get("height_m", 0.0))
+        for row in reversed(noticed)
+        if row.kind in ("stage", "cover", "cutting")
+    ]
+    crop = crop_season(season.details, season.planting, seen)
+    ends = _stage_ends(season.planting, crop)
     symbol = "Kcb" if crop.coefficients == "dual" else "Kc"
     coefficients = (crop.k_ini, crop.k_mid, crop.k_end)
     facts = [
@@ -217,8 +227,24 @@ def season_facts(season: SeasonRow | None) -> list[tuple[str, str]]:
     ]
 
 
+def _stage_ends(planting: date, crop: CropSeason) -> list[date]:
+    """The last day of each stage, by its days and by the stages seen; of forage, of the cycle."""
+    lengths = crop.stage_days
+    ends = [planting + timedelta(days=days - 1) for days in accumulate(lengths)]
+    for day, stage, cut in crop.anchors:
+        begins = as_date(day)
+        if cut:
+            lengths, ends = crop.cycle_days or lengths, [begins - timedelta(days=1)] * 4
+        ends[: stage - 1] = [min(end, begins - timedelta(days=1)) for end in ends[: stage - 1]]
+        later = accumulate(lengths[stage - 1 :])
+        ends[stage - 1 :] = [begins + timedelta(days=days - 1) for days in later]
+    return ends
+
+
 def _figures_from(details: Mapping[str, Any], symbol: str) -> list[tuple[str, str]]:
     """Where the stage lengths and coefficients are from: the book, or a page of the handbook."""
+    if own_crop := details.get("own_crop"):
+        return [("crop", own_crop["name"]), ("figures from", own_crop["source"])]
     usable = handbook.usable(details["crop"], details["coefficients"])
     given = [details[f"{symbol}_{stage}"] for stage in ("ini", "mid", "end")]
     own = "this farm’s book"

@@ -4,8 +4,13 @@ import re
 
 import pytest
 
+from app.book import Book
+from app.workflows.bring_up_to_date import bring_up_to_date
+from app.workflows.load_book import load_book
 from tests.web.conftest import Browser
 from tests.web.test_logging import depletion, token_of
+from tests.workflows import basin
+from tests.workflows.test_features import OWN, SEASON
 
 PAGE = "/fields/long-piece"
 READING = {
@@ -85,3 +90,22 @@ def test_water_is_shown_apart_from_what_was_seen(live: Browser) -> None:
     assert "aphids" not in live.get("/").text
     events = live.get("/api/v1/fields/long-piece/events").json()
     assert all(event["kind"] in ("irrigation", "rain") for event in events)
+
+
+def test_a_stage_seen_moves_the_stages_shown(live: Browser) -> None:
+    seen = {"kind": "stage", "day": "2026-06-25", "stage": "3"}
+    assert live.post(f"{PAGE}/seen", data=seen).status_code == 303
+    text = re.sub(r"\s+", " ", live.get(PAGE).text)
+    assert "<dt>development to</dt><dd>24 June</dd>" in text
+
+
+def test_a_crop_of_ones_own_shows_where_its_figures_are_from(live: Browser) -> None:
+    book = {**basin.BOOK, "seasons": [{**SEASON, **OWN}]}
+    with live.db.write() as session:
+        load_book(session, Book.model_validate(book), "admin")
+    bring_up_to_date(live.db, basin.TODAY)
+    text = live.get(PAGE).text
+    assert "own strip trial 2024, north end" in text
+    assert "quinoa, day" in text
+    assert live.get("/").status_code == 200
+    assert live.get(f"{PAGE}/days/2026-06-20").status_code == 200

@@ -160,7 +160,7 @@ def show(
         saved=saved[0] if saved else None,
         balance=crop_balance(over_crop, et) if over_crop else None,
         soil=view.soil_rows(chosen.soil),
-        season_facts=view.season_facts(season),
+        season_facts=view.season_facts(season, noticed),
         token=secrets.token_urlsafe(12),
         error=error,
         typed={"day": str(today - timedelta(days=1)), "amount": "", "unit": "hours", "note": ""}
