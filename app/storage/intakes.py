@@ -25,6 +25,8 @@ from app.storage.tables import (
 PIECE = 4 * 1024 * 1024
 IN_MEMORY = 16 * 1024 * 1024
 PROBLEMS_KEPT = 1000
+PUSHED = "push-"
+"""How the file name of a push begins."""
 
 
 def compress(source: BinaryIO) -> tuple[str, list[bytes]]:
@@ -94,6 +96,22 @@ def storable(value: Any) -> Any:
     if isinstance(value, dict):
         return {name: storable(item) for name, item in value.items()}
     return [storable(item) for item in value] if isinstance(value, list | tuple) else value
+
+
+def forget(session: Session, intake: Intake) -> None:
+    """Delete an intake that was never applied, with its bytes and problems."""
+    for table in (IntakeProblem, IntakeFile):
+        session.execute(delete(table).where(table.intake_id == intake.id))
+    session.delete(intake)
+
+
+def applied_with_bytes(session: Session, station: int, sha256: str) -> int | None:
+    """The last applied intake of a station with these bytes."""
+    return session.scalar(
+        select(func.max(Intake.id)).where(
+            Intake.station_id == station, Intake.sha256 == sha256, Intake.state == "applied"
+        )
+    )
 
 
 def next_order(session: Session) -> int:

@@ -1,11 +1,12 @@
 """Read statements of the station and intake pages."""
 
-from datetime import date
+from datetime import date, datetime
 from typing import Any, NamedTuple
 
-from sqlalchemy import func, select
+from sqlalchemy import case, func, select
 from sqlalchemy.orm import Session
 
+from app.storage.intakes import PUSHED
 from app.storage.scope import Farms, of_farms
 from app.storage.tables import (
     Farm,
@@ -98,8 +99,17 @@ class IntakeRow(NamedTuple):
     summary: dict[str, Any]
 
 
-def intakes(session: Session, most: int = 100, station: str | None = None) -> list[IntakeRow]:
-    """The last uploaded files, newest first; of one station if given."""
+def intakes(
+    session: Session,
+    most: int = 100,
+    station: str | None = None,
+    before: int | None = None,
+    pushed_for: date | None = None,
+) -> list[IntakeRow]:
+    """The last uploaded files, newest first; of one station, or numbered before one, if given.
+
+    With `pushed_for`, the pushes alone whose first row is of that day.
+    """
     statement = (
         select(
             Intake.id,
@@ -121,4 +131,74 @@ def intakes(session: Session, most: int = 100, station: str | None = None) -> li
     )
     if station is not None:
         statement = statement.where(Station.key == station)
+    if before is not None:
+        statement = statement.where(Intake.id < before)
+    if pushed_for is not None:
+        statement = statement.where(Intake.first_day == pushed_for, _PUSHED)
     return [IntakeRow._make(row) for row in session.execute(statement)]
+
+
+_PUSHED = Intake.file_name.startswith(PUSHED, autoescape=True)
+NEAR = 20_000
+"""Intakes looked through on either side of a place in the list: bounds the work of one page."""
+
+
+class ReceivedRow(NamedTuple):
+    """A line of the list of files: one file, or the pushes of one station day in one state.
+
+    `id`, `file_name`, `who` and `at` are those of the newest; `rows` and days of all.
+    """
+
+    id: int
+    station_key: str
+    station_name: str
+    file_name: str
+    who: str
+    at: datetime
+    state: str
+    files: int
+    rows: int
+    first_day: date | None
+    last_day: date | None
+
+
+def received(
+    session: Session, most: int, station: str | None = None, before: int | None = None
+) -> list[ReceivedRow]:
+    """Files newest first, pushes gathered by station, first day and state; before a number."""
+    place = before or (session.scalar(select(func.max(Intake.id))) or 0) + 1
+    alone = case((_PUSHED, 0), else_=Intake.id)
+    newest = func.max(Intake.id)
+    chosen = (
+        select(
+            newest.label("id"),
+            func.count().label("files"),
+            func.sum(Intake.rows).label("rows"),
+            func.max(Intake.last_day).label("last_day"),
+        )
+        .where(Intake.id.between(place - NEAR, place + NEAR))
+        .group_by(Intake.station_id, Intake.state, Intake.first_day, alone)
+        .having(newest < place)
+    )
+    if station is not None:
+        chosen = chosen.join(Station).where(Station.key == station)
+    lines = chosen.order_by(newest.desc()).limit(most).subquery()
+    statement = (
+        select(
+            Intake.id,
+            Station.key,
+            Station.name,
+            Intake.file_name,
+            Intake.who,
+            Intake.at,
+            Intake.state,
+            lines.c.files,
+            lines.c.rows,
+            Intake.first_day,
+            lines.c.last_day,
+        )
+        .join(lines, lines.c.id == Intake.id)
+        .join(Station, Station.id == Intake.station_id)
+        .order_by(Intake.id.desc())
+    )
+    return [ReceivedRow._make(row) for row in session.execute(statement)]

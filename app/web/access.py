@@ -49,6 +49,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/intake"): STAFF,
     ("POST", "/intake"): STAFF,
     ("GET", "/intake/{intake_id}"): STAFF,
+    ("GET", "/intake/pushes/{station}/{day}"): STAFF,
     ("POST", "/intake/{intake_id}/mapping"): STAFF,
     ("POST", "/intake/{intake_id}/apply"): STAFF,
     ("POST", "/intake/{intake_id}/undo"): STAFF,

@@ -1,10 +1,11 @@
 """Rows a logger pushes: written down as a canonical CSV and taken in as any file is.
 
 Each push is an intake with its bytes kept, so that readings name their line and a push can be
-undone. The same rows again change nothing: the fold is by instant.
+undone. The same rows again change nothing, for the fold is by instant, and leave no intake.
 """
 
 import csv
+import hashlib
 import io
 from collections.abc import Mapping as Map
 from collections.abc import Sequence
@@ -15,7 +16,9 @@ from app.errors import InputError
 from app.intake import Mapping, Problem
 from app.intake.model import ColumnMap, TimeColumn, TimeLayout
 from app.science.quantities import QUANTITIES
+from app.storage import book, intakes
 from app.storage.database import Database
+from app.storage.tables import Station
 from app.units import UNITS, fits, units_for
 from app.workflows import take_in
 from app.workflows.take_in import Applied, TakeInError
@@ -43,9 +46,12 @@ class PushError(InputError):
 
 @dataclass(frozen=True)
 class Pushed:
-    """What a push did: its intake, and the cells that were refused (row = line - 1)."""
+    """What a push did: its intake, and the cells that were refused (row = line - 1).
 
-    intake_id: int
+    Of a push that brings nothing new, the intake is the earlier one with the same bytes, if any.
+    """
+
+    intake_id: int | None
     applied: Applied
     problems: tuple[Problem, ...]
 
@@ -66,10 +72,11 @@ def push_readings(
     """
     check(rows, units)
     names = sorted(units)
-    name = f"push-{rows[0].at.astimezone(UTC):%Y%m%dT%H%M%SZ}-{len(rows)}.csv"
+    name = f"{intakes.PUSHED}{rows[0].at.astimezone(UTC):%Y%m%dT%H%M%SZ}-{len(rows)}.csv"
+    content = canonical_csv(rows, units)
     try:
         number = take_in.receive(
-            db, station_key, name, io.BytesIO(canonical_csv(rows, units)), who,
+            db, station_key, name, io.BytesIO(content), who,
             mapping_of(names, units, interval_s), as_stated=True,
         )  # fmt: skip
         seen = take_in.preview_of(db, number)
@@ -82,11 +89,20 @@ def push_readings(
                 first.value if first else "",
                 f"{first.why}; {first.remedy}" if first else seen.message or "Send values.",
             )
-        applied = take_in.apply(db, number, who, today)
+        applied = take_in.apply(db, number, who, today, keep_same=False)
     except TakeInError as error:
         raise PushError(str(error), "station", station_key, "Nothing was stored.") from None
     left_out = tuple(item for item in seen.problems if item.severity == "refused")
-    return Pushed(number, applied, left_out)
+    intake = _earlier(db, station_key, content) if applied.already_here else number
+    return Pushed(intake, applied, left_out)
+
+
+def _earlier(db: Database, station_key: str, content: bytes) -> int | None:
+    with db.read() as session:
+        station = book.find(session, Station, station_key)
+        assert station is not None
+        digest = hashlib.sha256(content).hexdigest()
+        return intakes.applied_with_bytes(session, station.id, digest)
 
 
 def check(rows: Sequence[PushedRow], units: Map[str, str]) -> None:

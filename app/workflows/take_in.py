@@ -153,12 +153,18 @@ def discard(db: Database, intake_id: int, who: str) -> None:
 
 
 def apply(
-    db: Database, intake_id: int, who: str, today: date | None, progress: Progress | None = None
+    db: Database,
+    intake_id: int,
+    who: str,
+    today: date | None,
+    progress: Progress | None = None,
+    keep_same: bool = True,
 ) -> Applied:
     """Take a previewed file in, whole; raises TakeInError, and then nothing is changed.
 
     Ledgers and advice of `today` follow in the same transaction; with None they are left marked
-    as dirty, for whoever takes many files in and brings all up to date at the end.
+    as dirty, for whoever takes many files in and brings all up to date at the end. Without
+    `keep_same` a file that brings nothing new is forgotten.
     """
     with db.read() as session:
         intake = _open(session, intake_id)
@@ -179,7 +185,10 @@ def apply(
         intake.who, intake.applied_at = who, datetime.now(UTC)
         if not changed:
             intake.state = "same"
-            return Applied(True, len(reading.rows), intake.first_day, 0, 0)
+            nothing = Applied(True, len(reading.rows), intake.first_day, 0, 0)
+            if not keep_same:
+                intakes.forget(session, intake)
+            return nothing
         packs = pack(reading.rows, clock)
         intakes.contribute(session, intake, ((p.day, p.rows, p.blob) for p in packs))
         intake.state, intake.applied_order = "applied", intakes.next_order(session)

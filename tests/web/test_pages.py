@@ -60,7 +60,8 @@ def test_every_template_of_a_page_is_rendered_here() -> None:
     folder = resource("templates")
     pages = {path.relative_to(folder).as_posix() for path in folder.rglob("*.html")}
     parts = {name for name in pages if name.startswith(("parts/", "letters/"))} | {"base.html"}
-    elsewhere = {"pages/enter.html", "pages/intake_file.html"}  # test_access, test_intake_pages
+    # test_access, test_intake_pages, test_station_api
+    elsewhere = {"pages/enter.html", "pages/intake_file.html", "pages/intake_pushes.html"}
     assert pages - parts - elsewhere == set(PAGES)
 
 

@@ -39,10 +39,41 @@ def test_pushed_rows_go_through_the_intake_and_are_undone(live: Browser) -> None
     assert again["already_here"]
     assert again["days_changed"] == 0
     # another value at the same instants: the later one stands
-    assert live.post(f"{STATION}/readings", json=push(warmer=1.0)).json()["days_changed"] == 1
-    for number in (again["intake"] + 1, told["intake"]):
+    warmer = live.post(f"{STATION}/readings", json=push(warmer=1.0)).json()
+    assert warmer["days_changed"] == 1
+    for number in (warmer["intake"], told["intake"]):
         assert live.post(f"/api/v1/intakes/{number}/undo").status_code == 200
     assert live.get(f"{STATION}/days").json()["days"] == before
+
+
+def test_a_push_that_brings_nothing_new_leaves_no_intake(live: Browser) -> None:
+    first = live.post(f"{STATION}/readings", json=push()).json()
+    count = len(live.get("/api/v1/intakes").json())
+    again = live.post(f"{STATION}/readings", json=push())
+    assert again.status_code == 200
+    assert again.json() == {**first, "already_here": True, "days_changed": 0, "blocks": 0}
+    part = live.post(f"{STATION}/readings", json=push(6)).json()
+    assert (part["already_here"], part["intake"], part["rows"]) == (True, None, 6)
+    assert len(live.get("/api/v1/intakes").json()) == count
+
+
+def test_many_pushes_are_one_line_a_day_in_the_list(live: Browser) -> None:
+    numbers = []
+    for quarter in range(48):
+        row = {"at": f"2026-06-29T{quarter // 4:02d}:{quarter % 4 * 15:02d}:00-07:00",
+               "values": {"wind_speed": 1.0 + quarter / 10}}  # fmt: skip
+        body = {"interval_s": 900, "units": {"wind_speed": "m/s"}, "rows": [row]}
+        numbers.append(live.post(f"{STATION}/readings", json=body).json()["intake"])
+    text = live.get("/intake").text
+    assert "47 pushes" in text  # the first, at midnight, ends the day before
+    assert text.count("push-2026") == 2  # its name, and the name on its button
+    day = live.get("/intake/pushes/bench/2026-06-29")
+    assert day.text.count("<tr>") == 48
+    assert live.get("/intake/pushes/bench/2031-01-01").status_code == 404
+    assert live.post(f"/intake/{numbers[-1]}/undo").status_code == 303
+    assert "46 pushes" in live.get("/intake").text
+    older = live.get(f"/api/v1/intakes?before={numbers[1]}").json()
+    assert older[0]["id"] == numbers[0]
 
 
 def test_a_value_no_sensor_can_read_is_left_out_and_named(live: Browser) -> None:

@@ -3,7 +3,7 @@
 from dataclasses import asdict
 from typing import Annotated, Any
 
-from fastapi import APIRouter, File, Form, HTTPException, Response, UploadFile
+from fastapi import APIRouter, File, Form, HTTPException, Query, Response, UploadFile
 
 from app.intake import IntakeError, Mapping
 from app.storage import pages_station as store_station
@@ -19,10 +19,14 @@ router = APIRouter(prefix="/api/v1", tags=["intakes"])
 
 
 @router.get("/intakes")
-def intakes(db: AsDatabase, station: Clean | None = None) -> list[IntakeOut]:
-    """The last uploaded files, newest first."""
+def intakes(
+    db: AsDatabase,
+    station: Clean | None = None,
+    before: Annotated[int | None, Query(ge=1, le=2**31 - 1)] = None,
+) -> list[IntakeOut]:
+    """The last 100 uploaded files, newest first; the next with `before` the last number got."""
     with db.read() as session:
-        rows = store_station.intakes(session, station=station)
+        rows = store_station.intakes(session, station=station, before=before)
     return [
         IntakeOut(
             id=row.id,

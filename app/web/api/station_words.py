@@ -77,9 +77,12 @@ class CellOut(BaseModel):
 
 
 class PushedOut(AppliedOut):
-    """What a push did: its intake can be looked at and undone."""
+    """What a push did: its intake can be looked at and undone.
 
-    intake: int
+    A push that brings nothing new leaves none: the earlier one with the same rows, or null.
+    """
+
+    intake: int | None
     problems: list[CellOut]
 
 

@@ -1,8 +1,9 @@
 """Intake: upload, mapping, preview, apply, undo, history."""
 
+from datetime import date
 from typing import Annotated
 
-from fastapi import APIRouter, Form, HTTPException, Query, Request, Response, UploadFile
+from fastapi import APIRouter, Form, HTTPException, Path, Query, Request, Response, UploadFile
 from fastapi.responses import RedirectResponse
 from starlette.concurrency import run_in_threadpool
 
@@ -21,27 +22,62 @@ from app.workflows.take_in import TakeInError
 router = APIRouter()
 
 
+LINES = 50
+PUSHES = 200
+
+
 @router.get("/intake")
 def intakes(
-    request: Request, db: AsDatabase, station: Annotated[str, Query(max_length=80)] = ""
+    request: Request,
+    db: AsDatabase,
+    station: Annotated[Clean, Query(max_length=80)] = "",
+    before: Annotated[int | None, Query(ge=1, le=2**31 - 1)] = None,
 ) -> Response:
     """Upload a file; what was uploaded before."""
-    return _start(request, db, station)
+    return _start(request, db, station, before=before)
 
 
-def _start(request: Request, db: Database, station: str = "", error: str = "") -> Response:
+def _start(
+    request: Request, db: Database, station: str = "", error: str = "", before: int | None = None
+) -> Response:
     with db.read() as session:
         stations = store.stations(session)
-        history = store_station.intakes(session)
+        history = store_station.received(session, LINES + 1, before=before)
     return page(
         request,
         "pages/intake.html",
         422 if error else 200,
         stations=stations,
         chosen=station,
-        history=history,
+        history=history[:LINES],
+        older=history[LINES - 1].id if len(history) > LINES else None,
+        before=before,
         states=wording.INTAKE_STATES,
         error=error,
+    )
+
+
+@router.get("/intake/pushes/{station}/{day}")
+def pushes(
+    request: Request,
+    db: AsDatabase,
+    station: Annotated[Clean, Path(max_length=80)],
+    day: date,
+    before: Annotated[int | None, Query(ge=1, le=2**31 - 1)] = None,
+) -> Response:
+    """The pushes of one station day, one by one."""
+    with db.read() as session:
+        rows = store_station.intakes(session, PUSHES + 1, station, before, day)
+    if not rows and before is None:
+        raise HTTPException(404, f"Nothing was pushed to {station} for {day}.")
+    return page(
+        request,
+        "pages/intake_pushes.html",
+        station=station,
+        day=day,
+        rows=rows[:PUSHES],
+        older=rows[PUSHES - 1].id if len(rows) > PUSHES else None,
+        states=wording.INTAKE_STATES,
     )
 
 
