@@ -4,7 +4,7 @@ from collections.abc import Sequence
 from datetime import date
 from typing import Any, NamedTuple
 
-from sqlalchemy import func, select
+from sqlalchemy import case, func, select
 from sqlalchemy.orm import Session
 
 from app.storage.scope import Farms, of_farms
@@ -97,6 +97,38 @@ def season_at(session: Session, block: int, day: date) -> SeasonRow | None:
 
 
 LEDGER = tuple(column.name for column in LedgerDay.__table__.columns)
+
+
+class SeasonSums(NamedTuple):
+    """A season's ledger so far, in all [mm], and the days that closed past the limit."""
+
+    days: int
+    rain_mm: float
+    gross_mm: float
+    net_mm: float
+    et_mm: float
+    etc_mm: float
+    percolation_mm: float
+    runoff_mm: float
+    late_days: int
+
+
+def season_sums(session: Session, season: int) -> SeasonSums | None:
+    """Sums over a season's ledger; None before its first day."""
+    row = session.execute(
+        select(
+            func.count(),
+            func.sum(LedgerDay.rain_mm),
+            func.sum(LedgerDay.irrigation_gross_mm),
+            func.sum(LedgerDay.irrigation_net_mm),
+            func.sum(LedgerDay.et_actual_mm),
+            func.sum(LedgerDay.etc_potential_mm),
+            func.sum(LedgerDay.deep_percolation_mm),
+            func.sum(LedgerDay.runoff_mm),
+            func.sum(case((LedgerDay.depletion_mm > LedgerDay.limit_mm, 1), else_=0)),
+        ).where(LedgerDay.season_id == season)
+    ).one()
+    return SeasonSums._make(row) if row[0] else None
 
 
 def ledger_days(

@@ -8,13 +8,15 @@ from typing import Any
 
 from app import handbook, wording
 from app.science.crop.season import CropSeason
-from app.storage.pages_field import BlockRow, SeasonRow
+from app.science.soil.intake_rate import intake_warning
+from app.science.soil.root_zone import yield_share
+from app.storage.pages_field import BlockRow, SeasonRow, SeasonSums
 from app.storage.seen import SeenRow
 from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
 from app.web.rounds_view import Bar, bar, span, when
 from app.workflows import agronomy
-from app.workflows.agronomy import as_date
+from app.workflows.agronomy import as_date, wetted_fraction
 from app.workflows.crop import Seen, crop_season
 
 CHART_DAYS = 35
@@ -279,3 +281,49 @@ def first_ledger_day(season: SeasonRow | None, today: date, whole: bool) -> date
     if whole and season is not None:
         return season.planting
     return today - timedelta(days=CHART_DAYS)
+
+
+def season_so_far(sums: SeasonSums | None, season: SeasonRow | None) -> list[tuple[str, str]]:
+    """The season in sums, and what its stress may have cost in yield, as an estimate."""
+    if sums is None or season is None:
+        return []
+    facts = [
+        ("rain", f"{wording.number(sums.rain_mm)} mm"),
+        (
+            "applied, gross; net",
+            f"{wording.number(sums.gross_mm)}; {wording.number(sums.net_mm)} mm",
+        ),
+        ("crop ET", f"{wording.number(sums.et_mm)} mm"),
+        ("past the roots", f"{wording.number(sums.percolation_mm)} mm"),
+        ("days past the limit", f"{sums.late_days} of {sums.days}"),
+    ]
+    if sums.runoff_mm > 0.0:
+        facts.append(("run off", f"{wording.number(sums.runoff_mm)} mm"))
+    return [*facts, *_yield(sums, season)]
+
+
+def _yield(sums: SeasonSums, season: SeasonRow) -> list[tuple[str, str]]:
+    """Estimated share of the full yield by FAO-56 eq 90, where a seasonal Ky is published."""
+    row = None if season.details.get("own_crop") else handbook.crops().get(season.crop)
+    if row is None or row.ky_seasonal is None or sums.etc_mm <= 0.0:
+        return []
+    share = float(yield_share(sums.et_mm, sums.etc_mm, row.ky_seasonal))
+    said = f"about {wording.share(share)} of full, by Ky {wording.number(row.ky_seasonal, 2)}"
+    return [("yield so far, an estimate", f"{said} ({row.ky_source})")]
+
+
+def intake_words(block: BlockRow) -> str:
+    """A warning where the system applies faster than the soil is stated to take; else empty."""
+    stated = block.soil.get("intake_mm_h")
+    if stated is None:
+        return ""
+    told = intake_warning(
+        block.system["rate_mm_h"], stated, wetted_fraction=wetted_fraction(block.system)
+    )
+    if told is None:
+        return ""
+    return (
+        f"Water falls at {wording.number(told.rate_mm_h, 1)} mm/h, the soil takes "
+        f"{wording.number(told.intake_mm_h, 1)}: once it is wet {wording.share(told.excess)} of it "
+        "stands or runs. Give it in shorter sets."
+    )

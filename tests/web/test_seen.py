@@ -109,3 +109,28 @@ def test_a_crop_of_ones_own_shows_where_its_figures_are_from(live: Browser) -> N
     assert "quinoa, day" in text
     assert live.get("/").status_code == 200
     assert live.get(f"{PAGE}/days/2026-06-20").status_code == 200
+
+
+def test_the_season_so_far_adds_up_and_estimates_the_yield(live: Browser) -> None:
+    """FAO-56 eq 90 with the season's Ky of FAO-33 for maize, 1.25."""
+    days = live.get("/api/v1/fields/long-piece/ledger?first=2026-04-20").json()["days"]
+    et, etc, rain = (
+        sum(day[name] for day in days) for name in ("et_actual_mm", "etc_potential_mm", "rain_mm")
+    )
+    late = sum(day["depletion_mm"] > day["limit_mm"] for day in days)
+    text = re.sub(r"\s+", " ", live.get(PAGE).text)
+    assert f"<dt>rain</dt><dd>{rain:.0f} mm</dd>" in text
+    assert f"<dt>days past the limit</dt><dd>{late} of {len(days)}</dd>" in text
+    share = max(0.0, 1 - 1.25 * (1 - et / etc))
+    assert f"about {100 * share:.0f}" in text
+    assert "by Ky 1.25" in text
+
+
+def test_water_faster_than_the_soil_takes_it_is_warned_of(live: Browser) -> None:
+    slow = {**basin.BOOK, "soils": [{**basin.BOOK["soils"][0], "intake_mm_h": 4},
+                                    basin.BOOK["soils"][1]]}  # fmt: skip
+    assert "stands or runs" not in live.get(PAGE).text
+    with live.db.write() as session:
+        load_book(session, Book.model_validate(slow), "admin")
+    text = live.get(PAGE).text
+    assert "Water falls at 6.0 mm/h, the soil takes 4.0" in text

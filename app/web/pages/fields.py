@@ -77,6 +77,7 @@ def show(
             season.planting - timedelta(days=60) if season else today - timedelta(days=365),
             [chosen.id],
         )
+        sums = store_field.season_sums(session, season.id) if season else None
         noticed = seen_since(
             session, [chosen.id], season.planting if season else today - timedelta(days=365)
         )
@@ -140,6 +141,8 @@ def show(
         past=past,
         events=events if every_entry else events[:ENTRIES_SHOWN],
         earlier=0 if every_entry else max(len(events) - ENTRIES_SHOWN, 0),
+        so_far=view.season_so_far(sums, season),
+        intake_warning=view.intake_words(chosen),
         seen=[seen_view.worded(row) for row in noticed],
         suspicion=seen_view.suspicion_words(shifts),
         seen_words={
