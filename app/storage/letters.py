@@ -160,6 +160,16 @@ def waiting(session: Session, now: datetime) -> dict[str, int]:
 # Answers
 
 
+def count_answers(session: Session, letter: int, item: int) -> int:
+    """How often a line of a letter was answered."""
+    return (
+        session.scalar(
+            select(func.count()).where(LetterAnswer.letter_id == letter, LetterAnswer.item == item)
+        )
+        or 0
+    )
+
+
 def answers(session: Session, letter_ids: Sequence[int]) -> dict[tuple[int, int], LetterAnswer]:
     """The last answer to each item of some letters, by letter and item."""
     rows = session.scalars(

@@ -22,6 +22,7 @@ SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
 ANYBODY: frozenset[str] = frozenset({"nobody", "advisor", "grower", "admin"})
 EVERY: frozenset[str] = frozenset({"advisor", "grower", "admin"})
 STAFF: frozenset[str] = frozenset({"advisor", "admin"})
+GROWER: frozenset[str] = frozenset({"grower"})
 
 MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/static/{path:path}"): ANYBODY,
@@ -54,6 +55,29 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("POST", "/intake/{intake_id}/apply"): STAFF,
     ("POST", "/intake/{intake_id}/undo"): STAFF,
     ("POST", "/intake/{intake_id}/discard"): STAFF,
+    ("GET", "/letters"): STAFF,
+    ("POST", "/letters/release"): STAFF,
+    ("GET", "/letters/{number}"): STAFF,
+    ("GET", "/letters/{number}/html"): STAFF,
+    ("GET", "/letters/{number}/letter.eml"): STAFF,
+    ("POST", "/letters/{number}/note"): STAFF,
+    ("POST", "/letters/{number}/{deed}"): STAFF,
+    ("GET", "/recipients"): STAFF,
+    ("POST", "/recipients"): STAFF,
+    ("POST", "/recipients/{number}"): STAFF,
+    ("POST", "/covers"): STAFF,
+    ("POST", "/covers/{number}/end"): STAFF,
+    ("GET", "/farm"): GROWER,
+    ("GET", "/farm/{key}"): EVERY,
+    ("POST", "/farm/{key}/log"): EVERY,
+    ("POST", "/farm/{key}/recipients/{number}"): EVERY,
+    ("GET", "/farm/{key}/letters/{number}"): EVERY,
+    # what a signed link opens
+    ("GET", "/answer/{token}"): ANYBODY,
+    ("POST", "/answer/{token}"): ANYBODY,
+    ("GET", "/stop/{token}"): ANYBODY,
+    ("POST", "/stop/{token}"): ANYBODY,
+    ("GET", "/calendar/{token}.ics"): ANYBODY,
     ("GET", "/methods"): EVERY,
     ("GET", "/api/v1/openapi.json"): EVERY,
     ("GET", "/api/v1/rounds"): EVERY,

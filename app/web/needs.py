@@ -1,12 +1,13 @@
 """What routes ask for: the database, the day it is, a number from a form."""
 
 import math
-from datetime import date
+from datetime import date, datetime
 from typing import Annotated
 
 from fastapi import Depends, Path, Request
 from pydantic import AfterValidator
 
+from app.settings import Settings
 from app.storage.database import Database
 from app.web.problems import RefusedError
 
@@ -28,6 +29,25 @@ def get_today(request: Request) -> date:
 
 
 AsToday = Annotated[date, Depends(get_today)]
+
+
+def get_now(request: Request) -> datetime:
+    """The instant it is, moved with the day where RILLBOOK_TODAY is set."""
+    from app.workflows.day_it_is import moment_it_is
+
+    return moment_it_is(request.app.state.db, request.app.state.settings)
+
+
+AsNow = Annotated[datetime, Depends(get_now)]
+
+
+def get_settings(request: Request) -> Settings:
+    """The application's settings."""
+    settings: Settings = request.app.state.settings
+    return settings
+
+
+AsSettings = Annotated[Settings, Depends(get_settings)]
 
 AsKey = Annotated[str, Path(max_length=80, pattern="^[a-z0-9-]+$")]
 AsNumber = Annotated[int, Path(ge=1, le=2**31 - 1)]

@@ -9,13 +9,17 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from app import wording
 from app.resources import resource
 from app.web.access import viewer_of
+from app.wording.reader import Reader
 
 PAGES = (
-    ("Rounds", "/", "/"),
-    ("Stations", "/stations", "/stations"),
-    ("Intake", "/intake", "/intake"),
-    ("Methods", "/methods", "/methods"),
+    ("farm", "/farm", "/farm"),
+    ("rounds", "/", "/"),
+    ("letters", "/letters", "/letters"),
+    ("stations", "/stations", "/stations"),
+    ("intake", "/intake", "/intake"),
+    ("methods", "/methods", "/methods"),
 )
+"""Key of its name in the catalogue, address, and how the addresses below it begin."""
 
 
 def make_environment() -> Environment:
@@ -42,21 +46,21 @@ def make_environment() -> Environment:
         full_day=wording.full_day,
         rung=wording.rung,
     )
-    environment.globals.update(caution=wording.CAUTION, caution_title=wording.CAUTION_TITLE)
     return environment
 
 
 def page(request: Request, template: str, status: int = 200, /, **context: Any) -> HTMLResponse:
-    """An answer from a template; every page knows its viewer and where it is."""
+    """An answer from a template; every page knows its viewer, its reader and where it is."""
     viewer = viewer_of(request)
+    reader: Reader = context.setdefault("reader", Reader())
     text = request.app.state.templates.get_template(template).render(
         context,
         viewer=viewer,
         demo=request.app.state.settings.demo,
         asset=request.app.state.assets.address,
         pages=[
-            (name, path, current_page(request.url.path, start))
-            for name, path, start in PAGES
+            (reader.say("pages", key), path, current_page(request.url.path, start))
+            for key, path, start in PAGES
             if viewer.may("GET", path)
         ],
     )

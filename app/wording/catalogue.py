@@ -201,6 +201,9 @@ LETTER: dict[str, Words | Counted] = {
 }
 
 PAGES: dict[str, Words | Counted] = {
+    "rounds": Words("Rounds", "Ronda"),
+    "letters": Words("Letters", "Cartas"),
+    "intake": Words("Intake", "Entrada"),
     "farm": Words("Farm", "Finca"),
     "fields": Words("Fields", "Parcelas"),
     "stations": Words("Stations", "Estaciones"),
@@ -222,6 +225,7 @@ PAGES: dict[str, Words | Counted] = {
     "which_field": Words("Field", "Parcela"),
     "which_day": Words("Day", "Día"),
     "amount": Words("Amount", "Cantidad"),
+    "unit": Words("Unit", "Unidad"),
     "in_hours": Words("hours", "horas"),
     "in_depth_mm": Words("mm gross", "mm brutos"),
     "in_depth_in": Words("inches gross", "pulgadas brutas"),

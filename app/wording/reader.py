@@ -83,6 +83,10 @@ class Reader:
             return self.number(inches, 2 if 0.005 <= abs(inches) < 0.995 else 1)
         return self.number(mm, 1 if 0.05 <= abs(mm) < 9.95 else 0)
 
+    def depth_mm(self, value: float) -> float:
+        """A depth in the reader's units as millimetres."""
+        return value * MM_PER_INCH if self.units == "us" else value
+
     def volume(self, m3: float | None) -> str:
         """A volume [m3] to three figures, in m³ or acre-feet."""
         if m3 is None or not math.isfinite(m3):

@@ -39,11 +39,22 @@ def write_letters(
     if not rows:
         return {}
     key = store.signing_key(session)
+    return {
+        row.letter.id: None if said is None else _written(*said, row, settings, now, key)
+        for row, said in zip(rows, contents(session, rows, settings, today), strict=True)
+    }
+
+
+def contents(
+    session: Session, rows: Sequence[LetterRow], settings: Settings, today: date
+) -> list[tuple[Content, list[Item]] | None]:
+    """What letters would say today, and the items that a correction calls off; None where there
+    is no advice to write from."""
     facts = farm_facts(session, today, frozenset(row.farm.key for row in rows))
     covers = people.covers(session, today)
     corrections = [row for row in rows if row.letter.revision]
     before = _before(session, corrections)
-    written: dict[int, Written | None] = {}
+    found: list[tuple[Content, list[Item]] | None] = []
     for row in rows:
         cover = covers.get(row.farm.id)
         advisor = row.farm.details.get("advisor") or ""
@@ -58,10 +69,8 @@ def write_letters(
         gone: list[Item] = []
         if content is not None and old is not None:
             content, gone = corrected(old, content, row.letter.why.split("\n"))
-        written[row.letter.id] = (
-            None if content is None else _written(content, gone, row, settings, now, key)
-        )
-    return written
+        found.append(None if content is None else (content, gone))
+    return found
 
 
 def _content(
