@@ -33,6 +33,7 @@ class Line:
     expected: bool
     done: str
     otherwise: str
+    item: Item
 
 
 @dataclass(frozen=True)
@@ -234,6 +235,7 @@ def _line(item: Item, reader: Reader, links: Links) -> Line:
         item.expected,
         done,
         otherwise,
+        item,
     )
 
 

@@ -27,6 +27,11 @@ def signing_key(session: Session) -> bytes:
     return row.key
 
 
+def has_signing_key(session: Session) -> bool:
+    """Whether the key that signs links has been made."""
+    return session.scalar(select(func.count()).select_from(SigningKey)) != 0
+
+
 class LetterRow(NamedTuple):
     """A letter with its recipient and farm, without its bytes."""
 

@@ -109,7 +109,7 @@ def covers(session: Session, on: date, farms: Sequence[int] | None = None) -> di
     return {row.farm_id: row for row in session.scalars(statement)}
 
 
-def covers_to_come(session: Session, on: date) -> list[tuple[Cover, str]]:
+def covers_to_come(session: Session, on: date, farms: Farms = None) -> list[tuple[Cover, str]]:
     """Covers that are in force on a day or later, with the farm's name, by date."""
     statement = (
         select(Cover, Farm.name)
@@ -117,12 +117,16 @@ def covers_to_come(session: Session, on: date) -> list[tuple[Cover, str]]:
         .where(Cover.last >= on, Cover.ended.is_(None))
         .order_by(Cover.first, Farm.name)
     )
-    return [(row[0], row[1]) for row in session.execute(statement)]
+    return [(row[0], row[1]) for row in session.execute(of_farms(statement, farms))]
 
 
-def end_cover(session: Session, number: int) -> bool:
-    """End a cover; whether there was one."""
-    row = session.get(Cover, number)
+def end_cover(session: Session, number: int, farms: Farms = None) -> bool:
+    """End a cover of some farms; whether there was one."""
+    row = session.scalar(
+        of_farms(select(Cover).join(Farm, Farm.id == Cover.farm_id), farms).where(
+            Cover.id == number
+        )
+    )
     if row is None or row.ended is not None:
         return False
     row.ended = datetime.now(UTC)

@@ -127,6 +127,6 @@ def in_order(rows: Sequence[DeskRow]) -> list[DeskRow]:
 
 
 def weeks_shown(today: date) -> list[date]:
-    """The Mondays of last week, this week and the next."""
+    """The Mondays of this week, the next and the last."""
     start = monday(today)
-    return [start + timedelta(days=7 * step) for step in (1, 0, -1)]
+    return [start + timedelta(days=7 * step) for step in (0, 1, -1)]

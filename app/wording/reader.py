@@ -84,8 +84,8 @@ class Reader:
         return self.number(mm, 1 if 0.05 <= abs(mm) < 9.95 else 0)
 
     def depth_mm(self, value: float) -> float:
-        """A depth in the reader's units as millimetres."""
-        return value * MM_PER_INCH if self.units == "us" else value
+        """A depth in the reader's units as millimetres, to a hundredth."""
+        return round(value * MM_PER_INCH if self.units == "us" else value, 2)
 
     def volume(self, m3: float | None) -> str:
         """A volume [m3] to three figures, in m³ or acre-feet."""

@@ -8,6 +8,7 @@ from app.letters.compose import message_id
 from app.settings import Mail
 from app.storage import letters as store
 from app.storage import recipients as people
+from app.storage.database import Database
 from app.storage.recipients import RecipientRow
 from app.storage.tables_letters import Letter
 from app.workflows.letter_weeks import due_at, first_day_of, monday, zone_of
@@ -17,14 +18,38 @@ LATE = timedelta(days=2)
 """A letter that nobody had in the book is still written this long after it was due."""
 
 
+def see_to_drafts(db: Database, mail: Mail, now: datetime) -> None:
+    """Draft what is missing, and the key that signs links; writes only where something is."""
+    with db.read() as session:
+        new, moved = _missing(session, mail, now)
+        whole = not new and not moved and store.has_signing_key(session)
+        session.rollback()
+    if not whole:
+        with db.write() as session:
+            store.signing_key(session)
+            draft_letters(session, mail, now)
+
+
 def draft_letters(session: Session, mail: Mail, now: datetime) -> int:
     """Add the drafts that are missing, and move those whose recipient changed the day or hour;
     returns how many were added."""
+    new, moved = _missing(session, mail, now)
+    for letter, due, first_day in moved:
+        letter.due, letter.first_day = due, first_day
+    session.add_all(new)
+    session.flush()
+    return len(new)
+
+
+def _missing(
+    session: Session, mail: Mail, now: datetime
+) -> tuple[list[Letter], list[tuple[Letter, datetime, date]]]:
+    """Letters to be drafted, and open ones to be moved, with their new due instant and day."""
     week = monday(now.date())
     weeks = [week - timedelta(days=7), week, week + timedelta(days=7)]
     there = store.letter_keys(session, weeks)
     offsets = people.farm_offsets(session)
-    added = 0
+    new, moved = [], []
     for row in people.recipients(session):
         zone = zone_of(row.farm, offsets.get(row.farm_id, 0.0))
         for start in weeks:
@@ -32,13 +57,11 @@ def draft_letters(session: Session, mail: Mail, now: datetime) -> int:
             first = first_day_of(start, row.weekday, row.hour)
             letter = there.get((row.id, start, 0))
             if letter is not None:
-                if letter.state in store.OPEN and now < letter.due:
-                    letter.due, letter.first_day = due, first
+                if letter.state in store.OPEN and now < letter.due != due:
+                    moved.append((letter, due, first))
             elif gets_letters(row) and now - LATE <= due <= now + AHEAD:
-                session.add(new_letter(row, start, 0, first, due, mail))
-                added += 1
-    session.flush()
-    return added
+                new.append(new_letter(row, start, 0, first, due, mail))
+    return new, moved
 
 
 def gets_letters(row: RecipientRow) -> bool:

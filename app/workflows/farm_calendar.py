@@ -21,14 +21,14 @@ def farm_calendar(
     """What the letters of the last weeks said, corrections in place of what they correct, and what
     this week's would say where none was sent yet."""
     since = [monday(today) - timedelta(days=7 * back) for back in range(-1, WEEKS)]
-    rows = store.letters(session, since, farm, states=("sent",))
+    rows = store.letters(session, since, frozenset({farm}), states=("sent",))
     said: dict[date, list[tuple[Content, datetime]]] = {}
     for row in sorted(rows, key=lambda row: (row.letter.week, row.letter.revision)):
         content = Content.model_validate(row.letter.content)
         at = row.letter.released_at or row.letter.due
         said.setdefault(row.letter.week, []).append((content, at))
     if monday(today) not in said:
-        facts = farm_facts(session, today, farm).get(farm)
+        facts = farm_facts(session, today, frozenset({farm})).get(farm)
         domain = settings.mail.domain
         found = letter_content(facts, monday(today), today, domain) if facts else None
         if found is not None:

@@ -23,6 +23,7 @@ from app.storage.tables import (
     Station,
     StationDay,
 )
+from app.storage.tables_letters import Recipient
 
 TODAY = date(2026, 7, 14)
 PLANTING = date(2026, 5, 8)
@@ -64,6 +65,8 @@ def fill(db: Database, fields: int = 12, days: int = 40, hostile: bool = True) -
             [("hollin", "Hollin Farm"), ("tern", "Tern Creek"), ("odd", HOSTILE)], 1
         ):
             session.add(Farm(id=number, key=key, name=name, details={"grower": "A. Person"}))
+            session.flush()
+            session.add(_recipient(number, name))
         session.flush()
         for station in (1, 2, 3):
             _station_days(session, station, days)
@@ -85,6 +88,20 @@ def fill(db: Database, fields: int = 12, days: int = 40, hostile: bool = True) -
                 entered=datetime(2026, 7, 13, 6, tzinfo=UTC),
             )
         )
+
+
+def _recipient(farm: int, name: str) -> Recipient:
+    return Recipient(
+        farm_id=farm,
+        name=f"Reader of {name}",
+        address=f"reader{farm}@example.org",
+        language="es" if farm == 2 else "en",
+        units="us" if farm == 1 else "metric",
+        weekday=1,
+        hour=5,
+        paused=False,
+        stopped_at=None,
+    )
 
 
 def _station_days(session: Session, station: int, days: int) -> None:

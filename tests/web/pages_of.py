@@ -17,6 +17,10 @@ PAGES = {
     "pages/station.html": ["/stations/north", "/stations/bench?span=year", "/stations/lane"],
     "pages/station_day.html": [f"/stations/bench/days/{YESTERDAY}"],
     "pages/intake.html": ["/intake", "/intake?station=north"],
+    "pages/letters.html": ["/letters"],
+    "pages/letter.html": ["/letters/1", "/letters/3"],
+    "pages/recipients.html": ["/recipients"],
+    "pages/farm.html": ["/farm/hollin", "/farm/odd?language=es&units=us", "/farm/tern"],
     "pages/methods.html": ["/methods"],
     "error.html": ["/nowhere", "/fields/nobody", "/intake/77", f"/stations/lane/days/{TODAY}"],
 }

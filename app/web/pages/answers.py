@@ -35,7 +35,7 @@ def _broken(request: Request, error: LinkError) -> Response:
 
 
 def _read(db: Database, purpose: str, token: str, today: date) -> list[str]:
-    with db.write() as session:
+    with db.read() as session:
         key = store.signing_key(session)
     return links.read(key, purpose, token, today)
 
@@ -192,9 +192,7 @@ def _one(session: Session, number: int) -> RecipientRow:
     return found[0]
 
 
-def _stop_page(
-    request: Request, row: RecipientRow, token: str, changed: bool = False
-) -> Response:
+def _stop_page(request: Request, row: RecipientRow, token: str, changed: bool = False) -> Response:
     who = reader(row.language, row.units, row.farm.get("time_zone"))
     return page(
         request, "pages/stop.html", reader=who, row=row, token=token, changed=changed,

@@ -34,4 +34,4 @@ def enter(request: Request, db: AsDatabase, role: str, farm: str | None = None) 
         keys = [key for key, _ in store.farms(session)]
     if not keys or (farm is not None and farm not in keys):
         raise HTTPException(404, "There is no such farm to enter as its grower.")
-    return way_in(role, farm or keys[0], "/")
+    return way_in(role, farm or keys[0], "/farm")

@@ -25,6 +25,7 @@ from app.web.render import page
 from app.web.rounds_view import bar
 from app.wording.catalogue import LANGUAGE_NAMES
 from app.wording.reader import Reader, reader
+from app.workflows.draft_letters import see_to_drafts
 from app.workflows.farm_calendar import farm_calendar
 from app.workflows.letter_facts import FarmFacts, farm_facts, letter_content
 from app.workflows.letter_weeks import monday
@@ -35,18 +36,22 @@ router = APIRouter()
 Short = Annotated[str, Query(max_length=20)]
 Text = Annotated[Clean, Form(max_length=200)]
 LOGGED_DAYS = 14
-LETTERS_SHOWN = 12
+LETTERS_SHOWN = EVENTS_SHOWN = 12
 
 
 @router.get("/farm")
 def own(viewer: AsViewer) -> Response:
-    """The grower's own farm."""
-    return RedirectResponse(f"/farm/{viewer.farm}", status_code=303)
+    """The grower's own farm; the first by key of several."""
+    own_farms = sorted(viewer.farms or ())
+    if not own_farms:
+        raise HTTPException(404, "No farm is yours yet.")
+    return RedirectResponse(f"/farm/{own_farms[0]}", status_code=303)
 
 
 def _farm(session: Session, key: str, viewer: Viewer) -> str:
     """The name of a farm the viewer may see; 404 for others."""
-    found = [] if viewer.farm not in (None, key) else pages.farms(session, key)
+    known = viewer.farms is None or key in viewer.farms
+    found = pages.farms(session, frozenset({key})) if known else []
     if not found:
         raise HTTPException(404, "There is no such farm.")
     return found[0][1]
@@ -93,13 +98,13 @@ def _show(
     done: str = "",
     problem: str = "",
 ) -> Response:
-    with db.write() as session:
+    see_to_drafts(db, settings.mail, now)
+    with db.read() as session:
         name = _farm(session, key, viewer)
         signing = store.signing_key(session)
-        facts = farm_facts(session, today, key)[key]
-        rows = people.recipients(session, key)
-        sent = store.letters(session, farm=key, states=("sent",), most=LETTERS_SHOWN)
-        session.expunge_all()
+        facts = farm_facts(session, today, frozenset({key}))[key]
+        rows = people.recipients(session, frozenset({key}))
+        sent = store.letters(session, farms=frozenset({key}), states=("sent",), most=LETTERS_SHOWN)
         events = pages.events_since(session, today - timedelta(days=LOGGED_DAYS), facts.blocks)
     who = farm_reader(rows, language, units)
     content = letter_content(facts, monday(today), today, settings.mail.domain)
@@ -116,7 +121,7 @@ def _show(
         content=content,
         bars=_bars(facts, who),
         fields=[(one.row.field_key, one.row.field_name) for one in facts.fields],
-        events=[_event_words(event, facts, who, today) for event in events],
+        events=[_event_words(event, facts, who, today) for event in events[:EVENTS_SHOWN]],
         sent=[(row, who.short_day(row.letter.first_day)) for row in sent],
         recipients=rows,
         feed=f"{settings.mail.base_url}/calendar/{token}.ics",
@@ -193,8 +198,8 @@ def log(
     """Log water, or rain of the farm's own gauge."""
     with db.read() as session:
         _farm(session, key, viewer)
-        rows = people.recipients(session, key)
-        if field not in pages.field_keys(session, key):
+        rows = people.recipients(session, frozenset({key}))
+        if field not in pages.field_keys(session, frozenset({key})):
             raise HTTPException(404, "There is no such field.")
     who = farm_reader(rows, language, units)
     try:
@@ -239,7 +244,7 @@ def change(
     with db.write() as session:
         _farm(session, key, viewer)
         row = session.get(Recipient, number)
-        if row is None or not people.recipients(session, key, number):
+        if row is None or not people.recipients(session, frozenset({key}), number):
             raise HTTPException(404, "There is no such recipient.")
         values = {
             "language": language,
@@ -257,7 +262,7 @@ def letter(db: AsDatabase, viewer: AsViewer, key: AsKey, number: AsNumber) -> Re
     """A letter that was sent, as it was sent."""
     with db.read() as session:
         _farm(session, key, viewer)
-        found = store.letters(session, farm=key, one=number, states=("sent",))
+        found = store.letters(session, farms=frozenset({key}), one=number, states=("sent",))
     if not found or found[0].letter.data is None:
         raise HTTPException(404, "There is no such letter.")
     return letter_html(found[0].letter.data)
@@ -272,13 +277,11 @@ def feed(
     token: Annotated[str, Path(max_length=200)],
 ) -> Response:
     """A farm's days to water, for whoever has the address."""
-    with db.write() as session:
+    with db.read() as session:
         try:
             key, language, units = links.read(store.signing_key(session), "feed", token, today)
         except links.LinkError:
             raise HTTPException(404, "There is no such calendar.") from None
-        rows = people.recipients(session, key)
-        data = farm_calendar(
-            session, key, farm_reader(rows, language, units), settings, now, today
-        )
+        rows = people.recipients(session, frozenset({key}))
+        data = farm_calendar(session, key, farm_reader(rows, language, units), settings, now, today)
     return Response(data, media_type="text/calendar; charset=utf-8")

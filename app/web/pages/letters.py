@@ -24,7 +24,7 @@ from app.web.problems import RefusedError
 from app.web.render import page
 from app.wording.desk import DEEDS_DONE, NO_SERVER
 from app.workflows import release_letters as deeds
-from app.workflows.draft_letters import draft_letters
+from app.workflows.draft_letters import see_to_drafts
 from app.workflows.once import EntryError
 from app.workflows.write_letters import contents, write_letters
 
@@ -44,13 +44,13 @@ def desk(
 ) -> Response:
     """Last week's letters, this week's and the next, those that need somebody first."""
     weeks = view.weeks_shown(today)
-    with db.write() as session:
-        draft_letters(session, settings.mail, now)
-        rows = store.letters(session, weeks, viewer.farm)
+    see_to_drafts(db, settings.mail, now)
+    with db.read() as session:
+        rows = store.letters(session, weeks, viewer.farms)
         said = _said_today(session, rows, settings, today)
         answers = store.answers(session, [row.letter.id for row in rows])
         offsets = people.farm_offsets(session)
-        covers = people.covers_to_come(session, today)
+        covers = people.covers_to_come(session, today, viewer.farms)
     shown: dict[date, list[view.DeskRow]] = {}
     for row in rows:
         content = view.content_of(row, said)
@@ -124,7 +124,7 @@ def _release_many(
 
 def _own(session: Session, number: int, viewer: Viewer) -> LetterRow:
     """A letter the viewer may see; 404 for others."""
-    rows = store.letters(session, farm=viewer.farm, one=number)
+    rows = store.letters(session, farms=viewer.farms, one=number)
     if not rows:
         raise HTTPException(404, "There is no such letter.")
     return rows[0]
@@ -142,13 +142,14 @@ def letter(
     done: Short = "",
 ) -> Response:
     """One letter as it will be sent, was sent, or would be sent now."""
-    with db.write() as session:
+    see_to_drafts(db, settings.mail, now)
+    with db.read() as session:
         row = _own(session, number, viewer)
         data = _bytes(session, row, settings, now, today)
         said = _said_today(session, [row], settings, today)
         answers = store.answers(session, [number])
         offsets = people.farm_offsets(session)
-        others = store.letters(session, [row.letter.week], row.farm.key)
+        others = store.letters(session, [row.letter.week], frozenset({row.farm.key}))
     message = None if data is None else parsed(data)
     answer = page(
         request,
@@ -232,7 +233,8 @@ def _whole(
     today: date,
     number: int,
 ) -> bytes:
-    with db.write() as session:
+    see_to_drafts(db, settings.mail, now)
+    with db.read() as session:
         row = _own(session, number, viewer)
         data = _bytes(session, row, settings, now, today)
     if data is None:

@@ -34,10 +34,9 @@ def recipients(
 ) -> Response:
     """Every recipient by farm, and covers."""
     with db.read() as session:
-        rows = people.recipients(session, viewer.farm)
-        farms = store.farms(session, viewer.farm)
-        covers = people.covers_to_come(session, today)
-        session.expunge_all()
+        rows = people.recipients(session, viewer.farms)
+        farms = store.farms(session, viewer.farms)
+        covers = people.covers_to_come(session, today, viewer.farms)
     return page(
         request,
         "pages/recipients.html",
@@ -101,7 +100,7 @@ def add(
     """Add a recipient to a farm, or change the one at that address."""
     values = read_recipient(name, address, language, units, weekday, hour, paused)
     with db.write() as session:
-        keys = {key for key, _ in store.farms(session, viewer.farm)}
+        keys = {key for key, _ in store.farms(session, viewer.farms)}
         number = session.scalar(select(Farm.id).where(Farm.key == farm, Farm.key.in_(keys)))
         if number is None:
             raise HTTPException(404, "There is no such farm.")
@@ -127,7 +126,7 @@ def change(
     try:
         with db.write() as session:
             row = session.get(Recipient, number)
-            if row is None or not people.recipients(session, viewer.farm, number):
+            if row is None or not people.recipients(session, viewer.farms, number):
                 raise HTTPException(404, "There is no such recipient.")
             people.change_recipient(session, row, values, viewer.who, people.kept(row))
             session.execute(
@@ -159,7 +158,7 @@ def cover(
     if not name.strip():
         raise RefusedError("Nobody is named.", "name", "", "Write who covers.")
     with db.write() as session:
-        keys = {key for key, _ in store.farms(session, viewer.farm) if farm in ("", key)}
+        keys = {key for key, _ in store.farms(session, viewer.farms) if farm in ("", key)}
         numbers = list(session.scalars(select(Farm.id).where(Farm.key.in_(keys))))
         if not numbers:
             raise HTTPException(404, "There is no such farm.")
@@ -176,9 +175,9 @@ def _cover(farm: int, first: date, last: date, name: str, who: str) -> Cover:
 
 
 @router.post("/covers/{number}/end")
-def end(db: AsDatabase, number: AsNumber) -> Response:
+def end(db: AsDatabase, viewer: AsViewer, number: AsNumber) -> Response:
     """End a cover."""
     with db.write() as session:
-        if not people.end_cover(session, number):
+        if not people.end_cover(session, number, viewer.farms):
             raise HTTPException(404, "There is no such cover.")
     return RedirectResponse("/recipients?done=changed#cover", status_code=303)
