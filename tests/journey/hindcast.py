@@ -64,7 +64,11 @@ def daily_record() -> Record:
 
 
 def typical_year(name: str, site: Site) -> Record:
-    """A typical year's hours as days: shortwave, temperature, humidity and wind, rung 5."""
+    """A typical year's hours as days: shortwave, temperature, humidity and wind, rung 5.
+
+    Its rain stands in tenths of a millimetre whatever its header says: the steps are 3, 5, 8, 10,
+    hundredths of an inch, and the year of 723170 adds up to 8345.
+    """
     path = Path(str(files("pvlib"))) / "data" / name
     with path.open(newline="") as source:
         next(source)
@@ -83,7 +87,7 @@ def typical_year(name: str, site: Site) -> Record:
         rh_min=humidity.min(axis=1),
         wind=hours("Wspd (m/s)").mean(axis=1),
         shortwave_down=hours("GHI (W/m^2)").sum(axis=1) * 0.0036,
-        rain=np.maximum(hours("Lprecip depth (mm)"), 0.0).sum(axis=1),
+        rain=0.1 * np.maximum(hours("Lprecip depth (mm)"), 0.0).sum(axis=1),
     )
     return _record(f"typical year {name[:6]}", site, weather)
 
