@@ -200,6 +200,7 @@ def intake(
         Path | None, typer.Option(help="How to read it, as --preview --json prints it.")
     ] = None,
     preview: Annotated[bool, typer.Option("--preview", help="Only say what would change.")] = False,
+    ahead: Annotated[bool, typer.Option("--ahead", help="Take rows dated after now too.")] = False,
     on: On = None,
     as_json: AsJson = False,
 ) -> None:
@@ -209,9 +210,9 @@ def intake(
     chosen = _mapping(mapping)
     with _database(on) as (db, _, today):
         with file.open("rb") as source, _progress(f"Reading {file.name}") as step:
-            number = take_in.receive(db, station, file.name, source, WHO, chosen, step)
+            number = take_in.receive(db, station, file.name, source, WHO, chosen, step, today=today)
         try:
-            seen = _answered(db, number, answer or [])
+            seen = _answered(db, number, answer or [], today)
         except InputError:
             take_in.discard(db, number, WHO)
             raise
@@ -222,8 +223,15 @@ def intake(
         if seen.message or any(question["blocking"] for question in seen.questions):
             take_in.discard(db, number, WHO)
             raise take_in.TakeInError(_why_not(seen))
+        if seen.rows_ahead and not ahead:
+            take_in.discard(db, number, WHO)
+            late = seen.problems[0]
+            raise take_in.TakeInError(
+                f"{file.name}: {seen.rows_ahead} rows are dated after now, the first at "
+                f"{late.value} (line {late.line}). {late.remedy} That is said with --ahead."
+            )
         with _progress(f"Taking {file.name} in") as step:
-            applied = take_in.apply(db, number, WHO, today, step)
+            applied = take_in.apply(db, number, WHO, today, step, ahead=ahead)
     text = (
         f"{file.name}: {applied.rows} rows, all here already; nothing changed."
         if applied.already_here
@@ -235,7 +243,7 @@ def intake(
     _say({"intake": number, **asdict(applied)}, as_json, text)
 
 
-def _answered(db: Any, number: int, answers: list[str]) -> Any:
+def _answered(db: Any, number: int, answers: list[str], today: date) -> Any:
     """The preview of a received file, read again with the answers if there are any."""
     from app.intake import answer
     from app.workflows import take_in
@@ -249,7 +257,7 @@ def _answered(db: Any, number: int, answers: list[str]) -> Any:
         if not sign:
             raise InputError(f"--answer is {text!r}; write it as FIELD=VALUE, as time.order=mdy")
         given[field.strip()] = value.strip()
-    take_in.remap(db, number, answer(seen.mapping, given), WHO)
+    take_in.remap(db, number, answer(seen.mapping, given), WHO, today)
     return take_in.preview_of(db, number)
 
 

@@ -86,4 +86,4 @@ def take_file(db: Database, basin: Path, entry: dict[str, object]) -> None:
         seen = take_in.preview_of(db, number)
         assert isinstance(seen.mapping, Mapping)
         take_in.remap(db, number, answer(seen.mapping, answers), WHO)
-    take_in.apply(db, number, WHO, None)
+    take_in.apply(db, number, WHO, None, ahead=True)

@@ -6,6 +6,7 @@ Factors are exact by definition where the unit is defined that way (Internationa
 """
 
 import re
+import unicodedata
 from dataclasses import dataclass
 
 import numpy as np
@@ -145,7 +146,7 @@ _ALIASES: dict[str, str] = {
         "langley/min": "ly/min langley/min cal/cm2/min",
         "mm": "mm millimeter millimetre millimeters millimetres milimetros l/m2 lm-2",
         "cm": "cm centimeter centimetre",
-        "inch": "in inch inches pulgada pulgadas \" ''",
+        "inch": "in inch inches pulg pulgada pulgadas \" ''",
         "hundredth inch": "in/100 0.01in 1/100in hundredthsofaninch",
         "mm/h": "mm/h mm/hr mmh-1 mm/hour",
         "inch/h": "in/h in/hr inch/h inches/hr inches/hour",
@@ -173,7 +174,8 @@ def parse_unit(text: str) -> str | None:
 
 
 def _plain(text: str) -> str:
-    low = text.translate(_WORDS).lower().replace("**", "")
+    low = unicodedata.normalize("NFKD", text.translate(_WORDS).lower().replace("**", ""))
+    low = "".join(letter for letter in low if not unicodedata.combining(letter))
     low = re.sub(r"\bper\b|\bpor\b", "/", low)
     low = re.sub(r"\bsq(?:uare|\.)?\s*m(?:et(?:er|re)s?)?\b|\bsqm\b", "m2", low)
     low = re.sub(r"^(deg(?:rees?|s)?|grados?)[\s._]*(?=[cfk])", "", low)

@@ -181,6 +181,17 @@ def test_what_a_file_leaves_open_is_asked_and_answered_by_a_mapping(shell: Shell
     assert applied["first_day"] == "2026-05-01"
 
 
+def test_rows_dated_after_now_are_taken_only_if_said_so(shell: Shell) -> None:
+    shell.run("load", str(shell.folder / "book.json"))
+    path = shell.folder / "ahead.csv"
+    path.write_text("date,tmax (degC),tmin (degC)\n2125-05-01,20,5\n2125-05-02,21,9\n")
+    refused = shell.run("intake", "bench", str(path), code=1).stderr
+    assert "ahead.csv: 2 rows are dated after now" in refused
+    assert "(line 2)" in refused
+    assert "--ahead" in refused
+    assert shell.json("intake", "bench", str(path), "--ahead")["rows"] == 2
+
+
 def test_what_a_file_leaves_open_is_answered_by_a_word(shell: Shell) -> None:
     folder = shell.folder
     shell.run("load", str(folder / "book.json"))

@@ -118,6 +118,7 @@ def test_tenths_stay_tenths() -> None:
         ("m s-1", "m/s"), ("m.s-1", "m/s"), ("mph", "mph"), ("kts", "knot"), ("nudos", "knot"),
         ("km per day", "km/d"), ("km/h", "km/h"), ("hPa", "hPa"), ("mb", "mbar"), ("inHg", "inHg"),
         ("%", "%"), ("pct", "%"), ("fraction", "fraction"), ("in", "inch"), ("pulgadas", "inch"),
+        ("pulg", "inch"), ("MJ/m²/día", "MJ/m2/d"),
         ("mm", "mm"), ("l/m2", "mm"), ("min", "min"), ("horas", "h"),
         ("furlongs", None), ("V", None), ("deg", None), ("mJ/m2", None), ("", None), ("°", None),
     ],

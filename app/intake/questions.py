@@ -93,6 +93,11 @@ def check_mapping(mapping: Mapping) -> None:
                 f"Column {column.name!r}: the unit {column.unit!r} does not measure "
                 f"{column.quantity}; choose another."
             )
+    if not seen:
+        raise IntakeError(
+            "No column is taken for a weather quantity; say of at least one what it means, and in "
+            "which unit."
+        )
 
 
 def unanswered(mapping: Mapping) -> list[Question]:

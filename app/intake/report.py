@@ -81,7 +81,7 @@ class Report:
                     lines[0],
                     name,
                     "",
-                    f"no value in {count} rows",
+                    "no value",
                     "Nothing to do: up to 2 h are bridged, beyond that the day says what it lacks.",
                     "warning",
                     count,

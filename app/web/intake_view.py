@@ -7,12 +7,13 @@ from typing import Any
 from pydantic import ValidationError
 
 from app import wording
-from app.intake import IntakeError, Mapping, answer
+from app.intake import IntakeError, Mapping, Problem, answer
 from app.science.quantities import QUANTITIES
 from app.units import UNITS, units_for
 from app.workflows.take_in import Preview
 
 LEAVE_OUT = ""
+SHOWN = 24
 DAY_S = 86400
 STEPS = (60, 300, 600, 900, 1200, 1800, 3600, 7200, 10800, 21600, 43200, DAY_S)
 ROLES = {
@@ -70,7 +71,7 @@ def columns(preview: Preview) -> list[ColumnLine]:
             ColumnLine(
                 position,
                 str(seen["name"]) or f"column {position + 1}",
-                "; ".join(str(example) for example in seen["examples"][:3]),
+                "; ".join(_short(str(example)) for example in seen["examples"][:3]),
                 roles.get(position, ""),
                 quantity,
                 (column.unit or "") if column else "",
@@ -79,6 +80,10 @@ def columns(preview: Preview) -> list[ColumnLine]:
             )
         )
     return lines
+
+
+def _short(text: str) -> str:
+    return text if len(text) <= SHOWN else f"{text[:SHOWN]}…"
 
 
 def unit_choices(quantity: str) -> tuple[tuple[str, str], ...]:
@@ -177,6 +182,12 @@ def headline(preview: Preview) -> tuple[str, str]:
     blocking = sum(bool(question["blocking"]) for question in preview.questions)
     if blocking:
         return wording.counted(blocking, "question", "questions"), " to be answered first."
+    if not preview.rows_accepted:
+        return "Nothing to take", f": no row can be used, {refused} refused."
+    if preview.rows_ahead:
+        ahead = wording.counted(preview.rows_ahead, "row is", "rows are")
+        last = wording.full_day(preview.last_day)
+        return f"{ahead} dated after now", f", up to {last}; they are taken only if you say so."
     if not preview.days_changed:
         return "Nothing new", f": {rows}, all of them here already and the same."
     return (
@@ -185,6 +196,31 @@ def headline(preview: Preview) -> tuple[str, str]:
         f"{wording.counted(len(preview.days_changed), 'day changes', 'days change')}, "
         f"from {wording.full_day(preview.days_changed[0])}.",
     )
+
+
+def ready(preview: Preview) -> bool:
+    """Whether the file can be taken in as it is read, and would change anything."""
+    asks = any(question["blocking"] for question in preview.questions)
+    looked = preview.state == "previewed" and not preview.message and not asks
+    return looked and bool(preview.days_changed)
+
+
+def doubtful(preview: Preview) -> bool:
+    """Whether something stands in the way of a file, or it is better looked at twice."""
+    return preview.state == "previewed" and (
+        not preview.rows_accepted or bool(preview.message) or preview.rows_ahead > 0
+    )
+
+
+def next_step(preview: Preview) -> str:
+    """What to do with a file that cannot be taken in as it is read."""
+    if any(question["blocking"] for question in preview.questions):
+        return "Answer what is asked first."
+    if preview.mapping is None:
+        return "Mend the file and send it again."
+    if preview.message or not preview.rows_accepted:
+        return "Correct how it is read, or mend the file and send it again."
+    return "There is nothing in it to take."
 
 
 def effects(preview: Preview) -> str:
@@ -209,6 +245,14 @@ def effects(preview: Preview) -> str:
             f"{wording.counted(preview.fields_touched, 'field is', 'fields are')} reckoned anew."
         )
     return " ".join(said)
+
+
+def problems(preview: Preview) -> list[tuple[str, Problem]]:
+    """Problems with their lines: what is dated after now, what is refused, then what is doubted."""
+    order = sorted(
+        preview.problems, key=lambda p: (p.column != "(date)", p.severity == "warning", p.line)
+    )
+    return [(lines_of(problem), problem) for problem in order]
 
 
 def lines_of(problem: Any) -> str:

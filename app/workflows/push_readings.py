@@ -77,9 +77,17 @@ def push_readings(
     try:
         number = take_in.receive(
             db, station_key, name, io.BytesIO(content), who,
-            mapping_of(names, units, interval_s), as_stated=True,
+            mapping_of(names, units, interval_s), as_stated=True, today=today,
         )  # fmt: skip
         seen = take_in.preview_of(db, number)
+        if seen.rows_ahead:
+            take_in.discard(db, number, who)
+            late = seen.problems[0]
+            raise PushError(
+                f"{seen.rows_ahead} rows are dated after now, the first at {late.value}.",
+                f"rows.{late.line - HEADER_LINES}.at", late.value,
+                "Set the logger's clock, or its offset, and send them again.",
+            )  # fmt: skip
         if seen.message or not seen.rows_accepted:
             take_in.discard(db, number, who)
             first = seen.problems[0] if seen.problems else None

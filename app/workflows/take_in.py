@@ -6,7 +6,7 @@ transaction together with all that follows from it.
 """
 
 from dataclasses import asdict, dataclass, field, replace
-from datetime import UTC, date, datetime
+from datetime import UTC, date, datetime, time, timedelta
 from pathlib import PurePath
 from typing import Any, BinaryIO
 
@@ -62,7 +62,7 @@ class Preview:
     columns: one dict a column of the file (position, name, examples, why); questions: one dict
     each (field, asks, choices [{value, label}], why, suggested, blocking). message: what is wrong
     with the whole file, or "". Rows are counted as accepted (of them same as stored, differing
-    from stored) and refused.
+    from stored, dated ahead of now) and refused.
     """
 
     intake_id: int
@@ -82,6 +82,7 @@ class Preview:
     rows_refused: int
     rows_same: int
     rows_differing: int
+    rows_ahead: int
     first_day: date | None
     last_day: date | None
     days_changed: list[date]
@@ -99,18 +100,20 @@ def receive(
     mapping: Mapping | None = None,
     progress: Progress | None = None,
     as_stated: bool = False,
+    today: date | None = None,
 ) -> int:
     """Keep a file for a station and preview it; returns the intake's number.
 
     With `as_stated` the mapping given is read as it stands and nothing of the file is guessed;
     else it must be of this file's header. A file that cannot be read is kept too, with the message
-    that says why. Raises TakeInError for no such station and a mapping that contradicts itself.
+    that says why. Rows are ahead of now by the clock, or by `today` where that lies later. Raises
+    TakeInError for no such station and a mapping that contradicts itself.
     """
     _checked(mapping)
     sha256, pieces = intakes.compress(source)
     with db.read() as session:
         station = _station(session, station_key)
-        seen = _look(session, station, source, mapping, progress, as_stated)
+        seen = _look(session, station, source, mapping, progress, as_stated, today)
     with db.write() as session:
         intake = Intake(
             station_id=station.id,
@@ -125,14 +128,16 @@ def receive(
         return intake.id
 
 
-def remap(db: Database, intake_id: int, mapping: Mapping, who: str) -> None:
+def remap(
+    db: Database, intake_id: int, mapping: Mapping, who: str, today: date | None = None
+) -> None:
     """Preview again with a corrected mapping, read as it stands; raises TakeInError."""
     _checked(mapping)
     with db.read() as session:
         intake = _open(session, intake_id)
         before = intake.summary
         with intakes.open_file(session, intake_id) as source:
-            seen = _look(session, intake.station, source, mapping, None, as_stated=True)
+            seen = _look(session, intake.station, source, mapping, None, True, today)
     for told in ("columns", "notes", "remembered"):
         seen.summary[told] = before.get(told, seen.summary.get(told))
     asked = {question["field"]: question for question in before.get("questions", [])}
@@ -159,18 +164,25 @@ def apply(
     today: date | None,
     progress: Progress | None = None,
     keep_same: bool = True,
+    ahead: bool = False,
 ) -> Applied:
     """Take a previewed file in, whole; raises TakeInError, and then nothing is changed.
 
     Ledgers and advice of `today` follow in the same transaction; with None they are left marked
     as dirty, for whoever takes many files in and brings all up to date at the end. Without
-    `keep_same` a file that brings nothing new is forgotten.
+    `keep_same` a file that brings nothing new is forgotten. Rows dated after now are taken only
+    where `ahead` says so.
     """
     with db.read() as session:
         intake = _open(session, intake_id)
         mapping, clock = intake.mapping, _clock(intake.station)
         if not mapping:
             raise TakeInError(intake.summary.get("message") or "This file cannot be read.")
+        if (late := intake.summary.get("rows_ahead", 0)) and not ahead:
+            raise TakeInError(
+                f"{late} of its rows {'is' if late == 1 else 'are'} dated after now. Mend the "
+                "dates or how they are read; or say that they are to be taken all the same."
+            )
         try:
             with intakes.open_file(session, intake_id) as source:
                 reading = read(source, Mapping.model_validate(mapping), clock, progress)
@@ -243,6 +255,7 @@ def preview_of(db: Database, intake_id: int) -> Preview:
             rows_refused=summary.get("rows_refused", 0),
             rows_same=summary.get("rows_same", 0),
             rows_differing=summary.get("rows_differing", 0),
+            rows_ahead=summary.get("rows_ahead", 0),
             first_day=intake.first_day,
             last_day=intake.last_day,
             days_changed=[date.fromisoformat(day) for day in summary.get("days_changed", [])],
@@ -306,7 +319,8 @@ def _look(
     source: BinaryIO,
     mapping: Mapping | None,
     progress: Progress | None,
-    as_stated: bool = False,
+    as_stated: bool,
+    today: date | None,
 ) -> _Look:
     """Sniff a file and, where nothing is left open, read it and compare; stores nothing."""
     clock = _clock(station)
@@ -328,20 +342,25 @@ def _look(
         return _Look(used, {**summary, "message": str(error)}, 0, None, None, ())
     rows = reading.rows
     days = station_day(rows.instant, rows.interval_s, clock)
+    ahead = _ahead_of_time(rows, clock, today)
+    counted = {
+        "rows_ahead": sum(item.count for item in ahead),
+        "problems_total": len(ahead) + len(reading.problems) + reading.counts.problems_not_listed,
+    }
     return _Look(
         used,
-        summary | _brings(session, station, reading, clock),
+        summary | _brings(session, station, reading, clock) | counted,
         len(rows),
         as_day(days.min()) if len(rows) else None,
         as_day(days.max()) if len(rows) else None,
-        (*_ahead_of_time(rows), *reading.problems),
+        (*ahead, *reading.problems),
     )
 
 
-def _ahead_of_time(rows: Rows) -> tuple[Problem, ...]:
+def _ahead_of_time(rows: Rows, clock: Clock, today: date | None) -> tuple[Problem, ...]:
     """A warning where rows are dated after now: the year, the order of the date or a clock."""
-    now = datetime.now(UTC)
-    late = np.flatnonzero(rows.instant > now.timestamp() + 3600.0)
+    now = _now(clock, today)
+    late = np.flatnonzero(rows.instant > now.timestamp() + np.maximum(rows.interval_s, 3600))
     if not late.size:
         return ()
     first = datetime.fromtimestamp(int(rows.instant[late[0]]), UTC)
@@ -353,11 +372,20 @@ def _ahead_of_time(rows: Rows) -> tuple[Problem, ...]:
             value=f"{first:%Y-%m-%d %H:%M} UTC",
             why=f"dated after now ({now:%Y-%m-%d %H:%M} UTC)",
             remedy="See whether the year, the order of day and month, or the logger's clock is "
-            "wrong before you take the file in; such readings count once their day has come.",
+            "wrong. They are taken only if you say so, and count once their day has come.",
             severity="warning",
             count=int(late.size),
         ),
     )
+
+
+def _now(clock: Clock, today: date | None) -> datetime:
+    """The clock's now; the end of the station's `today` where that has not yet begun."""
+    now = datetime.now(UTC)
+    if today is None:
+        return now
+    begins = datetime.combine(today, time(), UTC) - timedelta(hours=clock.utc_offset_h)
+    return now if begins <= now else begins + timedelta(days=1)
 
 
 def _checked(mapping: Mapping | None) -> None:
@@ -426,9 +454,6 @@ def _brings(session: Session, station: Station, reading: Reading, clock: Clock) 
         "rows_differing": compared.differing,
         "days_changed": [str(day) for day in compared.days],
         "fields_touched": intakes.fields_fed(session, station.id) if compared.days else 0,
-        "problems_total": len(_ahead_of_time(reading.rows))
-        + len(reading.problems)
-        + reading.counts.problems_not_listed,
         "counts": asdict(reading.counts),
     }
 

@@ -119,6 +119,33 @@ def test_what_is_no_table_is_kept_with_its_message(live: Browser) -> None:
         assert live.post(f"{page}/apply").status_code == 422
 
 
+def test_a_file_of_a_wrong_year_is_taken_only_if_said_so(live: Browser) -> None:
+    page = upload(live, LATER.replace("2026", "2126"))
+    text = live.get(page).text
+    assert "2 rows are dated after now" in text
+    assert "Take the rows dated after now all the same" in text
+    refused = live.post(f"{page}/apply")
+    assert refused.status_code == 422
+    assert "2 of its rows are dated after now" in refused.text
+    number = page.rsplit("/", 1)[1]
+    assert live.post(f"/api/v1/intakes/{number}/apply").status_code == 422
+    assert live.get(f"/api/v1/intakes/{number}").json()["rows_ahead"] == 2
+    assert live.post(f"{page}/apply", data={"ahead": "true"}).status_code == 303
+    assert "2 rows taken in" in live.get(page).text
+
+
+def test_what_brings_nothing_is_not_offered(live: Browser) -> None:
+    bare = LATER.partition("\n")[2] + "2026-07-01,40,12\n"
+    for text, says in (
+        (daily_csv().decode(), "There is nothing in it to take."),
+        (bare, "Correct how it is read, or mend the file"),
+        ("tmax,tmin\n3,4\n5,6\n", "Mend the file and send it again."),
+    ):
+        shown = live.get(upload(live, text)).text
+        assert "Take it in</button>" not in shown
+        assert says in shown
+
+
 def test_problems_are_listed_by_line_and_values_escaped(live: Browser) -> None:
     bad = LATER + "2026-07-01,<img src=x>,12\n2026-13-40,30,10\n"
     text = live.get(upload(live, bad, "<script>alert(1)</script>.csv")).text

@@ -57,6 +57,16 @@ def test_a_push_that_brings_nothing_new_leaves_no_intake(live: Browser) -> None:
     assert len(live.get("/api/v1/intakes").json()) == count
 
 
+def test_a_push_from_a_clock_that_runs_ahead_is_refused(live: Browser) -> None:
+    body = push(1)
+    body["rows"][0]["at"] = "2126-06-29T10:00:00-07:00"
+    answer = live.post(f"{STATION}/readings", json=body)
+    assert answer.status_code == 422
+    (error,) = answer.json()["errors"]
+    assert (error["field"], error["value"]) == ("rows.1.at", "2126-06-29 17:00 UTC")
+    assert "Set the logger's clock" in error["remedy"]
+
+
 def test_many_pushes_are_one_line_a_day_in_the_list(live: Browser) -> None:
     numbers = []
     for quarter in range(48):

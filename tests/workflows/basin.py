@@ -117,7 +117,7 @@ def take(
     db: Database, station: str, data: bytes, today: date = TODAY
 ) -> tuple[int, take_in.Applied]:
     """Take a file in; its number and what it did."""
-    number = take_in.receive(db, station, "daily.csv", io.BytesIO(data), "admin")
+    number = take_in.receive(db, station, "daily.csv", io.BytesIO(data), "admin", today=today)
     preview = take_in.preview_of(db, number)
     assert preview.message == ""
     assert not [q for q in preview.questions if q["blocking"]], preview.questions

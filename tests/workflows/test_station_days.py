@@ -61,7 +61,9 @@ def payerne(db: Database) -> Database:
 
 
 def take(db: Database, station: str, text: str) -> int:
-    number = take_in.receive(db, station, "record.csv", io.BytesIO(text.encode()), "admin")
+    number = take_in.receive(
+        db, station, "record.csv", io.BytesIO(text.encode()), "admin", today=TODAY
+    )
     seen = take_in.preview_of(db, number)
     assert seen.message == ""
     assert not [q for q in seen.questions if q["blocking"]], seen.questions

@@ -29,7 +29,7 @@ def test_a_preview_changes_nothing_and_says_what_would(db: Database) -> None:
     basin.fill(db)
     before = basin.derived(db)
     data = basin.daily_csv(basin.TODAY - timedelta(days=10), warmer=1.5)
-    number = take_in.receive(db, "bench", "late.csv", io.BytesIO(data), "admin")
+    number = take_in.receive(db, "bench", "late.csv", io.BytesIO(data), "admin", today=basin.TODAY)
     seen = take_in.preview_of(db, number)
     assert seen.rows_accepted == 10
     assert seen.rows_differing == 10
@@ -80,13 +80,17 @@ def test_undo_out_of_order_leaves_what_later_files_said(db: Database) -> None:
 
 def test_a_remembered_mapping_is_used_again(db: Database) -> None:
     basin.fill(db)
-    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    number = take_in.receive(
+        db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin", today=basin.TODAY
+    )
     assert take_in.preview_of(db, number).remembered
 
 
 def test_a_corrected_mapping_is_previewed_anew(db: Database) -> None:
     basin.fill(db)
-    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    number = take_in.receive(
+        db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin", today=basin.TODAY
+    )
     mapping = take_in.preview_of(db, number).mapping
     assert mapping is not None
     columns = [
@@ -110,7 +114,7 @@ def test_what_is_no_table_is_kept_with_its_message_and_cannot_be_applied(
 ) -> None:
     basin.fill(db)
     before = basin.derived(db)
-    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin")
+    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin", today=basin.TODAY)
     assert take_in.preview_of(db, number).message
     with pytest.raises(take_in.TakeInError):
         take_in.apply(db, number, "admin", basin.TODAY)
@@ -120,13 +124,13 @@ def test_what_is_no_table_is_kept_with_its_message_and_cannot_be_applied(
 def test_an_unknown_station_names_those_there_are(db: Database) -> None:
     basin.fill(db)
     with pytest.raises(take_in.TakeInError, match="bench, meadow"):
-        take_in.receive(db, "bemch", "x.csv", io.BytesIO(b"a"), "admin")
+        take_in.receive(db, "bemch", "x.csv", io.BytesIO(b"a"), "admin", today=basin.TODAY)
 
 
 def test_applied_twice_at_once_lands_once(db: Database) -> None:
     basin.fill(db)
     data = basin.daily_csv(date(2026, 6, 1), warmer=3)
-    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin")
+    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin", today=basin.TODAY)
     outcomes: list[str] = []
 
     def work() -> None:
@@ -153,7 +157,7 @@ def test_a_killed_process_leaves_the_database_as_it_was(db: Database, database_u
     basin.fill(db)
     before, rows = basin.derived(db), counted(db)
     data = basin.daily_csv(date(2026, 6, 1), warmer=3)
-    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin")
+    number = take_in.receive(db, "bench", "x.csv", io.BytesIO(data), "admin", today=basin.TODAY)
     script = f"""
         import os, signal
         from datetime import date
@@ -181,7 +185,9 @@ def test_a_killed_process_leaves_the_database_as_it_was(db: Database, database_u
 def test_what_a_person_said_of_the_step_is_kept(db: Database) -> None:
     """A corrected mapping is read as it stands, not guessed again."""
     basin.fill(db)
-    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    number = take_in.receive(
+        db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin", today=basin.TODAY
+    )
     mapping = take_in.preview_of(db, number).mapping
     assert mapping is not None
     assert mapping.interval_s == 86400
@@ -195,14 +201,16 @@ def test_what_a_person_said_of_the_step_is_kept(db: Database) -> None:
 
 def test_a_given_mapping_of_another_header_is_not_passed_over(db: Database) -> None:
     basin.fill(db)
-    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin")
+    number = take_in.receive(
+        db, "bench", "a.csv", io.BytesIO(basin.daily_csv()), "admin", today=basin.TODAY
+    )
     mapping = take_in.preview_of(db, number).mapping
     other = b"when,temperature (degC)\n2026-06-01,12\n2026-06-02,13\n2026-06-03,14\n"
     number = take_in.receive(db, "bench", "b.csv", io.BytesIO(other), "admin", mapping)
     assert "another header" in take_in.preview_of(db, number).message
 
 
-def test_rows_dated_after_now_are_warned_of(db: Database) -> None:
+def test_rows_dated_after_now_are_taken_only_if_said_so(db: Database) -> None:
     basin.fill(db)
     wrong_year = basin.daily_csv(date(2026, 6, 1)).replace(b"\n2026-", b"\n2126-")
     number = take_in.receive(db, "bench", "a.csv", io.BytesIO(wrong_year), "admin")
@@ -211,3 +219,36 @@ def test_rows_dated_after_now_are_warned_of(db: Database) -> None:
     assert (warning.line, warning.last_line, warning.count) == (2, 31, 30)
     assert warning.value.startswith("2126-06-0")
     assert seen.problems_total == len(seen.problems)
+    assert seen.rows_ahead == 30
+    with pytest.raises(take_in.TakeInError, match="30 of its rows are dated after now"):
+        take_in.apply(db, number, "admin", basin.TODAY)
+    assert take_in.preview_of(db, number).state == "previewed"
+    assert take_in.apply(db, number, "admin", basin.TODAY, ahead=True).days_changed == 30
+
+
+def test_rows_of_the_stations_own_day_are_not_ahead(db: Database) -> None:
+    """Where the day it is was stated, it holds, even if this machine's clock lags behind it."""
+    basin.fill(db)
+    day = date(2126, 6, 30)
+    data = b"date,tmax (degC),tmin (degC)\n2126-06-29,30,11\n2126-06-30,31,12\n"
+    number = take_in.receive(db, "bench", "a.csv", io.BytesIO(data), "admin", today=day)
+    assert take_in.preview_of(db, number).rows_ahead == 0
+
+
+def test_a_file_without_a_known_column_says_so(db: Database) -> None:
+    basin.fill(db)
+    data = b"2026-06-01,30,11\n2026-06-02,31,12\n2026-06-03,32,13\n"
+    number = take_in.receive(db, "bench", "bare.csv", io.BytesIO(data), "admin", today=basin.TODAY)
+    seen = take_in.preview_of(db, number)
+    assert "No column is taken for a weather quantity" in seen.message
+    with pytest.raises(take_in.TakeInError, match="No column"):
+        take_in.apply(db, number, "admin", basin.TODAY)
+    assert seen.mapping is not None
+    columns = [
+        column.model_copy(update={"quantity": "air_temperature_max", "unit": "degC"})
+        if column.position == 1
+        else column
+        for column in seen.mapping.columns
+    ]
+    take_in.remap(db, number, seen.mapping.model_copy(update={"columns": columns}), "admin")
+    assert take_in.preview_of(db, number).rows_accepted == 3

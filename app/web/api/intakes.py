@@ -47,14 +47,14 @@ def intakes(
 def upload(
     db: AsDatabase,
     viewer: AsViewer,
+    today: AsToday,
     station: Annotated[Clean, Form(max_length=80)],
     file: Annotated[UploadFile, File()],
 ) -> PreviewOut:
     """Keep a file and preview it; nothing is taken in yet."""
     try:
-        number = take_in.receive(
-            db, station, without_nul(file.filename or "unnamed"), file.file, viewer.who
-        )
+        name = without_nul(file.filename or "unnamed")
+        number = take_in.receive(db, station, name, file.file, viewer.who, today=today)
     except (TakeInError, IntakeError) as error:
         raise RefusedError(str(error), "station", station, "Name a station of the book.") from None
     return _preview(db, number)
@@ -86,22 +86,26 @@ def _preview(db: Database, number: int) -> PreviewOut:
 
 
 @router.put("/intakes/{intake_id}/mapping")
-def remap(db: AsDatabase, viewer: AsViewer, intake_id: AsNumber, mapping: Mapping) -> PreviewOut:
+def remap(
+    db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber, mapping: Mapping
+) -> PreviewOut:
     """Preview again with a corrected mapping."""
     _preview(db, intake_id)
     try:
-        take_in.remap(db, intake_id, mapping, viewer.who)
+        take_in.remap(db, intake_id, mapping, viewer.who, today)
     except (TakeInError, IntakeError) as error:
         raise RefusedError(str(error)) from None
     return _preview(db, intake_id)
 
 
 @router.post("/intakes/{intake_id}/apply")
-def apply(db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber) -> AppliedOut:
-    """Take a previewed file in, whole or not at all."""
+def apply(
+    db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber, ahead: bool = False
+) -> AppliedOut:
+    """Take a previewed file in, whole or not at all; with rows dated after now only if `ahead`."""
     _preview(db, intake_id)
     try:
-        applied = take_in.apply(db, intake_id, viewer.who, today)
+        applied = take_in.apply(db, intake_id, viewer.who, today, ahead=ahead)
     except (TakeInError, IntakeError) as error:
         raise RefusedError(str(error)) from None
     return AppliedOut(**asdict(applied))

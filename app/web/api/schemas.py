@@ -207,6 +207,7 @@ class PreviewOut(BaseModel):
     rows_refused: int
     rows_same: int
     rows_differing: int
+    rows_ahead: int
     first_day: date | None
     last_day: date | None
     days_changed: list[date]

@@ -86,6 +86,7 @@ def upload(
     request: Request,
     db: AsDatabase,
     viewer: AsViewer,
+    today: AsToday,
     file: UploadFile | str = "",
     station: Annotated[Clean, Form(max_length=80)] = "",
 ) -> Response:
@@ -93,7 +94,8 @@ def upload(
     if isinstance(file, str) or not file.filename:
         return _start(request, db, station, "Choose a file first.")
     try:
-        number = take_in.receive(db, station, without_nul(file.filename), file.file, viewer.who)
+        name = without_nul(file.filename)
+        number = take_in.receive(db, station, name, file.file, viewer.who, today=today)
     except (TakeInError, IntakeError) as error:
         return _start(request, db, station, str(error))
     return RedirectResponse(f"/intake/{number}", status_code=303)
@@ -119,11 +121,11 @@ def _show(request: Request, db: Database, intake_id: int, error: str = "") -> Re
         p=preview,
         lead=lead,
         rest=rest,
+        doubtful=view.doubtful(preview),
         effects=view.effects(preview),
         open=preview.state == "previewed",
-        ready=preview.state == "previewed"
-        and not preview.message
-        and not any(question["blocking"] for question in preview.questions),
+        ready=view.ready(preview),
+        next_step=view.next_step(preview),
         columns=view.columns(preview),
         quantities=view.quantity_choices(),
         orders=view.ORDERS,
@@ -131,7 +133,7 @@ def _show(request: Request, db: Database, intake_id: int, error: str = "") -> Re
         delimiters=view.DELIMITERS,
         steps=view.step_choices(mapping.interval_s if mapping else None),
         terms={name: term for name, term in view.quantity_choices()},
-        problems=[(view.lines_of(item), item) for item in preview.problems],
+        problems=view.problems(preview),
         severities=wording.SEVERITIES,
         states=wording.INTAKE_STATES,
         error=error,
@@ -140,7 +142,7 @@ def _show(request: Request, db: Database, intake_id: int, error: str = "") -> Re
 
 @router.post("/intake/{intake_id}/mapping")
 async def remap(
-    request: Request, db: AsDatabase, viewer: AsViewer, intake_id: AsNumber
+    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber
 ) -> Response:
     """Preview again with corrected columns."""
     form = await request.form(max_fields=5000)
@@ -151,7 +153,8 @@ async def remap(
             preview = take_in.preview_of(db, intake_id)
             if preview.mapping is None:
                 return _show(request, db, intake_id, "This file has no columns to be corrected.")
-            take_in.remap(db, intake_id, view.corrected(preview.mapping, values), viewer.who)
+            mapping = view.corrected(preview.mapping, values)
+            take_in.remap(db, intake_id, mapping, viewer.who, today)
         except (TakeInError, IntakeError) as error:
             return _show(request, db, intake_id, str(error))
         return RedirectResponse(f"/intake/{intake_id}#preview", status_code=303)
@@ -161,11 +164,16 @@ async def remap(
 
 @router.post("/intake/{intake_id}/apply")
 def apply(
-    request: Request, db: AsDatabase, viewer: AsViewer, today: AsToday, intake_id: AsNumber
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    intake_id: AsNumber,
+    ahead: Annotated[bool, Form()] = False,
 ) -> Response:
     """Take the file in, whole."""
     try:
-        take_in.apply(db, intake_id, viewer.who, today)
+        take_in.apply(db, intake_id, viewer.who, today, ahead=ahead)
     except (TakeInError, IntakeError) as error:
         return _show(request, db, intake_id, str(error))
     return RedirectResponse(f"/intake/{intake_id}", status_code=303)
