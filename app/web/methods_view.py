@@ -5,7 +5,7 @@ from app.science.advice import decide
 from app.science.energy import checks, day_checks, ladder
 from app.science.outlook import ensemble, sequences, usual
 from app.wording import number, share
-from app.workflows import assemble, recompute
+from app.workflows import field_weather, recompute
 
 
 def rungs() -> list[tuple[int, str, str, str]]:
@@ -75,7 +75,7 @@ def working_values() -> list[tuple[str, str, str]]:
         ("days on either side of the date", f"{sequences.NEAR_DATE}", "range"),
         ("recent mornings", f"{sequences.RECENT}", "range"),
         ("leads apart that mornings count as independent", f"{sequences.APART}", "range"),
-        ("days looked ahead", f"{assemble.HORIZON}", "ahead"),
+        ("days looked ahead", f"{field_weather.HORIZON}", "ahead"),
         ("soon: days after due", f"{decide.SOON_DAYS}", "advice"),
         ("unsure: an input older than", f"{decide.STALE_DAYS} days", "advice"),
         ("unsure: early and late limit dates apart", f"over {decide.WIDE_DAYS} days", "advice"),
