@@ -27,6 +27,8 @@ app = typer.Typer(
 )
 export = typer.Typer(help="Write CSV to the terminal or a file.", no_args_is_help=True)
 app.add_typer(export, name="export")
+user = typer.Typer(help="Accounts of the people who sign in.", no_args_is_help=True)
+app.add_typer(user, name="user")
 
 WHO = "command line"
 notes = Console(stderr=True, highlight=False)
@@ -118,28 +120,152 @@ def demo(
 
 @app.command()
 def serve(
-    port: Annotated[int, typer.Option(help="Port on 127.0.0.1.")] = 8000,
+    port: Annotated[int, typer.Option(help="Port to listen on.")] = 8000,
+    host: Annotated[
+        str, typer.Option(help="Address to listen on; beyond this machine only with accounts.")
+    ] = "127.0.0.1",
 ) -> None:
-    """Serve the pages on 127.0.0.1 only: there are no accounts yet."""
+    """Serve the pages; beyond this machine only once an admin can sign in."""
     import uvicorn
 
     from app.main import create_app
 
-    _must_be_free(port)
+    _must_be_free(port, host)
     with _database() as (db, settings, _):
-        print(f"Rillbook answers on http://127.0.0.1:{port} (this machine only; no accounts yet).")
-        uvicorn.run(create_app(settings, db), host="127.0.0.1", port=port, log_level="warning")
+        _may_listen(db, settings, host)
+        print(f"Rillbook answers on http://{host}:{port}.")
+        uvicorn.run(create_app(settings, db), host=host, port=port, log_level="warning")
 
 
-def _must_be_free(port: int) -> None:
-    with socket.socket() as probe:
+def _may_listen(db: Any, settings: Settings, host: str) -> None:
+    """Refuse to listen beyond this machine where anybody would be admin, or be sent elsewhere."""
+    from app.settings import LOOPBACK, Mail
+    from app.storage.people import is_guarded
+
+    if host in LOOPBACK:
+        return
+    with db.read() as session:
+        guarded = is_guarded(session)
+    if not guarded:
+        raise InputError(
+            f"--host is {host}, but no admin can sign in yet, so whoever came would be admin; "
+            "first run `rillbook user add`"
+        )
+    if settings.mail.base_url == Mail().base_url:
+        raise InputError(
+            f"--host is {host}; set RILLBOOK_URL to the address by which the pages are reached, "
+            "such as https://rillbook.example.org"
+        )
+    if not settings.mail.base_url.startswith("https:"):
+        notes.print("RILLBOOK_URL is not https: passwords travel in the clear.", style="red")
+
+
+def _must_be_free(port: int, host: str = "127.0.0.1") -> None:
+    with socket.socket(socket.AF_INET6 if ":" in host else socket.AF_INET) as probe:
         probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
         try:
-            probe.bind(("127.0.0.1", port))
+            probe.bind((host, port))
         except (OSError, OverflowError):
             raise InputError(
-                f"port {port} on 127.0.0.1 cannot be had; choose another with --port"
+                f"port {port} on {host} cannot be had; choose another with --port"
             ) from None
+
+
+@user.command("add")
+def user_add(
+    address: Annotated[str, typer.Argument(help="E-mail address.")],
+    name: Annotated[str, typer.Option(help="Name, as it stands beside what they enter.")],
+    role: Annotated[str, typer.Option(help="admin, advisor or grower.")] = "admin",
+    farm: Annotated[list[str] | None, typer.Option(help="Key of a farm; may be repeated.")] = None,
+    language: Annotated[str, typer.Option(help="en or es.")] = "en",
+) -> None:
+    """Open an account, and choose its password here."""
+    from app.storage.people import account_at
+    from app.workflows import people
+    from app.workflows.passwords import check_chosen, hashed
+
+    with _database() as (db, settings, _):
+        _check_farms(db, farm or [])
+        given = people.Person(address, name, role, frozenset(farm or []), language)
+        password = _password()
+        check_chosen(password, password, (address.partition("@")[0], address, name))
+        kept = hashed(password, settings)
+        with db.write() as session:
+            people.add_account(session, given, WHO)
+            account = account_at(session, address)
+            assert account is not None
+            account.password = kept
+    print(f"{_inert(name)} can sign in as {role} at {settings.mail.base_url}/sign-in.")
+
+
+def _check_farms(db: Any, keys: list[str]) -> None:
+    from app.storage.pages import farms
+
+    with db.read() as session:
+        there = {key for key, _ in farms(session)}
+    if missing := sorted(set(keys) - there):
+        raise InputError(f"there is no farm {missing[0]!r}; there are: {', '.join(sorted(there))}")
+
+
+def _password() -> str:
+    """Asked for twice on a terminal, else the first line of the standard input."""
+    if sys.stdin.isatty():
+        return str(typer.prompt("Password", hide_input=True, confirmation_prompt=True))
+    return sys.stdin.readline().rstrip("\n")
+
+
+@user.command("list")
+def user_list(as_json: AsJson = False) -> None:
+    """Every account."""
+    from app.storage import people as store
+
+    with _database() as (db, _, _), db.read() as session:
+        farms = store.members(session)
+        rows = [
+            {
+                "address": row.address,
+                "name": row.name,
+                "role": row.role,
+                "farms": farms.get(row.id, []),
+                "state": "stopped" if row.stopped else "open" if row.password else "invited",
+            }
+            for row in store.accounts(session)
+        ]
+    lines = [f"{r['address']}  {r['name']}  {r['role']}  {r['state']}" for r in rows]
+    _say({"accounts": rows}, as_json, "\n".join(lines) or "No accounts yet.")
+
+
+@user.command("link")
+def user_link(address: str) -> None:
+    """Print a one-time link to choose a new password; one-time codes are switched off."""
+    from datetime import UTC, datetime
+
+    from app.storage.book import note_change
+    from app.storage.people import account_at
+    from app.workflows import people
+
+    with _database() as (db, settings, _), db.write() as session:
+        account = account_at(session, address)
+        if account is None or account.stopped is not None:
+            raise InputError(f"there is no open account at {address}")
+        account.code_secret = account.code_step = None
+        note_change(session, WHO, "account", address, None, {"done": "link made, codes off"})
+        secret = people.make_link(session, account, "reset", datetime.now(UTC))
+    print(people.link_address(settings, secret))
+
+
+@user.command("stop")
+def user_stop(address: str) -> None:
+    """Stop an account, everywhere and at once."""
+    from app.storage.people import account_at
+    from app.workflows import people
+
+    with _database() as (db, _, _), db.write() as session:
+        account = account_at(session, address)
+        if account is None:
+            raise InputError(f"there is no account at {address}")
+        people.stop_account(session, account, WHO, stop=True)
+    print(f"{_inert(address)} is stopped.")
 
 
 @app.command()

@@ -33,5 +33,5 @@ def create_app(settings: Settings, db: Database) -> FastAPI:
     app.include_router(api.router)
     problems.install(app)
     app.add_middleware(GZipMiddleware, minimum_size=1000, compresslevel=5)
-    app.add_middleware(Safety)
+    app.add_middleware(Safety, base_url=settings.mail.base_url)
     return app

@@ -55,6 +55,7 @@ class Settings:
     mail: how letters leave.
     correction_days, correction_share: what makes a correction letter: days an irrigation moves,
     share its hours change (working values).
+    password_memory_kib: memory that one check of a password takes (RFC 9106 4 gives 64 MiB).
     """
 
     database: str
@@ -63,6 +64,7 @@ class Settings:
     mail: Mail = field(default_factory=Mail)
     correction_days: int = 2
     correction_share: float = 0.25
+    password_memory_kib: int = 65536
 
 
 def default_database() -> str:

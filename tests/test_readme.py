@@ -33,7 +33,7 @@ def test_every_command_is_in_the_readme_and_no_other() -> None:
     for name, sub in command.commands.items():  # type: ignore[attr-defined]
         inner = getattr(sub, "commands", None)
         names |= {f"{name} {leaf}" for leaf in inner} if inner else {name}
-    told = set(re.findall(r"^\| `rillbook ((?:export )?[a-z-]+)", README, re.MULTILINE))
+    told = set(re.findall(r"^\| `rillbook ((?:export |user )?[a-z-]+)", README, re.MULTILINE))
     assert told == names
 
 

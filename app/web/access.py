@@ -1,21 +1,28 @@
 """Who may do what: one table of routes, one viewer per request.
 
-There are no accounts yet. Outside demo mode whoever reaches the server (on loopback only, the
-command line sees to that) is advisor and admin in one. In demo mode three ways in, without a
-sign-in, set a cookie; a grower's cookie carries the one farm that every page and answer keeps to.
+A viewer is found in this order: a token in the Authorization header (API only), the cookie of a
+sign-in, in demo mode the cookie of a way in without one. Until an admin can sign in, whoever asks
+from this machine is admin. What a viewer may do stands in MAY; what they may know of is the farms
+of `Viewer.farms`, to which every statement keeps, so that the rest is 404, not 403.
 """
 
 import re
 from dataclasses import dataclass
-from typing import Annotated, Literal
+from datetime import UTC, datetime
+from typing import Annotated
 
 from fastapi import Depends, HTTPException, Request
-from fastapi.responses import RedirectResponse
+from fastapi.responses import RedirectResponse, Response
+from sqlalchemy.orm import Session
 
+from app.settings import LOOPBACK
+from app.storage import people as store
 from app.storage.scope import Farms
+from app.storage.tables_people import Account
+from app.workflows.sign_in import LASTS
 
-Role = Literal["advisor", "grower", "admin"]
 COOKIE = "rillbook_way_in"
+SIGN_IN = "rillbook_sign_in"
 KEY = re.compile(r"[a-z0-9-]{1,80}")
 SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
 
@@ -23,11 +30,35 @@ ANYBODY: frozenset[str] = frozenset({"nobody", "advisor", "grower", "admin"})
 EVERY: frozenset[str] = frozenset({"advisor", "grower", "admin"})
 STAFF: frozenset[str] = frozenset({"advisor", "admin"})
 GROWER: frozenset[str] = frozenset({"grower"})
+ADMIN: frozenset[str] = frozenset({"admin"})
 
 MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/static/{path:path}"): ANYBODY,
     ("GET", "/enter"): ANYBODY,
     ("GET", "/enter/{role}"): ANYBODY,
+    ("GET", "/sign-in"): ANYBODY,
+    ("POST", "/sign-in"): ANYBODY,
+    ("POST", "/sign-out"): ANYBODY,
+    ("GET", "/forgot"): ANYBODY,
+    ("POST", "/forgot"): ANYBODY,
+    ("GET", "/link/{secret}"): ANYBODY,
+    ("POST", "/link/{secret}"): ANYBODY,
+    ("GET", "/me"): EVERY,
+    ("POST", "/me/password"): EVERY,
+    ("POST", "/me/codes"): STAFF,
+    ("POST", "/me/codes/on"): STAFF,
+    ("POST", "/me/codes/off"): STAFF,
+    ("POST", "/me/sign-ins/{number}/end"): EVERY,
+    ("POST", "/me/tokens"): EVERY,
+    ("POST", "/me/tokens/{number}/revoke"): EVERY,
+    ("GET", "/people"): ADMIN,
+    ("POST", "/people"): ADMIN,
+    ("GET", "/people/{number}"): ADMIN,
+    ("POST", "/people/{number}"): ADMIN,
+    ("POST", "/people/{number}/link"): ADMIN,
+    ("POST", "/people/{number}/stop"): ADMIN,
+    ("POST", "/people/{number}/open"): ADMIN,
+    ("GET", "/audit"): ADMIN,
     ("GET", "/"): EVERY,
     ("POST", "/rounds/log"): EVERY,
     ("POST", "/rounds/up-to-date"): STAFF,
@@ -47,6 +78,9 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("POST", "/stations/{key}/marks/{number}/take-back"): STAFF,
     ("POST", "/stations/{key}/log"): STAFF,
     ("POST", "/stations/{key}/log/{number}/take-back"): STAFF,
+    ("GET", "/stations/{key}/tokens"): STAFF,
+    ("POST", "/stations/{key}/tokens"): STAFF,
+    ("POST", "/stations/{key}/tokens/{number}/revoke"): STAFF,
     ("GET", "/intake"): STAFF,
     ("POST", "/intake"): STAFF,
     ("GET", "/intake/{intake_id}"): STAFF,
@@ -94,7 +128,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/api/v1/stations"): EVERY,
     ("GET", "/api/v1/stations/{key}"): EVERY,
     ("GET", "/api/v1/stations/{key}/days"): EVERY,
-    ("POST", "/api/v1/stations/{key}/readings"): STAFF,
+    ("POST", "/api/v1/stations/{key}/readings"): STAFF | {"station"},
     ("GET", "/api/v1/stations/{key}/marks"): EVERY,
     ("POST", "/api/v1/stations/{key}/marks"): STAFF,
     ("DELETE", "/api/v1/stations/{key}/marks/{number}"): STAFF,
@@ -113,14 +147,24 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
 
 @dataclass(frozen=True)
 class Viewer:
-    """Who looks: role, the farms they may know of (None: every one), the name kept with entries."""
+    """Who looks: role, the farms they may know of (None: every one), the name kept with entries.
+
+    account and sign_in are numbers, None without an account; station is the key that a logger's
+    token is for.
+    """
 
     role: str
     farms: Farms = None
+    name: str = ""
+    account: int | None = None
+    sign_in: int | None = None
+    station: str | None = None
 
     @property
     def who(self) -> str:
         """The name kept with what this viewer enters."""
+        if self.name:
+            return self.name
         return f"{self.role} ({', '.join(sorted(self.farms))})" if self.farms else self.role
 
     def may(self, method: str, path: str) -> bool:
@@ -128,20 +172,68 @@ class Viewer:
         return self.role in MAY[method, path]
 
 
+NOBODY = Viewer("nobody", frozenset())
+
+
 class NoWayInError(Exception):
     """Nobody has entered yet; pages lead to the door, the API answers 401."""
 
 
 def viewer_of(request: Request) -> Viewer:
-    """The viewer of a request."""
-    if not request.app.state.settings.demo:
-        return Viewer("admin")
+    """The viewer of a request, looked up once."""
+    found: Viewer | None = getattr(request.state, "viewer", None)
+    if found is None:
+        with request.app.state.db.read() as session:
+            found = request.state.viewer = _look_up(request, session)
+    return found
+
+
+def _look_up(request: Request, session: Session) -> Viewer:
+    state = request.app.state
+    scheme, _, secret = request.headers.get("authorization", "").partition(" ")
+    if scheme:
+        return _by_token(request, session, secret.strip()) if scheme == "Bearer" else NOBODY
+    cookie = request.cookies.get(cookie_name(state.settings.mail.base_url))
+    if cookie and (found := store.signed_in(session, cookie, datetime.now(UTC))):
+        account, sign_in = found
+        return _of_account(session, account, sign_in.id)
+    if state.settings.demo:
+        return _by_way_in(request)
+    if not getattr(state, "guarded", False):
+        state.guarded = store.is_guarded(session)
+    return Viewer("admin") if not state.guarded and is_local(request) else NOBODY
+
+
+def _of_account(session: Session, account: Account, sign_in: int | None) -> Viewer:
+    farms = None if account.role == "admin" else store.farms_of(session, account.id)
+    return Viewer(account.role, farms, account.name, account.id, sign_in)
+
+
+def _by_token(request: Request, session: Session, secret: str) -> Viewer:
+    """A station's token pushes, a person's token reads the API; neither opens a page."""
+    found = store.bearer(session, secret) if request.url.path.startswith("/api/") else None
+    if found is None:
+        return NOBODY
+    if found.token.kind == "push" and found.station is not None:
+        who = f"{found.station}: {found.token.name}"
+        return Viewer("station", frozenset(), who, station=found.station)
+    if found.token.kind == "read" and found.account is not None and request.method in SAFE:
+        return _of_account(session, found.account, None)
+    return NOBODY
+
+
+def _by_way_in(request: Request) -> Viewer:
     role, _, farm = request.cookies.get(COOKIE, "").partition(".")
     if role in STAFF and not farm:
         return Viewer(role)
     if role == "grower" and KEY.fullmatch(farm):
         return Viewer("grower", frozenset({farm}))
-    return Viewer("nobody")
+    return NOBODY
+
+
+def is_local(request: Request) -> bool:
+    """Whether the page was asked for by a name of this machine."""
+    return (request.url.hostname or "") in LOOPBACK
 
 
 def admit(request: Request) -> Viewer:
@@ -151,11 +243,10 @@ def admit(request: Request) -> Viewer:
     path = getattr(request.scope.get("route"), "path", None)
     allowed = MAY.get((method, path or ""), frozenset())
     if viewer.role in allowed:
-        request.state.viewer = viewer
         return viewer
     if viewer.role == "nobody":
         raise NoWayInError
-    raise HTTPException(403, "This page is not open to you; it is for the advisor and the admin.")
+    raise HTTPException(403, "This page is not open to you.")
 
 
 AsViewer = Annotated[Viewer, Depends(admit)]
@@ -167,3 +258,26 @@ def way_in(role: str, farm: str | None, to: str) -> RedirectResponse:
     value = f"{role}.{farm}" if farm else role
     answer.set_cookie(COOKIE, value, httponly=True, samesite="lax", path="/")
     return answer
+
+
+def is_https(base_url: str) -> bool:
+    """Whether the pages are reached by https, by the address set for links."""
+    return base_url.startswith("https:")
+
+
+def cookie_name(base_url: str) -> str:
+    """The name of the sign-in's cookie; `__Host-` binds it to this host (RFC 6265bis 4.1.3)."""
+    return f"__Host-{SIGN_IN}" if is_https(base_url) else SIGN_IN
+
+
+def set_sign_in(answer: Response, secret: str | None, base_url: str) -> None:
+    """Put the cookie of a sign-in on an answer, or take it away."""
+    answer.set_cookie(
+        cookie_name(base_url),
+        secret or "",
+        max_age=int(LASTS.total_seconds()) if secret else 0,
+        httponly=True,
+        samesite="lax",
+        secure=is_https(base_url),
+        path="/",
+    )

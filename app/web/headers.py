@@ -23,3 +23,4 @@ HEADERS = {
     "Cross-Origin-Resource-Policy": "same-origin",
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
+HTTPS_HEADERS = {"Strict-Transport-Security": "max-age=31536000"}

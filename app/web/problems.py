@@ -4,6 +4,7 @@ import logging
 from collections.abc import Sequence
 from math import isfinite
 from typing import Any
+from urllib.parse import urlencode
 
 from fastapi import FastAPI, Request
 from fastapi.exceptions import RequestValidationError
@@ -33,8 +34,8 @@ TITLES = {
 }
 LOST_NOTHING = "Nothing was stored or changed."
 REFUSED = {
-    "host": "This server answers only as 127.0.0.1 or localhost, on its own machine; it was "
-    "asked for as {value!r}.",
+    "host": "This server answers only under its own name, as RILLBOOK_URL says, or as 127.0.0.1 or "
+    "localhost on its own machine; it was asked for as {value!r}.",
     "size": "What was sent is larger than {value}. Send a long record in parts, a year each.",
     "origin": "The form was sent from {value}, not from a page of this program. "
     "Open the page here and send it again.",
@@ -127,8 +128,15 @@ def _refused(request: Request, error: Exception) -> Response:
 
 def _needs_way_in(request: Request, error: Exception) -> Response:
     if is_api(request):
-        return problem(401, "Open /enter/advisor, /enter/grower or /enter/admin first.")
-    return RedirectResponse("/enter", status_code=303)
+        answer = problem(
+            401, "Send a token that stands, as `Authorization: Bearer ...`, or sign in."
+        )
+        answer.headers["WWW-Authenticate"] = "Bearer"
+        return answer
+    if request.app.state.settings.demo:
+        return RedirectResponse("/enter", status_code=303)
+    to = request.url.path if request.method == "GET" else "/"
+    return RedirectResponse(f"/sign-in?{urlencode({'to': to})}", status_code=303)
 
 
 def _unforeseen(request: Request, error: Exception) -> Response:

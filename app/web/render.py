@@ -5,10 +5,12 @@ from typing import Any
 from fastapi import Request
 from fastapi.responses import HTMLResponse
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
+from sqlalchemy.exc import DBAPIError
 
 from app import wording
 from app.resources import resource
-from app.web.access import viewer_of
+from app.storage.database import DatabaseError
+from app.web.access import NOBODY, Viewer, viewer_of
 from app.wording.reader import Reader
 
 PAGES = (
@@ -17,6 +19,7 @@ PAGES = (
     ("letters", "/letters", "/letters"),
     ("stations", "/stations", "/stations"),
     ("intake", "/intake", "/intake"),
+    ("people", "/people", "/people"),
     ("methods", "/methods", "/methods"),
 )
 """Key of its name in the catalogue, address, and how the addresses below it begin."""
@@ -51,7 +54,7 @@ def make_environment() -> Environment:
 
 def page(request: Request, template: str, status: int = 200, /, **context: Any) -> HTMLResponse:
     """An answer from a template; every page knows its viewer, its reader and where it is."""
-    viewer = viewer_of(request)
+    viewer = _viewer(request)
     reader: Reader = context.setdefault("reader", Reader())
     text = request.app.state.templates.get_template(template).render(
         context,
@@ -67,8 +70,18 @@ def page(request: Request, template: str, status: int = 200, /, **context: Any) 
     return HTMLResponse(text, status_code=status)
 
 
+def _viewer(request: Request) -> Viewer:
+    """The viewer, nobody where the database cannot say: the page then tells of that."""
+    try:
+        return viewer_of(request)
+    except (DatabaseError, DBAPIError):
+        return NOBODY
+
+
 def current_page(path: str, start: str) -> bool:
     """Whether a path belongs to a page of the menu; fields belong to Rounds."""
+    if start == "/people" and path == "/audit":
+        return True
     if start == "/":
         return path == "/" or path.startswith(("/fields", "/rounds"))
     return path == start or path.startswith(start + "/")

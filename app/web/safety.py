@@ -4,10 +4,11 @@ from urllib.parse import urlsplit
 
 from starlette.datastructures import Headers, MutableHeaders
 from starlette.exceptions import HTTPException
+from starlette.requests import cookie_parser
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
-from app.web.access import SAFE
-from app.web.headers import CAUTION_HEADER, HEADERS
+from app.web.access import SAFE, cookie_name, is_https
+from app.web.headers import CAUTION_HEADER, HEADERS, HTTPS_HEADERS
 from app.web.problems import REFUSED, refusal
 
 HOSTS = frozenset({"127.0.0.1", "localhost", "[::1]"})
@@ -22,18 +23,20 @@ def host_name(host: str) -> str:
     return host.rsplit(":", 1)[0] if not host.endswith("]") else host
 
 
-def is_foreign(headers: Headers) -> bool:
-    """Whether a browser says that another site sent this request.
+def is_foreign(headers: Headers, host: str, cookie: str) -> bool:
+    """Whether another site sent this request, or may have.
 
-    A browser sends Sec-Fetch-Site or Origin with every POST; a program that sends neither carries
-    no cookie of anybody else's either.
+    A browser sends Sec-Fetch-Site or Origin with every POST. What sends neither is no browser of
+    today: it is let through only without the cookie of a sign-in. `host` is that of the pages.
     """
     site = headers.get("sec-fetch-site")
     if site is not None:
         return site not in ("same-origin", "none")
     origin = headers.get("origin")
     try:
-        return origin is not None and urlsplit(origin).netloc != headers.get("host")
+        if origin is None:
+            return cookie in cookie_parser(headers.get("cookie", ""))
+        return urlsplit(origin).netloc not in (headers.get("host"), host)
     except ValueError:
         return True
 
@@ -72,8 +75,12 @@ def announced(headers: Headers) -> int:
 class Safety:
     """Refuses a foreign host, another site's POST and too large a body; adds the safe headers."""
 
-    def __init__(self, app: ASGIApp) -> None:
+    def __init__(self, app: ASGIApp, base_url: str) -> None:
         self.app = app
+        self.host = urlsplit(base_url).netloc
+        self.hosts = HOSTS | {host_name(self.host)}
+        self.cookie = cookie_name(base_url)
+        self.headers = {**HEADERS, **(HTTPS_HEADERS if is_https(base_url) else {})}
 
     async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
         """ASGI."""
@@ -84,7 +91,7 @@ class Safety:
         async def send_safely(message: Message) -> None:
             if message["type"] == "http.response.start":
                 headers = MutableHeaders(scope=message)
-                for name, value in HEADERS.items():
+                for name, value in self.headers.items():
                     headers.setdefault(name, value)
                 headers.setdefault("Cache-Control", "no-store")
                 if scope["path"].startswith("/api/"):
@@ -92,10 +99,10 @@ class Safety:
             await send(message)
 
         headers = Headers(scope=scope)
-        if host_name(headers.get("host", "")) not in HOSTS:
+        if host_name(headers.get("host", "")) not in self.hosts:
             answer = refusal(scope, 421, "host", headers.get("host", ""))
             await answer(scope, receive, send_safely)
-        elif scope["method"] not in SAFE and is_foreign(headers):
+        elif scope["method"] not in SAFE and is_foreign(headers, self.host, self.cookie):
             answer = refusal(scope, 403, "origin", headers.get("origin") or "another site")
             await answer(scope, receive, send_safely)
         elif announced(headers) > (most := most_bytes(scope)):

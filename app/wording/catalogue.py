@@ -207,6 +207,7 @@ PAGES: dict[str, Words | Counted] = {
     "farm": Words("Farm", "Finca"),
     "fields": Words("Fields", "Parcelas"),
     "stations": Words("Stations", "Estaciones"),
+    "people": Words("People", "Personas"),
     "methods": Words("Methods", "Métodos"),
     "skip": Words("To the page’s own part", "Ir al contenido de la página"),
     "caution_label": Words("Caution", "Advertencia"),
@@ -321,10 +322,28 @@ ANSWERS: dict[str, Words | Counted] = {
     ),
 }
 
+PEOPLE: dict[str, Words | Counted] = {
+    "invite_subject": Words("Rillbook: choose your password", "Rillbook: elija su contraseña"),
+    "invite": Words(
+        "{who} has opened an account for you in Rillbook, where you see when and how much to "
+        "water. Choose your password here, within {days} days; the link works once:",
+        "{who} le abrió una cuenta en Rillbook, donde verá cuándo y cuánto regar. Elija aquí su "
+        "contraseña, dentro de {days} días; el enlace sirve una sola vez:",
+    ),
+    "reset_subject": Words("Rillbook: a new password", "Rillbook: una contraseña nueva"),
+    "reset": Words(
+        "A new password was asked for at this address. Choose it here, within {days} day; the link "
+        "works once. If it was not you, leave this letter; nothing changes:",
+        "Se pidió una contraseña nueva para esta dirección. Elíjala aquí, dentro de {days} día; el "
+        "enlace sirve una sola vez. Si no fue usted, no haga nada; nada cambia:",
+    ),
+}
+
 TABLES: dict[str, dict[str, Words | Counted]] = {
     "common": COMMON,
     "fields": FIELDS,
     "letter": LETTER,
+    "people": PEOPLE,
     "pages": PAGES,
     "answers": ANSWERS,
     "rungs": {str(number): words for number, words in enumerate(RUNGS)},

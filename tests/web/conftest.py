@@ -11,18 +11,32 @@ import httpx
 import pytest
 
 from app.main import create_app
-from app.settings import Settings
+from app.settings import Mail, Settings
 from app.storage.database import Database
 from tests.web.factory import TODAY, fill
 from tests.workflows import basin
+
+CHEAP_KIB = 64
+"""Passwords in tests are to be quick, not safe."""
 
 
 class Browser:
     """Sends requests to the app as a page of its own would, and keeps the cookie."""
 
-    def __init__(self, db: Database, demo: bool = False, today: date = TODAY) -> None:
+    def __init__(
+        self,
+        db: Database,
+        demo: bool = False,
+        today: date = TODAY,
+        signed_in: bool = False,
+        mail: Mail = Mail(folder=Path("/nowhere")),  # noqa: B008 (frozen)
+    ) -> None:
         self.db = db
-        self.app = create_app(Settings(database=db.url, today=today, demo=demo), db)
+        settings = Settings(
+            database=db.url, today=today, demo=demo, password_memory_kib=CHEAP_KIB, mail=mail
+        )
+        self.app = create_app(settings, db)
+        self.headers = {"Sec-Fetch-Site": "same-origin"} if signed_in else {}
         self.cookies = httpx.Cookies()
 
     def request(self, method: str, path: str, **more: Any) -> httpx.Response:
@@ -31,7 +45,10 @@ class Browser:
         async def send() -> httpx.Response:
             transport = httpx.ASGITransport(self.app, raise_app_exceptions=False)
             async with httpx.AsyncClient(
-                transport=transport, base_url="http://localhost", cookies=self.cookies
+                transport=transport,
+                base_url="http://localhost",
+                cookies=self.cookies,
+                headers=self.headers,
             ) as client:
                 answer = await client.request(method, path, **more)
                 self.cookies.update(client.cookies)

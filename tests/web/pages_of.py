@@ -21,6 +21,11 @@ PAGES = {
     "pages/letter.html": ["/letters/1", "/letters/3"],
     "pages/recipients.html": ["/recipients"],
     "pages/farm.html": ["/farm/hollin", "/farm/odd?language=es&units=us", "/farm/tern"],
+    "pages/tokens.html": ["/stations/north/tokens"],
+    "pages/people.html": ["/people"],
+    "pages/audit.html": ["/audit"],
+    "pages/sign_in.html": ["/sign-in?to=/stations"],
+    "pages/forgot.html": ["/forgot"],
     "pages/methods.html": ["/methods"],
     "error.html": ["/nowhere", "/fields/nobody", "/intake/77", f"/stations/lane/days/{TODAY}"],
 }

@@ -45,7 +45,7 @@ def test_every_page_is_whole_safe_and_carries_the_caution(
     text = answer.text
     language = "es" if '<html lang="es">' in text else "en"
     assert reader(language, "metric").say("common", "caution_title") in text
-    assert "There are no accounts yet" in text
+    assert "No admin can sign in yet" in text
     page = Reader(text)
     assert len(page.of("h1")) == 1
     assert not [tag for tag in page.of("script") if "src" not in tag]
@@ -66,6 +66,7 @@ def test_every_template_of_a_page_is_rendered_here() -> None:
     elsewhere = {"pages/enter.html", "pages/intake_file.html", "pages/intake_pushes.html"}
     # test_letters
     elsewhere |= {"pages/answer.html", "pages/answer_broken.html", "pages/stop.html"}
+    elsewhere |= {"pages/me.html", "pages/person.html", "pages/link.html"}  # test_people
     assert pages - parts - elsewhere == set(PAGES)
 
 

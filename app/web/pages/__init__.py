@@ -9,17 +9,24 @@ from app.web.pages import (
     fields,
     intake,
     letters,
+    me,
     methods,
+    people,
     recipients,
     rounds,
     seen,
+    sign_in,
     station_words,
     stations,
+    tokens,
 )
 
 PARTS = tuple(
     part.router
     for part in (
+        sign_in,
+        me,
+        people,
         enter,
         farm,
         rounds,
@@ -30,6 +37,7 @@ PARTS = tuple(
         seen,
         stations,
         station_words,
+        tokens,
         intake,
         methods,
     )

@@ -50,11 +50,13 @@ NOTHING_TYPED = dict.fromkeys(
 
 
 def own_stations(db: Database, viewer: Viewer, today: date) -> list[store.StationRow]:
-    """The stations a viewer may see: every one, or those that feed the grower's farm."""
+    """The stations a viewer may see: every one, those that feed their farms, a logger's own."""
     with db.read() as session:
         stations = store.stations(session)
         if viewer.farms is None:
             return stations
+        if viewer.station is not None:
+            return [station for station in stations if station.key == viewer.station]
         fed = {row.station_id for row in store.sources(session, today, viewer.farms)}
     return [station for station in stations if station.id in fed]
 
