@@ -16,7 +16,7 @@ from app.book import read_book
 from app.intake import Mapping, answer
 from app.main import create_app
 from app.resources import resource
-from app.settings import Settings
+from app.settings import Mail, Settings
 from app.storage.database import Database
 from app.workflows import take_in
 from app.workflows.bring_up_to_date import bring_up_to_date
@@ -35,7 +35,8 @@ def run_demo(port: int, serve: bool) -> None:
     folder = Path(tempfile.mkdtemp(prefix="rillbook-demo-"))
     try:
         db = Database(f"sqlite:///{folder / 'demo.sqlite'}")
-        settings = Settings(database=db.url, today=TODAY, demo=True)
+        mail = Mail(folder=folder / "letters", base_url=f"http://127.0.0.1:{port}")
+        settings = Settings(database=db.url, today=TODAY, demo=True, mail=mail)
         fill(db)
         if serve:
             base = f"http://127.0.0.1:{port}"
