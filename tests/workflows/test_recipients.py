@@ -45,7 +45,7 @@ def test_the_book_brings_recipients_and_the_page_keeps_its_changes(db: Database)
     with db.write() as session:
         load_book(session, book(recipients=[{**ANA, "hour": 5}]), "admin")
     with db.read() as session:
-        assert store.recipients(session, "reed")[0].hour == 5
+        assert store.recipients(session, ("reed",))[0].hour == 5
         assert store.farm_offsets(session) == {found.farm_id: -7}
 
 
