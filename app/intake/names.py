@@ -40,7 +40,7 @@ _LEAVE_OUT = (
 
 _SW = r"shortwave|short wave|sw|solar|onda corta|k|rs|rg|sun|sol|kurz"
 _LW = r"longwave|long wave|lw|infrared|ir|onda larga|l|thermal|terrestrial"
-_DOWN = r"in|down|dn|d|incoming|incident\w*|entrante|descendente|i|from sky"
+_DOWN = r"in|down|dn|d|incoming|incident\w*|entrante|descendente|atmosfer\w*|i|from sky"
 _UP = r"out|up|u|outgoing|reflect\w*|reflej\w*|saliente|ascendente|r|o|emitted"
 
 # Taken before anything is left out: their words are also those of columns nobody should take.
@@ -53,11 +53,11 @@ _HEAT_FLUXES: tuple[tuple[str, str], ...] = (
 
 # In order: the first that matches, and whose unit (if any is written) measures it, is taken.
 _RULES: tuple[tuple[str, str], ...] = (
-    ("wet_bulb", r"wet ?bulb|twb|t wet|bulbo humedo|termometro humedo"),
-    ("dew_point", r"dew ?point|dew|dewpt|rocio|td|tdew|dewp|tdp|dp"),
-    ("vapour_pressure_deficit", r"vpd|deficit|saturation deficit"),
+    ("wet_bulb", r"wet ?bulb|twb|t ?wet|tbh|bulbo humedo|termometro humedo"),
+    ("dew_point", r"dew ?point|dew|dewpt|rocio|td|tdew|dewp|tdp|dpt?"),
+    ("vapour_pressure_deficit", r"vpd|dpv|deficit|saturation deficit"),
     ("vapour_pressure", r"vapou?r|vapor|ea|vp|avp|e a|hpa vapor"),
-    ("net_radiation", r"net|neta|neto|rn|rnet|netrad|netto|nr|q star"),
+    ("net_radiation", r"net|neta|neto|rn|rnet|rneta|netrad|netto|nr|q star"),
     ("longwave_up", rf"(?:{_LW}) (?:\w+ )?(?:{_UP})|lwout|lwup|lwu|rlu|lup|lout|ulr"
      rf"|(?:{_UP}) (?:\w+ )?(?:{_LW})"),
     ("longwave_down", rf"(?:{_LW}) (?:\w+ )?(?:{_DOWN})|lwin|lwdn|lwd|lwdown|rld|ldown|lin|dlr"
@@ -65,7 +65,7 @@ _RULES: tuple[tuple[str, str], ...] = (
     ("shortwave_up", rf"(?:{_SW}) (?:\w+ )?(?:{_UP})|swout|swup|swu|rsu|kup|kout|usr|reflected"
      rf"|(?:{_UP}) (?:\w+ )?(?:{_SW})|reflejada"),
     ("sunshine_hours", r"sunshine|sun(?:shine)? (?:hours?|duration)|insolacion|heliofania|brillo"
-     r"|horas (?:de )?sol|bright sun\w*|sunhours"),
+     r"|sun ?dur|horas (?:de )?sol|bright sun\w*|sunhours"),
     ("shortwave_down", rf"(?:{_SW}) (?:\w+ )?(?:{_DOWN})|swin|swdn|swd|swdown|rsd|kdown|kin|dsr|ghi"
      r"|global|solar|srad|solrad|slr\w*|pyranometer|piranometro|shortwave|short wave|rs|rg|sw|dswr"
      rf"|(?:{_DOWN}) (?:\w+ )?(?:{_SW})|insolation|radiation|radiacion|rad|radn|irradian\w*"),
@@ -74,7 +74,7 @@ _RULES: tuple[tuple[str, str], ...] = (
     ("wind_speed", r"wind|windspeed|viento|ws|wspd|u|uz|windrun|anemom\w*|vel viento|ff|wnd|vv"),
     ("pressure", r"pressure|presion|press|baro\w*|bp|patm|atm|pres|p|qfe|pa"),
     ("air_temperature", r"temp|temperature|temperatura|tair|airt|ta|t|tavg|tmean|tmed|airtemp|dry"
-     r"|drybulb|aire?|atmp|tt"),
+     r"|airt[cf]|drybulb|aire?|atmp|tt"),
 )  # fmt: skip
 _LETTERS = {  # one-letter names stand only with a unit that fits, or alone
     "rain": {"p", "pp"},
@@ -184,7 +184,7 @@ def _quantity(words: list[str], unit: str | None) -> tuple[str | None, str]:
         word = found.group().strip()
         if word in _LETTERS.get(quantity, ()) and unit is None:
             continue
-        if kind in ("max", "min"):
+        if kind in ("max", "min") and unit != kind:  # the minute is a unit too
             if quantity not in _WITH_EXTREMES:
                 return None, f"left out: only the mean {QUANTITIES[quantity].term} is used"
             quantity = f"{quantity}_{kind}"

@@ -147,6 +147,7 @@ class ReceivedRow(NamedTuple):
     """A line of the list of files: one file, or the pushes of one station day in one state.
 
     `id`, `file_name`, `who` and `at` are those of the newest; `rows` and days of all.
+    `message`: what is wrong with the file as a whole, or "".
     """
 
     id: int
@@ -160,6 +161,7 @@ class ReceivedRow(NamedTuple):
     rows: int
     first_day: date | None
     last_day: date | None
+    message: str
 
 
 def received(
@@ -196,9 +198,13 @@ def received(
             lines.c.rows,
             Intake.first_day,
             lines.c.last_day,
+            Intake.summary,
         )
         .join(lines, lines.c.id == Intake.id)
         .join(Station, Station.id == Intake.station_id)
         .order_by(Intake.id.desc())
     )
-    return [ReceivedRow._make(row) for row in session.execute(statement)]
+    return [
+        ReceivedRow._make((*row[:-1], row[-1].get("message", "")))
+        for row in session.execute(statement)
+    ]

@@ -65,6 +65,14 @@ SAYS: dict[str, tuple[str | None, str | None]] = {
     "p_hpa": ("pressure", "hPa"),
     "P [kPa]": ("pressure", "kPa"),
     "Barometric pressure inHg": ("pressure", "inHg"),
+    "AirTC_Avg": ("air_temperature", None),
+    "AirTF (deg F)": ("air_temperature", "degF"),
+    "DPT (C)": ("dew_point", "degC"),
+    "TBH (°C)": ("wet_bulb", "degC"),
+    "DPV (kPa)": ("vapour_pressure_deficit", "kPa"),
+    "Rneta (W/m2)": ("net_radiation", "W/m2"),
+    "Onda larga atmosférica (W/m2)": ("longwave_down", "W/m2"),
+    "SunDur (h)": ("sunshine_hours", "h"),
     "sunshine (min)": ("sunshine_hours", "min"),
     "Insolación (h)": ("sunshine_hours", "h"),
     # not to be taken
@@ -111,3 +119,8 @@ def test_an_unknown_unit_is_kept_as_written() -> None:
 )  # fmt: skip
 def test_height_in_the_name(name: str, height: float | None) -> None:
     assert read_name(name).height_m == height
+
+
+def test_the_minute_is_a_unit_before_it_is_an_extreme() -> None:
+    assert read_name("Sunshine_min", "min").quantity == "sunshine_hours"
+    assert read_name("Tmin", "").quantity == "air_temperature_min"

@@ -117,6 +117,7 @@ def test_what_is_no_table_is_kept_with_its_message(live: Browser) -> None:
         assert "This file cannot be taken in as it is." in text
         assert "Take it in</button>" not in text
         assert live.post(f"{page}/apply").status_code == 422
+    assert live.get("/intake").text.count("<td>cannot be read</td>") == 4
 
 
 def test_a_file_of_a_wrong_year_is_taken_only_if_said_so(live: Browser) -> None:
