@@ -7,7 +7,7 @@ import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import asdict
-from datetime import date
+from datetime import date, datetime
 from pathlib import Path
 from typing import Annotated, Any, NoReturn
 
@@ -128,13 +128,15 @@ def serve(
     """Serve the pages; beyond this machine only once an admin can sign in."""
     import uvicorn
 
+    from app.jobs.posting import posting
     from app.main import create_app
 
     _must_be_free(port, host)
     with _database() as (db, settings, _):
         _may_listen(db, settings, host)
         print(f"Rillbook answers on http://{host}:{port}.")
-        uvicorn.run(create_app(settings, db), host=host, port=port, log_level="warning")
+        with posting(db, settings):
+            uvicorn.run(create_app(settings, db), host=host, port=port, log_level="warning")
 
 
 def _may_listen(db: Any, settings: Settings, host: str) -> None:
@@ -498,6 +500,63 @@ def _up_to_date(on: str | None, as_json: bool) -> None:
             "one before it."
         )
     _say({"on": today, **asdict(done), "standing": counted}, as_json, text)
+
+
+@app.command()
+def letters(
+    on: On = None,
+    preview: Annotated[bool, typer.Option("--preview", help="Print what is due.")] = False,
+    send: Annotated[bool, typer.Option("--send", help="Send what is released and due.")] = False,
+    release: Annotated[
+        bool, typer.Option("--release", help="With --send: release what is due first.")
+    ] = False,
+    as_json: AsJson = False,
+) -> None:
+    """Look at the letters that are due, through the end of --on where given, or send them."""
+    from app.workflows.day_it_is import end_of_day, moment_it_is
+
+    if preview == send or (release and not send):
+        raise InputError("say either --preview or --send; --release goes with --send")
+    with _database(on) as (db, settings, today):
+        now = moment_it_is(db, settings) if on is None else end_of_day(db, today)
+        if preview:
+            _print_letters(db, settings, now, today, as_json)
+        else:
+            _send_letters(db, settings, now, today, release, as_json)
+
+
+def _print_letters(db: Any, settings: Settings, now: datetime, today: date, as_json: bool) -> None:
+    from app.workflows.print_letters import letters_due
+
+    found = list(letters_due(db, settings, now, today))
+    text = "\n".join(
+        f"{one.farm}, to {one.to}: {one.state}, due {one.due:%Y-%m-%d %H:%M} UTC\n"
+        f"{one.subject or 'No advice has been worked out to write from.'}\n\n{one.text}\n"
+        for one in found
+    )
+    _say({"letters": [asdict(one) for one in found]}, as_json, text or "No letter is due.")
+
+
+def _send_letters(
+    db: Any, settings: Settings, now: datetime, today: date, release: bool, as_json: bool
+) -> None:
+    from app.workflows.post_letters import post, still_waiting
+    from app.workflows.print_letters import release_due
+
+    if release:
+        release_due(db, settings, WHO, now, today)
+    posted = post(db, settings, lambda: now, lambda: today)
+    waiting = still_waiting(db, now)
+    text = f"{posted.sent} sent, {posted.put_off} put off, {posted.refused} refused, "
+    text += f"{posted.unsure} unsure. "
+    if not settings.mail.host:
+        text += f"No mail server is set: written to {settings.mail.folder.absolute()}. "
+    if waiting:
+        text += "Due and not sent: " + ", ".join(f"{n} {state}" for state, n in waiting.items())
+        text += "; see the Letters page, or --release."
+    _say({**asdict(posted), "waiting": waiting}, as_json, text.strip())
+    if posted.put_off or posted.refused or posted.unsure:
+        sys.exit(1)
 
 
 @export.command("ledger")

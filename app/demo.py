@@ -14,15 +14,23 @@ from rich.progress import BarColumn, Progress, TextColumn
 
 from app.book import read_book
 from app.intake import Mapping, answer
+from app.jobs.posting import one_round, posting
 from app.main import create_app
 from app.resources import resource
 from app.settings import Mail, Settings
 from app.storage.database import Database
+from app.storage.letters import letters
 from app.workflows import take_in
 from app.workflows.bring_up_to_date import bring_up_to_date
+from app.workflows.day_it_is import moment_it_is
+from app.workflows.draft_letters import see_to_drafts
 from app.workflows.load_book import load_book
+from app.workflows.release_letters import hold, set_note
 
 WHO = "demo"
+NOTE = (
+    "Long Piece comes first: start the pivot tonight and keep it going. I will look in on Friday."
+)
 TODAY = date(2026, 7, 14)
 """The morning the demo basin is shown on."""
 
@@ -35,16 +43,19 @@ def run_demo(port: int, serve: bool) -> None:
     folder = Path(tempfile.mkdtemp(prefix="rillbook-demo-"))
     try:
         db = Database(f"sqlite:///{folder / 'demo.sqlite'}")
-        mail = Mail(folder=folder / "letters", base_url=f"http://127.0.0.1:{port}")
+        base = f"http://127.0.0.1:{port}"
+        mail = Mail(folder=folder / "letters", base_url=base)
         settings = Settings(database=db.url, today=TODAY, demo=True, mail=mail)
         fill(db)
+        letters_of_the_week(db, settings)
         if serve:
-            base = f"http://127.0.0.1:{port}"
             print(f"Rillbook answers on {base} with the demo basin, as of {TODAY}. Ways in:")
             for role in ("advisor", "grower", "admin"):
                 print(f"  as {role:8} {base}/enter/{role}")
             print("Stop with Ctrl-C; nothing is kept.", flush=True)
-            uvicorn.run(create_app(settings, db), host="127.0.0.1", port=port, log_level="warning")
+            with posting(db, settings):
+                app = create_app(settings, db)
+                uvicorn.run(app, host="127.0.0.1", port=port, log_level="warning")
         else:
             print(f"The demo basin fills, as of {TODAY}; nothing is kept.")
         db.close()
@@ -75,6 +86,19 @@ def fill(db: Database, today: date = TODAY) -> None:
         bar.update(task, description="Ledgers and the morning's advice")
         bring_up_to_date(db, today)
         bar.advance(task)
+
+
+def letters_of_the_week(db: Database, settings: Settings) -> None:
+    """A note in one farm's letters, one letter held, and those sent that leave by themselves; the
+    rest wait for the advisor."""
+    see_to_drafts(db, settings.mail, moment_it_is(db, settings))
+    with db.write() as session:
+        for row in letters(session):
+            if row.farm.key == "hollin" and row.recipient.language == "en":
+                set_note(session, row.letter.id, NOTE, whole_farm=False)
+            if row.farm.key == "orchard-road" and row.letter.due < moment_it_is(db, settings):
+                hold(session, row.letter.id, "the grower is away until Friday")
+    one_round(db, settings)
 
 
 def take_file(db: Database, basin: Path, entry: dict[str, object]) -> None:

@@ -9,6 +9,7 @@ import socket
 import subprocess
 import sys
 import tempfile
+from copy import deepcopy
 from datetime import timedelta
 from pathlib import Path
 from typing import Any
@@ -33,6 +34,7 @@ class Shell:
             **os.environ,
             "RILLBOOK_DATABASE": f"sqlite:///{self.folder / 'book.sqlite'}",
             "RILLBOOK_TODAY": str(basin.TODAY),
+            "RILLBOOK_MAIL_FOLDER": str(self.folder / "mail"),
             "PYTHONWARNINGS": "error",
         }
         done = subprocess.run(
@@ -87,6 +89,32 @@ def test_the_main_job_by_command(shell: Shell) -> None:
         ("Two Halves", "Lower"),
     ]
     assert "block" not in ledger[0]
+
+
+def test_letters_are_looked_at_and_sent_to_a_folder(shell: Shell) -> None:
+    reader = {"name": "Ana Reed", "address": "ana@example.org", "language": "es"}
+    reader |= {"weekday": "wednesday", "hour": 6}
+    book = deepcopy(basin.BOOK)
+    book["farms"][0]["recipients"] = [reader]
+    (shell.folder / "book.json").write_text(json.dumps(book))
+    shell.run("load", str(shell.folder / "book.json"))
+    for station in ("bench", "meadow"):
+        shell.run("intake", station, str(shell.folder / f"{station}.csv"))
+    shell.run("advise")
+    on = ("letters", "--on", str(basin.TODAY))
+    seen = shell.run(*on, "--preview").stdout
+    assert "Reed Farm, to Ana Reed <ana@example.org>: draft" in seen
+    assert "Semana del 1 de julio" in seen
+    assert "\ufffd" not in seen
+    waits = shell.run(*on, "--send").stdout
+    assert "0 sent" in waits
+    assert "1 draft; see the Letters page, or --release" in waits
+    assert shell.json(*on, "--send", "--release")["sent"] == 1
+    assert shell.json(*on, "--send", "--release")["sent"] == 0
+    (file,) = (shell.folder / "mail").iterdir()
+    assert b"Content-Language: es" in file.read_bytes()
+    assert "say either" in shell.run(*on, code=1).stderr
+    assert "No letter is due" in shell.run(*on, "--preview").stdout
 
 
 def rows(text: str) -> list[dict[str, str]]:

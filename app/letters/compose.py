@@ -84,7 +84,8 @@ def body_html(worded: View, chart: str = f"cid:{CHART}") -> str:
 def body_text(worded: View) -> str:
     """The plain text body."""
     text = _environment().get_template("weekly/body.txt").render(letter=worded)
-    return re.sub(r"\n{3,}", "\n\n", text).strip() + "\n"
+    plain = text.replace("\u00a0", " ").replace("\u202f", " ")  # text clients break them
+    return re.sub(r"\n{3,}", "\n\n", plain).strip() + "\n"
 
 
 def _head(letter: EmailMessage, worded: View, envelope: Envelope, mail: Mail) -> None:
@@ -135,7 +136,7 @@ def _wrap(text: str, indent: int = 0) -> str:
     pad = " " * indent
     return "\n".join(
         textwrap.fill(
-            line.replace("\u00a0", " "),
+            line,
             COLUMNS,
             initial_indent=pad,
             subsequent_indent=pad,

@@ -9,7 +9,7 @@ from sqlalchemy import and_, func, or_, select, update
 from sqlalchemy.orm import Session
 
 from app.storage.scope import Farms, of_farms
-from app.storage.tables import Event, Farm
+from app.storage.tables import Advice, Event, Farm
 from app.storage.tables_letters import Letter, LetterAnswer, Recipient, SigningKey
 
 OPEN = ("draft", "held")
@@ -73,6 +73,11 @@ def letter_keys(session: Session, weeks: Sequence[date]) -> dict[tuple[int, date
         (row.recipient_id, row.week, row.revision): row
         for row in session.scalars(select(Letter).where(Letter.week.in_(weeks)))
     }
+
+
+def newest_advice(session: Session) -> int:
+    """The number of the newest advice, 0 for none."""
+    return session.scalar(select(func.max(Advice.number))) or 0
 
 
 # On their way

@@ -1,6 +1,6 @@
 """Which day it is: RILLBOOK_TODAY when set, else the date at the stations."""
 
-from datetime import UTC, date, datetime, timedelta
+from datetime import UTC, date, datetime, time, timedelta
 
 from sqlalchemy import select
 
@@ -13,9 +13,7 @@ def day_it_is(db: Database, settings: Settings) -> date:
     """The day of the morning's rounds: the latest date at any station, by its fixed offset."""
     if settings.today is not None:
         return settings.today
-    with db.read() as session:
-        offsets = [details["utc_offset_h"] for details in session.scalars(select(Station.details))]
-    return (datetime.now(UTC) + timedelta(hours=max(offsets, default=0.0))).date()
+    return (datetime.now(UTC) + _latest_offset(db)).date()
 
 
 def moment_it_is(db: Database, settings: Settings) -> datetime:
@@ -23,7 +21,17 @@ def moment_it_is(db: Database, settings: Settings) -> datetime:
     now = datetime.now(UTC)
     if settings.today is None:
         return now
+    there = (now + _latest_offset(db)).date()
+    return now + (settings.today - there)
+
+
+def end_of_day(db: Database, day: date) -> datetime:
+    """The instant a day ends at the stations, UTC."""
+    midnight = datetime.combine(day + timedelta(days=1), time(), UTC)
+    return midnight - _latest_offset(db)
+
+
+def _latest_offset(db: Database) -> timedelta:
     with db.read() as session:
         offsets = [details["utc_offset_h"] for details in session.scalars(select(Station.details))]
-    there = (now + timedelta(hours=max(offsets, default=0.0))).date()
-    return now + (settings.today - there)
+    return timedelta(hours=max(offsets, default=0.0))

@@ -51,13 +51,17 @@ class Posted:
 
 
 def post(
-    db: Database, settings: Settings, clock: Callable[[], datetime], today: Callable[[], date]
+    db: Database,
+    settings: Settings,
+    clock: Callable[[], datetime],
+    today: Callable[[], date],
+    correct: bool = True,
 ) -> Posted:
-    """Draft, release what goes by itself, and send everything that is due. Safe to run at any
-    time, by any number of workers."""
+    """Draft, correct, release what goes by itself, and send everything that is due. Safe to run at
+    any time, by any number of workers."""
     with db.write() as session:
         _, doubted = store.recover(session, clock())
-        drafted, released, corrections = ready(session, settings, clock(), today())
+        drafted, released, corrections = ready(session, settings, clock(), today(), correct)
     counts = {"sent": 0, "put_off": 0, "refused": 0, "unsure": doubted}
     while (outcome := post_one(db, settings, clock)) is not None:
         counts[outcome.removesuffix(", nobody there")] += 1
@@ -66,11 +70,13 @@ def post(
     return Posted(drafted, released, corrections, **counts)
 
 
-def ready(session: Session, settings: Settings, now: datetime, today: date) -> tuple[int, int, int]:
+def ready(
+    session: Session, settings: Settings, now: datetime, today: date, correct: bool
+) -> tuple[int, int, int]:
     """Drafts that were missing, letters of automatic farms released now that they are due, and
     corrections; how many of each."""
     drafted = draft_letters(session, settings.mail, now)
-    corrections = correct_letters(session, settings, now, today)
+    corrections = correct_letters(session, settings, now, today) if correct else 0
     due = [
         row
         for row in store.letters(session, states=("draft",))
@@ -133,6 +139,12 @@ def _failed(
         store.settle(session, letter.id, claim, words=words, tries=tries, **values)
     outcome = {"released": "put_off"}.get(str(values["state"]), str(values["state"]))
     return f"{outcome}, nobody there" if isinstance(error, deliver.UnreachableError) else outcome
+
+
+def still_waiting(db: Database, now: datetime) -> dict[str, int]:
+    """How many letters that are due are not sent, by state."""
+    with db.read() as session:
+        return store.waiting(session, now)
 
 
 def pause(tries: int) -> timedelta:

@@ -4,11 +4,14 @@ from copy import deepcopy
 from datetime import UTC, date, datetime, timedelta
 from typing import Any
 
+from sqlalchemy import create_engine, text
+
 from app.book import Book
 from app.settings import Mail, Settings
 from app.storage import letters as store
 from app.storage.database import Database
 from app.storage.letters import LetterRow
+from app.storage.tables import Base
 from app.workflows.draft_letters import draft_letters
 from app.workflows.letter_weeks import monday
 from app.workflows.load_book import load_book
@@ -87,6 +90,24 @@ def states(db: Database) -> dict[str, str]:
         f"{row.recipient.name.split()[0]}{row.letter.revision or ''}": row.letter.state
         for row in rows(db)
     }
+
+
+def copy_rows(source: str, target: str) -> None:
+    """Every row of one database into another, empty one."""
+    db = Database(target)
+    db.migrate()
+    reading = create_engine(source)
+    with reading.connect() as rows, db.engine.begin() as connection:
+        for table in Base.metadata.sorted_tables:
+            found = [row._asdict() for row in rows.execute(table.select())]
+            if found:
+                connection.execute(table.insert(), found)
+            if "id" in table.c and db.engine.dialect.name == "postgresql":
+                last = max((row["id"] for row in found), default=1)
+                sequence = f"pg_get_serial_sequence('\"{table.name}\"', 'id')"
+                connection.execute(text(f"SELECT setval({sequence}, {last})"))
+    reading.dispose()
+    db.close()
 
 
 HOUR = timedelta(hours=1)

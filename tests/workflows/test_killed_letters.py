@@ -17,13 +17,12 @@ from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
-from sqlalchemy import create_engine, text
 
 from app.settings import Mail
 from app.storage.database import Database
 from tests.letters.server import Post, serving
 from tests.workflows import letter_basin as world
-from tests.workflows.letter_basin import EVENING, HOUR, run, states
+from tests.workflows.letter_basin import EVENING, HOUR, copy_rows, run, states
 from tests.workflows.post_and_die import POINTS
 
 ROOT = Path(__file__).resolve().parents[2]
@@ -64,29 +63,9 @@ def one_letter(
         url = f"sqlite:///{shutil.copy(released, tmp_path / 'copy.sqlite')}"
     else:
         url = str(request.getfixturevalue("postgres_url"))
-        _copy(f"sqlite:///{released}", url)
+        copy_rows(f"sqlite:///{released}", url)
     db = Database(url)
     yield db
-    db.close()
-
-
-def _copy(source: str, target: str) -> None:
-    """Every row of one database into another, empty one."""
-    from app.storage.tables import Base
-
-    db = Database(target)
-    db.migrate()
-    reading = create_engine(source)
-    with reading.connect() as rows, db.engine.begin() as connection:
-        for table in Base.metadata.sorted_tables:
-            found = [row._asdict() for row in rows.execute(table.select())]
-            if found:
-                connection.execute(table.insert(), found)
-            if "id" in table.c:
-                last = max((row["id"] for row in found), default=1)
-                sequence = f"pg_get_serial_sequence('\"{table.name}\"', 'id')"
-                connection.execute(text(f"SELECT setval({sequence}, {last})"))
-    reading.dispose()
     db.close()
 
 

@@ -1,28 +1,45 @@
 """Letters through a real SMTP server: what it says decides, and never two."""
 
 import threading
+import time
 from collections.abc import Callable
+from dataclasses import replace
 from datetime import timedelta
 from email import policy
 from email.parser import BytesParser
 from pathlib import Path
 
 import pytest
+from icalendar import Calendar
 
+from app.jobs.posting import posting
 from app.settings import Mail, Settings
 from app.storage.database import Database
 from app.storage.tables_letters import Recipient
 from app.workflows import post_letters, release_letters
+from app.workflows.bring_up_to_date import bring_up_to_date
+from app.workflows.log_event import log_rain
 from app.workflows.once import EntryError
 from tests.letters.server import Post, free_port, serving
 from tests.workflows import letter_basin as world
 from tests.workflows.letter_basin import EVENING, HOUR, TODAY, rows, run, states
 
 
-@pytest.fixture
-def basin(db: Database) -> Database:
-    """The small basin with two recipients."""
+@pytest.fixture(scope="module")
+def filled(tmp_path_factory: pytest.TempPathFactory) -> str:
+    """A SQLite file of the small basin with two recipients."""
+    url = f"sqlite:///{tmp_path_factory.mktemp('filled') / 'basin.sqlite'}"
+    db = Database(url)
+    db.migrate()
     world.fill(db)
+    db.close()
+    return url
+
+
+@pytest.fixture
+def basin(db: Database, filled: str) -> Database:
+    """The small basin with two recipients, on each database."""
+    world.copy_rows(filled, db.url)
     return db
 
 
@@ -227,3 +244,54 @@ def test_a_worker_thought_gone_cannot_send_what_another_has(
     assert dawdled
     assert len(post.ids) == len(set(post.ids)) == 2
     assert set(states(basin).values()) == {"sent"}
+
+
+def test_one_numbered_correction_when_the_advice_moves(db: Database) -> None:
+    """A heavy rain of the farm's own gauge the day after the letter puts the week's water off."""
+    world.fill(db, letters="automatic", recipients=[world.BEN])
+    post = Post()
+    tomorrow, later = TODAY + timedelta(days=1), EVENING + 24 * HOUR
+    with serving(post) as mail:
+        with_ = world.settings(db, mail)
+        assert run(db, with_).sent == 1
+        assert run(db, with_, EVENING + HOUR).corrections == 0
+        for field in ("long-piece", "two-halves"):
+            log_rain(db, field, TODAY, 60.0, "advisor", f"rain-{field}", TODAY)
+        bring_up_to_date(db, tomorrow)
+        done = run(db, with_, later, tomorrow)
+        assert (done.corrections, done.sent) == (1, 1)
+        bring_up_to_date(db, tomorrow + timedelta(days=1))
+        for day in (1, 2, 3):
+            again = run(db, with_, later + day * 24 * HOUR, tomorrow + timedelta(days=day))
+            assert again.corrections == 0  # at most one a week
+    first, second = (BytesParser(policy=policy.SMTP).parsebytes(e.content) for e in post.taken[:2])
+    assert second["Subject"].startswith("Correction 1, week of 2 July")
+    assert first["Message-ID"] != second["Message-ID"]
+    body = second.get_body(("plain",))
+    assert body is not None
+    assert "This is correction 1" in body.get_content()
+    days = [
+        {
+            str(event["uid"]): event
+            for event in Calendar.from_ical(part.get_content()).walk("VEVENT")
+        }
+        for letter in (first, second)
+        for part in letter.walk()
+        if part.get_content_type() == "text/calendar"
+    ]
+    same = set(days[0]) & set(days[1])
+    assert same
+    assert {days[1][uid]["sequence"] for uid in same} == {1}
+
+
+def test_letters_leave_by_themselves_while_the_server_runs(basin: Database) -> None:
+    post = Post()
+    with serving(post) as mail:
+        with_ = replace(world.settings(basin, mail), today=TODAY + timedelta(days=1))
+        world.release_all(basin, with_)
+        with posting(basin, with_, every_s=0.05):
+            for _ in range(200):
+                if len(post.ids) == 2:
+                    break
+                time.sleep(0.05)
+    assert len(post.ids) == len(set(post.ids)) == 2

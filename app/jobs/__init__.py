@@ -1,0 +1,1 @@
+"""What runs by itself while the pages are served."""
