@@ -1,9 +1,12 @@
 """Readings that loggers push, marks and the sensor log, over the API."""
 
+from datetime import date
 from typing import Any
 
 import pytest
+from sqlalchemy import update
 
+from app.storage.tables import StationDay
 from tests.web.conftest import Browser
 
 STATION = "/api/v1/stations/bench"
@@ -148,9 +151,32 @@ def test_marks_and_log_over_the_api(live: Browser) -> None:
     assert live.get(f"{STATION}/log").json() == []
 
 
-def test_days_have_rung_why_flags_and_both_net_radiations(live: Browser) -> None:
+def test_days_have_rungs_why_checks_with_figures_and_both_net_radiations(
+    live: Browser,
+) -> None:
+    with live.db.write() as session:
+        session.execute(
+            update(StationDay)
+            .where(StationDay.day == date(2026, 6, 30))
+            .values(flags="window_hours=4 wind_low=0.31 night_offset=-3.2")
+        )
     day = live.get(f"{STATION}/days").json()["days"][-1]
-    assert {"rung", "why_not", "flags", "rn", "rn_measured", "rn_modelled"} <= set(day)
+    assert (day["rung"], day["rung_name"]) == (5, "model from solar")
+    assert [item["rung"] for item in day["why_not"]] == [1, 2, 3, 4]
+    assert all(item["reason"] for item in day["why_not"])
+    assert day["humidity"] == {"number": 2, "name": "RHmax and RHmin"}
+    assert day["wind"] == {"number": 1, "name": "measured"}
+    assert [(item["check"], item["figure"]) for item in day["checks"]] == [
+        ("window_hours", 4.0),
+        ("wind_low", 0.31),
+        ("night_offset", -3.2),
+    ]
+    assert day["checks"][1]["says"] == "wind is below 0.5 m/s"
+    assert day["rn_measured"] is None
+    assert day["rn"] == day["rn_modelled"] > 0.0
+    assert 0.12 * day["rn"] == pytest.approx(day["rn_uncertainty"])
+    columns = {column.name for column in StationDay.__table__.columns}
+    assert columns - {"station_id", "humidity_rung", "wind_rung", "flags"} <= set(day)
 
 
 def test_one_row_and_rows_with_gaps_keep_the_stated_step(live: Browser) -> None:

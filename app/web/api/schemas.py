@@ -168,14 +168,6 @@ class StationOut(BaseModel):
     trouble: list[str]
 
 
-class StationDaysOut(BaseModel):
-    """Days of a station, every column."""
-
-    station: str
-    caution: str
-    days: list[dict[str, Any]]
-
-
 class IntakeOut(BaseModel):
     """An uploaded file."""
 

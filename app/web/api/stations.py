@@ -12,7 +12,8 @@ from app.storage import pages_field as store_field
 from app.storage import pages_station as store_station
 from app.storage.database import Database
 from app.web.access import AsViewer
-from app.web.api.schemas import StationDaysOut, StationOut
+from app.web.api.schemas import StationOut
+from app.web.api.station_day import StationDaysOut, day_out
 from app.web.balance_view import et_by_residual
 from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.pages.stations import own_station, own_stations
@@ -74,15 +75,7 @@ def days(
         station=key,
         caution=wording.CAUTION,
         days=[
-            {name: row[name] for name in row if name != "station_id"}
-            | {
-                "et_by_residual": None if np.isnan(et) else et,
-                "why_not_words": [
-                    {"rung": rung, "reason": reason}
-                    for rung, reason in wording.why_codes(row["why_not"])
-                ],
-                "flag_words": wording.flag_words(row["flags"]),
-            }
+            day_out(row, None if np.isnan(et) else et)
             for row, et in zip(rows, et_by_residual(rows).tolist(), strict=True)
         ],
     )
