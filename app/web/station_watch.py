@@ -83,13 +83,15 @@ def _said(day: Row) -> list[tuple[str, str]]:
     said = []
     for flag in day["flags"].split():
         name, _, figure = flag.partition("=")
-        said.append((wording.check_word(name), figure))
+        said.append((wording.check_word(name), figure.replace("-", wording.MINUS)))
     for line in day["notes"].splitlines():
         quantity, what, figure, reason = [*line.split(":", 3), "", "", ""][:4]
         named = wording.word(wording.QUANTITIES, quantity)
         told = wording.check_word(reason) if what in ("set_aside", "warned") and reason else ""
         done = f"{named} {wording.word(wording.NOTES, what)}" + (f": {told}" if told else "")
-        count = "" if figure in ("", "0", "0.0") else f"{figure} intervals"
+        count = ""
+        if figure not in ("", "0", "0.0"):
+            count = wording.counted(round(float(figure)), "interval", "intervals")
         said.append((done, count))
     return said
 
