@@ -105,10 +105,12 @@ def intakes(
     station: str | None = None,
     before: int | None = None,
     pushed_for: date | None = None,
+    own: frozenset[str] | None = None,
 ) -> list[IntakeRow]:
     """The last uploaded files, newest first; of one station, or numbered before one, if given.
 
-    With `pushed_for`, the pushes alone whose first row is of that day.
+    With `pushed_for`, the pushes alone whose first row is of that day; with `own`, of the stations
+    of these keys.
     """
     statement = (
         select(
@@ -131,6 +133,8 @@ def intakes(
     )
     if station is not None:
         statement = statement.where(Station.key == station)
+    if own is not None:
+        statement = statement.where(Station.key.in_(sorted(own)))
     if before is not None:
         statement = statement.where(Intake.id < before)
     if pushed_for is not None:
@@ -164,10 +168,21 @@ class ReceivedRow(NamedTuple):
     message: str
 
 
+def station_of(session: Session, intake: int) -> str | None:
+    """The key of the station a file is of."""
+    statement = select(Station.key).join(Intake, Intake.station_id == Station.id)
+    return session.scalar(statement.where(Intake.id == intake))
+
+
 def received(
-    session: Session, most: int, station: str | None = None, before: int | None = None
+    session: Session,
+    most: int,
+    station: str | None = None,
+    before: int | None = None,
+    own: frozenset[str] | None = None,
 ) -> list[ReceivedRow]:
-    """Files newest first, pushes gathered by station, first day and state; before a number."""
+    """Files newest first, pushes gathered by station, first day and state; before a number, and of
+    the stations of some keys, if given."""
     place = before or (session.scalar(select(func.max(Intake.id))) or 0) + 1
     alone = case((_PUSHED, 0), else_=Intake.id)
     newest = func.max(Intake.id)
@@ -182,8 +197,12 @@ def received(
         .group_by(Intake.station_id, Intake.state, Intake.first_day, alone)
         .having(newest < place)
     )
+    if station is not None or own is not None:
+        chosen = chosen.join(Station)
     if station is not None:
-        chosen = chosen.join(Station).where(Station.key == station)
+        chosen = chosen.where(Station.key == station)
+    if own is not None:
+        chosen = chosen.where(Station.key.in_(sorted(own)))
     lines = chosen.order_by(newest.desc()).limit(most).subquery()
     statement = (
         select(

@@ -26,7 +26,7 @@ SIGN_IN = "rillbook_sign_in"
 KEY = re.compile(r"[a-z0-9-]{1,80}")
 SAFE = frozenset({"GET", "HEAD", "OPTIONS"})
 
-ANYBODY: frozenset[str] = frozenset({"nobody", "advisor", "grower", "admin"})
+ANYBODY: frozenset[str] = frozenset({"nobody", "station", "advisor", "grower", "admin"})
 EVERY: frozenset[str] = frozenset({"advisor", "grower", "admin"})
 STAFF: frozenset[str] = frozenset({"advisor", "admin"})
 GROWER: frozenset[str] = frozenset({"grower"})
@@ -113,7 +113,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("POST", "/stop/{token}"): ANYBODY,
     ("GET", "/calendar/{token}.ics"): ANYBODY,
     ("GET", "/methods"): EVERY,
-    ("GET", "/api/v1/openapi.json"): EVERY,
+    ("GET", "/api/v1/openapi.json"): ANYBODY,
     ("GET", "/api/v1/rounds"): EVERY,
     ("GET", "/api/v1/fields"): EVERY,
     ("GET", "/api/v1/fields/{key}"): EVERY,

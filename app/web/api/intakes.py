@@ -3,7 +3,7 @@
 from dataclasses import asdict
 from typing import Annotated, Any
 
-from fastapi import APIRouter, File, Form, HTTPException, Query, Response, UploadFile
+from fastapi import APIRouter, Depends, File, Form, HTTPException, Query, Response, UploadFile
 
 from app.intake import IntakeError, Mapping
 from app.storage import pages_station as store_station
@@ -11,22 +11,26 @@ from app.storage.database import Database
 from app.web.access import AsViewer
 from app.web.api.schemas import AppliedOut, IntakeOut, PreviewOut
 from app.web.needs import AsDatabase, AsNumber, AsToday, Clean, without_nul
+from app.web.own_files import NO_STATION, AsOwnStations, stations_within_reach
 from app.web.problems import RefusedError
 from app.workflows import take_in
 from app.workflows.take_in import TakeInError
 
-router = APIRouter(prefix="/api/v1", tags=["intakes"])
+router = APIRouter(
+    prefix="/api/v1", tags=["intakes"], dependencies=[Depends(stations_within_reach)]
+)
 
 
 @router.get("/intakes")
 def intakes(
     db: AsDatabase,
+    own: AsOwnStations,
     station: Clean | None = None,
     before: Annotated[int | None, Query(ge=1, le=2**31 - 1)] = None,
 ) -> list[IntakeOut]:
     """The last 100 uploaded files, newest first; the next with `before` the last number got."""
     with db.read() as session:
-        rows = store_station.intakes(session, station=station, before=before)
+        rows = store_station.intakes(session, station=station, before=before, own=own)
     return [
         IntakeOut(
             id=row.id,
@@ -48,10 +52,13 @@ def upload(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
+    own: AsOwnStations,
     station: Annotated[Clean, Form(max_length=80)],
     file: Annotated[UploadFile, File()],
 ) -> PreviewOut:
     """Keep a file and preview it; nothing is taken in yet."""
+    if own is not None and station not in own:
+        raise RefusedError(NO_STATION, "station", station, "Name a station that feeds your fields.")
     try:
         name = without_nul(file.filename or "unnamed")
         number = take_in.receive(db, station, name, file.file, viewer.who, today=today)

@@ -3,7 +3,17 @@
 from datetime import date
 from typing import Annotated
 
-from fastapi import APIRouter, Form, HTTPException, Path, Query, Request, Response, UploadFile
+from fastapi import (
+    APIRouter,
+    Depends,
+    Form,
+    HTTPException,
+    Path,
+    Query,
+    Request,
+    Response,
+    UploadFile,
+)
 from fastapi.responses import RedirectResponse
 from starlette.concurrency import run_in_threadpool
 
@@ -15,11 +25,12 @@ from app.storage.database import Database
 from app.web import intake_view as view
 from app.web.access import AsViewer
 from app.web.needs import AsDatabase, AsNumber, AsToday, Clean, without_nul
+from app.web.own_files import NO_STATION, AsOwnStations, stations_within_reach
 from app.web.render import page
 from app.workflows import take_in
 from app.workflows.take_in import TakeInError
 
-router = APIRouter()
+router = APIRouter(dependencies=[Depends(stations_within_reach)])
 
 
 LINES = 50
@@ -30,19 +41,25 @@ PUSHES = 200
 def intakes(
     request: Request,
     db: AsDatabase,
+    own: AsOwnStations,
     station: Annotated[Clean, Query(max_length=80)] = "",
     before: Annotated[int | None, Query(ge=1, le=2**31 - 1)] = None,
 ) -> Response:
     """Upload a file; what was uploaded before."""
-    return _start(request, db, station, before=before)
+    return _start(request, db, own, station, before=before)
 
 
 def _start(
-    request: Request, db: Database, station: str = "", error: str = "", before: int | None = None
+    request: Request,
+    db: Database,
+    own: frozenset[str] | None,
+    station: str = "",
+    error: str = "",
+    before: int | None = None,
 ) -> Response:
     with db.read() as session:
-        stations = store.stations(session)
-        history = store_station.received(session, LINES + 1, before=before)
+        stations = [row for row in store.stations(session) if own is None or row.key in own]
+        history = store_station.received(session, LINES + 1, before=before, own=own)
     return page(
         request,
         "pages/intake.html",
@@ -87,17 +104,20 @@ def upload(
     db: AsDatabase,
     viewer: AsViewer,
     today: AsToday,
+    own: AsOwnStations,
     file: UploadFile | str = "",
     station: Annotated[Clean, Form(max_length=80)] = "",
 ) -> Response:
     """Keep a file and preview it; nothing is taken in yet."""
     if isinstance(file, str) or not file.filename:
-        return _start(request, db, station, "Choose a file first.")
+        return _start(request, db, own, station, "Choose a file first.")
+    if own is not None and station not in own:
+        return _start(request, db, own, station, NO_STATION)
     try:
         name = without_nul(file.filename)
         number = take_in.receive(db, station, name, file.file, viewer.who, today=today)
     except (TakeInError, IntakeError) as error:
-        return _start(request, db, station, str(error))
+        return _start(request, db, own, station, str(error))
     return RedirectResponse(f"/intake/{number}", status_code=303)
 
 
