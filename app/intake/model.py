@@ -100,7 +100,7 @@ class Mapping(_Strict):
     )
     missing: list[str]
     columns: list[ColumnMap]
-    signature: str = Field(description="fingerprint of the header")
+    signature: str = Field(max_length=500, description="fingerprint of the header")
 
     def column(self, position: int) -> ColumnMap | None:
         """The column at `position`, None where the mapping has none."""

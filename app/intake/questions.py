@@ -11,6 +11,8 @@ from app.science.quantities import QUANTITIES
 from app.units import UNITS, fits
 
 _DAY = 86400
+ENCODINGS = ("utf-8", "utf-8-sig", "utf-16-le", "utf-16-be", "cp1252", "latin-1", "iso-8859-15",
+             "cp1250", "cp1251", "cp850", "cp437", "mac-roman", "ascii")  # fmt: skip
 _LEAVE_OUT = "leave out"
 _STEPS = (60, 300, 600, 900, 1800, 3600, 10800, 86400)
 
@@ -54,50 +56,54 @@ def _answer_column(columns: list[dict[str, object]], position: str, key: str, va
 
 def check_mapping(mapping: Mapping) -> None:
     """IntakeError where a mapping contradicts itself, naming the column and the remedy."""
-    if mapping.delimiter not in DELIMITERS:
-        known = ", ".join(repr(name) for name in DELIMITERS)
-        raise IntakeError(f"The delimiter {mapping.delimiter!r} is not known; use one of {known}.")
-    try:
-        "".encode(mapping.encoding)
-    except LookupError as error:
-        raise IntakeError(
-            f"The encoding {mapping.encoding!r} is not known; use utf-8, utf-16-le or cp1252."
-        ) from error
-    if not mapping.time.columns:
-        raise IntakeError("The mapping names no column that says when.")
+    _check_frame(mapping)
     when = {column.position for column in mapping.time.columns}
     seen: dict[str, str] = {}
     for column in mapping.columns:
         if column.quantity is None:
             continue
-        if column.position in when or column.body_position in when:
-            raise IntakeError(
-                f"Column {column.name!r}: a column that says when cannot be read as "
-                f"{column.quantity} as well; leave it out."
-            )
-        if column.quantity not in QUANTITIES:
-            raise IntakeError(
-                f"Column {column.name!r}: {column.quantity!r} is no quantity known here; use one "
-                f"of {', '.join(QUANTITIES)}."
-            )
-        if column.quantity in seen:
-            raise IntakeError(
-                f"Columns {seen[column.quantity]!r} and {column.name!r} are both mapped to "
-                f"{column.quantity}; leave one of them out."
-            )
+        if wrong := _wrong(column, when, seen):
+            raise IntakeError(f"Column {column.name!r}: {wrong}")
         seen[column.quantity] = column.name
-        if column.unit is not None and (
-            column.unit not in UNITS or not fits(column.unit, column.quantity)
-        ):
-            raise IntakeError(
-                f"Column {column.name!r}: the unit {column.unit!r} does not measure "
-                f"{column.quantity}; choose another."
-            )
     if not seen:
         raise IntakeError(
             "No column is taken for a weather quantity; say of at least one what it means, and in "
             "which unit."
         )
+
+
+def _check_frame(mapping: Mapping) -> None:
+    """IntakeError where what holds for the whole file is not known."""
+    if mapping.delimiter not in DELIMITERS:
+        known = ", ".join(repr(name) for name in DELIMITERS)
+        raise IntakeError(f"The delimiter {mapping.delimiter!r} is not known; use one of {known}.")
+    if mapping.encoding.lower() not in ENCODINGS:
+        raise IntakeError(
+            f"The encoding {mapping.encoding[:40]!r} is not known; use one of "
+            f"{', '.join(ENCODINGS)}."
+        )
+    if mapping.time_zone not in ("station", "UTC"):
+        zone(mapping.time_zone)
+    if not mapping.time.columns:
+        raise IntakeError("The mapping names no column that says when.")
+
+
+def _wrong(column: ColumnMap, when: set[int], seen: dict[str, str]) -> str:
+    """What cannot be about a column that is taken, and the remedy; "" where nothing is wrong."""
+    quantity = str(column.quantity)
+    if column.position in when or column.body_position in when:
+        return f"a column that says when cannot be read as {quantity} as well; leave it out."
+    if quantity not in QUANTITIES:
+        return f"{quantity[:60]!r} is no quantity known here; use one of {', '.join(QUANTITIES)}."
+    if quantity in seen:
+        return f"it and {seen[quantity]!r} are both mapped to {quantity}; leave one of them out."
+    if column.unit is not None and (column.unit not in UNITS or not fits(column.unit, quantity)):
+        return f"the unit {column.unit[:60]!r} does not measure {quantity}; choose another."
+    if column.needs_body and not quantity.startswith("longwave_"):
+        return f"{quantity} takes no body temperature; it belongs to longwave alone."
+    if column.factor == 0.0:
+        return "its factor is 0, which makes every value the same; give another, or leave it out."
+    return ""
 
 
 def unanswered(mapping: Mapping) -> list[Question]:

@@ -152,6 +152,8 @@ def test_pages_and_api_on_both_databases(db: Database) -> None:
         (0, {"quantity": "rain", "unit": "mm"}, "a column that says when cannot be read as rain"),
         (2, {"quantity": "air_temperature_max"}, "are both mapped to air_temperature_max"),
         (1, {"unit": "mm"}, "the unit 'mm' does not measure"),
+        (1, {"factor": 0.0}, "its factor is 0"),
+        (1, {"needs_body": True}, "air_temperature_max takes no body temperature"),
     ],
 )
 def test_a_mapping_that_contradicts_itself_is_refused_by_column(
@@ -164,6 +166,27 @@ def test_a_mapping_that_contradicts_itself_is_refused_by_column(
     answer = live.request("PUT", f"/api/v1/intakes/{made['id']}/mapping", json=mapping)
     assert answer.status_code == 422
     assert says in answer.json()["detail"]
+
+
+@pytest.mark.parametrize(
+    ("change", "says"),
+    [
+        *(({"encoding": name}, "is not known") for name in ("undefined", "idna", "utf-32", "hex")),
+        ({"time_zone": "Mars"}, "There is no time zone 'Mars'"),
+        ({"delimiter": "ab"}, "The delimiter 'ab' is not known"),
+        ({"columns": []}, "No column is taken for a weather quantity"),
+    ],
+)
+def test_a_mapping_no_file_can_be_read_by_is_refused(
+    live: Browser, change: dict[str, Any], says: str
+) -> None:
+    sent = {"file": ("found.csv", FOUND.encode(), "text/csv")}
+    made = live.post("/api/v1/intakes", data={"station": "bench"}, files=sent).json()
+    path = f"/api/v1/intakes/{made['id']}"
+    answer = live.request("PUT", f"{path}/mapping", json={**made["mapping"], **change})
+    assert answer.status_code == 422
+    assert says in answer.json()["detail"]
+    assert live.get(path).json()["mapping"] == made["mapping"]
 
 
 def test_a_database_that_another_holds_is_said_so(live: Browser, monkeypatch: Any) -> None:
