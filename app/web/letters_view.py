@@ -11,6 +11,7 @@ from app.storage.letters import LetterRow
 from app.storage.tables_letters import LetterAnswer
 from app.wording.desk import HELD_WHY, LETTER_STATES, STATE_WORDS
 from app.workflows.letter_weeks import monday, zone_of
+from app.workflows.post_letters import AUTOMATIC
 from app.workflows.write_letters import reader_of
 
 NEEDS_YOU = ("unsure", "refused", "held", "draft")
@@ -79,7 +80,7 @@ def when(at: datetime, zone: tzinfo) -> str:
 def _says(row: LetterRow, zone: tzinfo) -> str:
     letter = row.letter
     says = STATE_WORDS[letter.state]
-    if letter.state == "draft" and row.farm.details.get("letters") == "automatic":
+    if letter.state == "draft" and row.farm.details.get("letters") == AUTOMATIC:
         says = "leaves by itself when it is due"
     if letter.state == "held" and letter.why:
         says += f": {HELD_WHY.get(letter.why, letter.why)}"
@@ -87,8 +88,9 @@ def _says(row: LetterRow, zone: tzinfo) -> str:
         says = f"put off; try {letter.tries + 1} at {when(letter.next_try, zone)}"
     if letter.settled_at is not None and letter.state == "sent":
         says += f" {when(letter.settled_at, zone)}"
-    if letter.released_by and letter.state in ("released", "sent"):
-        says += f", released by {letter.released_by}"
+    if letter.state in ("released", "sent"):
+        by_itself = letter.released_by == AUTOMATIC
+        says += ", by itself" if by_itself else f", released by {letter.released_by}"
     if letter.revision:
         says = f"correction {letter.revision}; {says}"
     return says

@@ -125,7 +125,9 @@ def test_hold_take_back_and_what_cannot_be_done(desk: Browser) -> None:
     number = numbers(desk)["Ana"]
     assert desk.post(f"/letters/{number}/hold", data={"why": "rain"}).status_code == 303
     assert state(desk, number) == "held"
-    assert "held back: rain" in desk.get("/letters").text
+    shown = desk.get("/letters").text
+    assert "held back: rain" in shown
+    assert f'value="{number}" checked' not in shown  # somebody held it: not released with the rest
     assert desk.post(f"/letters/{number}/again").status_code == 422
     assert desk.post(f"/letters/{number}/arrived").status_code == 422
     assert desk.post(f"/letters/{number}/release").status_code == 303
