@@ -2,25 +2,29 @@
 records raise. `python -m tests.science.energy.detection` prints it.
 
 Records: BSRN Payerne, June 2016 (29 local days of 15 minutes); SURFRAD, 1 January 2016 (one clear
-day of one minute). Planting is ours (regression); detection is judged against the record itself.
+day of one minute); for drift a series made of a typical year (long_series.py) and two typical years
+as they stand. Planting is ours (regression); detection is judged against the record itself.
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 
 import numpy as np
 
 from app.science.energy.checks import row_checks
 from app.science.energy.day_rows import DayRows
+from app.science.energy.drift import Drift, drift
 from app.science.energy.longwave import fourth_power_kelvin
 from app.science.energy.records import Site
 from app.science.energy.soft_checks import soft_row_checks
-from app.science.energy.tilt import UsualShape
+from app.science.energy.station_day import station_days
+from app.science.energy.tilt import UsualShape, clear_shape
 from app.science.energy.watch import watch_rows
 from app.science.energy.window import morning_ratio
+from tests.science.energy.long_series import LAST_HALF, last_half, made_series, typical_levels
 from tests.science.energy.planted import Grid, leaning, payerne_grid, surfrad_local
-from tests.science.energy.records import ALAMOSA, PAYERNE
+from tests.science.energy.records import ALAMOSA, PAYERNE, daily, payerne_days, surfrad_rows
 
 Record = tuple[Site, DayRows, Grid]
 Plant = Callable[[Site, DayRows, Grid], Grid]
@@ -93,6 +97,13 @@ def bright(record: Record) -> np.ndarray:
     return morning_ratio(rows, grid["shortwave_down"]) >= 0.6
 
 
+def clear(record: Record) -> np.ndarray:
+    """Days whose curve is a clear sky's: the only ones that tell a clock or a lean."""
+    site, rows, grid = record
+    moist = grid["vapour_pressure"].mean(axis=1)
+    return np.asarray(clear_shape(site, rows, grid["shortwave_down"], moist).clear)
+
+
 def every(record: Record) -> np.ndarray:
     return np.ones(record[1].date.shape, dtype=bool)
 
@@ -136,6 +147,7 @@ FAULTS = (
     Fault("W m-2 read as MJ m-2", june, as_energy, "shortwave_unit"),
     Fault("W m-2 read as MJ m-2", winter, as_energy, "shortwave_unit"),
     *(Fault(f"clock {m} min off", winter, clock(m), "clock") for m in (10, -10, 15, 60)),
+    *(Fault(f"clock {m} min off", june, clock(m), "clock", clear) for m in (15, 60)),
     Fault("5 degrees to the east", winter, lean(5.0, 0.0), "tilt"),
     Fault("5 degrees to the west", winter, lean(-5.0, 0.0), "tilt"),
     Fault("5 degrees to the south", winter, lean(0.0, 5.0), "level"),
@@ -158,6 +170,14 @@ def found(fault: Fault) -> tuple[int, int]:
     return int(where.sum()), int((hit & where).sum())
 
 
+def day_flags(name: str) -> list[str]:
+    """What the checks of days say of the clean record's daily weather."""
+    if name == "june":
+        return list(station_days(PAYERNE, payerne_days()).flags)
+    weather = daily(surfrad_rows(), 0.0, 1440)
+    return list(station_days(replace(ALAMOSA, utc_offset_h=0.0), weather).flags)
+
+
 @cache
 def clean_alarms(name: str) -> dict[str, float]:
     """What a clean record raises: shares of rows by hard and soft checks, days by finding."""
@@ -173,8 +193,36 @@ def clean_alarms(name: str) -> dict[str, float]:
     return {
         "hard_rows": float(np.any(hard, axis=0).mean()),
         "soft_rows": float(np.any(faults, axis=0).mean()),
+        "days_flagged": float(sum(flags != "" for flags in day_flags(name))),
         **told,
     }
+
+
+def drifts() -> dict[str, Drift]:
+    """Verdicts on drift: planted, and on what is clean or too short to tell."""
+    level = made_series()[0]
+    told = {
+        f"{100 * share:+.0f} % over six months, made series": last_half(
+            level * (1.0 + share * LAST_HALF)
+        )
+        for share in (-0.04, 0.04, 0.0)
+    }
+    for name in ("723170TYA.CSV", "703165TY.csv"):
+        date, shape = typical_levels(name)
+        told[f"typical year {name[:6]} as it stands"] = drift(date, shape.level, shape.clear)
+    site, rows, grid = june()
+    shape = clear_shape(site, rows, grid["shortwave_down"], grid["vapour_pressure"].mean(axis=1))
+    told["Payerne as it stands"] = drift(rows.date, shape.level, shape.clear)
+    return told
+
+
+def drift_lines() -> list[str]:
+    lines = ["| drift | clear days | change | verdict |", "| --- | --- | --- | --- |"]
+    for name, told in drifts().items():
+        verdict = told.reason or ("drifting" if told.drifting else "none")
+        change = "" if np.isnan(told.change) else f"{100 * told.change:+.1f} %"
+        lines.append(f"| {name} | {told.clear_days} | {change} | {verdict} |")
+    return lines
 
 
 def table() -> str:
@@ -183,9 +231,11 @@ def table() -> str:
         days, hits = found(fault)
         record = "Payerne" if fault.record is june else "San Luis Valley"
         lines.append(f"| {fault.name} | {record} | {days} | {hits} |")
+    lines += ["", "| clean record | check | share of rows, or days |", "| --- | --- | --- |"]
     for name in ("june", "winter"):
-        lines.append(f"clean {name}: {clean_alarms(name)}")
-    return "\n".join(lines)
+        record = "Payerne" if name == "june" else "San Luis Valley"
+        lines += [f"| {record} | {check} | {n:g} |" for check, n in clean_alarms(name).items()]
+    return "\n".join([*lines, "", *drift_lines()])
 
 
 if __name__ == "__main__":

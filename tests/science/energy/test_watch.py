@@ -8,7 +8,16 @@ from app.science.energy.day_checks import Finding
 from app.science.energy.sensor_faults import ALBEDO, SENSOR_FAULTS, sensor_faults
 from app.science.energy.soft_checks import soft_row_checks
 from app.science.energy.watch import ROW_FINDINGS, finding_words, watch_rows
-from tests.science.energy.detection import FAULTS, Fault, clean_alarms, found, frost, june, winter
+from tests.science.energy.detection import (
+    FAULTS,
+    Fault,
+    clean_alarms,
+    drifts,
+    found,
+    frost,
+    june,
+    winter,
+)
 from tests.science.energy.planted import payerne_grid
 from tests.science.energy.records import ALAMOSA, PAYERNE
 from tests.science.energy.test_day_checks import SURFRAD_WARNING
@@ -29,12 +38,20 @@ def test_clean_records_raise_next_to_nothing(name: str) -> None:
     told = clean_alarms(name)
     assert told["hard_rows"] <= 0.005
     assert told["soft_rows"] <= 0.02
+    assert told["days_flagged"] == 0
     raised = {n: v for n, v in told.items() if n in ROW_FINDINGS and n not in COUNTED}
     assert raised == {}
     if name == "winter":
         assert told["night_offset"] == 1.0
     else:
         assert told["window_undecidable"] == 3.0
+
+
+def test_verdicts_on_drift() -> None:
+    """4 % over six months is found both ways; nothing clean is called drifting; a month with one
+    clear day is too short to tell."""
+    told = [told.reason or ("drifting" if told.drifting else "none") for told in drifts().values()]
+    assert told == ["drifting", "drifting", "none", "none", "none", "few_clear_days"]
 
 
 def by_name(findings: tuple[Finding, ...]) -> dict[str, Finding]:
