@@ -64,6 +64,7 @@ def test_every_template_of_a_page_is_rendered_here() -> None:
     parts = {name for name in pages if name.startswith(("parts/", "letters/"))} | {"base.html"}
     # test_access, test_intake_pages, test_station_api
     elsewhere = {"pages/enter.html", "pages/intake_file.html", "pages/intake_pushes.html"}
+    elsewhere |= {"pages/what_if.html"}  # test_what_if
     # test_letters
     elsewhere |= {"pages/answer.html", "pages/answer_broken.html", "pages/stop.html"}
     elsewhere |= {"pages/me.html", "pages/person.html", "pages/link.html"}  # test_people

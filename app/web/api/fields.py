@@ -1,20 +1,24 @@
 """Rounds, fields, ledgers and advice."""
 
+from dataclasses import asdict
 from datetime import date
 from typing import Annotated, Any
 
 from fastapi import APIRouter, Query
+from pydantic import BaseModel
 
 from app import wording
 from app.storage import pages as store
 from app.storage import pages_field as store_field
 from app.storage.pages import RoundsRow
 from app.web.access import AsViewer
+from app.web.api.events import refused
 from app.web.api.schemas import AdviceOut, FieldOut, LedgerOut, RoundsField, RoundsOut
-from app.web.needs import AsDatabase, AsKey, AsToday
+from app.web.needs import AsDatabase, AsKey, AsToday, Clean
 from app.web.pages.fields import choose, own_blocks
 from app.web.rounds_view import urgency
 from app.workflows.managed import managed, one_a_field
+from app.workflows.once import EntryError
 
 router = APIRouter(prefix="/api/v1")
 ADVICE = (
@@ -140,3 +144,46 @@ def advice(
         for row in found
         if row is not None
     ]
+
+
+class TriedDay(BaseModel):
+    """A day ahead: depletion at its close as things stand and as tried, and the limit [mm]."""
+
+    day: date
+    depletion_mm: float
+    tried_mm: float
+    limit_mm: float
+
+
+class WhatIfOut(BaseModel):
+    """The days ahead as tried, and when either course closes past the limit."""
+
+    days: list[TriedDay]
+    passes: date | None
+    tried_passes: date | None
+    net_mm: float
+    caution: str
+
+
+@router.get("/fields/{key}/what-if", tags=["fields"])
+def what_if(
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: AsKey,
+    day: date,
+    gross_mm: Annotated[float, Query(ge=0, le=500)] = 0.0,
+    rain_mm: Annotated[float, Query(ge=0, le=500)] = 0.0,
+    block: Annotated[Clean | None, Query(max_length=80)] = None,
+) -> WhatIfOut:
+    """The days ahead with water or rain tried on one of them; nothing is stored."""
+    from app.workflows.what_if import what_if as tried
+
+    blocks = own_blocks(db, viewer, key)
+    chosen = choose(blocks, block or blocks[0].key)
+    try:
+        with db.read() as session:
+            found = tried(session, chosen.id, today, day, gross_mm, rain_mm)
+    except EntryError as error:
+        raise refused(error) from None
+    return WhatIfOut.model_validate(asdict(found) | {"caution": wording.CAUTION})

@@ -19,6 +19,7 @@ from app.web.pages import (
     station_words,
     stations,
     tokens,
+    what_if,
 )
 
 PARTS = tuple(
@@ -35,6 +36,7 @@ PARTS = tuple(
         answers,
         fields,
         seen,
+        what_if,
         stations,
         station_words,
         tokens,
