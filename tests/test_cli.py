@@ -28,7 +28,7 @@ class Shell:
     def __init__(self, folder: Path) -> None:
         self.folder = folder
 
-    def run(self, *words: str, code: int = 0) -> subprocess.CompletedProcess[str]:
+    def run(self, *words: str, code: int = 0, typed: str = "") -> subprocess.CompletedProcess[str]:
         """Run a command; its exit code must be `code`."""
         environment = {
             **os.environ,
@@ -43,6 +43,7 @@ class Shell:
             text=True,
             env=environment,
             timeout=60,
+            input=typed,
         )
         assert done.returncode == code, done.stdout + done.stderr
         assert "Traceback" not in done.stderr
@@ -291,3 +292,21 @@ def test_a_files_names_do_not_steer_the_terminal(shell: Shell, tmp_path: Path) -
     seen = shell.run("intake", "bench", str(path), "--preview")
     assert "Air temperature" in seen.stdout
     assert not {"\033", "\007"} & set(seen.stdout + seen.stderr)
+
+
+def test_the_first_admin_is_made_here_and_only_then_others_may_come(shell: Shell) -> None:
+    refused = shell.run("serve", "--host", "0.0.0.0", "--port", "0", code=1).stderr
+    assert "rillbook user add" in refused
+    words = ("user", "add", "ada@example.org", "--name", "Ada Reed")
+    assert "12 to 200" in shell.run(*words, code=1, typed="short\n").stderr
+    assert "no farm" in shell.run(*words, "--farm", "nowhere", code=1, typed="x\n").stderr
+    said = shell.run(*words, typed="seven brown herons\n").stdout
+    assert "can sign in as admin" in said
+    assert "already" in shell.run(*words, code=1, typed="seven brown herons\n").stderr
+    (account,) = shell.json("user", "list")["accounts"]
+    assert account["role"] == "admin"
+    assert account["state"] == "open"
+    assert "/link/" in shell.run("user", "link", "ada@example.org").stdout
+    assert "only admin" in shell.run("user", "stop", "ada@example.org", code=1).stderr
+    refused = shell.run("serve", "--host", "0.0.0.0", "--port", "0", code=1).stderr
+    assert "RILLBOOK_URL" in refused

@@ -44,15 +44,18 @@ def _done(change: Change) -> str:
 
 def _differences(before: dict[str, Any], after: dict[str, Any]) -> list[tuple[str, str, str]]:
     names = dict.fromkeys([*before, *after])
-    return [
+    found = [
         (name.replace("_", " "), _text(before.get(name)), _text(after.get(name)))
         for name in names
         if before.get(name) != after.get(name)
     ]
+    return [row for row in found if row[1] or row[2]]
 
 
 def _text(value: Any) -> str:
-    if value is None or value == "" or value == []:
+    if value is None or value is False or value == "" or value == []:
         return ""
+    if value is True:
+        return "yes"
     text = ", ".join(map(str, value)) if isinstance(value, list) else str(value)
     return text if len(text) <= LONGEST else f"{text[:LONGEST]}…"

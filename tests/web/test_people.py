@@ -26,7 +26,7 @@ ADMIN, ADVISOR, GROWER = "ada@example.org", "bo@example.org", "cy@example.org"
 @pytest.fixture
 def filled(db: Database) -> Database:
     """The factory's rows on either database, and an admin who can sign in."""
-    factory.fill(db)
+    factory.fill(db, fields=4, days=6)
     add(db, ADMIN, "Ada Reed", "admin")
     return db
 

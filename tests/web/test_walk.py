@@ -1,6 +1,7 @@
 """Every route for every role, with another farm's identifiers: refused as if they were not there.
 
-Nothing of another farm is told in any answer, and nothing of it is changed.
+Nothing of another farm is told in any answer, and nothing of it is changed. The API answers nothing
+that its OpenAPI document does not declare.
 """
 
 import json
@@ -166,6 +167,11 @@ def _flat() -> dict[str, str]:
 def test_every_route_for_every_role(walked: Database) -> None:
     counts: Counter[tuple[str, int]] = Counter()
     before = foreign(walked)
+    document = Browser(walked).get("/api/v1/openapi.json").json()
+    declared = {
+        path: {method: operation["responses"] for method, operation in methods.items()}
+        for path, methods in document["paths"].items()
+    }
     for role, browser in browsers(walked).items():
         if role == "admin":
             continue  # knows of every farm
@@ -191,6 +197,10 @@ def test_every_route_for_every_role(walked: Database) -> None:
             elif named:
                 assert answer.status_code in (404, 422), what
             assert answer.status_code < 500, what
+            if pattern in declared:
+                assert str(answer.status_code) in declared[pattern][method.lower()], what
+                if answer.status_code >= 400:
+                    assert answer.headers["content-type"] == "application/problem+json", what
             for word in LEAKS:
                 assert word not in answer.text, (*what, word)
     own_doing = {"token", "book_change"}

@@ -16,7 +16,7 @@ PROBLEMS: dict[int | str, dict[str, Any]] = {
         "content": {"application/problem+json": {}},
     }
     for status, says in {
-        401: "Nobody has entered (demo mode).",
+        401: "No token that stands, and nobody signed in.",
         403: "Not open to this viewer, or sent from another site.",
         404: "There is no such thing, or it is not the viewer's.",
         422: "Something has to be put right first.",
