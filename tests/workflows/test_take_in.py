@@ -5,15 +5,17 @@ import subprocess
 import sys
 import textwrap
 import threading
-from datetime import date, timedelta
+from datetime import UTC, date, datetime, timedelta
 
 import pytest
 from sqlalchemy import func, select
 
 from app.intake import Mapping
+from app.storage import pages_station
 from app.storage.database import Database
 from app.storage.tables import Contribution, Intake, StationDay
 from app.workflows import take_in
+from app.workflows.push_readings import PushedRow, push_readings
 from tests.workflows import basin
 
 
@@ -252,3 +254,17 @@ def test_a_file_without_a_known_column_says_so(db: Database) -> None:
     ]
     take_in.remap(db, number, seen.mapping.model_copy(update={"columns": columns}), "admin")
     assert take_in.preview_of(db, number).rows_accepted == 3
+
+
+def test_pushes_of_a_day_are_one_line_and_the_list_goes_on(db: Database) -> None:
+    basin.fill(db)
+    start = datetime(2026, 6, 29, 8, tzinfo=UTC)
+    for hour in range(5):
+        row = PushedRow(start + timedelta(hours=hour), {"wind_speed": 1.0 + hour})
+        push_readings(db, "bench", [row], {"wind_speed": "m/s"}, 3600, "logger", basin.TODAY)
+    with db.read() as session:
+        pushes, *files = pages_station.received(session, 50)
+        assert (pushes.files, pushes.rows, pushes.first_day) == (5, 5, date(2026, 6, 29))
+        assert [line.files for line in files] == [1, 1]
+        assert pages_station.received(session, 50, before=pushes.id) == files
+        assert pages_station.received(session, 50, station="meadow") == [files[0]]
