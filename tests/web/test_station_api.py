@@ -160,12 +160,27 @@ def test_days_have_rungs_why_checks_with_figures_and_both_net_radiations(
             .where(StationDay.day == date(2026, 6, 30))
             .values(flags="window_hours=4 wind_low=0.31 night_offset=-3.2")
         )
-    day = live.get(f"{STATION}/days").json()["days"][-1]
+        session.execute(
+            update(StationDay)
+            .where(StationDay.day == date(2026, 6, 29))
+            .values(humidity_rung=0, wind_rung=0)
+        )
+    guessed, day = live.get(f"{STATION}/days").json()["days"][-2:]
+    assert guessed["wind"] == {"number": 0, "name": "none", "uncertainty": None}
+    assert guessed["humidity"]["uncertainty"] is None
     assert (day["rung"], day["rung_name"]) == (5, "model from solar")
     assert [item["rung"] for item in day["why_not"]] == [1, 2, 3, 4]
     assert all(item["reason"] for item in day["why_not"])
-    assert day["humidity"] == {"number": 2, "name": "RHmax and RHmin"}
-    assert day["wind"] == {"number": 1, "name": "measured"}
+    assert day["humidity"] == {
+        "number": 2,
+        "name": "RHmax and RHmin",
+        "uncertainty": pytest.approx(0.05 * day["vapour_pressure"]),
+    }
+    assert day["wind"] == {
+        "number": 1,
+        "name": "measured",
+        "uncertainty": pytest.approx(0.05 * day["wind_2m"]),
+    }
     assert [(item["check"], item["figure"]) for item in day["checks"]] == [
         ("window_hours", 4.0),
         ("wind_low", 0.31),

@@ -4,9 +4,13 @@ from collections.abc import Mapping
 from datetime import date
 from typing import Any
 
+import numpy as np
 from pydantic import BaseModel, Field
 
 from app import wording
+from app.science.constants import WIND_FLOOR
+from app.science.energy.humidity import HUMIDITY_SHARE
+from app.science.energy.wind import WIND_SHARE
 from app.web.api.schemas import Number
 
 ENERGY = "MJ m-2 d-1"
@@ -19,7 +23,10 @@ class RungOut(BaseModel):
     """The rung that served; 0 where none did."""
 
     number: int = Field(examples=[2])
-    name: str = Field(examples=["measured sky"])
+    name: str = Field(examples=["RHmax and RHmin"])
+    uncertainty: Number = Field(
+        description="one standard uncertainty, in the unit of the value: kPa, m s-1"
+    )
 
 
 class WhyNotOut(BaseModel):
@@ -104,13 +111,26 @@ def day_out(row: Mapping[str, Any], et_by_residual: float | None) -> StationDayO
             WhyNotOut(rung=rung, reason=reason)
             for rung, reason in wording.why_codes(row["why_not"])
         ],
-        "humidity": RungOut(number=humidity, name=wording.HUMIDITY_RUNGS[humidity]),
-        "wind": RungOut(number=wind, name=wording.WIND_RUNGS[wind]),
+        "humidity": RungOut(
+            number=humidity,
+            name=wording.HUMIDITY_RUNGS[humidity],
+            uncertainty=_share_of(HUMIDITY_SHARE[humidity], row["vapour_pressure"]),
+        ),
+        "wind": RungOut(
+            number=wind,
+            name=wording.WIND_RUNGS[wind],
+            uncertainty=_share_of(WIND_SHARE[wind], row["wind_2m"], WIND_FLOOR),
+        ),
         "et_by_residual": et_by_residual,
         "checks": [_check(flag) for flag in row["flags"].split()],
         "notes": row["notes"].splitlines(),
     }
     return StationDayOut.model_validate({**row, **told})
+
+
+def _share_of(share: float, value: float | None, floor: float = 0.0) -> float | None:
+    """Nothing for a missing value, or for rung 0, whose share is NaN."""
+    return None if value is None or np.isnan(share) else float(share) * max(value, floor)
 
 
 def _check(flag: str) -> CheckOut:
