@@ -5,7 +5,11 @@ from dataclasses import dataclass
 from app import wording
 from app.science.energy.drift import LEAST_CLEAR, LEAST_SPAN, Drift
 from app.science.energy.tilt import CLOCK_MINUTES, LEAST_DAYS, LEVEL_SHARE, TILT_DEGREES
-from app.workflows.sensor_health import RECENT_DAYS, Apart, Health, Lean
+from app.workflows.sensor_health import RECENT_DAYS, Apart, Dryness, Health, Lean
+
+LEAST_RH_MAX, MOST_ABOVE_DEW_POINT = 80.0, 3.0
+"""At a reference site RHmax stays above the one [%], Tmin no more than the other above the dew
+point [K] (ASCE-EWRI Appendix D, FAO-56 Annex 5, from memory; taken for medians, working value)."""
 
 
 @dataclass(frozen=True)
@@ -24,7 +28,26 @@ def verdicts(health: Health) -> list[Verdict]:
         told.append(_drift(health.drift))
     if health.lean is not None:
         told += _lean(health.lean)
+    if health.dryness is not None:
+        told.append(_dryness(health.dryness))
     return [*told, *_neighbours(health)]
+
+
+def _dryness(dryness: Dryness) -> Verdict:
+    above = wording.number(dryness.above_dew_point, 1)
+    figures = (
+        f"RHmax {wording.number(dryness.rh_max)} %, Tmin {above} °C above the dew point, medians "
+        f"of {wording.days(dryness.days)}"
+    )
+    dry = dryness.rh_max < LEAST_RH_MAX or dryness.above_dew_point > MOST_ABOVE_DEW_POINT
+    if not dry:
+        return Verdict("air", f"that of watered ground: {figures}")
+    return Verdict(
+        "air",
+        f"drier than over watered ground: {figures}. Reference ET is then on the high side; see "
+        "what lies around the station, and hold the humidity sensor against another",
+        True,
+    )
 
 
 def _drift(drift: Drift) -> Verdict:

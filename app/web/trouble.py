@@ -27,6 +27,10 @@ def age_days(last: date | None, today: date) -> int | None:
     return None if last is None else (today - last).days
 
 
+COUNTED_ONLY = {"night_offset", "window_undecidable"}
+"""Flags that the Station page counts, and that call for nobody."""
+
+
 def silence(last: date | None, today: date) -> str:
     """What to say of a station by the last day it sent; nothing when yesterday is there."""
     age = age_days(last, today)
@@ -74,11 +78,12 @@ def _cost(days: Sequence[RecentDay], usual: int) -> str:
 
 
 def raised(days: Sequence[RecentDay], today: date) -> str:
-    """The checks that failed within the last two days."""
+    """The checks that failed within the last two days; what is only counted is no trouble."""
     said: dict[str, None] = {}
     for day in days:
         if day.day >= today - timedelta(days=STALE_DAYS):
-            said.update(dict.fromkeys(flag_words(day.flags)))
+            faults = [f for f in day.flags.split() if f.partition("=")[0] not in COUNTED_ONLY]
+            said.update(dict.fromkeys(flag_words(" ".join(faults))))
     text = "; ".join(said)
     return f"{text[:1].upper()}{text[1:]}." if said else ""
 

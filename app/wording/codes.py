@@ -44,6 +44,14 @@ HUMIDITY_RUNGS = (
     *("none", "vapour pressure or dew point", "RHmax and RHmin", "RHmax", "RHmean", "Tmin"),
 )
 WIND_RUNGS = ("none", "measured", "neighbours", "2 m/s assumed")
+
+
+def higher_rungs(rungs: tuple[str, ...], served: int) -> list[str]:
+    """What would have served better than rung `served` of humidity or wind and was not to be had
+    that day; all of them where none served (0)."""
+    return list(rungs[1 : served or len(rungs)])
+
+
 VARIABLES = {
     "energy": "energy",
     "temperature": "temperature and humidity",

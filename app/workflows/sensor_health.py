@@ -11,6 +11,7 @@ from sqlalchemy.orm import Session
 
 from app.science import Bools, Days, Floats
 from app.science.energy.drift import Drift, bright_days, drift, expected_level
+from app.science.energy.humidity import dew_point
 from app.science.energy.neighbours import NeighbourCheck, against_neighbours
 from app.science.energy.tilt import LEAST_DAYS
 from app.storage.judgement import sensor_log
@@ -23,7 +24,17 @@ LOOK_BACK = timedelta(days=800)
 DRIFT_DAYS, RECENT_DAYS, NEIGHBOUR_DAYS = 200, 30, 120
 RATIO_SPREAD, TEMPERATURE_SPREAD = 0.05, 0.7
 """Below these, agreement with neighbours says nothing: clear-sky ratio [-], temperature [K]."""
-_OWN = ("clear_level", "clear_tilt_deg", "clear_clock_min", "rs", "rso", "shortwave_down")
+_OWN = (
+    "rh_max",
+    "tmin",
+    "vapour_pressure",
+    "clear_level",
+    "clear_tilt_deg",
+    "clear_clock_min",
+    "rs",
+    "rso",
+    "shortwave_down",
+)
 _SHARED = ("rs", "rso", "tmax", "shortwave_down")
 
 
@@ -54,6 +65,17 @@ class Apart:
 
 
 @dataclass(frozen=True)
+class Dryness:
+    """Whether the air over the sensors is that of watered ground, over `days` of the last 30:
+    medians of the highest relative humidity [%] and of the lowest temperature above the dew point
+    [K]."""
+
+    days: int
+    rh_max: float
+    above_dew_point: float
+
+
+@dataclass(frozen=True)
 class Health:
     """What months say of a station's sensors. `since`: the last levelling or calibration, which
     the past is looked at from; None for none."""
@@ -63,6 +85,7 @@ class Health:
     apart: tuple[Apart, ...]
     neighbours: int
     since: date | None
+    dryness: Dryness | None = None
 
 
 def sensor_health(session: Session, station: int, today: date) -> Health:
@@ -83,6 +106,19 @@ def sensor_health(session: Session, station: int, today: date) -> Health:
         apart=_apart(session, station, weights, today),
         neighbours=len(weights),
         since=since,
+        dryness=_dryness(days, own, today),
+    )
+
+
+def _dryness(days: Days, own: dict[str, Floats], today: date) -> Dryness | None:
+    late = days >= np.datetime64(today - timedelta(days=RECENT_DAYS))
+    ea = np.where(own["vapour_pressure"] > 0.0, own["vapour_pressure"], np.nan)
+    above = own["tmin"] - dew_point(ea)
+    known = late & ~np.isnan(own["rh_max"]) & ~np.isnan(above)
+    if known.sum() < LEAST_DAYS:
+        return None
+    return Dryness(
+        int(known.sum()), float(np.median(own["rh_max"][known])), float(np.median(above[known]))
     )
 
 

@@ -8,7 +8,7 @@ import pytest
 from app.science.energy.drift import Drift, drift
 from app.storage.database import Database
 from app.web.sensor_words import verdicts
-from app.workflows.sensor_health import Apart, Health, Lean, sensor_health
+from app.workflows.sensor_health import Apart, Dryness, Health, Lean, sensor_health
 from tests.workflows import basin
 from tests.workflows.test_hourly_step import stations
 from tests.workflows.test_station_days import RECORD, TODAY, take
@@ -74,3 +74,25 @@ def test_a_dimmed_sensor_departs_from_its_neighbour(db: Database) -> None:
     (apart,) = [one for one in health.apart if one.quantity == "shortwave_down"]
     assert apart.days == 6
     assert apart.difference == pytest.approx(-0.35, abs=0.1)
+
+
+def test_air_too_dry_for_watered_ground_is_told_with_its_figures() -> None:
+    """ASCE-EWRI Appendix D and FAO-56 Annex 5: RHmax near saturation at dawn over watered ground,
+    Tmin within a few degrees of the dew point (from memory)."""
+    moist = said(Health(None, None, (), 0, None, Dryness(30, 92.0, 1.2)))["air"]
+    assert moist == (
+        "that of watered ground: RHmax 92 %, Tmin 1.2 °C above the dew point, medians of 30 days",
+        False,
+    )
+    for dry in (Dryness(30, 71.0, 1.0), Dryness(30, 90.0, 5.4)):
+        text, fault = said(Health(None, None, (), 0, None, dry))["air"]
+        assert fault
+        assert text.startswith("drier than over watered ground")
+
+
+def test_the_air_of_a_real_month_is_judged(db: Database) -> None:
+    """BSRN station Payerne, June 2016: over mown grass in a wet month."""
+    stations(db, {"key": "mast", "reference_surface": True})
+    take(db, "mast", RECORD.read_text())
+    with db.read() as session:
+        assert not said(sensor_health(session, 1, TODAY))["air"][1]

@@ -166,7 +166,12 @@ def test_days_have_rungs_why_checks_with_figures_and_both_net_radiations(
             .values(humidity_rung=0, wind_rung=0)
         )
     guessed, day = live.get(f"{STATION}/days").json()["days"][-2:]
-    assert guessed["wind"] == {"number": 0, "name": "none", "uncertainty": None}
+    assert guessed["wind"] == {
+        "number": 0,
+        "name": "none",
+        "uncertainty": None,
+        "not_to_be_had": ["measured", "neighbours", "2 m/s assumed"],
+    }
     assert guessed["humidity"]["uncertainty"] is None
     assert (day["rung"], day["rung_name"]) == (5, "model from solar")
     assert [item["rung"] for item in day["why_not"]] == [1, 2, 3, 4]
@@ -175,11 +180,13 @@ def test_days_have_rungs_why_checks_with_figures_and_both_net_radiations(
         "number": 2,
         "name": "RHmax and RHmin",
         "uncertainty": pytest.approx(0.05 * day["vapour_pressure"]),
+        "not_to_be_had": ["vapour pressure or dew point"],
     }
     assert day["wind"] == {
         "number": 1,
         "name": "measured",
         "uncertainty": pytest.approx(0.05 * day["wind_2m"]),
+        "not_to_be_had": [],
     }
     assert [(item["check"], item["figure"]) for item in day["checks"]] == [
         ("window_hours", 4.0),

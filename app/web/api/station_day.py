@@ -23,6 +23,7 @@ class RungOut(BaseModel):
     """The rung that served; 0 where none did."""
 
     number: int = Field(examples=[2])
+    not_to_be_had: list[str] = Field(description="what would have served better that day")
     name: str = Field(examples=["RHmax and RHmin"])
     uncertainty: Number = Field(
         description="one standard uncertainty, in the unit of the value: kPa, m s-1"
@@ -113,11 +114,13 @@ def day_out(row: Mapping[str, Any], et_by_residual: float | None) -> StationDayO
         ],
         "humidity": RungOut(
             number=humidity,
+            not_to_be_had=wording.higher_rungs(wording.HUMIDITY_RUNGS, humidity),
             name=wording.HUMIDITY_RUNGS[humidity],
             uncertainty=_share_of(HUMIDITY_SHARE[humidity], row["vapour_pressure"]),
         ),
         "wind": RungOut(
             number=wind,
+            not_to_be_had=wording.higher_rungs(wording.WIND_RUNGS, wind),
             name=wording.WIND_RUNGS[wind],
             uncertainty=_share_of(WIND_SHARE[wind], row["wind_2m"], WIND_FLOOR),
         ),

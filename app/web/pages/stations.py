@@ -214,7 +214,9 @@ def station_day(
         et_by_residual=float(et_by_residual([row])[0]),
         notes=view.notes_words(row["notes"]),
         humidity=wording.HUMIDITY_RUNGS[row["humidity_rung"]],
+        no_humidity=wording.higher_rungs(wording.HUMIDITY_RUNGS, row["humidity_rung"]),
         wind=wording.WIND_RUNGS[row["wind_rung"]],
+        no_wind=wording.higher_rungs(wording.WIND_RUNGS, row["wind_rung"]),
         readings=view.readings(
             [(item.intake_id, item.file_name, unpack(item.data)) for item in brought],
             found.details.get("utc_offset_h", 0.0),
