@@ -132,7 +132,9 @@ class SeasonPart(Part):
     )
     ledger_start: date | None = Field(None, description="a later first day; planting if not given")
     initial_depletion_mm: Depth | None = Field(
-        None, description="root zone at the start; this or the fraction, else field capacity"
+        None,
+        description="root zone at the start; this or the fraction, else what the season before "
+        "left, through bare soil; field capacity without one",
     )
     initial_depletion_fraction: Fraction | None = Field(None, description="the same, of TAW")
     initial_subsoil_depletion_fraction: Fraction = Field(

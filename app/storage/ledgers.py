@@ -118,6 +118,31 @@ def every_station(session: Session) -> dict[int, dict[str, Any]]:
     return {number: details for number, details in rows}
 
 
+CLOSE = (
+    LedgerDay.root_depth_m,
+    LedgerDay.depletion_mm,
+    LedgerDay.subsoil_depletion_mm,
+    func.coalesce(LedgerDay.evaporation_layer_depletion_mm, 0.0),
+    func.coalesce(LedgerDay.depletion_p10_mm, LedgerDay.depletion_mm),
+    func.coalesce(LedgerDay.depletion_p90_mm, LedgerDay.depletion_mm),
+)
+
+
+def read_closes(session: Session, days: Mapping[int, date]) -> dict[int, tuple[float, ...]]:
+    """What the ledger of each block closed with on its day: root depth [m], depletion of root
+    zone, subsoil and evaporation layer, p10 and p90 of the first [mm]; blocks without are left
+    out."""
+    found = {}
+    for day, blocks in _by_day(days).items():
+        for block, *values in session.execute(
+            select(LedgerDay.block_id, *CLOSE).where(
+                LedgerDay.day == day, LedgerDay.block_id.in_(blocks)
+            )
+        ):
+            found[block] = tuple(float(value) for value in values)
+    return found
+
+
 def last_ledger_days(session: Session) -> dict[int, date]:
     """The last ledger day of each season that has one."""
     return {

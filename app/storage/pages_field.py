@@ -114,7 +114,7 @@ class SeasonSums(NamedTuple):
 
 
 def season_sums(session: Session, season: int) -> SeasonSums | None:
-    """Sums over a season's ledger; None before its first day."""
+    """Sums over a season's ledger from planting on; None before its first day."""
     row = session.execute(
         select(
             func.count(),
@@ -126,7 +126,9 @@ def season_sums(session: Session, season: int) -> SeasonSums | None:
             func.sum(LedgerDay.deep_percolation_mm),
             func.sum(LedgerDay.runoff_mm),
             func.sum(case((LedgerDay.depletion_mm > LedgerDay.limit_mm, 1), else_=0)),
-        ).where(LedgerDay.season_id == season)
+        )
+        .join(Season, Season.id == LedgerDay.season_id)
+        .where(LedgerDay.season_id == season, LedgerDay.day >= Season.planting)
     ).one()
     return SeasonSums._make(row) if row[0] else None
 

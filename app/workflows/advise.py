@@ -106,7 +106,7 @@ def inputs_hash(subject: Subject, stale: Any) -> str:
     block, season = subject.block, subject.season
     words = [block.system, block.field, season.details, subject.past, subject.keep_offs]
     digest.update(json.dumps([words, stale], sort_keys=True, default=str).encode())
-    digest.update(repr(subject.last_irrigation).encode())
+    digest.update(repr((subject.last_irrigation, subject.opening_width_mm)).encode())
     return digest.hexdigest()
 
 

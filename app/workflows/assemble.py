@@ -1,9 +1,8 @@
 """Gather what a ledger rests on: for each block and season, a plan and its weather."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from datetime import date, timedelta
-from itertools import pairwise
 from typing import NamedTuple
 
 import numpy as np
@@ -17,11 +16,11 @@ from app.storage.ledgers import (
     BlockRow,
     SeasonRow,
     read_blocks,
-    read_seasons,
+    read_closes,
 )
 from app.workflows import agronomy
-from app.workflows.crop import Seen, crop_season
 from app.workflows.field_weather import HORIZON, FieldsWeather, FieldWeather
+from app.workflows.stretches import DAY, Close, Stretch, stretches_of
 
 HISTORY = 120
 """Days before a season that the usual for the date may look back on."""
@@ -31,13 +30,17 @@ TODAY = timedelta(days=1)
 
 @dataclass(frozen=True)
 class Subject:
-    """A block's season at hand: what to compute on, and what its advice needs.
+    """A stretch of a block's ledger at hand: what to compute on, and what its advice needs.
 
-    plan and weather run from the ledger's start through `through` and `HORIZON` days on.
+    plan and weather run from the stretch's start through `through` and, where a crop stands,
+    `HORIZON` days on.
     """
 
     block: BlockRow
     season: SeasonRow
+    stretch: Stretch
+    close: Close | None
+    """What the stored ledger closed with on the day before, for a stretch that carries over."""
     crop: CropSeason
     plan: BlockPlan
     weather: BlockWeather
@@ -52,6 +55,13 @@ class Subject:
     """Days on which somebody said that it must not be watered, both included."""
     ahead: Ahead
     """What the weather ahead may be; without a column where no past morning tells."""
+    opening_width_mm: float = 0.0
+    """From p10 to p90 of the opening depletion, where the stretch before tells it."""
+
+    def follows(self, other: "Subject") -> bool:
+        """Whether it begins on the day after the last of `other`, on the same block."""
+        after = other.plan.start + other.plan.days
+        return self.block.block_id == other.block.block_id and bool(after == self.plan.start)
 
 
 def assemble(session: Session, since: Mapping[int, date], through: date) -> list[Subject]:
@@ -62,70 +72,61 @@ def assemble(session: Session, since: Mapping[int, date], through: date) -> list
     blocks = sorted(since)
     block_rows = {row.block_id: row for row in read_blocks(session, blocks)}
     chosen = [
-        (row, crop)
-        for row, crop in seasons_of(session, blocks)
-        if _start(row) <= through and agronomy.as_date(crop.last_day) >= since[row.block_id]
+        stretch
+        for stretch in stretches_of(session, blocks)
+        if stretch.start <= through
+        and agronomy.as_date(stretch.crop.last_day) >= since[stretch.season.block_id]
     ]
     if not chosen:
         return []
-    first = min(_start(row) for row, _ in chosen) - timedelta(days=HISTORY)
+    first = min(stretch.start for stretch in chosen) - timedelta(days=HISTORY)
     fields = {row.field_id for row in block_rows.values()}
     weather = FieldsWeather(session, fields, first, through)
     events: dict[int, list[Standing]] = {}
     for event in standing_events(session, blocks):
         events.setdefault(event.block_id, []).append(event)
+    closes = _closes(session, chosen)
     subjects = []
-    for row, crop in chosen:
-        block = block_rows[row.block_id]
+    for stretch in chosen:
+        block = block_rows[stretch.season.block_id]
         subject = _subject(
-            block, row, crop, weather.of(block.field_id), events.get(block.block_id, []), through
+            block,
+            stretch,
+            closes.get((block.block_id, stretch.start)),
+            weather.of(block.field_id),
+            events.get(block.block_id, []),
+            through,
         )
         if subject is not None:
             subjects.append(subject)
     return subjects
 
 
-def seasons_of(session: Session, blocks: Sequence[int]) -> list[tuple[SeasonRow, CropSeason]]:
-    """Seasons of blocks by block and planting; one that the next overtakes ends the day before.
-
-    What was seen of a crop belongs to the season it was seen in.
-    """
-    rows = read_seasons(session, blocks)
-    seen: dict[int, list[Seen]] = {}
-    for event in standing_events(session, blocks, ("stage", "cover", "cutting")):
-        height = event.details.get("height_m", 0.0)
-        seen.setdefault(event.block_id, []).append(
-            Seen(event.day, event.kind, event.amount, height)
-        )
-    found = []
-    for row, later in pairwise([*rows, None]):
-        assert row is not None
-        until = later.planting if later is not None and later.block_id == row.block_id else date.max
-        own = [one for one in seen.get(row.block_id, []) if row.planting <= one.day < until]
-        crop = crop_season(row.details, row.planting, own)
-        if later is not None and later.block_id == row.block_id:
-            eve = np.datetime64(_start(later), "D") - 1
-            if crop.last_day > eve:
-                crop = replace(crop, end=eve)
-        found.append((row, crop))
-    return found
-
-
-def _start(season: SeasonRow) -> date:
-    stated = season.details["ledger_start"]
-    return date.fromisoformat(stated) if stated else season.planting
+def _closes(session: Session, chosen: Sequence[Stretch]) -> dict[tuple[int, date], Close]:
+    """What stored ledgers closed with before the first of each block's chosen stretches, where
+    that carries over; by block and the day after."""
+    firsts: dict[int, Stretch] = {}
+    for stretch in chosen:
+        firsts.setdefault(stretch.season.block_id, stretch)
+    eves = {block: one.start - DAY for block, one in firsts.items() if one.carries}
+    return {
+        (block, firsts[block].start): Close(*values)
+        for block, values in read_closes(session, eves).items()
+    }
 
 
 def _subject(
     block: BlockRow,
-    season: SeasonRow,
-    crop: CropSeason,
+    stretch: Stretch,
+    close: Close | None,
     weather: FieldWeather,
     events: list[Standing],
     through: date,
 ) -> Subject | None:
-    start = max(_start(season), weather.first + timedelta(days=weather.known_from))
-    last = min(agronomy.as_date(crop.last_day), through + timedelta(days=HORIZON))
+    season, crop = stretch.season, stretch.crop
+    start = max(stretch.start, weather.first + timedelta(days=weather.known_from))
+    ahead = timedelta(days=0 if stretch.bare else HORIZON)
+    last = min(agronomy.as_date(crop.last_day), through + ahead)
     days = (last - start).days + 1
     if start > through or days <= 0:
         return None
@@ -143,6 +144,8 @@ def _subject(
     return Subject(
         block=block,
         season=season,
+        stretch=stretch,
+        close=close if start == stretch.start else None,
         crop=crop,
         plan=BlockPlan(
             season=crop,
@@ -177,6 +180,7 @@ def _subject(
         past=past,
         opening_unknown=(
             start > season.planting
+            and not stretch.bare
             and details["initial_depletion_mm"] is None
             and details["initial_depletion_fraction"] is None
         ),

@@ -16,9 +16,9 @@ from app.book.reading import ReadingPart
 from app.storage import book
 from app.storage.database import Database
 from app.storage.tables import Block, Event, Field
-from app.workflows.assemble import seasons_of
 from app.workflows.bring_up_to_date import up_to_date
 from app.workflows.once import EntryError, once
+from app.workflows.stretches import seasons_of
 
 OF_A_CROP = ("stage", "cover", "cutting")
 LONGEST_KEEP_OFF = timedelta(days=120)

@@ -61,6 +61,7 @@ def corrected(
             [seeds[n] for n in places],
             MEMBERS,
             initial_unknown=[found[n].opening_unknown for n in places],
+            initial_width_mm=[found[n].opening_width_mm for n in places],
         )
         for n, ledger, (low, high) in zip(places, ledgers, ranges, strict=True):
             subject = found[n]

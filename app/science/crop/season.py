@@ -147,13 +147,17 @@ class CropSeason:
 
 
 def bare_season(
-    first: np.datetime64, last: np.datetime64, *, root_depth_m: float = 0.3
+    first: np.datetime64,
+    last: np.datetime64,
+    *,
+    root_depth_m: float = 0.3,
+    deepest_m: float | None = None,
 ) -> CropSeason:
     """Bare soil from `first` to `last`, between two crops: an ordinary season without a plant.
 
-    root_depth_m 0.02-10: depth of the soil that is accounted for [m]. Water leaves by evaporation
-    and drainage alone, and the limit is all of TAW, so that it never calls for water. Source:
-    FAO-56 chapter 11, bare soil.
+    root_depth_m 0.02-10: depth of the soil that is accounted for [m], with a store below it down
+    to deepest_m (default: none). Water leaves by evaporation and drainage alone, and the limit is
+    all of TAW, so that it never calls for water. Source: FAO-56 chapter 11, bare soil.
     """
     days = int((last.astype("datetime64[D]") - first.astype("datetime64[D]")).astype(np.int64)) + 1
     return CropSeason(
@@ -165,7 +169,7 @@ def bare_season(
         kc_min=0.0,
         height_max_m=0.01,
         root_min_m=root_depth_m,
-        root_max_m=root_depth_m,
+        root_max_m=root_depth_m if deepest_m is None else deepest_m,
         depletion_fraction=0.5,
         mad=1.0,
         climate_adjustment="none",

@@ -26,6 +26,7 @@ RN_SHARE = 0.7
 # No factor falls below this.
 LEAST_FACTOR = 0.2
 LOW, HIGH = 10.0, 90.0
+EVEN_WIDTH = (HIGH - LOW) / 100.0
 # Columns (blocks x members) of one day loop, so that its arrays stay in the processor's cache.
 COLUMNS = 8192
 
@@ -71,6 +72,7 @@ def ensemble_depletion(
     *,
     rain_distance_km: float = 0.0,
     initial_unknown: bool = False,
+    initial_width_mm: float = 0.0,
     ahead: Ahead | None = None,
     spread: Spread = WORKING,
 ) -> Range:
@@ -79,9 +81,10 @@ def ensemble_depletion(
     plan and weather as for a ledger. seed: whole number made from block and date; the same inputs
     give the same bits, and days added at the end leave earlier days alone. rn_share (days,) 0-1:
     share of ETo that follows net radiation, default 0.7. rain_distance_km from gauge to field.
-    initial_unknown: the opening depletion lies anywhere in 0-100 % of RAW. ahead: sequences that
-    replace the plan's weather and its uncertainty on the days ahead. spread: how far members
-    differ. Widened where needed to hold the ledger's own depletion.
+    initial_unknown: the opening depletion lies anywhere in 0-100 % of RAW. initial_width_mm: else
+    from p10 to p90 of what is known of it, at or above 0 [mm]. ahead: sequences that replace the
+    plan's weather and its uncertainty on the days ahead. spread: how far members differ. Widened
+    where needed to hold the ledger's own depletion.
     Raises ValueError as `block_ledgers` does. Source: working values of the methods page.
     """
     return ensemble_depletions(
@@ -92,6 +95,7 @@ def ensemble_depletion(
         [rn_share],
         rain_distance_km=[rain_distance_km],
         initial_unknown=[initial_unknown],
+        initial_width_mm=[initial_width_mm],
         ahead=[ahead],
         spread=spread,
     )[0]
@@ -106,6 +110,7 @@ def ensemble_depletions(
     *,
     rain_distance_km: Sequence[float] | None = None,
     initial_unknown: Sequence[bool] | None = None,
+    initial_width_mm: Sequence[float] | None = None,
     ahead: Sequence[Ahead | None] | None = None,
     spread: Spread = WORKING,
 ) -> list[Range]:
@@ -118,6 +123,7 @@ def ensemble_depletions(
     shares = _each(rn_share, None, count, "rn_share")
     distances = _each(rain_distance_km, 0.0, count, "rain_distance_km")
     unknown = _each(initial_unknown, False, count, "initial_unknown")
+    widths = _each(initial_width_mm, 0.0, count, "initial_width_mm")
     skies = _each(ahead, None, count, "ahead")
     _each(weather, None, count, "weather")
     _each(seeds, 0, count, "seeds")
@@ -129,7 +135,9 @@ def ensemble_depletions(
         for b, seed in enumerate(seeds[part]):
             i = first + b
             group.draw(b, seed, shares[i], distances[i], skies[i])
-        ranges += group.ranges(np.array(unknown[part], dtype=np.bool_))
+        ranges += group.ranges(
+            np.array(unknown[part], dtype=np.bool_), np.array(widths[part], dtype=np.float64)
+        )
     return ranges
 
 
@@ -193,10 +201,11 @@ class _Group:
             _put_ahead(ahead, sky, energy, rain)
         np.multiply(_factor(spread.kc * season[0]), energy, out=self.demand[: plan.days, b])
 
-    def ranges(self, unknown: Bools) -> list[Range]:
+    def ranges(self, unknown: Bools, width: Floats) -> list[Range]:
         """Each block's 10th and 90th percentile, by as many members as were drawn; `unknown`
-        (blocks,): openings that lie anywhere in 0-100 % of RAW."""
-        depletion = self._run(unknown)
+        (blocks,): openings that lie anywhere in 0-100 % of RAW; `width` (blocks,) [mm]: from p10
+        to p90 of the others."""
+        depletion = self._run(unknown, width)
         own = depletion[:, :, 0].copy()
         low, high = _percentiles(depletion)
         low, high = np.minimum(low, own), np.maximum(high, own)
@@ -205,11 +214,11 @@ class _Group:
             for b, plan in enumerate(self.plans)
         ]
 
-    def _run(self, unknown: Bools) -> Floats:
+    def _run(self, unknown: Bools, width: Floats) -> Floats:
         """Closing depletions (days, blocks, members); they take the place of the demand drawn."""
         block = Blocks(*(values[:, None] for values in self.base.blocks))
         columns = [values[:, :, None] for values in self.base.days]
-        state = self._opening(unknown)
+        state = self._opening(unknown, width)
         for i, closing in enumerate(self.demand):
             own = Days(*[values[i] for values in columns])
             day = self._day(i, own, block.roots)
@@ -217,15 +226,18 @@ class _Group:
             closing[:] = state.depletion
         return self.demand
 
-    def _opening(self, unknown: Bools) -> State:
+    def _opening(self, unknown: Bools, width: Floats) -> State:
         base = self.base
         told = np.array([plan.initial_depletion_mm is not None for plan in self.plans])
         own = base.opening.depletion[:, None] * np.where(told[:, None], 1.0, self.taw)
+        # Evenly spread: p10 to p90 is EVEN_WIDTH of the whole.
+        known = own + (self.anywhere - 0.5) * (width[:, None] / EVEN_WIDTH)
+        known = np.maximum(known, np.minimum(own, 0.0))
         most = base.days.taw[0][:, None] * self.taw
         p = np.clip(base.blocks.p_base - P_SLOPE * P_ETC, P_LEAST, P_MOST)
         anywhere = self.anywhere * p[:, None] * most
         return State(
-            depletion=np.where(unknown[:, None], anywhere, np.minimum(own, most)),
+            depletion=np.where(unknown[:, None], anywhere, np.minimum(known, most)),
             subsoil=base.opening.subsoil[:, None] * self.taw,
             layer=np.broadcast_to(base.opening.layer[:, None], self.taw.shape),
             draining=np.broadcast_to(base.opening.draining[:, None], self.taw.shape),
