@@ -54,6 +54,19 @@ class CanopyPart(Part):
     stomatal: Annotated[float, Field(ge=0.1, le=1)] = 1.0
 
 
+class InitialWettingPart(Part):
+    """How often the soil is expected to be wetted while the crop is small, by rain or irrigation:
+    gives the initial coefficient of single ones (FAO-56 Annex 7)."""
+
+    every_days: Annotated[float, Field(gt=0, le=60)]
+    depth_mm: Annotated[float, Field(gt=0, le=200)] = Field(
+        description="of one wetting, over the whole field"
+    )
+    eto_mm: Annotated[float, Field(gt=0.5, le=12)] = Field(
+        description="reference ET of the place and time of the year, a day"
+    )
+
+
 class MulchPart(Part):
     """Mulch over a fraction of the ground; `reduction` of the crop's own coefficient."""
 
@@ -127,6 +140,9 @@ class SeasonPart(Part):
     )
     cuttings: list[date] = Field([], description="days on which forage was cut")
     mulch: MulchPart | None = None
+    initial_wetting: InitialWettingPart | None = Field(
+        None, description="in place of the initial coefficient; single coefficients only"
+    )
     climate_adjustment: Literal["trailing", "stage_mean", "day", "none"] = Field(
         "trailing", description="wind and humidity that adjust Kc: mean of 30 days, stage, the day"
     )
@@ -158,6 +174,10 @@ class SeasonPart(Part):
             raise ValueError("each of stage_days must be at least 1 day")
         if self.initial_depletion_mm is not None and self.initial_depletion_fraction is not None:
             raise ValueError("give initial_depletion_mm or initial_depletion_fraction, not both")
+        if self.initial_wetting is not None and self.coefficients != "single":
+            raise ValueError(
+                "initial_wetting is for single coefficients; dual ones reckon evaporation each day"
+            )
         if self.own_crop is not None:
             symbol = "kcb" if self.coefficients == "dual" else "kc"
             needed = [*OWN_FIGURES, *(f"{symbol}_{stage}" for stage in ("ini", "mid", "end"))]

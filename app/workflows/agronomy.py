@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 from app import handbook
 from app.science import Floats
 from app.science.advice.system import ApplicationSystem
+from app.science.crop.bare_soil import kc_ini_own_soil, season_of_wetting
+from app.science.crop.season import CropSeason
 from app.science.energy.net_sensor import WindFactor
 from app.science.energy.station_day import Site
 from app.science.soil import texture
@@ -136,6 +138,24 @@ def wetted_fraction(details: dict[str, Any]) -> float:
     """Fraction of the surface a system wets: its own, else the handbook's."""
     own = details["wetted_fraction"]
     return float(own if own is not None else handbook.wetting(details["wetting"]).fw_mid)
+
+
+def initial_wetting(
+    crop: CropSeason, details: dict[str, Any], soil: Profile, system: dict[str, Any]
+) -> CropSeason:
+    """The season with its initial coefficient by how often its soil is wetted, where stated."""
+    told = details.get("initial_wetting")
+    if told is None or crop.coefficients != "single":
+        return crop
+    kc = kc_ini_own_soil(
+        told["every_days"],
+        told["eto_mm"],
+        soil.tew,
+        soil.rew_mm,
+        told["depth_mm"],
+        wetted_fraction(system),
+    )
+    return season_of_wetting(crop, float(kc))
 
 
 def gross_and_net(

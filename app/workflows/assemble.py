@@ -123,7 +123,8 @@ def _subject(
     events: list[Standing],
     through: date,
 ) -> Subject | None:
-    season, crop = stretch.season, stretch.crop
+    season, profile = stretch.season, agronomy.profile(block.soil)
+    crop = agronomy.initial_wetting(stretch.crop, season.details, profile, block.system)
     start = max(stretch.start, weather.first + timedelta(days=weather.known_from))
     ahead = timedelta(days=0 if stretch.bare else HORIZON)
     last = min(agronomy.as_date(crop.last_day), through + ahead)
@@ -149,7 +150,7 @@ def _subject(
         crop=crop,
         plan=BlockPlan(
             season=crop,
-            profile=agronomy.profile(block.soil),
+            profile=profile,
             start=np.datetime64(start, "D"),
             days=days,
             irrigation_gross=water.gross,

@@ -10,8 +10,10 @@ import pytest
 from sqlalchemy import select
 
 from app.book import Book
+from app.science.crop.bare_soil import kc_ini_own_soil
 from app.storage.database import Database
 from app.storage.tables import Advice, Block, LedgerDay
+from app.workflows import agronomy
 from app.workflows.bring_up_to_date import bring_up_to_date
 from app.workflows.load_book import load_book
 from tests.workflows import basin
@@ -181,3 +183,23 @@ def test_every_feature_closes_the_balance(db: Database) -> None:
             - row.correction_mm
         )  # fmt: skip
         assert np.isclose(closing, row.depletion_mm, rtol=0, atol=1e-9)
+
+
+def test_how_often_the_soil_is_wetted_sets_the_initial_single_coefficient(db: Database) -> None:
+    """FAO-56 Annex 7: wetted every 4 days loses more than every 14; the first day shows it."""
+    part = {"depth_mm": 25, "eto_mm": 5}
+    single = {"coefficients": "single", "initial_depletion_mm": 0}
+    often = ledgers(db, single | {"initial_wetting": part | {"every_days": 4}})
+    seldom = ledgers(db, single | {"initial_wetting": part | {"every_days": 14}})
+    first = date(2026, 4, 20)
+    stated = Book.model_validate(basin.BOOK).soils[0].model_dump(mode="json")
+    soil = agronomy.profile(stated)
+    for rows, every in ((often, 4), (seldom, 14)):
+        assert rows[first].ks == 1.0
+        told = float(kc_ini_own_soil(every, 5.0, soil.tew, soil.rew_mm, 25.0))
+        assert rows[first].etc_potential_mm / rows[first].eto_mm == pytest.approx(told)
+    assert often[first].kc_actual > seldom[first].kc_actual
+    with pytest.raises(ValueError, match="single coefficients"):
+        Book.model_validate(
+            basin.BOOK | {"seasons": [SEASON | {"initial_wetting": part | {"every_days": 4}}]}
+        )
