@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -211,15 +212,8 @@ def _days(
     saturation: Floats,
 ) -> Days:
     k, eto = curve.coefficient, np.maximum(supplies.eto, 0.0)  # dew is no demand
-    kc_max = evaporation.kc_max(k, supplies.u2, supplies.rh_min, curve.height)
-    reckoned = evaporation.cover_fraction(k, kc_max, curve.height, curve.kc_min)
-    cover = np.where(np.isnan(curve.cover), reckoned, curve.cover)
-    event = _events(supplies, openings.weighted)
-    fw, by_irrigation = evaporation.wetted_fraction_series(supplies.rain, event)
-    shaded = openings.under_canopy & (by_irrigation > 0.0)
-    sunlit = np.where(shaded, evaporation.under_canopy(fw, cover), fw)
-    sunlit = np.where(curve.in_season, np.minimum(sunlit, openings.open_ground), sunlit)
-    exposed = np.where(dual, evaporation.exposed_wetted_fraction(cover, sunlit), 1.0)
+    ground = surface(dual, curve, supplies, openings)
+    kc_max, fw, exposed = ground.kc_max, ground.fw, ground.exposed
     damped = openings.mulched
     return Days(
         rain=supplies.rain,
@@ -236,6 +230,34 @@ def _days(
         saturation=saturation,
         correction=supplies.correction,
     )
+
+
+class Surface(NamedTuple):
+    """The soil's surface, each (days, blocks) [-]: most Kc after wetting, ground cover fc, wetted
+    fraction fw, and few, the fraction both exposed and wetted (1 with single coefficients)."""
+
+    kc_max: Floats
+    cover: Floats
+    fw: Floats
+    exposed: Floats
+
+
+def surface(dual: Bools, curve: Curve, supplies: Supplies, openings: Openings) -> Surface:
+    """The surface of each day; curve and supplies (days, blocks), dual and openings (blocks,).
+
+    Source: FAO-56 eq 72, 75, 76 and table 20.
+    """
+    k = curve.coefficient
+    kc_max = evaporation.kc_max(k, supplies.u2, supplies.rh_min, curve.height)
+    reckoned = evaporation.cover_fraction(k, kc_max, curve.height, curve.kc_min)
+    cover = np.where(np.isnan(curve.cover), reckoned, curve.cover)
+    event = _events(supplies, openings.weighted)
+    fw, by_irrigation = evaporation.wetted_fraction_series(supplies.rain, event)
+    shaded = openings.under_canopy & (by_irrigation > 0.0)
+    sunlit = np.where(shaded, evaporation.under_canopy(fw, cover), fw)
+    sunlit = np.where(curve.in_season, np.minimum(sunlit, openings.open_ground), sunlit)
+    exposed = np.where(dual, evaporation.exposed_wetted_fraction(cover, sunlit), 1.0)
+    return Surface(kc_max, cover, fw, exposed)
 
 
 def _events(supplies: Supplies, weighted: Bools) -> Floats:
