@@ -187,6 +187,7 @@ class EventRow(NamedTuple):
     who: str
     entered: Any
     supersedes: int | None
+    details: dict[str, Any] | None
 
 
 WATER = ("irrigation", "rain")
@@ -213,6 +214,7 @@ def events_since(
             Event.who,
             Event.entered,
             Event.supersedes,
+            Event.details,
         )
         .join(Block, Block.id == Event.block_id)
         .where(Event.day >= since, Event.kind.in_(WATER))

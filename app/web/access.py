@@ -118,6 +118,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/api/v1/rounds"): EVERY,
     ("GET", "/api/v1/fields"): EVERY,
     ("GET", "/api/v1/fields/{key}"): EVERY,
+    ("GET", "/api/v1/fields/{key}/days/{day}"): EVERY,
     ("GET", "/api/v1/fields/{key}/ledger"): EVERY,
     ("GET", "/api/v1/fields/{key}/advice"): EVERY,
     ("GET", "/api/v1/fields/{key}/events"): EVERY,

@@ -9,7 +9,6 @@ from app.storage.pages import RecentDay, RoundsRow, StationRow
 from app.web import charts, measured, trouble
 from app.web.crops import crop_name, published_stages, season_words, stage
 from app.web.rounds_view import Bar, bar
-from app.web.working_view import opening
 from app.workflows.managed import managed, one_a_field
 from tests.web.factory import TODAY
 
@@ -167,15 +166,3 @@ def test_crops_are_named_and_staged() -> None:
     planting = date(2026, 5, 8)
     assert season_words("maize_grain", planting, None, planting).startswith("maize, grain, day 1")
     assert season_words(None, None, None, planting) == ""
-
-
-def test_the_opening_is_what_the_closing_equation_leaves() -> None:
-    names = (
-        "root_growth_depletion_mm", "rain_mm", "runoff_mm", "rain_outside_roots_mm",
-        "irrigation_net_mm", "capillary_rise_mm", "et_actual_mm", "deep_percolation_mm",
-        "correction_mm",
-    )  # fmt: skip
-    ledger: dict[str, Any] = dict.fromkeys(names, 0.0)
-    ledger |= {"depletion_mm": 20.0, "rain_mm": 6.0, "runoff_mm": 1.0, "et_actual_mm": 5.0}
-    ledger |= {"irrigation_net_mm": 10.0, "deep_percolation_mm": 2.0, "correction_mm": 0.5}
-    assert opening(ledger) == pytest.approx(20.0 + 5.0 + 10.0 - 5.0 - 2.0 + 0.5)

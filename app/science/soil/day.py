@@ -57,6 +57,7 @@ class DayWorking:
     ke_most: float
     ke_water: float
     ke: float
+    asked: float
     etc: float
     p_table: float
     p: float
@@ -117,7 +118,7 @@ def day_working(
     moist = max(block.tew - layer_wet, 0.0) * exposed
     ke_water = moist / eto if eto else np.inf
     ke = min(ke_energy, ke_most, ke_water)
-    etc = day.transpiration + ke * eto
+    asked = day.transpiration + ke * eto
     after = wet + evaporation + transpiration
     return DayWorking(
         dual=dual,
@@ -150,9 +151,10 @@ def day_working(
         ke_most=ke_most,
         ke_water=ke_water,
         ke=ke,
-        etc=etc,
+        etc=day.transpiration + evaporation,
+        asked=asked,
         p_table=plan.season.depletion_fraction,
-        p=float(depletion_fraction(plan.season.depletion_fraction, etc)),
+        p=float(depletion_fraction(plan.season.depletion_fraction, asked)),
         taw=day.taw,
         raw=raw,
         ks_water=float(stress_coefficient(wet, day.taw, raw)),

@@ -20,6 +20,7 @@ from app.web.pages import (
     stations,
     tokens,
     what_if,
+    working,
 )
 
 PARTS = tuple(
@@ -37,6 +38,7 @@ PARTS = tuple(
         fields,
         seen,
         what_if,
+        working,
         stations,
         station_words,
         tokens,

@@ -1,4 +1,4 @@
-"""Field: chart, advice with its reasons, ledger, events; and a day's working."""
+"""Field: chart, advice with its reasons, ledger, events."""
 
 import secrets
 from datetime import date, timedelta
@@ -18,10 +18,9 @@ from app.web import seen_view
 from app.web.access import AsViewer, Viewer
 from app.web.balance_view import crop_balance
 from app.web.measured import compare
-from app.web.needs import AsDatabase, AsDay, AsKey, AsNumber, AsToday, Clean, read_day, read_number
+from app.web.needs import AsDatabase, AsKey, AsNumber, AsToday, Clean, read_day, read_number
 from app.web.problems import RefusedError
 from app.web.render import page
-from app.web.working_view import working
 from app.workflows.managed import managed
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
 from app.workflows.once import EntryError
@@ -292,65 +291,6 @@ def back(key: str, block: str = "") -> Response:
     """Back to the field's events."""
     query = f"?block={block}" if block else ""
     return RedirectResponse(f"/fields/{key}{query}#events", status_code=303)
-
-
-@router.get("/fields/{key}/days/{day}")
-def days_working(
-    request: Request,
-    db: AsDatabase,
-    viewer: AsViewer,
-    today: AsToday,
-    key: AsKey,
-    day: AsDay,
-    block: str = "",
-) -> Response:
-    """Every term of one ledger day: its equation, its inputs, where they came from."""
-    blocks = own_blocks(db, viewer, key)
-    with db.read() as session:
-        if not block:
-            morning = store.last_morning(session, today)
-            block = managed(store.rounds_rows(session, morning, viewer.farms, key)).block_key
-        chosen = choose(blocks, block)
-        rows = store_field.ledger_days(
-            session, chosen.id, day - timedelta(days=1), day + timedelta(days=1)
-        )
-        season = store_field.season_at(session, chosen.id, day)
-        current = store.current(store.sources(session, day, viewer.farms))
-        sources = {
-            variable: row
-            for (number, variable), row in current.items()
-            if number == chosen.field_id
-        }
-        station_days = {
-            row["station_id"]: row
-            for row in store_field.station_days(
-                session, sorted({row.station_id for row in sources.values()}), day, day
-            )
-        }
-        events = [e for e in store.events_since(session, day, [chosen.id]) if e.day == day]
-    by_day = {row["day"]: row for row in rows}
-    if day not in by_day:
-        raise HTTPException(404, f"The ledger of this field has no {wording.full_day(day)}.")
-    return page(
-        request,
-        "pages/working.html",
-        block=chosen,
-        many=len(blocks) > 1,
-        day=day,
-        season=season,
-        before=by_day.get(day - timedelta(days=1)),
-        after=by_day.get(day + timedelta(days=1)),
-        row=by_day[day],
-        sections=working(
-            by_day[day],
-            by_day.get(day - timedelta(days=1)),
-            chosen,
-            season,
-            sources,
-            station_days,
-            events,
-        ),
-    )
 
 
 @router.get("/fields/{key}/ledger.csv")
