@@ -162,6 +162,15 @@ class SoilPart(Part):
         return self
 
 
+class EmitterLinePart(Part):
+    """A straight line of emitters along a plant row, and the strip it wets (NEH 623 chapter 7)."""
+
+    emitters_per_plant: Annotated[float, Field(gt=0, le=100)]
+    spacing_m: Annotated[float, Field(gt=0, le=10)] = Field(description="between its emitters")
+    strip_m: Annotated[float, Field(gt=0, le=10)] = Field(description="width of the wetted strip")
+    plant_area_m2: Annotated[float, Field(gt=0, le=500)] = Field(description="of one plant")
+
+
 class SystemPart(Part):
     """An application system and what it can deliver. Rates and depths are gross."""
 
@@ -177,6 +186,9 @@ class SystemPart(Part):
     wetting: str = Field("sprinkler", description="method_id of the handbook's wetted fractions")
     wetted_fraction: Share | None = Field(
         None, description="of the surface, by an application; of `wetting` when not given"
+    )
+    lines: list[EmitterLinePart] = Field(
+        [], description="emitters run together, whose fractions add up to wetted_fraction"
     )
     same_day: Literal["irrigation", "weighted"] = Field(
         "irrigation", description="wetted fraction of a day with rain as well"
@@ -201,6 +213,8 @@ class SystemPart(Part):
     def _least_below_most(self) -> Self:
         if self.least_mm > self.most_mm:
             raise ValueError(f"least_mm {self.least_mm} is above most_mm {self.most_mm}")
+        if self.lines and self.wetted_fraction is not None:
+            raise ValueError("give wetted_fraction or lines, not both")
         return self
 
 
@@ -239,6 +253,9 @@ class FarmPart(Part):
     )
     letters: Literal["by hand", "automatic"] = Field(
         "by hand", description="whether a letter waits for the advisor's release"
+    )
+    presume: bool = Field(
+        False, description="water advised for a day counts as run the morning after, till told"
     )
     recipients: list[RecipientPart] = Field([])
 

@@ -1,7 +1,7 @@
 """Statements for events: what stands now, and the chain of corrections behind it."""
 
 from collections.abc import Iterable, Sequence
-from datetime import date
+from datetime import date, timedelta
 from typing import Any, NamedTuple
 
 from sqlalchemy import exists, select
@@ -52,6 +52,38 @@ def standing_events(
         wanted = wanted.where(Event.kind.in_(kinds))
     rows = session.execute(wanted)
     return (Standing._make((*row[:-1], row[-1] or {})) for row in rows)
+
+
+PRESUMED = "presumed/"
+"""How the origin of an irrigation begins that was only presumed."""
+
+
+def presumed_near(session: Session, block: int, day: date) -> Event | None:
+    """The irrigation presumed on a block within a day of `day` that still stands, if any."""
+    later = aliased(Event)
+    return session.scalar(
+        select(Event)
+        .where(Event.block_id == block, Event.origin.startswith(PRESUMED))
+        .where(Event.day.between(day - timedelta(days=1), day + timedelta(days=1)))
+        .where(~exists().where(later.supersedes == Event.id))
+        .order_by(Event.day.desc())
+        .limit(1)
+    )
+
+
+def irrigated_on(session: Session, blocks: Sequence[int], day: date) -> set[int]:
+    """Those of the blocks for which an irrigation of the day stands."""
+    return {
+        event.block_id
+        for event in standing_events(session, blocks, ("irrigation",))
+        if event.day == day
+    }
+
+
+def origins_taken(session: Session, origins: Sequence[str]) -> set[str]:
+    """Those of the origins that an event has."""
+    wanted = select(Event.origin).where(Event.origin.in_(origins))
+    return {origin for origin in session.scalars(wanted) if origin is not None}
 
 
 def head_of(session: Session, event: Event) -> Event:

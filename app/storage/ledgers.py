@@ -8,7 +8,9 @@ from sqlalchemy import delete, func, insert, or_, select, update
 from sqlalchemy.orm import Session
 
 from app.storage.tables import (
+    Advice,
     Block,
+    Farm,
     Field,
     IrrigationSystem,
     LedgerDay,
@@ -190,6 +192,28 @@ def _by_day(since: Mapping[int, date]) -> dict[date, list[int]]:
     for block, day in since.items():
         by_day.setdefault(day, []).append(block)
     return by_day
+
+
+class Advised(NamedTuple):
+    """Water that an advice asked for on its own morning."""
+
+    number: int
+    block_id: int
+    gross_mm: float
+
+
+def advised_for(session: Session, day: date) -> list[Advised]:
+    """Advice that stands, issued on the morning of `day` for that day, on farms that presume."""
+    rows = session.execute(
+        select(Advice.number, Advice.block_id, Advice.gross_mm, Farm.details)
+        .join(Block, Block.id == Advice.block_id)
+        .join(Field, Field.id == Block.field_id)
+        .join(Farm, Farm.id == Field.farm_id)
+        .where(Advice.issued_on == day, Advice.day == day, Advice.stands.is_(True))
+        .where(Advice.gross_mm > 0)
+        .order_by(Advice.block_id)
+    )
+    return [Advised(*row[:3]) for row in rows if (row[3] or {}).get("presume")]
 
 
 def replace_ledger_days(

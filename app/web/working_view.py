@@ -376,9 +376,10 @@ def _water(
 
 def _irrigation(event: EventRow, block: BlockRow) -> list[Term]:
     """An irrigation as entered, and the net depth it leaves the roots."""
-    system, share = block.system, (event.details or {}).get("area_share", 1.0)
+    system, told = block.system, event.details or {}
+    share = told.get("area_share", 1.0) if event.unit != "volume_m3" else 1.0
     efficiency, amount = system["efficiency"], event.amount
-    _, net = gross_and_net(amount, event.unit, event.purpose, system, block.area_ha)
+    _, net = gross_and_net(amount, event.unit, event.purpose, system, block.area_ha, share)
     figures = {
         "net_mm": f"{number(amount, 3)} / {number(efficiency, 3)}",
         "hours": f"{number(amount, 3)} × {number(system['rate_mm_h'], 4)}",
@@ -403,7 +404,7 @@ def _irrigation(event: EventRow, block: BlockRow) -> list[Term]:
              wording.word(wording.UNITS, event.unit),
              f"{wording.word(wording.CONFIRMATIONS, event.confirmation)} by {event.who}",
              EVENT_SOURCE),
-        Term("its net depth", number(net * share, 2), "mm", words, "Methods 6",
+        Term("its net depth", number(net, 2), "mm", words, "Methods 6",
              sum=f"({figures}) × {number(efficiency, 3)}{figures_end}"),
     ]  # fmt: skip
 

@@ -16,6 +16,7 @@ from app.science.energy.net_sensor import WindFactor
 from app.science.energy.station_day import Site
 from app.science.soil import texture
 from app.science.soil.capillary import RisingSoil
+from app.science.soil.evaporation import emitter_fraction, lines_fraction
 from app.science.soil.profile import Layer, Profile
 from app.science.soil.root_zone import leaching_requirement, salinity_stress
 from app.science.soil.salinity import soil_salinity
@@ -135,8 +136,20 @@ def application_system(details: dict[str, Any]) -> ApplicationSystem:
 
 
 def wetted_fraction(details: dict[str, Any]) -> float:
-    """Fraction of the surface a system wets: its own, else the handbook's."""
+    """Fraction of the surface a system wets: its own, of its lines, else the handbook's."""
     own = details["wetted_fraction"]
+    if details.get("lines"):
+        own = lines_fraction(
+            [
+                emitter_fraction(
+                    line["emitters_per_plant"],
+                    line["spacing_m"],
+                    line["strip_m"],
+                    line["plant_area_m2"],
+                )
+                for line in details["lines"]
+            ]
+        )
     return float(own if own is not None else handbook.wetting(details["wetting"]).fw_mid)
 
 
@@ -159,22 +172,27 @@ def initial_wetting(
 
 
 def gross_and_net(
-    amount: float, unit: str, purpose: str, system: dict[str, Any], area_ha: float
+    amount: float,
+    unit: str,
+    purpose: str,
+    system: dict[str, Any],
+    area_ha: float,
+    area_share: float = 1.0,
 ) -> tuple[float, float]:
-    """Gross and net depth [mm] of an event as entered.
+    """Gross and net depth [mm] of an event as entered, over the whole block.
 
-    Metered volume / area, or rate x hours, or depth; net is gross x efficiency, times the share
-    its purpose leaves for the roots.
+    Metered volume / area, or rate x hours, or depth, the latter two on `area_share` of the block;
+    net is gross x efficiency, times the share its purpose leaves for the roots.
     """
     efficiency = system["efficiency"]
     if unit == "net_mm":
-        gross = amount / efficiency
+        gross = amount / efficiency * area_share
     elif unit == "hours":
-        gross = amount * system["rate_mm_h"]
+        gross = amount * system["rate_mm_h"] * area_share
     elif unit == "volume_m3":
         gross = amount / (10 * area_ha)
     else:
-        gross = amount
+        gross = amount * area_share
     return gross, gross * efficiency * PURPOSE_SHARE.get(purpose, 1.0)
 
 

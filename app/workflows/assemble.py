@@ -198,7 +198,8 @@ def _subject(
 
 class Water(NamedTuple):
     """What came on a block by day (days,) [mm]: gross and net irrigation with the fraction it
-    wetted, NaN without, and rain, the field's own gauge before the station's."""
+    wetted, NaN without, and rain, the field's own gauge before the station's. Applications to parts
+    of a block on one day are taken as to different parts (working value)."""
 
     gross: Floats
     net: Floats
@@ -217,13 +218,15 @@ def _water(block: BlockRow, events: list[Standing], start: date, rain: Floats) -
         if event.kind == "rain":
             gauge[place] = gauge.get(place, 0.0) + event.amount
         elif event.kind == "irrigation":
-            gross, net = agronomy.gross_and_net(
-                event.amount, event.unit, event.purpose, block.system, block.area_ha
-            )
             share = event.details.get("area_share", 1.0)
-            water.gross[place] += share * gross
-            water.net[place] += share * net
-            water.wetted[place] = fraction
+            gross, net = agronomy.gross_and_net(
+                event.amount, event.unit, event.purpose, block.system, block.area_ha, share
+            )
+            water.gross[place] += gross
+            water.net[place] += net
+            own = event.details.get("wetted_fraction", fraction)
+            before = np.nan_to_num(water.wetted[place])
+            water.wetted[place] = min(before + share * own, max(before, own))
     for place, amount in gauge.items():
         water.rain[place] = amount
     return water

@@ -11,6 +11,7 @@ from app.storage.database import Database
 from app.storage.tables import Advice, Block
 from app.workflows.advise import advise
 from app.workflows.assemble import assemble
+from app.workflows.presume import presume
 from app.workflows.recompute import compute, due_ledgers, write_ledgers
 from app.workflows.station_days import recompute_stations
 
@@ -41,6 +42,7 @@ def up_to_date(session: Session, today: date) -> UpToDate:
     """The same, in the caller's transaction, so that a change and its consequences land as one."""
     through = today - timedelta(days=1)
     days = recompute_stations(session)
+    presume(session, today)
     due = due_ledgers(session, through)
     ledger_days = advices = 0
     later = _advised_after(session, today)

@@ -41,19 +41,23 @@ def _plain(row: store.EventRow) -> dict[str, Any]:
 @router.post("/fields/{key}/events", status_code=201)
 def log(db: AsDatabase, viewer: AsViewer, today: AsToday, key: AsKey, event: EventIn) -> Logged:
     """Log an irrigation, or rain of the field's own gauge (`rain_mm`)."""
-    from app.workflows.log_event import log_irrigation, log_rain
+    from app.workflows.log_event import Water, log_water
 
     own_blocks(db, viewer, key)
+    rain = event.unit == "rain_mm"
     try:
-        if event.unit == "rain_mm":
-            number = log_rain(
-                db, key, event.day, event.amount, viewer.who, event.token, today, event.note
-            )
-        else:
-            number = log_irrigation(
-                db, key, event.block, event.day, event.amount, event.unit, viewer.who,
-                event.token, today, event.purpose, event.confirmation, event.note,
-            )  # fmt: skip
+        water = Water(
+            day=event.day,
+            amount=event.amount,
+            unit=event.unit,
+            purpose="crop" if rain else event.purpose,
+            confirmation="measured" if rain else event.confirmation,
+            note=event.note,
+            area_share=event.area_share,
+            wetted_fraction=event.wetted_fraction,
+        )
+        block = None if rain else event.block
+        number = log_water(db, key, block, water, viewer.who, event.token, today)
     except EntryError as error:
         raise refused(error) from None
     return Logged(id=number)
@@ -75,7 +79,8 @@ def correct(
     try:
         number = correct_event(
             db, event_id, event.day, event.amount, event.unit, viewer.who, event.token, today,
-            event.note,
+            event.note, purpose=event.purpose, confirmation=event.confirmation,
+            area_share=event.area_share,
         )  # fmt: skip
     except EntryError as error:
         raise refused(error) from None

@@ -113,6 +113,10 @@ class EventIn(Given):
     block: Clean | None = None
     purpose: Clean = "crop"
     confirmation: Clean = "reported"
+    area_share: float = Field(1.0, gt=0, le=1, description="part of the block that was watered")
+    wetted_fraction: float | None = Field(
+        None, ge=0.01, le=1, description="of the surface, where not by the block's own system"
+    )
     note: Annotated[Clean, Field(max_length=400)] | None = None
     token: Annotated[Clean, Field(min_length=4, max_length=80)]
 
@@ -130,6 +134,9 @@ class EventChange(Given):
     day: date
     amount: float = Field(ge=0)
     unit: UnitName
+    purpose: Clean | None = Field(None, description="as it was when not given")
+    confirmation: Clean | None = Field(None, description="as it was when not given")
+    area_share: float | None = Field(None, gt=0, le=1, description="as it was when not given")
     note: Annotated[Clean, Field(max_length=400)] | None = None
     token: Annotated[Clean, Field(min_length=4, max_length=80)]
 
@@ -149,6 +156,7 @@ class EventOut(BaseModel):
     who: str
     entered: datetime
     supersedes: int | None
+    details: dict[str, Any] | None = Field(None, description="area_share, wetted_fraction")
 
 
 class Logged(BaseModel):

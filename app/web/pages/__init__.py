@@ -5,6 +5,7 @@ from fastapi import APIRouter
 from app.web.pages import (
     answers,
     enter,
+    events,
     farm,
     fields,
     intake,
@@ -36,6 +37,7 @@ PARTS = tuple(
         recipients,
         answers,
         fields,
+        events,
         seen,
         what_if,
         working,

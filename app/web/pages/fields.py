@@ -4,7 +4,7 @@ import secrets
 from datetime import date, timedelta
 from typing import Annotated
 
-from fastapi import APIRouter, Form, HTTPException, Query, Request, Response
+from fastapi import APIRouter, HTTPException, Query, Request, Response
 from fastapi.responses import RedirectResponse, StreamingResponse
 
 from app import wording
@@ -18,15 +18,13 @@ from app.web import seen_view
 from app.web.access import AsViewer, Viewer
 from app.web.balance_view import crop_balance
 from app.web.measured import compare
-from app.web.needs import AsDatabase, AsKey, AsNumber, AsToday, Clean, read_day, read_number
+from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.problems import RefusedError
 from app.web.render import page
 from app.workflows.managed import managed
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
-from app.workflows.once import EntryError
 
 router = APIRouter()
-Text = Annotated[Clean, Form(max_length=400)]
 ENTRIES_SHOWN = 30
 NO_FIELD = "There is no such field, or it is not on your farm."
 
@@ -193,90 +191,6 @@ def own_event(db: Database, viewer: Viewer, key: str, event_id: int) -> None:
     with db.read() as session:
         if store_field.event_owner(session, event_id) != key:
             raise HTTPException(404, "There is no such entry on this field.")
-
-
-@router.post("/fields/{key}/events")
-def log(
-    request: Request,
-    db: AsDatabase,
-    viewer: AsViewer,
-    today: AsToday,
-    key: AsKey,
-    day: Text = "",
-    amount: Text = "",
-    unit: Text = "hours",
-    block: Text = "",
-    purpose: Text = "crop",
-    confirmation: Text = "reported",
-    note: Text = "",
-    token: Text = "",
-) -> Response:
-    """Log an irrigation, or rain of the field's own gauge."""
-    from app.workflows.log_event import log_irrigation, log_rain
-
-    own_blocks(db, viewer, key)
-    token = token or secrets.token_urlsafe(12)
-    try:
-        on, much = read_day(day, "the day"), read_number(amount, "the amount")
-        if unit == "rain_mm":
-            log_rain(db, key, on, much, viewer.who, token, today, note.strip() or None)
-        else:
-            log_irrigation(
-                db, key, block or None, on, much, unit, viewer.who, token, today,
-                purpose, confirmation, note.strip() or None,
-            )  # fmt: skip
-    except (EntryError, RefusedError) as error:
-        typed = {"day": day, "amount": amount, "unit": unit, "note": note}
-        return show(request, db, viewer, today, key, error=said(error), typed=typed)
-    return back(key, block)
-
-
-@router.post("/fields/{key}/events/{event_id}")
-def correct(
-    request: Request,
-    db: AsDatabase,
-    viewer: AsViewer,
-    today: AsToday,
-    key: AsKey,
-    event_id: AsNumber,
-    day: Text = "",
-    amount: Text = "",
-    unit: Text = "hours",
-    note: Text = "",
-    token: Text = "",
-) -> Response:
-    """Correct an entry: the old one stays in the history."""
-    from app.workflows.log_event import correct_event
-
-    own_event(db, viewer, key, event_id)
-    token = token or secrets.token_urlsafe(12)
-    try:
-        on, much = read_day(day, "the day"), read_number(amount, "the amount")
-        correct_event(db, event_id, on, much, unit, viewer.who, token, today, note.strip())
-    except (EntryError, RefusedError) as error:
-        return show(request, db, viewer, today, key, error=said(error))
-    return back(key)
-
-
-@router.post("/fields/{key}/events/{event_id}/delete")
-def delete(
-    request: Request,
-    db: AsDatabase,
-    viewer: AsViewer,
-    today: AsToday,
-    key: AsKey,
-    event_id: AsNumber,
-    token: Text = "",
-) -> Response:
-    """Delete an entry: it no longer counts, and stays in the history."""
-    from app.workflows.log_event import void_event
-
-    own_event(db, viewer, key, event_id)
-    try:
-        void_event(db, event_id, viewer.who, token or secrets.token_urlsafe(12), today)
-    except EntryError as error:
-        return show(request, db, viewer, today, key, error=said(error))
-    return back(key)
 
 
 def said(error: Exception) -> str:
