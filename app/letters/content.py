@@ -35,6 +35,8 @@ class Item(Part):
     hours: float
     gross_mm: float
     expected: bool = False
+    decided: bool = False
+    """Set by the advisor, in place of what was advised."""
 
 
 class Doubt(Part):
@@ -53,6 +55,14 @@ class Trouble(Part):
 
     field: str
     reason: Literal["no_chance", "no_chance_in_time", "falling_behind"]
+
+
+class Withheld(Part):
+    """A field whose water the advisor withholds through a day, and why."""
+
+    field: str
+    until: date
+    note: str
 
 
 class Past(Part):
@@ -104,6 +114,7 @@ class Content(Part):
     signed: str = ""
     signed_for: str = ""
     revision: int = 0
+    withheld: list[Withheld] = []
     changed: list[str] = []
     """Fields for which a correction is written."""
 

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from itertools import groupby
 
 from app.letters.chart import driest, share
-from app.letters.content import Content, Doubt, Item, Past, one_line
+from app.letters.content import Content, Doubt, Item, Past, Withheld, one_line
 from app.wording.catalogue import RUNGS
 from app.wording.reader import Reader
 
@@ -59,6 +59,8 @@ class View:
     days: tuple[tuple[str, tuple[Line, ...]], ...]
     expected: bool
     troubles: tuple[str, ...]
+    withheld: tuple[str, ...]
+    decided: bool
     rest: str
     note: str
     signed: str
@@ -126,6 +128,8 @@ def view(content: Content, reader: Reader, links: Links) -> View:
             reader.say("letter", trouble.reason, field=trouble.field)
             for trouble in content.troubles
         ),
+        withheld=tuple(_withheld(one, reader) for one in content.withheld),
+        decided=any(item.decided for item in content.items),
         rest=reader.count("letter", "rest", len(content.rest), fields=reader.listed(content.rest))
         if content.rest and content.items
         else "",
@@ -224,6 +228,13 @@ def _correction(content: Content, reader: Reader) -> str:
         n=reader.number(content.revision),
         fields=reader.listed(content.changed),
     )
+
+
+def _withheld(one: Withheld, reader: Reader) -> str:
+    day = reader.day_month(one.until)
+    if not one.note:
+        return reader.say("letter", "withheld", field=one.field, day=day)
+    return reader.say("letter", "withheld_note", field=one.field, day=day, note=one.note)
 
 
 def _line(item: Item, reader: Reader, links: Links) -> Line:

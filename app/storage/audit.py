@@ -16,6 +16,7 @@ from app.storage.tables import (
     SpanMark,
     Station,
 )
+from app.storage.tables_decisions import Decision
 
 MOST = 100
 
@@ -36,6 +37,7 @@ def changes(session: Session, before: datetime | None = None) -> list[Change]:
     found = [
         *_book(session, before),
         *_events(session, before),
+        *_decisions(session, before),
         *_intakes(session, before),
         *_words(session, before, SpanMark, "mark", ("quantity", "first", "last", "verdict", "why")),
         *_words(session, before, SensorEntry, "sensor log", ("kind", "day", "quantity", "note")),
@@ -71,6 +73,21 @@ def _events(session: Session, before: datetime | None) -> list[Change]:
     return [
         Change(row.entered, row.who, "entry", key, _said(was, EVENT), _said(row, EVENT))
         for row, was, key in session.execute(_last(statement, Event.entered, before))
+    ]
+
+
+DECISION = ("number", "verdict", "day", "hours", "until", "note")
+
+
+def _decisions(session: Session, before: datetime | None) -> list[Change]:
+    statement = (
+        select(Decision, Field.key)
+        .join(Block, Block.id == Decision.block_id)
+        .join(Field, Field.id == Block.field_id)
+    )
+    return [
+        Change(row.entered, row.who, "decision", key, None, _said(row, DECISION))
+        for row, key in session.execute(_last(statement, Decision.entered, before))
     ]
 
 

@@ -8,6 +8,7 @@ from sqlalchemy import Text, and_, cast, exists, func, select
 from sqlalchemy.orm import Session, aliased
 
 from app.science.energy.ladder import USUAL
+from app.storage.decisions import Decided, standing_decisions
 from app.storage.scope import Farms, of_farms
 from app.storage.tables import (
     Advice,
@@ -63,6 +64,22 @@ class RoundsRow(NamedTuple):
     change_mm: float | None
     rung: int
     data_until: date | None
+    decision: Decided | None = None
+    """What the advisor decided: day, depths and hours above are then the advisor's."""
+    advised: tuple[date | None, float] = (None, 0.0)
+    """Day and hours of the advice itself, where something was decided."""
+
+    def follow(self, decision: Decided) -> "RoundsRow":
+        """The row as the advisor decided."""
+        return self._replace(
+            decision=decision,
+            advised=(self.day, self.hours),
+            day=decision.day,
+            net_mm=decision.net_mm,
+            gross_mm=decision.gross_mm,
+            hours=decision.hours,
+            volume_m3=decision.volume_m3,
+        )
 
 
 ADVICE_COLUMNS = (
@@ -97,7 +114,8 @@ def last_morning(session: Session, today: date) -> date | None:
 def rounds_rows(
     session: Session, morning: date | None, farms: Farms = None, field: str | None = None
 ) -> list[RoundsRow]:
-    """Every block with its advice of `morning`, of some farms or of one field if given."""
+    """Every block with its advice of `morning`, of some farms or of one field if given, as the
+    advisor decided where something was."""
     statement = (
         select(
             Field.id,
@@ -129,7 +147,16 @@ def rounds_rows(
     statement = of_farms(statement, farms)
     if field is not None:
         statement = statement.where(Field.key == field)
-    return [RoundsRow._make(row) for row in session.execute(statement)]
+    rows = [RoundsRow(*tuple(row)) for row in session.execute(statement)]
+    decided = standing_decisions(session, morning)
+    if not decided:
+        return rows
+    return [
+        row.follow(decided[row.block_id])
+        if row.block_id in decided and row.number is not None
+        else row
+        for row in rows
+    ]
 
 
 class SourceRow(NamedTuple):

@@ -10,11 +10,12 @@ from app import handbook, wording
 from app.science.crop.season import CropSeason
 from app.science.soil.intake_rate import intake_warning
 from app.science.soil.root_zone import yield_share
+from app.storage.pages import RoundsRow
 from app.storage.pages_field import BlockRow, SeasonRow, SeasonSums
 from app.storage.seen import SeenRow
 from app.web.charts import DepletionChart, depletion_chart
 from app.web.crops import season_words
-from app.web.rounds_view import Bar, bar, span, when
+from app.web.rounds_view import Bar, bar, decision_words, span, when
 from app.workflows import agronomy
 from app.workflows.agronomy import as_date, wetted_fraction
 from app.workflows.crop import Seen, crop_season
@@ -69,6 +70,32 @@ def order(
         tuple(wording.unsure(advice["unsure"], stations, advice["issued_on"])),
         state,
     )
+
+
+@dataclass(frozen=True)
+class Decision:
+    """What the advisor decided on the advice of the morning, in words."""
+
+    lead: str
+    rest: str
+    says: str
+
+
+def decided(rows: Sequence[RoundsRow], block_key: str, today: date) -> Decision | None:
+    """The decision that stands for a block; None without one."""
+    row = next((row for row in rows if row.block_key == block_key), None)
+    if row is None or row.decision is None:
+        return None
+    says = decision_words(row, today).strip()
+    if row.decision.verdict == "withhold":
+        return Decision("Water withheld.", "", says)
+    if row.day is None:
+        return Decision("No water needed.", "", says)
+    rest = (
+        f"{wording.depth(row.gross_mm)} mm gross, {wording.number(row.hours, 1)} hours, "
+        f"{wording.volume(row.volume_m3)} m³."
+    )
+    return Decision(f"Water {when(row.day, today)}:", rest, says)
 
 
 def bar_of(advice: Mapping[str, Any]) -> Bar:

@@ -204,11 +204,28 @@ def word_row(
         gross=wording.depth(row.gross_mm) if watering else "",
         net=wording.depth(row.net_mm) if watering else "",
         hours=wording.number(row.hours, 1) if watering else "",
-        why=wording.reason(row.reason, json.loads(row.figures), row.day, facts.today),
+        why=decision_words(row, facts.today)
+        + wording.reason(row.reason, json.loads(row.figures), row.day, facts.today),
         change="" if row.change_mm is None else f"{wording.signed(row.change_mm)} mm; ",
         rung=wording.rung(row.rung),
         age="" if row.unsure.startswith("stale") else age(row.data_until, facts.today),
     )
+
+
+def decision_words(row: RoundsRow, today: date) -> str:
+    """What the advisor decided, and what had been advised; nothing where nothing was."""
+    decision = row.decision
+    if decision is None:
+        return ""
+    note = f" ({decision.note})" if decision.note else ""
+    if decision.verdict == "accept":
+        return f"Accepted by {decision.who}{note}. "
+    day, hours = row.advised
+    advised = f"{when(day, today)}, {wording.number(hours, 1)} h" if day else "no water"
+    if decision.verdict == "withhold":
+        until = wording.short_day(decision.until)
+        return f"Withheld by {decision.who} through {until}{note}; advised: {advised}. "
+    return f"Changed by {decision.who}{note}; advised: {advised}. "
 
 
 @cache

@@ -151,6 +151,18 @@ LETTER: dict[str, Words | Counted] = {
     ),
     "done": Words("Done", "Hecho"),
     "otherwise": Words("Did something else", "Hice otra cosa"),
+    "decided": Words(
+        "† set by your advisor, in place of the advice reckoned",
+        "† fijado por su asesor, en lugar del consejo calculado",
+    ),
+    "withheld": Words(
+        "Your advisor asks you not to water {field} through {day}.",
+        "Su asesor le pide no regar {field} hasta el {day} inclusive.",
+    ),
+    "withheld_note": Words(
+        "Your advisor asks you not to water {field} through {day}: {note}",
+        "Su asesor le pide no regar {field} hasta el {day} inclusive: {note}",
+    ),
     "rest": Counted(
         Words("{fields} needs no water this week.", "{fields} no necesita agua esta semana."),
         Words("{fields} need no water this week.", "{fields} no necesitan agua esta semana."),

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 from sqlalchemy.orm import Session
 
-from app.letters.content import Content, Doubt, Dryness, Energy, Item, Past, Trouble
+from app.letters.content import Content, Doubt, Dryness, Energy, Item, Past, Trouble, Withheld
 from app.science.advice.decide import Outlook
 from app.science.advice.following import following
 from app.storage import letter_facts as store
@@ -200,12 +200,25 @@ def letter_content(
         troubles=[
             Trouble(field=one.row.field_name, reason=one.row.reason)  # type: ignore[arg-type]
             for one in facts.fields
-            if one.row.reason in TROUBLES and (one.row.limit_day or last_day) <= last_day
+            if one.row.decision is None
+            and one.row.reason in TROUBLES
+            and (one.row.limit_day or last_day) <= last_day
         ],
         rest=[
             one.row.field_name
             for one in facts.fields
-            if one.row.field_key not in watered and one.row.reason not in TROUBLES
+            if one.row.field_key not in watered
+            and not withheld(one.row)
+            and (one.row.reason not in TROUBLES or one.row.decision is not None)
+        ],
+        withheld=[
+            Withheld(
+                field=one.row.field_name,
+                until=one.row.decision.until,
+                note=one.row.decision.note,
+            )
+            for one in facts.fields
+            if one.row.decision is not None and withheld(one.row)
         ],
         past_first=facts.today - WEEK,
         past_last=facts.today - timedelta(days=1),
@@ -237,9 +250,15 @@ def _items(facts: FarmFacts, week: date, span: tuple[date, date], domain: str) -
             hours=round(water.hours, 2),
             gross_mm=round(water.gross_mm, 2),
             expected=expected,
+            decided=not expected and row.decision is not None and row.decision.verdict == "change",
         )
         for number, (day, row, water, uid, expected) in enumerate(found, 1)
     ]
+
+
+def withheld(row: RoundsRow) -> bool:
+    """Whether the advisor withholds the field's water."""
+    return row.decision is not None and row.decision.verdict == "withhold"
 
 
 def _doubts(facts: FarmFacts) -> list[Doubt]:

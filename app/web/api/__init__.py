@@ -4,7 +4,7 @@ from typing import Any
 
 from fastapi import APIRouter
 
-from app.web.api import events, fields, intakes, seen, station_words, stations, working
+from app.web.api import decisions, events, fields, intakes, seen, station_words, stations, working
 from app.web.api.schemas import Problem
 from app.wording import CAUTION, CAUTION_TITLE
 
@@ -27,6 +27,7 @@ PROBLEMS: dict[int | str, dict[str, Any]] = {
 PARTS = (
     fields.router,
     working.router,
+    decisions.router,
     events.router,
     seen.router,
     stations.router,

@@ -4,6 +4,7 @@ from fastapi import APIRouter
 
 from app.web.pages import (
     answers,
+    decisions,
     enter,
     events,
     farm,
@@ -37,6 +38,7 @@ PARTS = tuple(
         recipients,
         answers,
         fields,
+        decisions,
         events,
         seen,
         what_if,

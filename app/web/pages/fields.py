@@ -127,6 +127,8 @@ def show(
         managed_by=managed(rounds).block_key,
         title=view.title(chosen, season, today),
         season=season,
+        decision=view.decided(rounds, chosen.key, today),
+        may_decide=viewer.may("POST", "/fields/{key}/decision"),
         order=view.order(advice, today, {item.key: item.name for item in stations}),
         bar=view.bar_of(advice) if advice else None,
         advice=advice,
