@@ -371,6 +371,39 @@ def intake(
     _say({"intake": number, **asdict(applied)}, as_json, text)
 
 
+@app.command()
+def events(
+    file: Annotated[Path, typer.Argument(help="A table of events, or of soil readings.")],
+    look: Annotated[bool, typer.Option("--look", help="Only say what it would bring.")] = False,
+    order: Annotated[str | None, typer.Option(help="dmy or mdy, of dates such as 3/4.")] = None,
+    beside: Annotated[
+        bool, typer.Option("--beside", help="Water on a day that has some is more water.")
+    ] = False,
+    on: On = None,
+    as_json: AsJson = False,
+) -> None:
+    """Log a file of irrigations, rain and what was seen, or of soil readings: whole or not."""
+    from app.workflows.log_file import log_file
+
+    if order not in (None, "dmy", "mdy"):
+        raise InputError(f"--order is {order!r}; write dmy or mdy")
+    with _database(on) as (db, _, today):
+        data = file.read_bytes()
+        told = log_file(db, data, WHO, today, order=order, beside=beside, keep=not look)
+    if told.problems:
+        lines = [
+            f"line {one.line}, {one.column}: {one.value or 'empty'}: {one.why}. {one.remedy}"
+            for one in told.problems
+        ]
+        if told.in_doubt:
+            lines.append("If it is more water beside what is there, say so with --beside.")
+        raise InputError("\n".join([f"{file.name}: nothing was logged.", *lines]))
+    days = f" on {told.fields} fields, {told.first} to {told.last}" if told.new else ""
+    said = "would be new" if look else "logged"
+    text = f"{file.name}: {told.new} events {said}{days}; {told.already} were here already."
+    _say(asdict(told), as_json, text)
+
+
 def _answered(db: Any, number: int, answers: list[str], today: date) -> Any:
     """The preview of a received file, read again with the answers if there are any."""
     from app.intake import answer

@@ -17,7 +17,8 @@ from sqlalchemy.orm import Session
 from app.storage import book
 from app.storage.database import Database
 from app.storage.events import VOID, head_of, presumed_near
-from app.storage.tables import Block, Event, Field
+from app.storage.scope import Farms, of_farms
+from app.storage.tables import Block, Event, Farm, Field
 from app.workflows.bring_up_to_date import up_to_date
 from app.workflows.once import EntryError, once
 
@@ -188,6 +189,20 @@ def _at_hand(day: date, today: date) -> date:
     return day
 
 
+def blocks_of(
+    session: Session, field_key: str, block_key: str | None, farms: Farms = None
+) -> list[Block]:
+    """The blocks of a field of some farms, or the one named; raises EntryError for none."""
+    wanted = select(Block).join(Field).join(Farm).where(Field.key == field_key).order_by(Block.id)
+    if block_key is not None:
+        wanted = wanted.where(Block.key == block_key)
+    blocks = list(session.scalars(of_farms(wanted, farms)))
+    if not blocks:
+        part = f" with a block {block_key!r}" if block_key else ""
+        raise EntryError(f"there is no field {field_key!r}{part}")
+    return blocks
+
+
 def put_water(
     session: Session,
     field_key: str,
@@ -202,13 +217,7 @@ def put_water(
     What was only presumed of the same application gives way to it.
     """
     _at_hand(water.day, today)
-    wanted = select(Block).join(Field).where(Field.key == field_key).order_by(Block.id)
-    if block_key is not None:
-        wanted = wanted.where(Block.key == block_key)
-    blocks = list(session.scalars(wanted))
-    if not blocks:
-        part = f" with a block {block_key!r}" if block_key else ""
-        raise EntryError(f"there is no field {field_key!r}{part}")
+    blocks = blocks_of(session, field_key, block_key)
     already = session.scalar(select(Event.id).where(Event.origin == once(token, blocks[0].id)))
     if already is not None:
         return already

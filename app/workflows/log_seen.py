@@ -4,7 +4,7 @@ Like water, nothing is overwritten, a form sent twice changes nothing, and ledge
 in the same transaction. What was wrong is deleted (`log_event.void_event`) and said again.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from datetime import UTC, date, datetime, timedelta
 from typing import Any
 
@@ -15,8 +15,9 @@ from sqlalchemy.orm import Session
 from app.book.reading import ReadingPart
 from app.storage import book
 from app.storage.database import Database
-from app.storage.tables import Block, Event, Field
+from app.storage.tables import Block, Event
 from app.workflows.bring_up_to_date import up_to_date
+from app.workflows.log_event import blocks_of
 from app.workflows.once import EntryError, once
 from app.workflows.stretches import seasons_of
 
@@ -44,56 +45,69 @@ def log_seen(
     kind stage: amount 1 to 4; cover: amount 0-1 and details `height_m`; cutting; reading: details
     as `ReadingPart`; keep_off: details `last`, its last day; note: what it says. Raises EntryError.
     """
+    told = check_seen(kind, day, today, amount, details, note)
+    with db.write() as session:
+        blocks = blocks_of(session, field_key, block_key)
+        number, new = put_seen(session, blocks, kind, day, who, token, amount, told, note)
+        if new and kind != "note":
+            up_to_date(session, today)
+        return number
+
+
+def check_seen(
+    kind: str, day: date, today: date, amount: float, details: Details | None, note: str | None
+) -> Details | None:
+    """The details as kept; EntryError where what was seen cannot be as stated."""
     if kind not in KINDS:
         raise EntryError(f"kind is {kind!r}; choose one of {', '.join(KINDS)}")
     if day.year < 1980 or (day > today and kind != "keep_off"):
         raise EntryError(f"day is {day}; give a day from 1980 to {today}")
-    told = KINDS[kind](day, amount, details or {}, note or "")
-    with db.write() as session:
-        blocks = _blocks(session, field_key, block_key)
-        origin = once(token, blocks[0].id)
-        already = session.scalar(select(Event.id).where(Event.origin == origin))
-        if already is not None:
-            return already
-        events = [
-            Event(
-                block_id=block.id,
-                kind=kind,
-                day=day,
-                amount=amount,
-                unit="",
-                purpose="crop",
-                confirmation="measured",
-                details=told,
-                note=note,
-                who=who,
-                entered=datetime.now(UTC),
-                origin=once(token, block.id),
-            )
-            for block in blocks
-        ]
-        session.add_all(events)
-        session.flush()
-        numbers = [block.id for block in blocks]
-        if kind in OF_A_CROP:
-            _fits_a_season(session, numbers, kind, day)
-        if kind != "note":
-            # a reading before six in the morning corrects the close of the day before
-            since = day - timedelta(days=1) if kind == "reading" else day
-            book.dirty_blocks(session, numbers, since)
-            up_to_date(session, today)
-        return events[0].id
+    return KINDS[kind](day, amount, details or {}, note or "")
 
 
-def _blocks(session: Session, field_key: str, block_key: str | None) -> list[Block]:
-    wanted = select(Block).join(Field).where(Field.key == field_key).order_by(Block.id)
-    if block_key is not None:
-        wanted = wanted.where(Block.key == block_key)
-    blocks = list(session.scalars(wanted))
-    if not blocks:
-        part = f" with a block {block_key!r}" if block_key else ""
-        raise EntryError(f"there is no field {field_key!r}{part}")
-    return blocks
+def put_seen(
+    session: Session,
+    blocks: Sequence[Block],
+    kind: str,
+    day: date,
+    who: str,
+    token: str,
+    amount: float,
+    told: Details | None,
+    note: str | None,
+) -> tuple[int, bool]:
+    """Keep what was seen, as checked, and mark its blocks dirty: the number, and False if it was
+    there. EntryError where the season cannot have it."""
+    already = session.scalar(select(Event.id).where(Event.origin == once(token, blocks[0].id)))
+    if already is not None:
+        return already, False
+    events = [
+        Event(
+            block_id=block.id,
+            kind=kind,
+            day=day,
+            amount=amount,
+            unit="",
+            purpose="crop",
+            confirmation="measured",
+            details=told,
+            note=note,
+            who=who,
+            entered=datetime.now(UTC),
+            origin=once(token, block.id),
+        )
+        for block in blocks
+    ]
+    session.add_all(events)
+    session.flush()
+    numbers = [block.id for block in blocks]
+    if kind in OF_A_CROP:
+        _fits_a_season(session, numbers, kind, day)
+    if kind != "note":
+        # a reading before six in the morning corrects the close of the day before
+        since = day - timedelta(days=1) if kind == "reading" else day
+        book.dirty_blocks(session, numbers, since)
+    return events[0].id, True
 
 
 def _stage(day: date, amount: float, details: Details, note: str) -> Details | None:

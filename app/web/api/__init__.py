@@ -4,7 +4,17 @@ from typing import Any
 
 from fastapi import APIRouter
 
-from app.web.api import decisions, events, fields, intakes, seen, station_words, stations, working
+from app.web.api import (
+    decisions,
+    event_file,
+    events,
+    fields,
+    intakes,
+    seen,
+    station_words,
+    stations,
+    working,
+)
 from app.web.api.schemas import Problem
 from app.wording import CAUTION, CAUTION_TITLE
 
@@ -29,6 +39,7 @@ PARTS = (
     working.router,
     decisions.router,
     events.router,
+    event_file.router,
     seen.router,
     stations.router,
     station_words.router,
