@@ -96,6 +96,16 @@ def season_at(session: Session, block: int, day: date) -> SeasonRow | None:
     return None if row is None else SeasonRow._make(row)
 
 
+def seasons_of_block(session: Session, block: int) -> list[SeasonRow]:
+    """Every season of a block, last planted first."""
+    rows = session.execute(
+        select(Season.id, Season.crop, Season.planting, Season.details)
+        .where(Season.block_id == block)
+        .order_by(Season.planting.desc())
+    )
+    return [SeasonRow._make(row) for row in rows]
+
+
 LEDGER = tuple(column.name for column in LedgerDay.__table__.columns)
 
 

@@ -67,6 +67,8 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/fields/{key}/days/{day}"): EVERY,
     ("GET", "/fields/{key}/ledger.csv"): EVERY,
     ("POST", "/fields/{key}/decision"): STAFF,
+    ("GET", "/fields/{key}/seasons"): STAFF,
+    ("POST", "/fields/{key}/seasons"): STAFF,
     ("POST", "/fields/{key}/events"): EVERY,
     ("POST", "/fields/{key}/seen"): EVERY,
     ("POST", "/fields/{key}/events/{event_id}"): EVERY,

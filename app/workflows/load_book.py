@@ -289,15 +289,45 @@ def _season(
             loaded.count("seasons", "same")
             continue
         row = row or _moved(session, block, part, plantings)
-        before = None if row is None else row.details
-        row = row or Season(block_id=block.id, planting=part.planting)
-        since = min(part.planting, row.planting)
-        row.planting, row.crop, row.details = part.planting, part.crop, details
-        session.add(row)
-        key = f"{part.field}/{block.key}/{part.planting}"
-        rows.note_change(session, who, "season", key, before, details)
-        rows.dirty_blocks(session, [block.id], since)
-        loaded.count("seasons", "added" if before is None else "changed")
+        loaded.count("seasons", "added" if row is None else "changed")
+        _put_season(session, block, row, part, who)
+
+
+def _put_season(
+    session: Session, block: Block, row: Season | None, part: SeasonPart, who: str
+) -> None:
+    """The part as a season of the block, in place of `row` where there is one."""
+    before, details = None if row is None else row.details, _plain(part)
+    row = row or Season(block_id=block.id, planting=part.planting)
+    since = min(part.planting, row.planting)
+    row.planting, row.crop, row.details = part.planting, part.crop, details
+    session.add(row)
+    key = f"{part.field}/{block.key}/{part.planting}"
+    rows.note_change(session, who, "season", key, before, details)
+    rows.dirty_blocks(session, [block.id], since)
+
+
+def put_season(session: Session, part: SeasonPart, was: date | None, who: str) -> None:
+    """Put one season in, in place of the one planted on `was` where that is given.
+
+    Raises BookError, and changes nothing, for names that lead nowhere and for what cannot grow.
+    """
+    book = Book.model_validate({"seasons": [part]})
+    problems = reference_problems(book, _known(session)) or _science_problems(book)
+    if problems:
+        raise BookError(problems)
+    for block in _named(_blocks(session), part):
+        there = {
+            row.planting: row
+            for row in session.scalars(select(Season).where(Season.block_id == block.id))
+        }
+        row = there.get(was or part.planting)
+        if row is not None and row.planting != part.planting and part.planting in there:
+            raise BookError(
+                [f"planting {part.planting}: another season was planted on that day; change that"]
+            )
+        if row is None or row.details != _plain(part):
+            _put_season(session, block, row, part, who)
 
 
 def _moved(

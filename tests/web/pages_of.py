@@ -12,6 +12,7 @@ PAGES = {
         "/fields/field-7",
         "/fields/field-3?season=whole",
     ],
+    "pages/seasons.html": ["/fields/field-10/seasons"],
     "pages/working.html": [f"/fields/field-10/days/{YESTERDAY}"],
     "pages/stations.html": ["/stations"],
     "pages/station.html": ["/stations/north", "/stations/bench?span=year", "/stations/lane"],
