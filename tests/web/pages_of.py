@@ -13,6 +13,7 @@ PAGES = {
         "/fields/field-3?season=whole",
     ],
     "pages/seasons.html": ["/fields/field-10/seasons"],
+    "pages/event_file.html": ["/events/file"],
     "pages/working.html": [f"/fields/field-10/days/{YESTERDAY}"],
     "pages/stations.html": ["/stations"],
     "pages/station.html": ["/stations/north", "/stations/bench?span=year", "/stations/lane"],
