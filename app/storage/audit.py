@@ -17,6 +17,7 @@ from app.storage.tables import (
     Station,
 )
 from app.storage.tables_decisions import Decision
+from app.storage.tables_meters import Meter, MeterReading
 
 MOST = 100
 
@@ -38,6 +39,7 @@ def changes(session: Session, before: datetime | None = None) -> list[Change]:
         *_book(session, before),
         *_events(session, before),
         *_decisions(session, before),
+        *_meter_readings(session, before),
         *_intakes(session, before),
         *_words(session, before, SpanMark, "mark", ("quantity", "first", "last", "verdict", "why")),
         *_words(session, before, SensorEntry, "sensor log", ("kind", "day", "quantity", "note")),
@@ -73,6 +75,22 @@ def _events(session: Session, before: datetime | None) -> list[Change]:
     return [
         Change(row.entered, row.who, "entry", key, _said(was, EVENT), _said(row, EVENT))
         for row, was, key in session.execute(_last(statement, Event.entered, before))
+    ]
+
+
+METER = ("kind", "day", "register", "restarts", "note")
+
+
+def _meter_readings(session: Session, before: datetime | None) -> list[Change]:
+    old = aliased(MeterReading)
+    statement = (
+        select(MeterReading, old, Meter.key)
+        .join(Meter, Meter.id == MeterReading.meter_id)
+        .outerjoin(old, old.id == MeterReading.supersedes)
+    )
+    return [
+        Change(row.entered, row.who, "meter reading", key, _said(was, METER), _said(row, METER))
+        for row, was, key in session.execute(_last(statement, MeterReading.entered, before))
     ]
 
 

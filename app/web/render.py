@@ -83,5 +83,5 @@ def current_page(path: str, start: str) -> bool:
     if start == "/people" and path == "/audit":
         return True
     if start == "/":
-        return path == "/" or path.startswith(("/fields", "/rounds", "/events"))
+        return path == "/" or path.startswith(("/fields", "/rounds", "/events", "/meters"))
     return path == start or path.startswith(start + "/")

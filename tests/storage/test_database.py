@@ -10,7 +10,7 @@ from alembic.runtime.migration import MigrationContext
 from sqlalchemy import inspect, text
 from sqlalchemy.exc import IntegrityError
 
-from app.storage import tables_letters, tables_people  # noqa: F401 (its tables belong to the metadata)
+from app.storage import tables_letters, tables_meters, tables_people  # noqa: F401 (its tables belong to the metadata)
 from app.storage.database import Database, DatabaseError, alembic_config
 from app.storage.tables import Base, Block, Farm, Station
 

@@ -16,6 +16,7 @@ from sqlalchemy import select
 from app.storage.database import Database
 from app.storage.tables import Base, Event, Intake, SensorEntry, SpanMark
 from app.storage.tables_letters import Cover
+from app.storage.tables_meters import Meter, MeterField, MeterReading
 from app.storage.tables_people import Account, SignIn
 from app.web.access import MAY
 from app.workflows import tokens
@@ -43,6 +44,7 @@ VALUES = {
     "/recipients/": {"number": "2"},
     "/covers/": {"number": "1"},
     "/people/": {"number": "1"},
+    "/meters/": {"key": "tern-gate", "number": "1"},
     "/me/": {"number": "1"},
 }
 OPEN = ("/static/", "/enter", "/sign-", "/forgot", "/link/", "/answer/", "/stop/", "/calendar/")
@@ -99,6 +101,15 @@ def walked(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Database]:
         session.add(
             Cover(id=1, farm_id=2, first=day, last=day, name="Di Foe", who="Di Foe", entered=now)
         )
+        session.add(
+            Meter(id=1, key="tern-gate", name="Tern Creek", farm_id=2, unit="m3", multiplier=1)
+        )
+        session.flush()
+        session.add(MeterField(meter_id=1, field_id=1))
+        session.add(
+            MeterReading(id=1, meter_id=1, kind="reading", day=day, register=1, restarts=False,
+                         note="", who="Di Foe", entered=now, origin="x")
+        )  # fmt: skip
         tokens.make_token(session, "push", "foreign", "Di Foe", station="bench")
     enter(db, "ada@example.org").get("/letters")  # drafts: letter 3 is of tern
     yield db
