@@ -11,6 +11,7 @@ from urllib.parse import urlencode
 
 from app import wording
 from app.storage.pages import EventRow, RoundsRow, SourceRow
+from app.storage.since_yesterday import Since
 from app.web.crops import crop_name, season_words
 from app.workflows.managed import ORDER
 
@@ -93,6 +94,7 @@ class Facts:
     stations: Mapping[str, str]
     energy: Mapping[int, SourceRow] = field(default_factory=dict)
     events: Mapping[int, Sequence[EventRow]] = field(default_factory=dict)
+    since: Mapping[int, Since] = field(default_factory=dict)
     ahead: Mapping[int, Sequence[RoundsRow]] = field(default_factory=dict)
     """For each field its blocks that are more urgent than the one it goes by."""
 
@@ -206,10 +208,51 @@ def word_row(
         hours=wording.number(row.hours, 1) if watering else "",
         why=decision_words(row, facts.today)
         + wording.reason(row.reason, json.loads(row.figures), row.day, facts.today),
-        change="" if row.change_mm is None else f"{wording.signed(row.change_mm)} mm; ",
+        change=change_words(row, facts),
         rung=wording.rung(row.rung),
         age="" if row.unsure.startswith("stale") else age(row.data_until, facts.today),
     )
+
+
+REVISED_MM = 0.5
+"""A depletion of the morning before that moved by less is not said to have been revised."""
+
+
+def change_words(row: RoundsRow, facts: Facts) -> str:
+    """What changed since the morning before, and why: yesterday's terms; what was thought of the
+    days before and is now known otherwise; a day to water that has moved."""
+    if row.change_mm is None:
+        return ""
+    said = f"{wording.signed(row.change_mm)} mm"
+    since = facts.since.get(row.block_id)
+    if since is None:
+        return f"{said}; "
+    terms = (
+        ("ET", since.et_mm),
+        ("rain", since.rain_mm),
+        ("watered", since.irrigation_mm),
+        ("reading", since.correction_mm),
+    )
+    told = [(name, mm) for name, mm in terms if abs(mm) >= 0.05]
+    if len(told) == 1:
+        said += f", {told[0][0]}"
+    elif told:
+        said += ": " + ", ".join(f"{name} {wording.depth(mm)}" for name, mm in told)
+    said += "; " if since.thought_mm is None else ". "
+    if since.thought_mm is not None:
+        revised = since.before_mm - since.thought_mm
+        if abs(revised) >= REVISED_MM:
+            why = "entries since" if since.told else "new data"
+            more = "drier" if revised > 0 else "wetter"
+            said += f"Was {wording.depth(abs(revised))} mm {more} than thought: {why}. "
+    day = row.advised[0] if row.decision else row.day
+    if (
+        since.was_day is not None
+        and day not in (None, since.was_day)
+        and max(since.was_day, day or since.was_day) > facts.today
+    ):
+        said += f"Day moved from {wording.short_day(since.was_day)}. "
+    return said
 
 
 def decision_words(row: RoundsRow, today: date) -> str:

@@ -13,6 +13,7 @@ from starlette.datastructures import FormData
 from app import wording
 from app.storage import pages as store
 from app.storage.database import Database
+from app.storage.since_yesterday import since_yesterday
 from app.web import rounds_view as view
 from app.web.access import AsViewer, Viewer
 from app.web.needs import AsDatabase, AsToday, read_day, read_number, without_nul
@@ -151,6 +152,7 @@ def _show(
         recent = store.recent_days(session, today)
         last = store.last_days(session)
         events = store.events_since(session, today - timedelta(days=EVENTS_SHOWN_DAYS))
+        since = since_yesterday(session, morning)
     by_block: dict[int, list[store.EventRow]] = defaultdict(list)
     for event in events:
         by_block[event.block_id].append(event)
@@ -159,6 +161,7 @@ def _show(
         stations={station.key: station.name for station in stations},
         energy={field: row for (field, _), row in energy.items()},
         events=by_block,
+        since=since,
         ahead={row.field_id: others for row, others in pairs if others},
     )
     sifted = view.sift(rows, sieve, facts)
