@@ -78,6 +78,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/meters"): EVERY,
     ("POST", "/meters"): STAFF,
     ("GET", "/meters/{key}"): EVERY,
+    ("POST", "/meters/{key}"): STAFF,
     ("POST", "/meters/{key}/readings"): EVERY,
     ("POST", "/meters/{key}/readings/{number}/delete"): EVERY,
     ("POST", "/meters/{key}/readings/{number}/share"): EVERY,

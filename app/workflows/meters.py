@@ -92,12 +92,12 @@ class MeterGiven:
             raise EntryError(f"unit is {self.unit!r}; choose one of {', '.join(UNITS)}")
         if not 0 < self.multiplier <= 1e6:
             raise EntryError(
-                f"multiplier is {self.multiplier:g}; give one above 0, such as 1 or 10"
+                f"multiplier is {self.multiplier:.12g}; give one above 0, such as 1 or 10"
             )
         if self.rolls_over_at is not None and not 10 <= self.rolls_over_at <= 1e12:
             raise EntryError(
-                f"rolls_over_at is {self.rolls_over_at:g}; give what follows the last number the "
-                "register can show, such as 1000000"
+                f"rolls_over_at is {self.rolls_over_at:.12g}; give what follows the last number "
+                "the register can show, such as 1000000"
             )
         if not self.fields:
             raise EntryError("fields is empty; choose the fields the meter feeds")
@@ -200,8 +200,8 @@ def read_meter(
         most = math.inf if meter.rolls_over_at is None else meter.rolls_over_at
         if not math.isfinite(register) or not 0 <= register < min(most, 1e12):
             raise EntryError(
-                f"register is {register:g}; give the number shown, at least 0"
-                + (f" and below {most:g}" if math.isfinite(most) else "")
+                f"register is {register:.12g}; give the number shown, at least 0"
+                + (f" and below {most:.12g}" if math.isfinite(most) else "")
             )
         readings = store.standing_readings(session, meter.id)
         replaced = next((one for one in readings if one.day == day), None)
@@ -230,13 +230,14 @@ def _rises(readings: Sequence[MeterReading], day: date, register: float, restart
     after = [one for one in readings if one.day > day]
     if before and not restarts and register < before[-1].register:
         raise EntryError(
-            f"register is {register:g}; on {before[-1].day} it showed {before[-1].register:g}, so "
-            "say that the meter was changed, or state at what number it rolls over"
+            f"register is {register:.12g}; on {before[-1].day} it showed "
+            f"{before[-1].register:.12g}, so say that the meter was changed, "
+            "or state at what number it rolls over"
         )
     if after and not after[0].restarts and register > after[0].register:
         raise EntryError(
-            f"register is {register:g}; on {after[0].day} it showed {after[0].register:g}, which "
-            "is less, so look at both again"
+            f"register is {register:.12g}; on {after[0].day} it showed "
+            f"{after[0].register:.12g}, which is less, so look at both again"
         )
 
 
@@ -348,7 +349,7 @@ def share_out(
                     who=who,
                     entered=datetime.now(UTC),
                     supersedes=old.id,
-                    origin=once(token, old.id),
+                    origin=once(f"meter-{token}", old.id),
                 )
             )
             book.dirty_blocks(session, [old.block_id], old.day)

@@ -35,7 +35,7 @@ def test_what_cannot_be_is_refused_in_words(live: Browser) -> None:
     assert "No field is chosen" in live.post("/meters", data=NEW | {"field": []}).text
     live.post("/meters", data=NEW)
     page = "/meters/head-gate-4"
-    for register, says in (("", "is no number"), ("1,234", "thousands"), ("1e9", "below 1e+06")):
+    for register, says in (("", "is no number"), ("1,234", "thousands"), ("1e9", "below 1000000")):
         answer = live.post(f"{page}/readings", data={"day": "2026-06-18", "shows": register})
         assert answer.status_code == 422
         assert says in answer.text
@@ -80,3 +80,26 @@ def test_the_list_tells_metered_against_logged(live: Browser) -> None:
     text = live.get("/meters").text
     assert "+25 %" in text  # 2500 logged, 2000 metered
     assert "1 to share out" in text
+
+
+def test_a_meter_is_changed_and_every_reading_told_anew(live: Browser) -> None:
+    live.post("/meters", data=NEW)
+    page = "/meters/head-gate-4"
+    for day, shows in (("2026-06-04", "100"), ("2026-06-08", "350")):
+        live.post(f"{page}/readings", data={"day": day, "shows": shows})
+    changed = {**NEW, "multiplier": "10", "field": ["long-piece", "two-halves"]}
+    assert live.post(page, data=changed).status_code == 303
+    (_, last) = live.get("/api/v1/meters/head-gate-4/readings").json()
+    assert last["metered_m3"] == 2500
+    assert "Two Halves" in live.get(page).text
+    assert live.post(page, data=changed | {"multiplier": "no"}).status_code == 422
+    assert live.post(page, data=changed | {"field": ["nowhere"]}).status_code == 422
+
+
+def test_a_long_register_is_shown_to_its_last_digit(live: Browser) -> None:
+    live.post("/meters", data=NEW)
+    page = "/meters/head-gate-4"
+    live.post(f"{page}/readings", data={"day": "2026-06-04", "shows": "987654.5"})
+    text = live.get(page).text
+    assert "987654.5" in text
+    assert 'value="1000000"' in text

@@ -96,24 +96,60 @@ def put_up(
     field: Annotated[list[Clean] | None, Form()] = None,
 ) -> Response:
     """Put up a meter."""
-    fields, rolls = tuple(field or ()), rolls_over_at.strip()
     try:
-        with db.read() as session:
-            farm = store.farm_of_field(session, fields[0], viewer.farms) if fields else None
-        if farm is None:
-            raise RefusedError("No field is chosen.", remedy="Choose the fields the meter feeds.")
-        given = meters.MeterGiven(
-            name=name,
-            farm=farm,
-            fields=fields,
-            unit=unit,
-            multiplier=read_number(multiplier or "1", "the multiplier"),
-            rolls_over_at=read_number(rolls, "the roll-over") if rolls else None,
-        )
-        key = meters.put_meter(db, given, viewer.who, viewer.farms)
+        stated = _stated(db, viewer, name, unit, multiplier, rolls_over_at, field or [])
+        key = meters.put_meter(db, stated, viewer.who, viewer.farms)
     except (EntryError, RefusedError) as error:
         return _list(request, db, viewer, said(error))
     return RedirectResponse(f"/meters/{key}", status_code=303)
+
+
+@router.post("/meters/{key}")
+def change(
+    request: Request,
+    db: AsDatabase,
+    viewer: AsViewer,
+    today: AsToday,
+    key: AsKey,
+    name: Text = "",
+    unit: Text = "m3",
+    multiplier: Text = "1",
+    rolls_over_at: Text = "",
+    field: Annotated[list[Clean] | None, Form()] = None,
+) -> Response:
+    """Change a meter; what was shared out stays until it is shared again."""
+    own_meter(db, viewer, key)
+    try:
+        stated = _stated(db, viewer, name, unit, multiplier, rolls_over_at, field or [])
+        meters.put_meter(db, stated, viewer.who, viewer.farms, key)
+    except (EntryError, RefusedError) as error:
+        return _show(request, db, viewer, key, str(today), said(error))
+    return RedirectResponse(f"/meters/{key}", status_code=303)
+
+
+def _stated(
+    db: Database,
+    viewer: Viewer,
+    name: str,
+    unit: str,
+    multiplier: str,
+    rolls_over_at: str,
+    fields: list[str],
+) -> meters.MeterGiven:
+    """A meter as the form states it; raises EntryError or RefusedError."""
+    with db.read() as session:
+        farm = store.farm_of_field(session, fields[0], viewer.farms) if fields else None
+    if farm is None:
+        raise RefusedError("No field is chosen.", remedy="Choose the fields the meter feeds.")
+    rolls = rolls_over_at.strip()
+    return meters.MeterGiven(
+        name=name,
+        farm=farm,
+        fields=tuple(fields),
+        unit=unit,
+        multiplier=read_number(multiplier or "1", "the multiplier"),
+        rolls_over_at=read_number(rolls, "the roll-over") if rolls else None,
+    )
 
 
 @router.get("/meters/{key}")
@@ -131,6 +167,9 @@ def _show(
         found = own_meter(db, viewer, key)
         blocks = store.fed_blocks(session, found.id)
         told = meters.intervals(session, found)
+        farm = store.farm_of_field(session, blocks[0].field_key, viewer.farms) if blocks else None
+        own = None if farm is None else frozenset({farm})
+        free = store.unmetered_fields(session, own)
     return page(
         request,
         "pages/meter.html",
@@ -144,6 +183,9 @@ def _show(
         ],
         told=list(reversed(told)),
         sums=sums(told),
+        choices=sorted([*_fed(blocks), *((row[0], row[1]) for row in free)], key=lambda f: f[1]),
+        chosen=[key for key, _ in _fed(blocks)],
+        units=UNITS,
         day=day,
         token=secrets.token_urlsafe(12),
         isnan=math.isnan,
