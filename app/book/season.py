@@ -159,6 +159,9 @@ class SeasonPart(Part):
     initial_evaporation_depletion_mm: Depth = 0
     refill_to_mm: Depth = Field(0, description="depletion an application is to leave")
     rain_room_mm: Depth = Field(0, description="room an application is to leave for rain")
+    allowed_at_maturity: Fraction | None = Field(
+        None, description="depletion the crop may end with, of TAW; 0.6 when not given"
+    )
     end: date | None = Field(
         None, description="harvest or frost; planting plus the stages if not given"
     )

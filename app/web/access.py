@@ -136,6 +136,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("GET", "/api/v1/fields/{key}/events"): EVERY,
     ("GET", "/api/v1/fields/{key}/seen"): EVERY,
     ("GET", "/api/v1/fields/{key}/what-if"): EVERY,
+    ("GET", "/api/v1/fields/{key}/closing-water"): EVERY,
     ("POST", "/api/v1/fields/{key}/seen"): EVERY,
     ("POST", "/api/v1/fields/{key}/decision"): STAFF,
     ("POST", "/api/v1/fields/{key}/events"): EVERY,

@@ -1,7 +1,7 @@
 """The Methods page's figures, taken from where the program itself takes them."""
 
 from app.intake import complete, grid
-from app.science.advice import decide
+from app.science.advice import closing, decide
 from app.science.energy import checks, day_checks, ladder
 from app.science.outlook import ensemble, sequences, usual
 from app.wording import number, share
@@ -76,6 +76,11 @@ def working_values() -> list[tuple[str, str, str]]:
         ("recent mornings", f"{sequences.RECENT}", "range"),
         ("leads apart that mornings count as independent", f"{sequences.APART}", "range"),
         ("days looked ahead", f"{field_weather.HORIZON}", "ahead"),
+        (
+            "depletion allowed at maturity, of TAW",
+            share(closing.ALLOWED_AT_MATURITY),
+            "closing water",
+        ),
         ("soon: days after due", f"{decide.SOON_DAYS}", "advice"),
         ("unsure: an input older than", f"{decide.STALE_DAYS} days", "advice"),
         ("unsure: early and late limit dates apart", f"over {decide.WIDE_DAYS} days", "advice"),

@@ -5,6 +5,7 @@ from typing import Any
 from fastapi import APIRouter
 
 from app.web.api import (
+    closing,
     decisions,
     event_file,
     events,
@@ -37,6 +38,7 @@ PROBLEMS: dict[int | str, dict[str, Any]] = {
 
 PARTS = (
     fields.router,
+    closing.router,
     working.router,
     decisions.router,
     events.router,

@@ -17,10 +17,12 @@ from app.web import field_view as view
 from app.web import seen_view
 from app.web.access import AsViewer, Viewer
 from app.web.balance_view import crop_balance
+from app.web.closing_view import closing_words
 from app.web.measured import compare
 from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.problems import RefusedError
 from app.web.render import page
+from app.workflows.closing_water import closing_water
 from app.workflows.managed import managed
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
 
@@ -68,6 +70,7 @@ def show(
         first = view.first_ledger_day(season, today, whole)
         ledger = store_field.ledger_days(session, chosen.id, first) if season else []
         advice = store_field.last_advice(session, chosen.id, today) if season else None
+        closes = closing_water(session, chosen.id, today) if advice else None
         past = store_field.past_advice(session, chosen.id, today)
         events = store.events_since(
             session,
@@ -133,6 +136,7 @@ def show(
         bar=view.bar_of(advice) if advice else None,
         advice=advice,
         facts=view.facts(advice, chosen, season, today),
+        closing=closing_words(closes, today) if closes else None,
         chart=view.chart(ledger, advice, whole),
         ahead=view.ahead_rows(advice),
         ledger=list(reversed(ledger if whole else ledger[-view.LEDGER_DAYS :])),

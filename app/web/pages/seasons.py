@@ -22,13 +22,17 @@ from app.workflows.once import EntryError
 router = APIRouter()
 Text = Annotated[Clean, Form(max_length=200)]
 DEPTHS = {"refill_to_mm": "depletion to leave", "rain_room_mm": "room for rain"}
-SHARES = {"mad": "MAD", "initial_depletion_fraction": "depletion at the start"}
+SHARES = {
+    "mad": "MAD",
+    "initial_depletion_fraction": "depletion at the start",
+    "allowed_at_maturity": "depletion allowed at maturity",
+}
 METRES = {"root_depth_min_m": "least root depth", "root_depth_max_m": "greatest root depth"}
 DATES = {"end": "last day", "ledger_start": "first day of the ledger"}
 NAMES = (
     "block", "was", "crop", "planting", "end", "coefficients", "stage_days", "mad", "mad_by_stage",
     "root_depth_min_m", "root_depth_max_m", "ledger_start", "initial_depletion_fraction",
-    "refill_to_mm", "rain_room_mm", "note",
+    "refill_to_mm", "rain_room_mm", "allowed_at_maturity", "note",
 )  # fmt: skip
 
 
@@ -112,6 +116,7 @@ def put(
     initial_depletion_fraction: Text = "",
     refill_to_mm: Text = "",
     rain_room_mm: Text = "",
+    allowed_at_maturity: Text = "",
     note: Text = "",
 ) -> Response:
     """Plant, or change a season; ledgers and advice follow at once."""
