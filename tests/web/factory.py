@@ -24,6 +24,7 @@ from app.storage.tables import (
     StationDay,
 )
 from app.storage.tables_letters import Recipient
+from app.storage.tables_meters import Meter, MeterField, MeterReading
 
 TODAY = date(2026, 7, 14)
 PLANTING = date(2026, 5, 8)
@@ -73,6 +74,8 @@ def fill(db: Database, fields: int = 12, days: int = 40, hostile: bool = True) -
         for number in range(1, fields + 1):
             _field(session, number, days, hostile)
         session.flush()
+        if fields >= 3:
+            _meter(session)
         session.add(
             Event(
                 id=1,
@@ -88,6 +91,23 @@ def fill(db: Database, fields: int = 12, days: int = 40, hostile: bool = True) -
                 entered=datetime(2026, 7, 13, 6, tzinfo=UTC),
             )
         )
+
+
+def _meter(session: Session) -> None:
+    """A meter of Hollin Farm on field-3, read twice."""
+    session.add(
+        Meter(id=50, key="hollin-gate", name=HOSTILE, farm_id=1, unit="m3", multiplier=10.0)
+    )
+    session.flush()
+    session.add(MeterField(meter_id=50, field_id=3))
+    session.add_all(
+        MeterReading(
+            id=50 + n, meter_id=50, kind="reading", day=TODAY - timedelta(days=20 - 7 * n),
+            register=1000.0 + 90 * n, restarts=False, note=HOSTILE, who="test",
+            entered=datetime(2026, 7, 13, tzinfo=UTC), origin=f"factory-{n}",
+        )
+        for n in range(2)
+    )  # fmt: skip
 
 
 def _recipient(farm: int, name: str) -> Recipient:

@@ -14,6 +14,8 @@ PAGES = {
     ],
     "pages/seasons.html": ["/fields/field-10/seasons"],
     "pages/event_file.html": ["/events/file"],
+    "pages/meters.html": ["/meters"],
+    "pages/meter.html": ["/meters/hollin-gate"],
     "pages/working.html": [f"/fields/field-10/days/{YESTERDAY}"],
     "pages/stations.html": ["/stations"],
     "pages/station.html": ["/stations/north", "/stations/bench?span=year", "/stations/lane"],
