@@ -1,6 +1,6 @@
 """Gather what a ledger rests on: for each block and season, a plan and its weather."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping, Sequence, Set
 from dataclasses import dataclass
 from datetime import date, timedelta
 from typing import NamedTuple
@@ -64,10 +64,16 @@ class Subject:
         return self.block.block_id == other.block.block_id and bool(after == self.plan.start)
 
 
-def assemble(session: Session, since: Mapping[int, date], through: date) -> list[Subject]:
+def assemble(
+    session: Session,
+    since: Mapping[int, date],
+    through: date,
+    counted: Set[str] = agronomy.COUNTED,
+) -> list[Subject]:
     """Subjects of blocks for every season that has days from the block's day of `since` on.
 
-    Ledgers run to `through`. A season whose stations have no reference ET yet has no subject.
+    Ledgers run to `through`; water counts whose confirmation is in `counted`. A season whose
+    stations have no reference ET yet has no subject.
     """
     blocks = sorted(since)
     block_rows = {row.block_id: row for row in read_blocks(session, blocks)}
@@ -96,6 +102,7 @@ def assemble(session: Session, since: Mapping[int, date], through: date) -> list
             weather.of(block.field_id),
             events.get(block.block_id, []),
             through,
+            counted,
         )
         if subject is not None:
             subjects.append(subject)
@@ -122,6 +129,7 @@ def _subject(
     weather: FieldWeather,
     events: list[Standing],
     through: date,
+    counted: Set[str],
 ) -> Subject | None:
     season, profile = stretch.season, agronomy.profile(block.soil)
     crop = agronomy.initial_wetting(stretch.crop, season.details, profile, block.system)
@@ -133,9 +141,7 @@ def _subject(
         return None
     here = slice((start - weather.first).days, (start - weather.first).days + days)
     done = [
-        event
-        for event in events
-        if event.day <= through + TODAY and event.confirmation in agronomy.COUNTED
+        event for event in events if event.day <= through + TODAY and event.confirmation in counted
     ]
     water = _water(block, done, start, weather.rain[here])
     details = season.details

@@ -22,6 +22,7 @@ from app.web.measured import compare
 from app.web.needs import AsDatabase, AsKey, AsToday
 from app.web.problems import RefusedError
 from app.web.render import page
+from app.workflows.both_ways import both_ways
 from app.workflows.closing_water import closing_water
 from app.workflows.managed import managed
 from app.workflows.measuring_saved import MEASURED_RUNGS, measuring_saved
@@ -72,6 +73,7 @@ def show(
         advice = store_field.last_advice(session, chosen.id, today) if season else None
         closes = closing_water(session, chosen.id, today) if advice else None
         past = store_field.past_advice(session, chosen.id, today)
+        unconfirmed = both_ways(session, chosen.id, today)
         events = store.events_since(
             session,
             season.planting - timedelta(days=60) if season else today - timedelta(days=365),
@@ -142,6 +144,8 @@ def show(
         ledger=list(reversed(ledger if whole else ledger[-view.LEDGER_DAYS :])),
         whole=whole,
         past=past,
+        unconfirmed=unconfirmed,
+        near_day=wording.near_day,
         events=events if every_entry else events[:ENTRIES_SHOWN],
         earlier=0 if every_entry else max(len(events) - ENTRIES_SHOWN, 0),
         so_far=view.season_so_far(sums, season),
