@@ -7,6 +7,8 @@ from pydantic import Field, model_validator
 
 from app.book.parts import Depth, Fraction, Key, Mad, Name, Part, Stage
 
+Shares = tuple[Fraction | None, Fraction | None, Fraction | None, Fraction | None]
+
 
 class DegreeDaysPart(Part):
     """Stages by warmth: base and upper temperature [degC] and the degree days of each stage."""
@@ -158,6 +160,15 @@ class SeasonPart(Part):
     )
     initial_evaporation_depletion_mm: Depth = 0
     refill_to_mm: Depth = Field(0, description="depletion an application is to leave")
+    refill_to_by_stage: Shares | None = Field(
+        None, description="by stage, of TAW, over `refill_to_mm`; initial to late"
+    )
+    et_target_by_stage: Shares | None = Field(
+        None, description="share of crop ET an application gives back, by stage; all if not given"
+    )
+    floor_by_stage: Shares | None = Field(
+        None, description="most depletion an application leaves, of TAW, by stage"
+    )
     rain_room_mm: Depth = Field(0, description="room an application is to leave for rain")
     allowed_at_maturity: Fraction | None = Field(
         None, description="depletion the crop may end with, of TAW; 0.6 when not given"
@@ -181,6 +192,19 @@ class SeasonPart(Part):
             raise ValueError(
                 "initial_wetting is for single coefficients; dual ones reckon evaporation each day"
             )
+        for n, share in enumerate(self.et_target_by_stage or ()):
+            if share is not None and share < 0.1:
+                raise ValueError(
+                    f"et_target_by_stage gives {share:g} in stage {n + 1}; give at least 0.1"
+                )
+        limits = self.mad_by_stage or (None,) * 4
+        for n, left in enumerate(self.refill_to_by_stage or ()):
+            limit = limits[n] if limits[n] is not None else self.mad
+            if left is not None and left >= (0.95 if limit is None else limit):
+                raise ValueError(
+                    f"refill_to_by_stage leaves {left:g} of TAW in stage {n + 1}; it must be below "
+                    "that stage's limit"
+                )
         if self.own_crop is not None:
             symbol = "kcb" if self.coefficients == "dual" else "kc"
             needed = [*OWN_FIGURES, *(f"{symbol}_{stage}" for stage in ("ini", "mid", "end"))]

@@ -52,6 +52,10 @@ BOUNDS = {
     "hours": "The depth is what the system’s hours allow.",
     "intake": "The depth is the most the soil takes in at once.",
 }
+PLANNED = (
+    "By its stage’s plan {et_target:share} of the crop’s use is given back, and "
+    "{refill_to_mm:mm} stay unfilled."
+)
 NOT_HELD = "{past_field_capacity_mm:mm} of it the root zone cannot hold."
 
 
@@ -100,6 +104,8 @@ def bound(figures: Mapping[str, Any], today: date) -> str:
     if code not in BOUNDS:
         warnings.warn(f"no sentence for bound {code!r}", UnwordedCode, stacklevel=2)
     said = [BOUNDS.get(code, code)]
+    if "et_target" in figures:
+        said.append(sentence(PLANNED, figures, today))
     if float(figures.get("past_field_capacity_mm", 0.0)) >= 0.05:
         said.append(sentence(NOT_HELD, figures, today))
     return " ".join(text for text in said if text)

@@ -123,6 +123,13 @@ def _row(computed: Computed, on: date, stale: list[tuple[str, int, date | None]]
         allowed=agronomy.keep_off_mask(subject.block.field, days, subject.keep_offs),
         p10=p10[past:],
         p90=p90[past:],
+        plan=agronomy.plan_by_stage(
+            subject.crop,
+            subject.plan,
+            subject.weather,
+            subject.season.details,
+            ledger.taw_mm[past:],
+        ),
     )
     now = ledger.depletion_mm[past - 1] if past else ledger.opening_depletion_mm
     details = subject.season.details
@@ -172,8 +179,18 @@ def _row(computed: Computed, on: date, stale: list[tuple[str, int, date | None]]
             "eto": _rounded(subject.weather.eto[past:]),
             "etc": _rounded(outlook.etc),
             "rain": _rounded(subject.weather.rain[past:]),
+            **_planned(outlook),
         },
     )
+
+
+def _planned(outlook: Outlook) -> dict[str, list[float | None]]:
+    plan = outlook.plan
+    if plan is None:
+        return {}
+    floor = np.where(np.isinf(plan.floor), np.nan, plan.floor)
+    columns = {"refill": plan.refill, "target": plan.target, "floor": floor}
+    return {name: _rounded(values) for name, values in columns.items()}
 
 
 def _unsure(advice: Advice, stale: list[tuple[str, int, date | None]], outlook: Outlook) -> str:

@@ -9,12 +9,15 @@ from numpy.typing import NDArray
 
 from app import handbook
 from app.science import Floats
+from app.science.advice.stage_plan import StagePlan, stage_plan
 from app.science.advice.system import ApplicationSystem
 from app.science.crop.bare_soil import kc_ini_own_soil, season_of_wetting
+from app.science.crop.position import positions
 from app.science.crop.season import CropSeason
 from app.science.energy.net_sensor import WindFactor
 from app.science.energy.station_day import Site
 from app.science.soil import texture
+from app.science.soil.block import BlockPlan, BlockWeather
 from app.science.soil.capillary import RisingSoil
 from app.science.soil.evaporation import emitter_fraction, lines_fraction
 from app.science.soil.profile import Layer, Profile
@@ -209,6 +212,27 @@ def keep_off_mask(
     for begins, ends in said:
         allowed &= ~((days >= np.datetime64(begins)) & (days <= np.datetime64(ends)))
     return allowed
+
+
+def plan_by_stage(
+    crop: CropSeason, plan: BlockPlan, weather: BlockWeather, details: dict[str, Any], taw: Floats
+) -> StagePlan | None:
+    """A season's plan for the last days of `plan`, as many as `taw` has; None without one."""
+    warm = crop.degree_days
+    warmth = None
+    if warm is not None and weather.tmax is not None and weather.tmin is not None:
+        warmth = warm.daily(weather.tmax, weather.tmin)[:, None]
+    place = positions(
+        [crop], plan.date[:, None], warmth=warmth, warmth_before=[plan.degree_days_before]
+    )
+    return stage_plan(
+        place.stage[plan.days - taw.size :, 0],
+        taw,
+        details["refill_to_mm"],
+        details.get("refill_to_by_stage"),
+        details.get("et_target_by_stage"),
+        details.get("floor_by_stage"),
+    )
 
 
 def salt_factor(field: dict[str, Any], season: dict[str, Any]) -> float:

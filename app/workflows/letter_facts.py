@@ -13,6 +13,7 @@ from sqlalchemy.orm import Session
 from app.letters.content import Content, Doubt, Dryness, Energy, Item, Past, Trouble, Withheld
 from app.science.advice.decide import Outlook
 from app.science.advice.following import following
+from app.science.advice.stage_plan import StagePlan
 from app.storage import letter_facts as store
 from app.storage import pages
 from app.storage.pages import RoundsRow
@@ -132,6 +133,13 @@ def _outlook(working: store.Working) -> Outlook:
         taw=column("taw"),
         etc=column("etc"),
         allowed=agronomy.keep_off_mask(working.field, days),
+        plan=None
+        if "refill" not in working.outlook
+        else StagePlan(
+            refill=column("refill"),
+            target=column("target"),
+            floor=np.nan_to_num(column("floor"), nan=np.inf),
+        ),
     )
 
 

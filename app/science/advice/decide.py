@@ -8,6 +8,7 @@ import numpy as np
 from app.science import Bools, Days, Floats
 from app.science.advice.keeping_up import Ahead, chances, daily_change, holds
 from app.science.advice.reasons import Reason
+from app.science.advice.stage_plan import StagePlan
 from app.science.advice.system import ApplicationSystem
 
 # A millimetre over a hectare.
@@ -26,6 +27,7 @@ class Outlook:
     date (H,) datetime64[D], consecutive; depletion, limit, taw, etc (H,) [mm]: projected end of
     day depletion, its limit, TAW and unstressed ETc; allowed (H,) bool: no keep-off, inside the
     turn; p10, p90 (H,) [mm]: range of the projected depletion, or None.
+    plan: what applications leave by stage, in place of `refill_to_mm`, or None.
     A NaN limit is never passed.
     """
 
@@ -37,6 +39,7 @@ class Outlook:
     allowed: Bools
     p10: Floats | None = None
     p90: Floats | None = None
+    plan: StagePlan | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -105,8 +108,13 @@ def decide(
     passed = first_passed(outlook.depletion, outlook.limit)
     late = bool(depletion_now > outlook.limit[0])
 
+    def leaves(day: int) -> float:
+        if outlook.plan is None:
+            return refill_to_mm
+        return outlook.plan.leaves(day, float(ahead.opening[day]))
+
     def wanted(day: int) -> float:
-        return _wanted(float(ahead.opening[day]), refill_to_mm, rain_room_mm)
+        return _wanted(float(ahead.opening[day]), leaves(day), rain_room_mm)
 
     def depth(day: int) -> float:
         return min(max(wanted(day), ahead.net_least), ahead.net_most)
@@ -131,12 +139,14 @@ def decide(
         opening = float(ahead.opening[day])
         figures |= {
             "opening_mm": opening,
-            "refill_to_mm": refill_to_mm,
+            "refill_to_mm": leaves(day),
             "rain_room_mm": rain_room_mm,
             "efficiency": system.efficiency,
             "bound": _bound(wanted(day), ahead, system, intake_mm),
             "past_field_capacity_mm": max(net - max(opening, 0.0), 0.0),
         }
+        if outlook.plan is not None:
+            figures["et_target"] = float(outlook.plan.target[day])
     return Advice(
         standing=_standing(depletion_now, late, passed, ahead.may_start),
         day=None if day is None else outlook.date[day],
@@ -213,6 +223,8 @@ def _ahead(
     if intake_mm is not None:
         net_most = max(min(net_most, intake_mm), net_least)
     ready = _ready(outlook, last_irrigation, gap)
+    if outlook.plan is not None:
+        leave = float(np.minimum(outlook.plan.refill, outlook.plan.floor).min())
     return Ahead(
         opening=np.concatenate(([depletion_now], outlook.depletion[:-1])),
         change=daily_change(depletion_now, outlook.depletion, outlook.limit, outlook.etc),

@@ -76,6 +76,7 @@ def _watered(
             allowed=outlook.allowed[rest],
             p10=None,
             p90=None,
+            plan=None if outlook.plan is None else outlook.plan.since(place + 1),
         ),
         float(path[place]),
     )

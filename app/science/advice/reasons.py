@@ -15,7 +15,8 @@ class Reason(StrEnum):
     With an advised day also: opening_mm (depletion at the opening of that day), refill_to_mm,
     rain_room_mm, efficiency (0-1), bound (what set the depth instead of the depletion: "", least,
     most, hours, intake), past_field_capacity_mm (net that cannot be held: above 0 only where
-    `least` exceeds the room).
+    `least` exceeds the room). Under a plan by stage also et_target (share of the crop's use that is
+    given back).
 
     LIMIT_NOT_REACHED: no close within the horizon passes the limit; no water.
     BACK_WITHIN: past the limit now, but every close of the horizon is within it (rain); no water.

@@ -29,10 +29,17 @@ SHARES = {
 }
 METRES = {"root_depth_min_m": "least root depth", "root_depth_max_m": "greatest root depth"}
 DATES = {"end": "last day", "ledger_start": "first day of the ledger"}
+FOURS = {
+    "mad_by_stage": "MAD by stage",
+    "refill_to_by_stage": "depletion to leave by stage",
+    "et_target_by_stage": "share of crop ET by stage",
+    "floor_by_stage": "most depletion to leave by stage",
+}
 NAMES = (
     "block", "was", "crop", "planting", "end", "coefficients", "stage_days", "mad", "mad_by_stage",
     "root_depth_min_m", "root_depth_max_m", "ledger_start", "initial_depletion_fraction",
-    "refill_to_mm", "rain_room_mm", "allowed_at_maturity", "note",
+    "refill_to_mm", "rain_room_mm", "allowed_at_maturity",
+    "refill_to_by_stage", "et_target_by_stage", "floor_by_stage", "note",
 )  # fmt: skip
 
 
@@ -117,6 +124,9 @@ def put(
     refill_to_mm: Text = "",
     rain_room_mm: Text = "",
     allowed_at_maturity: Text = "",
+    refill_to_by_stage: Text = "",
+    et_target_by_stage: Text = "",
+    floor_by_stage: Text = "",
     note: Text = "",
 ) -> Response:
     """Plant, or change a season; ledgers and advice follow at once."""
@@ -148,7 +158,7 @@ def _told(typed: Mapping[str, str]) -> dict[str, Any]:
         "coefficients": typed["coefficients"],
         "note": typed["note"].strip() or None,
         "stage_days": _four(typed["stage_days"], "the stage lengths"),
-        "mad_by_stage": _four(typed["mad_by_stage"], "MAD by stage", 100),
+        **{name: _four(typed[name], label, 100) for name, label in FOURS.items()},
     }
     for name, label in DATES.items():
         told[name] = read_day(typed[name], label) if typed[name].strip() else None
@@ -191,9 +201,10 @@ def _written(details: Mapping[str, Any], planting: str) -> dict[str, str]:
         "coefficients": details.get("coefficients", "dual"),
         "note": details.get("note") or "",
         "stage_days": " ".join(plain(n) for n in details.get("stage_days") or ()),
-        "mad_by_stage": " ".join(
-            "-" if n is None else plain(n, 100) for n in details.get("mad_by_stage") or ()
-        ),
+        **{
+            name: " ".join("-" if n is None else plain(n, 100) for n in details.get(name) or ())
+            for name in FOURS
+        },
         **{name: details.get(name) or "" for name in DATES},
         **{name: plain(details.get(name)) for name in METRES},
         **{name: plain(details.get(name) or None) for name in DEPTHS},
