@@ -101,6 +101,7 @@ def make_book(
         "systems": tables.SYSTEMS,
         "farms": tables.FARMS,
         "fields": [],
+        "supplies": tables.SUPPLIES,
         "seasons": [],
     }
     irrigations = list(knobs["other_irrigations"])

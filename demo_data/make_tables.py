@@ -325,3 +325,29 @@ WETTING = {
     "furrow_alternate": 0.4,
     "trickle": 0.35,
 }
+
+# short by a third of what its fields use in July
+SUPPLIES: list[dict[str, Any]] = [
+    {
+        "key": "creek-ditch",
+        "name": "Creek ditch",
+        "flow_m3_h": 1000,
+        "flows": [{"since": "2026-07-01", "flow_m3_h": 850}],
+        "conveyance_loss": 0.08,
+        "tariff": [
+            {"name": "night lift", "hours": 9, "price_m3": 0.03},
+            {"name": "day lift", "hours": 10, "price_m3": 0.07},
+        ],
+        "turn": {"first": "2026-04-01", "every_days": 7, "for_days": 2},
+        "sets_a_day": 5,
+        "fields": [
+            "mill-bottom",
+            "weir-ground",
+            "heron-strip",
+            "gravel-pit-piece",
+            "creek-bend",
+            "sand-strip",
+            "lane-end",
+        ],
+    }
+]

@@ -4,7 +4,13 @@ from alembic import context
 from sqlalchemy import Connection, Engine
 
 from app.settings import read_settings
-from app.storage import tables_decisions, tables_letters, tables_meters, tables_people  # noqa: F401 (its tables belong to the metadata)
+from app.storage import (  # noqa: F401 (its tables belong to the metadata)
+    tables_decisions,
+    tables_letters,
+    tables_meters,
+    tables_people,
+    tables_supply,
+)
 from app.storage.database import make_engine
 from app.storage.tables import Base
 

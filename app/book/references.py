@@ -52,6 +52,8 @@ def reference_problems(book: Book, known: Known) -> list[str]:
     twice("systems", (part.key for part in book.systems))
     twice("farms", (part.key for part in book.farms))
     twice("fields", (part.key for part in book.fields))
+    twice("supplies", (part.key for part in book.supplies))
+    twice("hangs on a supply, field", (key for part in book.supplies for key in part.fields))
     twice("seasons", ((part.field, part.block, part.planting) for part in book.seasons))
 
     for station in book.stations:
@@ -89,6 +91,13 @@ def reference_problems(book: Book, known: Known) -> list[str]:
             lines.append(
                 f"{here}, blocks: their areas add to {area:g} ha, the field has {part.area_ha:g} ha"
             )
+
+    for supply in book.supplies:
+        for key in supply.fields:
+            leads(f"supplies {supply.key}, fields", "field", key, fields)
+        for allocation in supply.allocations:
+            if allocation.farm is not None:
+                leads(f"supplies {supply.key}, allocations", "farm", allocation.farm, farms)
 
     def on_field(place: str, field_key: str, block: str | None) -> None:
         leads(f"{place}, field", "field", field_key, fields)

@@ -27,6 +27,7 @@ from app.book.parts import (
     Variable,
 )
 from app.book.season import SeasonPart
+from app.book.supply import SupplyPart
 from app.errors import InputError
 
 
@@ -375,6 +376,7 @@ class Book(Part):
     systems: list[SystemPart] = Field([])
     farms: list[FarmPart] = Field([])
     fields: list[FieldPart] = Field([])
+    supplies: list[SupplyPart] = Field([])
     seasons: list[SeasonPart] = Field([])
     irrigations: list[IrrigationPart] = Field([])
     rain: list[RainPart] = Field([])

@@ -75,6 +75,8 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("POST", "/fields/{key}/events/{event_id}/delete"): EVERY,
     ("GET", "/events/file"): EVERY,
     ("POST", "/events/file"): EVERY,
+    ("GET", "/supply"): STAFF,
+    ("GET", "/supply/{key}"): STAFF,
     ("GET", "/meters"): EVERY,
     ("POST", "/meters"): STAFF,
     ("GET", "/meters/{key}"): EVERY,

@@ -83,5 +83,7 @@ def current_page(path: str, start: str) -> bool:
     if start == "/people" and path == "/audit":
         return True
     if start == "/":
-        return path == "/" or path.startswith(("/fields", "/rounds", "/events", "/meters"))
+        return path == "/" or path.startswith(
+            ("/fields", "/rounds", "/events", "/meters", "/supply")
+        )
     return path == start or path.startswith(start + "/")

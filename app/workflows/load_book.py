@@ -39,6 +39,7 @@ from app.storage.tables import (
 )
 from app.workflows import agronomy
 from app.workflows.crop import crop_season
+from app.workflows.put_supply import put_supply
 
 VARIABLES = ("energy", "temperature", "wind", "rain")
 MOVED = timedelta(days=30)
@@ -79,6 +80,8 @@ def load_book(session: Session, book: Book, who: str) -> Loaded:
     for part in book.fields:
         _field(session, part, keys, who, loaded)
     session.flush()
+    for supply in book.supplies:
+        loaded.count("supplies", put_supply(session, supply, who))
     blocks = _blocks(session)
     plantings = {(season.field, season.planting) for season in book.seasons}
     for season in book.seasons:

@@ -65,6 +65,7 @@ def test_every_template_of_a_page_is_rendered_here() -> None:
     # test_access, test_intake_pages, test_station_api
     elsewhere = {"pages/enter.html", "pages/intake_file.html", "pages/intake_pushes.html"}
     elsewhere |= {"pages/what_if.html"}  # test_what_if
+    elsewhere |= {"pages/supplies.html", "pages/supply.html"}  # test_supply
     # test_letters
     elsewhere |= {"pages/answer.html", "pages/answer_broken.html", "pages/stop.html"}
     elsewhere |= {"pages/me.html", "pages/person.html", "pages/link.html"}  # test_people

@@ -18,6 +18,7 @@ from app.storage.tables import Base, Event, Intake, SensorEntry, SpanMark
 from app.storage.tables_letters import Cover
 from app.storage.tables_meters import Meter, MeterField, MeterReading
 from app.storage.tables_people import Account, SignIn
+from app.storage.tables_supply import Supply, SupplyField
 from app.web.access import MAY
 from app.workflows import tokens
 from tests.web import factory
@@ -44,6 +45,7 @@ VALUES = {
     "/recipients/": {"number": "2"},
     "/covers/": {"number": "1"},
     "/people/": {"number": "1"},
+    "/supply/": {"key": "tern-ditch"},
     "/meters/": {"key": "tern-gate", "number": "1"},
     "/me/": {"number": "1"},
 }
@@ -104,7 +106,16 @@ def walked(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Database]:
         session.add(
             Meter(id=1, key="tern-gate", name="Tern Creek", farm_id=2, unit="m3", multiplier=1)
         )
+        session.add(
+            Supply(
+                id=1,
+                key="tern-ditch",
+                name="Tern Creek",
+                details={"key": "tern-ditch", "name": "x", "flow_m3_h": 9.0},
+            )
+        )
         session.flush()
+        session.add(SupplyField(supply_id=1, field_id=1))
         session.add(MeterField(meter_id=1, field_id=1))
         session.add(
             MeterReading(id=1, meter_id=1, kind="reading", day=day, register=1, restarts=False,

@@ -121,7 +121,8 @@ class SharedSupply:
 class GivenUp:
     """A block that passes its limit in the plan: first day (index), deepest [mm] below the limit,
     sum over days [mm d], and the rule that stops it: allocation, share, turn (no day on which it
-    may be watered by then), labour, flow, or set (its own hours and interval)."""
+    may be watered by then), labour, flow, draw (it draws more than the supply gives), or set (its
+    own hours and interval)."""
 
     name: str
     day: int
@@ -361,11 +362,13 @@ def _rule(
     for rule in ("allocation", "share"):
         if rule in full:
             return rule
+    if claim.flow > supply.flow_m3_h.max() * (1.0 + 1e-9):
+        return "draw"
     usable = claim.allowed[: day + 1] & (supply.hours[:, : day + 1].sum(axis=0) > 0.0)
     if not usable.any():
         return "turn"
     on = (by_band.sum(axis=1) > TINY).sum(axis=0)
-    if (on >= supply.sets)[: day + 1][usable].any():
+    if (on >= supply.sets)[: day + 1][usable].all():
         return "labour"
     return "flow" if "flow" in full else "set"
 

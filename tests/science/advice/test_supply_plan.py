@@ -215,6 +215,7 @@ def test_what_is_given_up_is_named_with_its_mm_and_the_rule() -> None:
     assert (given.name, given.rule) == ("mill-bottom", "allocation")
     assert plan_supply((claim(),), supply(hours=np.zeros((2, 7)))).given_up[0].rule == "turn"
     assert plan_supply((claim(),), supply(sets=np.zeros(7))).given_up[0].rule == "labour"
+    assert plan_supply((claim(),), supply(flow=199.0)).given_up[0].rule == "draw"
 
 
 def test_pins_are_kept_and_those_that_do_not_fit_are_refused() -> None:
