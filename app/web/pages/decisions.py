@@ -44,5 +44,7 @@ def decide(
             note=note,
         )  # fmt: skip
     except (EntryError, RefusedError) as error:
-        return show(request, db, viewer, today, key, chosen.key, error=said(error))
+        return show(
+            request, db, viewer, today, key, chosen.key, error=said(error), refused="Not decided."
+        )
     return RedirectResponse(f"/fields/{key}?block={chosen.key}", status_code=303)

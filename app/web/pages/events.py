@@ -85,7 +85,7 @@ def correct(
             area_share=part_of(share) if share.strip() else None,
         )  # fmt: skip
     except (EntryError, RefusedError) as error:
-        return show(request, db, viewer, today, key, error=said(error))
+        return show(request, db, viewer, today, key, error=said(error), refused="Not corrected.")
     return back(key)
 
 
@@ -106,7 +106,7 @@ def delete(
     try:
         void_event(db, event_id, viewer.who, token or secrets.token_urlsafe(12), today)
     except EntryError as error:
-        return show(request, db, viewer, today, key, error=said(error))
+        return show(request, db, viewer, today, key, error=said(error), refused="Not deleted.")
     return back(key)
 
 

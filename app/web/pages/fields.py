@@ -60,6 +60,7 @@ def show(
     error: str = "",
     typed: dict[str, str] | None = None,
     every_entry: bool = False,
+    refused: str = "Not logged.",
 ) -> Response:
     """The Field page; with an error over its forms, and what was typed still in them."""
     blocks = own_blocks(db, viewer, key)
@@ -173,6 +174,7 @@ def show(
         season_facts=view.season_facts(season, noticed),
         token=secrets.token_urlsafe(12),
         error=error,
+        refused=refused,
         typed={"day": str(today - timedelta(days=1)), "amount": "", "unit": "hours", "note": ""}
         | (typed or {}),
     )

@@ -26,9 +26,9 @@ from app.workflows.once import EntryError
 router = APIRouter()
 EVENTS_SHOWN_DAYS = 4
 LONGEST_RUN_H = 168  # a week; more in one row is a slip of the finger
-# Hours in one row above this many times the advised, and above these, are asked again (working
-# values).
-DOUBTED_SHARE, FREE_HOURS = 1.5, 12.0
+# Hours in one row are asked again above this many times the advised and this many hours more, and
+# above FREE_HOURS where nothing was advised (working values).
+DOUBTED_SHARE, DOUBTED_MORE, FREE_HOURS = 1.5, 3.0, 12.0
 Short = Annotated[str, Query(max_length=80)]
 
 
@@ -114,10 +114,11 @@ def _log(request: Request, form: FormData, db: Database, viewer: Viewer, today: 
 
 def _doubt(hours: float, advised: float) -> str:
     """What to ask of hours that look like a slip: far more than advised, or than a day has."""
-    if hours <= max(DOUBTED_SHARE * advised, FREE_HOURS):
+    free = max(DOUBTED_SHARE * advised, advised + DOUBTED_MORE) if advised else FREE_HOURS
+    if hours <= free:
         return ""
     said = f"the advice was {wording.number(advised, 1)} h" if advised else "no water was advised"
-    return f"{wording.number(hours, 1)} h? {said[:1].upper()}{said[1:]}."
+    return f"{wording.plain(hours)} h? {said[:1].upper()}{said[1:]}."
 
 
 @router.post("/rounds/up-to-date")
