@@ -85,6 +85,7 @@ MAY: dict[tuple[str, str], frozenset[str]] = {
     ("POST", "/meters/{key}/readings/{number}/delete"): EVERY,
     ("POST", "/meters/{key}/readings/{number}/share"): EVERY,
     ("GET", "/advice.csv"): STAFF,
+    ("GET", "/outturn"): STAFF,
     ("GET", "/stations"): EVERY,
     ("GET", "/stations/{key}"): EVERY,
     ("GET", "/stations/{key}/days/{day}"): EVERY,

@@ -59,9 +59,9 @@ class Water:
             raise EntryError(f"amount is {self.amount:g}; it must be a number above 0")
         if self.amount == 0 and not self.rain:
             raise EntryError("amount is 0; it must be a number above 0")
-        if self.amount > UNITS[self.unit]:
+        if self.amount > (most := UNITS[self.unit]):
             raise EntryError(
-                f"amount is {self.amount:g} {self.unit}; at most {UNITS[self.unit]:g} is taken"
+                f"amount is {self.amount:g} {self.unit}; more than {most:g} is not taken"
             )
         if self.day.year < 1980:
             raise EntryError(f"day is {self.day}; give a day from 1980 on")

@@ -13,6 +13,7 @@ PAGES = {
         "/fields/field-3?season=whole",
     ],
     "pages/seasons.html": ["/fields/field-10/seasons"],
+    "pages/outturn.html": ["/outturn", "/outturn?farm=hollin"],
     "pages/event_file.html": ["/events/file"],
     "pages/meters.html": ["/meters"],
     "pages/meter.html": ["/meters/hollin-gate"],
