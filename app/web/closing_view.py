@@ -17,15 +17,15 @@ class ClosingWords:
 
 def closing_words(found: ClosingWater, today: date) -> ClosingWords:
     """The last application that pays, the one before it, and what maturity is left with."""
+    left = "It leaves" if found.applications else "The soil is left"
     ends = (
-        f"It leaves {wording.depth(found.left_mm)} mm depleted at maturity, "
+        f"{left} {wording.depth(found.left_mm)} mm depleted at maturity, "
         f"{wording.plain_day(found.maturity)}; {wording.depth(found.allowed_mm)} mm "
         f"({wording.share(found.allowed_share)} of TAW) are allowed."
     )
-    basis = "By the usual weather, without rain; each rain puts it off or does away with it."
+    basis = "By the usual weather, without rain"
     if not found.applications:
-        ends = ends.replace("It leaves", "The soil is left", 1)
-        return ClosingWords("Closing water: none to come.", f"{ends}{_short(found)} {basis}")
+        return ClosingWords("Closing water: none to come.", f"{ends}{_short(found)} {basis}.")
     *before, last = found.applications
     count = "" if not before else f" the last of {len(found.applications)} to come,"
     said = (
@@ -39,7 +39,7 @@ def closing_words(found: ClosingWater, today: date) -> ClosingWords:
         )
     return ClosingWords(
         f"Closing water: {wording.near_day(last.day, today)}",
-        f"{said} {ends}{_short(found)} {basis}",
+        f"{said} {ends}{_short(found)} {basis}; each rain puts it off or does away with it.",
     )
 
 
