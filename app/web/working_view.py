@@ -278,7 +278,7 @@ def _crop(row: Row, day: DayWorking, opened: Opened) -> list[Term]:
              "FAO-56 Table 22",
              sum=f"min(max({number(day.p_table, 3)} + 0.04 × (5 − {factor} × {eto}), 0.1), 0.8)"),
         Term("readily available, RAW", number(day.raw, 2), "mm", "p TAW", "FAO-56 eq 83",
-             sum=f"{number(day.p, 4)} × {taw}"),
+             sum=f"{number(day.p, 6)} × {taw}"),
         Term("depletion after the day’s water, Dr", number(day.depletion_wet, 2), "mm",
              "opening + new roots − water in", "Methods 6",
              sum=f"{number(day.opening, 3)} + {number(day.growth, 3)} − {_came(day)}"),
@@ -443,7 +443,7 @@ def _close(row: Row, day: DayWorking, before: Row | None) -> list[Term]:
         terms.append(
             Term("evaporation layer, depletion", number(day.layer, 2), "mm",
                  "De + evaporation / few", "FAO-56 eq 77",
-                 sum=f"{number(day.layer_wet, 3)} + {number(day.evaporation, 3)} / "
-                 f"{number(day.exposed, 4)}")
+                 sum=f"{number(day.layer_wet, 3)} + {number(day.evaporation, 5)} / "
+                 f"{number(day.exposed, 5)}")
         )  # fmt: skip
     return terms

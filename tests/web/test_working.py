@@ -115,7 +115,7 @@ def test_every_equation_gives_its_figure(browse: Browser, key: str) -> None:
                 continue
             digits = len(term["value"].partition(".")[2])
             printed = float(term["value"].replace("−", "-").replace("\u202f", ""))
-            close = pytest.approx(printed, abs=1.5 * 10**-digits)
+            close = pytest.approx(printed, abs=1.01 * 10**-digits)
             assert evaluated(term["sum"]) == close, (day, term["name"], term["sum"])
             assert f"= {term['sum']}</span>" in page
             seen.add(term["name"])
