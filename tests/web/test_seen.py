@@ -56,7 +56,7 @@ def test_what_cannot_be_is_refused_in_words(live: Browser, form: dict[str, str],
     answer = live.post(f"{PAGE}/seen", data=form)
     assert answer.status_code == 422
     assert says in answer.text
-    assert "Nothing was stored" in answer.text
+    assert "Nothing was changed" in answer.text
 
 
 def test_the_api_logs_lists_and_deletes(live: Browser) -> None:
