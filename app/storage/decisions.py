@@ -29,6 +29,19 @@ class Decided(NamedTuple):
     who: str
 
 
+def decided_on(session: Session, numbers: Sequence[int]) -> dict[int, Decided]:
+    """The last decision on each of the advices, by number; none that was taken back."""
+    last = select(func.max(Decision.id)).where(Decision.number.in_(numbers))
+    return {
+        row.number: Decided(*(getattr(row, name) for name in Decided._fields))
+        for row in session.scalars(
+            select(Decision).where(
+                Decision.id.in_(last.group_by(Decision.number)), Decision.verdict != TAKE_BACK
+            )
+        )
+    }
+
+
 def standing_decisions(
     session: Session, morning: date | None, blocks: Sequence[int] | None = None
 ) -> dict[int, Decided]:

@@ -66,14 +66,14 @@ class RoundsRow(NamedTuple):
     data_until: date | None
     decision: Decided | None = None
     """What the advisor decided: day, depths and hours above are then the advisor's."""
-    advised: tuple[date | None, float] = (None, 0.0)
-    """Day and hours of the advice itself, where something was decided."""
+    issued: "RoundsRow | None" = None
+    """The row with the advice as it was issued, where something was decided."""
 
     def follow(self, decision: Decided) -> "RoundsRow":
         """The row as the advisor decided."""
         return self._replace(
             decision=decision,
-            advised=(self.day, self.hours),
+            issued=self,
             day=decision.day,
             net_mm=decision.net_mm,
             gross_mm=decision.gross_mm,

@@ -14,6 +14,7 @@ OUTCOMES = {
     UNASKED: "watered unasked",
     NO_NEED: "no water asked for, none given",
 }
+DECIDED = {"accept": "accepted", "change": "changed by the advisor", "withhold": "withheld"}
 
 
 class Told(NamedTuple):
@@ -35,14 +36,15 @@ def told(one: Outturn) -> Told:
     """An outturn as a row."""
     advice = one.advice
     watering = advice.day is not None and advice.net_mm > 0
+    decided = f"; {DECIDED[one.decided.verdict]}" if one.decided else ""
     return Told(
         wording.short_day(advice.issued_on),
         advice.field_key,
         advice.field_name,
         advice.number,
-        f"{wording.short_day(advice.day)}, {wording.depth(advice.net_mm)} mm net"
+        f"{wording.short_day(advice.day)}, {wording.depth(advice.net_mm)} mm net" + decided
         if watering and advice.day is not None
-        else "no water",
+        else f"no water{decided}",
         OUTCOMES[one.done],
         wording.number(one.foretold_mm, 1),
         wording.number(one.known_mm, 1),

@@ -242,10 +242,10 @@ def change_words(row: RoundsRow, facts: Facts) -> str:
     if since.thought_mm is not None:
         revised = since.before_mm - since.thought_mm
         if abs(revised) >= REVISED_MM:
-            why = "entries since" if since.told else "new data"
+            why = "entries since" if since.told else "new data or a changed book"
             more = "drier" if revised > 0 else "wetter"
             said += f"Was {wording.depth(abs(revised))} mm {more} than thought: {why}. "
-    day = row.advised[0] if row.decision else row.day
+    day = (row.issued or row).day
     if (
         since.was_day is not None
         and day not in (None, since.was_day)
@@ -263,8 +263,8 @@ def decision_words(row: RoundsRow, today: date) -> str:
     note = f" ({decision.note})" if decision.note else ""
     if decision.verdict == "accept":
         return f"Accepted by {decision.who}{note}. "
-    day, hours = row.advised
-    advised = f"{when(day, today)}, {wording.number(hours, 1)} h" if day else "no water"
+    was = row.issued or row
+    advised = f"{when(was.day, today)}, {wording.number(was.hours, 1)} h" if was.day else "no water"
     if decision.verdict == "withhold":
         until = wording.short_day(decision.until)
         return f"Withheld by {decision.who} through {until}{note}; advised: {advised}. "

@@ -9,6 +9,7 @@ from sqlalchemy.orm import Session
 
 from app.science import Floats
 from app.science.advice.outturn import Skill, comparable, done, skill
+from app.storage.decisions import Decided, decided_on
 from app.storage.outturns import Known, PastAdvice, known_days, past_advice
 from app.storage.scope import Farms
 
@@ -19,10 +20,12 @@ DAY = timedelta(days=1)
 
 @dataclass(frozen=True)
 class Outturn:
-    """One advice, seven days on: what was done, the depletion foretold and known on the last day
-    before water came (None where water came at once), days that closed past the limit."""
+    """One advice, seven days on: what the advisor decided, what was done of that, the depletion
+    foretold and known on the last day before water came (None where water came at once), days that
+    closed past the limit."""
 
     advice: PastAdvice
+    decided: Decided | None
     done: str
     lead: int
     foretold_mm: float | None
@@ -67,8 +70,11 @@ def outturns(
         np.array([table[n] for table in tables]) for n in range(7)
     )
     use = comparable(net)
+    decided = decided_on(session, [one.number for one in advised])
     each = tuple(
-        _outturn(one, foretold[n], came[n], net[n], limit[n], int(use[n].sum()))
+        _outturn(
+            one, decided.get(one.number), foretold[n], came[n], net[n], limit[n], int(use[n].sum())
+        )
         for n, one in enumerate(advised)
     )
     return Outturns(each, tuple(skill(foretold, low, high, came, persistence, use)))
@@ -114,14 +120,22 @@ def _column(outlook: dict[str, list[float | None]], name: str) -> Floats:
 
 
 def _outturn(
-    one: PastAdvice, foretold: Floats, came: Floats, net: Floats, limit: Floats, dry: int
+    one: PastAdvice,
+    decided: Decided | None,
+    foretold: Floats,
+    came: Floats,
+    net: Floats,
+    limit: Floats,
+    dry: int,
 ) -> Outturn:
-    at = None if one.day is None or one.net_mm <= 0 else (one.day - one.issued_on).days
+    day, asked = (one.day, one.net_mm) if decided is None else (decided.day, decided.net_mm)
+    at = None if day is None or asked <= 0 else (day - one.issued_on).days
     within = at if at is not None and at < DAYS else None
     told = dry > 0 and not np.isnan(foretold[dry - 1])
     return Outturn(
         advice=one,
-        done=done(within, one.net_mm, net),
+        decided=decided,
+        done=done(within, asked, net),
         lead=dry,
         foretold_mm=float(foretold[dry - 1]) if told else None,
         known_mm=float(came[dry - 1]) if told else None,

@@ -14,6 +14,7 @@ from app.workflows.decide_on_advice import decide_on_advice
 from app.workflows.letter_facts import farm_facts, letter_content
 from app.workflows.log_event import log_irrigation
 from app.workflows.once import EntryError
+from tests.web.conftest import Browser
 from tests.workflows import basin
 
 TODAY = basin.TODAY
@@ -54,7 +55,7 @@ def test_a_change_is_followed_and_the_advice_stays(full: Database) -> None:
     assert (row.day, row.hours, row.gross_mm) == (TODAY + 2 * ONE, 5, pytest.approx(30))
     assert row.net_mm == pytest.approx(24)  # 6 mm/h for 5 h at 0.8
     assert row.volume_m3 == pytest.approx(3000)
-    assert row.advised == (advised.day, advised.hours)
+    assert row.issued == advised
     assert advice_of(full) == before
     (item, *_) = [one for one in letter(full).items if one.field_key == "long-piece"]
     assert (item.day, item.hours, item.decided) == (TODAY + 2 * ONE, 5, True)
@@ -125,3 +126,16 @@ def test_what_cannot_be_decided_is_refused(
 def test_nothing_to_decide_on(db: Database) -> None:
     with pytest.raises(EntryError, match="no field"):
         decide(db, "accept", "t")
+
+
+def test_the_api_tells_advice_and_decision_apart(full: Database) -> None:
+    browse = Browser(full, today=TODAY)
+    before = browse.get("/api/v1/rounds").json()["fields"]
+    decide(full, "change", "t1", day=TODAY + 3 * ONE, hours=4)
+    after = browse.get("/api/v1/rounds").json()["fields"]
+    assert {one["key"]: one["advice"] for one in after} == {
+        one["key"]: one["advice"] for one in before
+    }
+    decision = next(one for one in after if one["key"] == "long-piece")["decision"]
+    assert (decision["verdict"], decision["hours"], decision["day"]) == ("change", 4, "2026-07-04")
+    assert all(one["decision"] is None for one in after if one["key"] != "long-piece")

@@ -10,6 +10,7 @@ from app.science.advice.outturn import comparable, done, skill
 from app.storage.database import Database
 from app.storage.tables import Advice, Block
 from app.workflows.bring_up_to_date import bring_up_to_date
+from app.workflows.decide_on_advice import decide_on_advice
 from app.workflows.log_event import log_irrigation
 from app.workflows.outturn import outturns
 from tests.web.conftest import Browser
@@ -44,6 +45,35 @@ def test_skill_by_hand() -> None:
     assert (one.lead, one.n, one.bias, one.covered) == (1, 2, -1.0, 0.5)
     assert one.rmse == pytest.approx(5.0**0.5)
     assert one.persistence == pytest.approx(2.0**0.5)
+
+
+def test_mornings_without_a_range_or_a_week_before_are_left_out_of_those_figures() -> None:
+    known, nan = np.array([[10.0], [10.0]]), np.nan
+    (one,) = skill(
+        known, np.array([[9.0], [nan]]), np.array([[11.0], [nan]]), known,
+        np.array([[nan], [nan]]), np.ones((2, 1), np.bool_),
+    )  # fmt: skip
+    assert (one.n, one.covered) == (2, 1.0)
+    assert np.isnan(one.persistence)
+
+
+def test_what_the_advisor_decided_is_what_was_to_be_followed(db: Database) -> None:
+    basin.fill(db, basin.TODAY - 12 * ONE)
+    morning = basin.TODAY - 12 * ONE
+    bring_up_to_date(db, morning)
+    decide_on_advice(
+        db, "long-piece", None, "change", "B. Lane", "d1", morning, day=morning + 3 * ONE, hours=4
+    )
+    log_irrigation(
+        db, "long-piece", None, morning + 3 * ONE, 4, "hours", "a", "t", morning + 4 * ONE
+    )
+    for station in ("bench", "meadow"):
+        basin.take(db, station, basin.daily_csv(), basin.TODAY)
+    with db.read() as session:
+        found = outturns(session, basin.TODAY, 30, farm="reed")
+    one = next(one for one in found.each if one.decided is not None)
+    assert one.decided is not None
+    assert (one.decided.verdict, one.done) == ("change", "followed")
 
 
 def test_outturns_of_a_field_watered_as_advised_and_one_that_was_not(db: Database) -> None:

@@ -65,7 +65,8 @@ def skill(
 
     foretold, low, high, known, persistence (mornings, days) [mm]: closing depletions of the days
     from the morning's own on; use: the days that can be compared. NaN is left out. Lead 1 is the
-    first day. RMSE and bias are of foretold - known.
+    first day. RMSE and bias are of foretold - known; coverage is of the mornings that had a range,
+    persistence of those with a week before them, NaN without any.
     """
     found = []
     for lead in leads:
@@ -76,18 +77,20 @@ def skill(
         if not here.any():
             continue
         error = foretold[here, column] - known[here, column]
-        within = (low[here, column] <= known[here, column]) & (
-            known[here, column] <= high[here, column]
+        ranged = here & ~np.isnan(low[:, column]) & ~np.isnan(high[:, column])
+        within = (low[ranged, column] <= known[ranged, column]) & (
+            known[ranged, column] <= high[ranged, column]
         )
-        plain = persistence[here, column] - known[here, column]
+        both = here & ~np.isnan(persistence[:, column])
+        plain = persistence[both, column] - known[both, column]
         found.append(
             Skill(
                 lead=lead,
                 n=int(here.sum()),
                 bias=float(error.mean()),
                 rmse=float(np.sqrt(np.mean(error**2))),
-                covered=float(within.mean()),
-                persistence=float(np.sqrt(np.nanmean(plain**2))),
+                covered=float(within.mean()) if ranged.any() else np.nan,
+                persistence=float(np.sqrt(np.mean(plain**2))) if both.any() else np.nan,
             )
         )
     return found

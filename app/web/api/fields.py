@@ -29,8 +29,9 @@ ADVICE = (
 
 
 def advice_of(row: RoundsRow) -> dict[str, Any] | None:
-    """The advice of a row, None without one."""
-    return {name: getattr(row, name) for name in ADVICE} if row.number is not None else None
+    """The advice of a row as it was issued, None without one."""
+    issued = row.issued or row
+    return {name: getattr(issued, name) for name in ADVICE} if row.number is not None else None
 
 
 @router.get("/rounds", tags=["rounds"])
@@ -53,6 +54,7 @@ def rounds(db: AsDatabase, viewer: AsViewer, today: AsToday) -> RoundsOut:
                 crop=row.crop,
                 planting=row.planting,
                 advice=advice_of(row),
+                decision=row.decision._asdict() if row.decision else None,
             )
             for row in sorted(rows, key=urgency)
         ],

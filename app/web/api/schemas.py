@@ -61,7 +61,10 @@ class RoundsField(BaseModel):
     crop: str | None
     planting: date | None
     advice: dict[str, Any] | None = Field(
-        description="standing, day, depths, hours, volume, depletion, limit, TAW, rung"
+        description="as issued: standing, day, depths, hours, volume, depletion, limit, TAW, rung"
+    )
+    decision: dict[str, Any] | None = Field(
+        None, description="what the advisor decided: verdict, day, depths, hours, until, note, who"
     )
 
 
