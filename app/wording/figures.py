@@ -52,7 +52,7 @@ def share(value: float | None) -> str:
 
 def plain(value: float) -> str:
     """A figure for an input box: no spaces, no trailing zeros."""
-    return f"{value:.6g}"
+    return f"{round(value, 6):.12g}"
 
 
 def reading(value: float) -> str:
