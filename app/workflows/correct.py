@@ -67,28 +67,32 @@ def _differs(
     )
 
 
-def corrected(old: Content, new: Content, changed: Sequence[str]) -> tuple[Content, list[Item]]:
+def corrected(
+    old: Content, new: Content, changed: Sequence[str], watered: Mapping[str, int]
+) -> tuple[Content, list[Item]]:
     """A correction's content: items keep the UIDs of those they take the place of; and the items
     of the old letter from the correction's day on that no longer hold.
 
-    What lay before the first day the new content speaks of stays as it was.
+    watered: irrigations logged since the old letter, by field: their items are done, and stay as
+    they were, as does what lay before the first day the new content speaks of.
     """
     start = min([item.day for item in new.items], default=new.morning)
     start = min(start, new.past_last + timedelta(days=1))
     left: dict[str, list[Item]] = {}
     taken = {item.uid for item in old.items}
-    for item in old.items:
-        if item.day >= start:
-            left.setdefault(item.field_key, []).append(item)
-    items = []
+    for items in open_items(old, watered).values():
+        for item in items:
+            if item.day >= start:
+                left.setdefault(item.field_key, []).append(item)
+    kept = []
     for item in new.items:
         queue = left.get(item.field_key, [])
         uid = queue.pop(0).uid if queue else _fresh(item.uid, taken)
         taken.add(uid)
-        items.append(item.model_copy(update={"uid": uid}))
+        kept.append(item.model_copy(update={"uid": uid}))
     gone = [item for queue in left.values() for item in queue]
     named = [name for name in changed if name]
-    return new.model_copy(update={"items": items, "changed": named}), gone
+    return new.model_copy(update={"items": kept, "changed": named}), gone
 
 
 def _fresh(uid: str, taken: Iterable[str]) -> str:

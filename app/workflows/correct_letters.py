@@ -55,11 +55,11 @@ def _changed(
     new = letter_content(facts, week, old.first_day, domain)
     if new is None or old.last_day < today:
         return []
-    watered = _watered(session, facts, old.morning)
+    watered = watered_since(session, facts, old.morning)
     return changed_fields(old, new, watered, today, thresholds)
 
 
-def _watered(session: Session, facts: FarmFacts, since: date) -> dict[str, int]:
+def watered_since(session: Session, facts: FarmFacts, since: date) -> dict[str, int]:
     """Irrigations logged since a morning, by field."""
     counts = store.watered_since(session, facts.blocks, since)
     return {

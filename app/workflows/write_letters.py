@@ -16,6 +16,7 @@ from app.storage import recipients as people
 from app.storage.letters import LetterRow
 from app.wording.reader import Reader, reader
 from app.workflows.correct import corrected
+from app.workflows.correct_letters import watered_since
 from app.workflows.letter_facts import FarmFacts, farm_facts, letter_content
 
 ANSWERABLE = timedelta(days=21)
@@ -68,7 +69,8 @@ def contents(
         old = before.get((row.recipient.id, row.letter.week))
         gone: list[Item] = []
         if content is not None and old is not None:
-            content, gone = corrected(old, content, row.letter.why.split("\n"))
+            watered = watered_since(session, facts[row.farm.key], old.morning)
+            content, gone = corrected(old, content, row.letter.why.split("\n"), watered)
         found.append(None if content is None else (content, gone))
     return found
 

@@ -73,9 +73,17 @@ def test_what_is_worth_a_correction(
 def test_a_correction_keeps_uids_and_calls_off_what_no_longer_holds() -> None:
     old = letter(("long", 0, 8.0), ("long", 3, 8.0), ("east", 4, 4.0))
     new = letter(("long", 5, 8.0), ("long", 6, 8.0), start=WEDNESDAY)
-    made, gone = corrected(old, new, ["Long", "East"])
+    made, gone = corrected(old, new, ["Long", "East"], {})
     first, second = made.items
     assert first.uid == old.items[1].uid  # Thursday's moves to Saturday
     assert second.uid not in {item.uid for item in old.items}
     assert [item.field for item in gone] == ["East"]  # Monday's has been; it is not called off
     assert made.changed == ["Long", "East"]
+
+
+def test_water_already_done_does_not_lend_its_calendar_entry() -> None:
+    old = letter(("long", 0, 8.0), ("long", 4, 8.0))
+    new = letter(("long", 2, 8.0))
+    told, gone = corrected(old, new, ["Long"], {"long": 1})
+    assert [item.uid for item in told.items] == [old.items[1].uid]
+    assert gone == []
